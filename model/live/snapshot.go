@@ -1,0 +1,106 @@
+package live
+
+import (
+	"time"
+
+	"barline/model/bench"
+	"barline/model/emission"
+	"barline/model/reading"
+	"barline/model/trend"
+	"barline/model/unit"
+)
+
+// Mode is what the core is doing with the gas.
+type Mode uint8
+
+const (
+	// Watching: nothing moves gas and nothing may, until armed.
+	Watching Mode = iota
+	// Armed: a command that moves gas would be taken.
+	Armed
+	// Ramping: the setpoint is on its way to the target.
+	Ramping
+	// Settling: the setpoint stands at the target, the gas follows.
+	Settling
+	// Held: HOLD was asked for or came by itself. Nothing resumes by itself.
+	Held
+)
+
+var modeText = [...]string{"watching", "armed", "ramping", "settling", "HOLD"}
+
+// String returns the mode as the screen and the logbook write it.
+func (m Mode) String() string { return modeText[m] }
+
+// LinkHealth is the state of the line to one instrument.
+type LinkHealth struct {
+	Instrument string
+	Up         bool
+	Since      reading.Stamp
+	Reason     string // why it is down
+}
+
+// Alarm is one entry of the alarm list.
+type Alarm struct {
+	Name        string // such as "cell A stale"
+	Priority    int    // 1 is the most urgent
+	Active      bool
+	Acked       bool
+	Since       reading.Stamp
+	Cause       string // what happened
+	Consequence string // what the bench does now
+	Action      string // what to press or check
+}
+
+// Point is one measured emission and the pressure it was taken at.
+type Point struct {
+	At       reading.Stamp
+	Pressure unit.Pascal // in the core
+	Emission unit.Metre
+	Rising   bool // pressure was rising towards this point
+}
+
+// CurvePoint is one point of the predicted emission over pressure.
+type CurvePoint struct {
+	Pressure unit.Pascal
+	Emission unit.Metre // 0 where none is predicted
+	Sigma    unit.Metre
+}
+
+// Snapshot is all that a screen draws. It is built by the loop, never changed
+// afterwards, and shares no memory with the core.
+type Snapshot struct {
+	Now   reading.Stamp
+	Bench *bench.Bench // read only
+
+	Mode       Mode
+	Why        string // why the bench is held, or what it waits for
+	ArmedUntil time.Duration
+	Target     unit.Pascal // 0 where there is none
+	Setpoint   unit.Pascal // last commanded, 0 before the first
+	Core       unit.Pascal // pressure at the point of compression as the model has it
+	CoreKnown  bool
+
+	Latest     [reading.RoleCount]reading.Reading
+	Prediction emission.Prediction
+	// Residual is measured minus predicted emission; valid where ResidualKnown.
+	Residual      unit.Metre
+	ResidualKnown bool
+
+	Curve  []CurvePoint // ascending in pressure
+	Points []Point      // oldest first
+
+	Links  []LinkHealth
+	Alarms []Alarm // most urgent first
+	Record RecordHealth
+	Folder string   // where the logbook is
+	Recent []string // newest last: lines of the record, as text
+
+	// History; times are bench Mono.
+	PressureA *trend.View // Pa
+	Expected  *trend.View // Pa: setpoint
+	Residuals *trend.View // m
+
+	Simulated bool
+	ReadOnly  bool
+	Dropped   uint64 // readings that a full queue refused
+}
