@@ -80,3 +80,10 @@ type Prediction struct {
 	Verdicts     [MaxVerdicts]Verdict
 	VerdictCount int
 }
+
+// CurvePoint is one point of the predicted emission over pressure.
+type CurvePoint struct {
+	Pressure unit.Pascal
+	Emission unit.Metre // 0 where none is predicted
+	Sigma    unit.Metre
+}

@@ -59,13 +59,6 @@ type Point struct {
 	Rising   bool // pressure was rising towards this point
 }
 
-// CurvePoint is one point of the predicted emission over pressure.
-type CurvePoint struct {
-	Pressure unit.Pascal
-	Emission unit.Metre // 0 where none is predicted
-	Sigma    unit.Metre
-}
-
 // Snapshot is all that a screen draws. It is built by the loop, never changed
 // afterwards, and shares no memory with the core.
 type Snapshot struct {
@@ -86,8 +79,8 @@ type Snapshot struct {
 	Residual      unit.Metre
 	ResidualKnown bool
 
-	Curve  []CurvePoint // ascending in pressure
-	Points []Point      // oldest first
+	Curve  []emission.CurvePoint // ascending in pressure
+	Points []Point               // oldest first
 
 	Links  []LinkHealth
 	Alarms []Alarm // most urgent first

@@ -1,0 +1,62 @@
+package main
+
+import (
+	"errors"
+	"fmt"
+	"io"
+
+	"github.com/spf13/cobra"
+)
+
+// Exit codes of every command.
+const (
+	exitDone    = 0 // done, also after Ctrl-C
+	exitFailed  = 1 // failed, or refused by physics
+	exitUsage   = 2 // wrong use: flags, configuration
+	exitStopped = 3 // stopped by an alarm or an interlock
+)
+
+// coded is an error that knows the exit code it deserves.
+type coded struct {
+	code int
+	err  error
+}
+
+func (c coded) Error() string { return c.err.Error() }
+func (c coded) Unwrap() error { return c.err }
+
+// usage marks err as wrong use of the program.
+func usage(format string, args ...any) error { return coded{exitUsage, fmt.Errorf(format, args...)} }
+
+// run carries out one command line and returns the exit code. Results go to
+// stdout, everything else to stderr.
+func run(args []string, stdin io.Reader, stdout, stderr io.Writer) int {
+	root := newRoot()
+	root.SetArgs(args)
+	root.SetIn(stdin)
+	root.SetOut(stdout)
+	root.SetErr(stderr)
+	err := root.Execute()
+	if err == nil {
+		return exitDone
+	}
+	fmt.Fprintln(stderr, "barline:", err)
+	var c coded
+	if errors.As(err, &c) {
+		return c.code
+	}
+	return exitFailed
+}
+
+func newRoot() *cobra.Command {
+	root := &cobra.Command{
+		Use:           "barline",
+		Short:         "Dashboard beside the gas-pressure controller of a hollow-core-fibre ultraviolet source",
+		SilenceErrors: true,
+		SilenceUsage:  true,
+	}
+	root.SetFlagErrorFunc(func(cmd *cobra.Command, err error) error {
+		return usage("%w; see barline %s -h", err, cmd.Name())
+	})
+	return root
+}
