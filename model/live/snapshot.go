@@ -67,11 +67,13 @@ type Snapshot struct {
 
 	Mode       Mode
 	Why        string // why the bench is held, or what it waits for
+	Notice     string // what became of the last intent
 	ArmedUntil time.Duration
 	Target     unit.Pascal // 0 where there is none
 	Setpoint   unit.Pascal // last commanded, 0 before the first
 	Core       unit.Pascal // pressure at the point of compression as the model has it
 	CoreKnown  bool
+	Steps      StepProgress
 
 	Latest     [reading.RoleCount]reading.Reading
 	Prediction emission.Prediction

@@ -1,0 +1,191 @@
+package live
+
+import (
+	"errors"
+	"fmt"
+	"time"
+
+	"barline/model/bench"
+	"barline/model/emission"
+	"barline/model/limit"
+	"barline/model/reading"
+	"barline/model/unit"
+)
+
+// Predictor is the part of emission.Predictor that the core leans on.
+// The answer must depend on its arguments alone.
+type Predictor interface {
+	Predict(in emission.Input, prev *emission.Prediction) emission.Prediction
+}
+
+// Core is what stays the same while an experiment runs.
+type Core struct {
+	limits    limit.Limits
+	predictor Predictor
+	energy    unit.Joule // used while no meter says otherwise
+	ambient   unit.Kelvin
+
+	stale        time.Duration
+	arming       time.Duration
+	follow       unit.Pascal
+	disagreement unit.Pascal
+	heartbeat    time.Duration
+	wavelength   unit.Metre // deadband of recorded predictions
+	controlled   bool       // an instrument takes setpoints
+}
+
+const (
+	// rampEvery is the longest reach of one setpoint: a lost link leaves the
+	// bench at most this far along the ramp.
+	rampEvery = time.Second
+	// answerWithin is how long an instrument may take to confirm a command.
+	answerWithin = 3 * time.Second
+	// predictEvery bounds how often the model is asked.
+	predictEvery = 50 * time.Millisecond
+	// settledWithin and settledFor say when the gas has reached a target.
+	settledWithin = 20 * unit.Millibar
+	settledFor    = 3 * time.Second
+	// assumedTemperature stands in until a thermometer has spoken; the
+	// prediction then says so by its input.
+	assumedTemperature = unit.Kelvin(295.15)
+)
+
+// New returns the core of bench b and the state in which an experiment
+// starts: watching, nothing armed, nothing known.
+func New(b *bench.Bench, p Predictor) (*Core, State, error) {
+	if p == nil {
+		return nil, State{}, errors.New("live: no predictor")
+	}
+	c := &Core{
+		limits:       b.Limits.Enforced(),
+		predictor:    p,
+		energy:       b.Pulse.Energy,
+		stale:        b.Limits.Stale.Duration(),
+		arming:       b.Limits.Arming.Duration(),
+		follow:       b.Limits.Follow,
+		disagreement: b.Limits.Disagreement,
+		heartbeat:    b.Logbook.Heartbeat.Duration(),
+		wavelength:   b.Logbook.DeadbandWavelength,
+	}
+	if err := c.limits.Check(); err != nil {
+		return nil, State{}, err
+	}
+	if c.stale <= 0 || c.arming <= 0 {
+		return nil, State{}, fmt.Errorf("limits.stale is %v and limits.arming %v, expected both above zero", c.stale, c.arming)
+	}
+	var s State
+	for _, in := range b.Instrument {
+		if s.LinkCount == MaxLinks {
+			return nil, State{}, fmt.Errorf("%d instruments, expected at most %d", len(b.Instrument), MaxLinks)
+		}
+		s.Links[s.LinkCount] = LinkHealth{Instrument: in.Name, Reason: "not opened yet"}
+		s.LinkCount++
+		for _, ch := range in.Channel {
+			if ch.Role == reading.Setpoint.String() && ch.Write != "" {
+				c.controlled = true
+			}
+		}
+	}
+	return c, s, nil
+}
+
+// Limits returns the limits that commands are checked against.
+func (c *Core) Limits() limit.Limits { return c.limits }
+
+// Stale returns the age beyond which a reading is a failure.
+func (c *Core) Stale() time.Duration { return c.stale }
+
+// Step folds e into s and appends to fx the work that follows, which is to be
+// carried out in order. It depends on its arguments alone.
+func (c *Core) Step(s *State, e Event, fx []Effect) []Effect {
+	// Readings are stamped when their last byte arrived, and may reach the
+	// core after a later tick: time never steps back.
+	if at := e.When(); at.Mono >= s.Now.Mono {
+		s.Now = at
+	}
+	switch e := e.(type) {
+	case Read:
+		fx = c.read(s, e.Reading, fx)
+	case Tick:
+		fx = c.tick(s, fx)
+	case LinkChanged:
+		fx = c.link(s, e, fx)
+	case Asked:
+		fx = c.asked(s, e.Intent, fx)
+	case Answered:
+		fx = c.answered(s, e, fx)
+	case RecordChanged:
+		fx = c.record(s, e.Health, fx)
+	default:
+		panic(fmt.Sprintf("live: unknown event %T", e))
+	}
+	return fx
+}
+
+func (c *Core) read(s *State, r reading.Reading, fx []Effect) []Effect {
+	if int(r.Role) >= reading.RoleCount || r.Role == reading.NoRole {
+		return fx
+	}
+	if r.Taken.Mono < s.Latest[r.Role].Taken.Mono {
+		return fx // answers may overtake each other; never step back
+	}
+	s.Latest[r.Role] = r
+	if r.Role == reading.Emission {
+		c.compare(s, r)
+	}
+	return fx
+}
+
+// compare lays a measured emission over the prediction that stood when it was
+// taken.
+func (c *Core) compare(s *State, r reading.Reading) {
+	if !r.Status.Usable() || !s.CoreKnown || !s.Prediction.Valid || s.Prediction.Emission == 0 {
+		return
+	}
+	s.Residual = unit.Metre(r.Value) - s.Prediction.Emission
+	s.ResidualAt = r.Taken.Mono
+	if s.Steps.Active() && s.Steps.SettledAt != 0 {
+		s.Steps.sum += float64(s.Residual)
+		s.Steps.taken++
+	}
+}
+
+func (c *Core) tick(s *State, fx []Effect) []Effect {
+	if s.ArmedUntil != 0 && s.Now.Mono >= s.ArmedUntil {
+		s.ArmedUntil = 0
+		if s.Mode == Armed {
+			s.Mode, s.Why = Watching, ""
+		}
+	}
+	c.coreGas(s)
+	fx = c.predict(s, fx)
+	if s.Mode == Ramping || s.Mode == Settling {
+		if why := c.unsafe(s); why != "" {
+			return c.hold(s, why, fx)
+		}
+		fx = c.ramp(s, fx)
+		fx = c.advance(s, fx)
+	}
+	return fx
+}
+
+func (c *Core) link(s *State, e LinkChanged, fx []Effect) []Effect {
+	for i := range s.Links[:s.LinkCount] {
+		if l := &s.Links[i]; l.Instrument == e.Instrument {
+			l.Up, l.Since, l.Reason = e.Up, e.At, e.Reason
+		}
+	}
+	state := "up"
+	if !e.Up {
+		state = "down"
+	}
+	return append(fx, Record{At: e.At, Kind: KindReadback, Data: LinkData{Instrument: e.Instrument, Link: state, Reason: e.Reason}})
+}
+
+func (c *Core) record(s *State, h RecordHealth, fx []Effect) []Effect {
+	s.Record = h
+	if !h.Writing && (s.Mode == Ramping || s.Mode == Settling) {
+		return c.hold(s, "nothing is being recorded: "+h.Reason, fx)
+	}
+	return fx
+}

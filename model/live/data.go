@@ -1,0 +1,115 @@
+package live
+
+import (
+	"barline/model/reading"
+)
+
+// The data of each kind of record, as the logbook holds them. Keys carry
+// their unit; SI throughout.
+type (
+	// IntentData is an intent, and why it was refused where it was.
+	IntentData struct {
+		Intent   string    `json:"intent"`
+		TargetPa []float64 `json:"target_Pa,omitempty"`
+		DwellS   float64   `json:"dwell_s,omitempty"`
+		Alarm    string    `json:"alarm,omitempty"`
+		Refused  string    `json:"refused,omitempty"`
+	}
+	// CommandData is a command to the controller.
+	CommandData struct {
+		Command    uint64  `json:"command"`
+		Hold       bool    `json:"hold,omitempty"`
+		SetpointPa float64 `json:"setpoint_Pa"`
+		Why        string  `json:"why,omitempty"`
+	}
+	// ReadbackData is the controller's answer to a command.
+	ReadbackData struct {
+		Command uint64 `json:"command"`
+		Error   string `json:"error,omitempty"`
+	}
+	// LinkData is a change of the line to an instrument.
+	LinkData struct {
+		Instrument string `json:"instrument"`
+		Link       string `json:"link"`
+		Reason     string `json:"reason,omitempty"`
+	}
+	// NoteData is a remark.
+	NoteData struct {
+		Text string `json:"text"`
+	}
+	// PredictionData is a prediction and the values that it stood on.
+	PredictionData struct {
+		PressurePa      float64   `json:"pressure_Pa"`
+		TemperatureK    float64   `json:"temperature_K"`
+		EnergyJ         float64   `json:"energy_J"`
+		Air             float64   `json:"air_fraction,omitempty"`
+		Answer          string    `json:"answer"`
+		ZeroDispersionM []float64 `json:"zero_dispersion_m"`
+		EmissionM       *float64  `json:"emission_m"` // null where there is none
+		SigmaM          float64   `json:"sigma_m,omitempty"`
+		MeasuredM       *float64  `json:"measured_m,omitempty"`
+		ResidualM       *float64  `json:"residual_m,omitempty"`
+		Why             string    `json:"why,omitempty"`
+	}
+	// StepData is one row of a run of pressure steps.
+	StepData struct {
+		Step         int      `json:"step"`
+		SetPa        float64  `json:"set_Pa"`
+		MeasuredPa   float64  `json:"measured_Pa"`
+		CorePa       float64  `json:"core_Pa"`
+		TemperatureK float64  `json:"temperature_K"`
+		EnergyJ      float64  `json:"energy_J"`
+		PredictedM   *float64 `json:"predicted_m"`
+		MeasuredM    *float64 `json:"measured_m"`
+		ResidualM    *float64 `json:"residual_m"` // mean over the dwell
+		Samples      int      `json:"samples"`
+		SigmaM       float64  `json:"sigma_m"`
+		Status       string   `json:"status"`
+	}
+)
+
+func (c *Core) predictionData(s *State) PredictionData {
+	p := &s.Prediction
+	d := PredictionData{
+		PressurePa: float64(p.Input.Pressure), TemperatureK: float64(p.Input.Temperature),
+		EnergyJ: float64(p.Input.Energy), Air: float64(p.Input.Air),
+		Answer: p.Answer.String(), Why: p.Why,
+		ZeroDispersionM: make([]float64, p.ZeroDispersionCount),
+	}
+	for i := range d.ZeroDispersionM {
+		d.ZeroDispersionM[i] = float64(p.ZeroDispersion[i])
+	}
+	if p.Emission != 0 {
+		e := float64(p.Emission)
+		d.EmissionM, d.SigmaM = &e, float64(p.Sigma)
+	}
+	if r := s.Reading(reading.Emission, c.stale); r.Status.Usable() {
+		d.MeasuredM = &r.Value
+		if d.EmissionM != nil {
+			residual := r.Value - *d.EmissionM
+			d.ResidualM = &residual
+		}
+	}
+	return d
+}
+
+func (c *Core) stepData(s *State) StepData {
+	a, e := s.Reading(reading.CellAPressure, c.stale), s.Reading(reading.Emission, c.stale)
+	d := StepData{
+		Step: s.Steps.Index + 1, SetPa: float64(s.Target), MeasuredPa: a.Value, CorePa: float64(s.Core),
+		TemperatureK: float64(s.Prediction.Input.Temperature), EnergyJ: float64(s.Prediction.Input.Energy),
+		Samples: s.Steps.taken, SigmaM: float64(s.Prediction.Sigma), Status: e.Status.String(),
+	}
+	if s.Prediction.Emission != 0 {
+		p := float64(s.Prediction.Emission)
+		d.PredictedM = &p
+	}
+	if e.Status.Usable() {
+		d.MeasuredM = &e.Value
+	}
+	if s.Steps.taken > 0 {
+		mean := s.Steps.sum / float64(s.Steps.taken)
+		d.ResidualM = &mean
+	}
+	return d
+}

@@ -1,0 +1,75 @@
+package live
+
+import (
+	"time"
+
+	"barline/model/emission"
+	"barline/model/limit"
+	"barline/model/reading"
+	"barline/model/unit"
+)
+
+// MaxLinks bounds the instruments of one bench.
+const MaxLinks = 16
+
+// State is the experiment at one instant. It holds no pointer into memory
+// that a step changes: a copy is a picture of that instant.
+type State struct {
+	Now reading.Stamp
+
+	Latest [reading.RoleCount]reading.Reading // as reported; see Reading
+
+	Mode       Mode
+	Why        string        // why the bench is held, or what it waits for
+	Notice     string        // what became of the last intent, for the screen
+	ArmedUntil time.Duration // bench Mono; 0 where not armed
+
+	Target   unit.Pascal
+	Setpoint unit.Pascal // last commanded
+	Steps    Steps
+
+	Core       unit.Pascal
+	CoreKnown  bool
+	Prediction emission.Prediction
+	Residual   unit.Metre // measured minus predicted emission
+	// ResidualAt is when the emission behind Residual was taken; 0 where
+	// there is none yet.
+	ResidualAt time.Duration
+
+	Links     [MaxLinks]LinkHealth
+	LinkCount int
+	Record    RecordHealth
+
+	command   uint64        // number of the last command sent
+	awaiting  uint64        // number of the command whose answer is due; 0 where none
+	awaitFrom time.Duration // when it was sent
+	rampedAt  time.Duration // when the setpoint last moved
+	nearSince time.Duration // since when the pressure has been at the target; 0 where it is not
+	predicted time.Duration // when the model was last asked
+	recorded  struct {      // the prediction that last went into the record
+		at       time.Duration
+		emission unit.Metre
+	}
+}
+
+// Reading returns the newest reading of a role, with the status that it
+// deserves now: one older than stale is a failure.
+func (s *State) Reading(r reading.Role, stale time.Duration) reading.Reading {
+	got := s.Latest[r]
+	if got.Channel == "" {
+		got.Reason = "no reading yet"
+		return got
+	}
+	if age := s.Now.Mono - got.Taken.Mono; age > stale && got.Status != reading.Failure {
+		got.Status, got.Reason = reading.Failure, "stale"
+	}
+	return got
+}
+
+// panel returns how the valves stand, as far as they are read back.
+func (s *State) panel() (p limit.Panel) {
+	p.Open[limit.Inlet] = s.Latest[reading.InletValve].Value > 0.5
+	p.Open[limit.Pump] = s.Latest[reading.PumpValve].Value > 0.5
+	p.Open[limit.Vent] = s.Latest[reading.VentValve].Value > 0.5
+	return p
+}
