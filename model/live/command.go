@@ -39,10 +39,11 @@ func (c *Core) unsafe(s *State) string {
 		math.Abs(a.Value-b.Value) > float64(c.disagreement) {
 		return fmt.Sprintf("%s and %s differ by %v, allowed %v", a.Channel, b.Channel, unit.Pascal(math.Abs(a.Value-b.Value)), c.disagreement)
 	}
-	if c.follow > 0 && s.command != 0 && unit.Pascal(math.Abs(float64(p-s.Setpoint))) > c.follow {
+	moving := s.Mode == Ramping || s.Mode == Settling
+	if c.follow > 0 && moving && unit.Pascal(math.Abs(float64(p-s.Setpoint))) > c.follow {
 		return fmt.Sprintf("pressure %v does not follow the setpoint %v", p, s.Setpoint)
 	}
-	if s.awaiting != 0 && s.Now.Mono-s.awaitFrom > answerWithin {
+	if moving && s.awaiting != 0 && s.Now.Mono-s.awaitFrom > answerWithin {
 		return fmt.Sprintf("the controller did not confirm the setpoint %v within %v", s.Setpoint, answerWithin)
 	}
 	if !s.Record.Writing {
