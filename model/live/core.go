@@ -23,7 +23,6 @@ type Core struct {
 	limits    limit.Limits
 	predictor Predictor
 	energy    unit.Joule // used while no meter says otherwise
-	ambient   unit.Kelvin
 
 	stale        time.Duration
 	arming       time.Duration
@@ -189,3 +188,9 @@ func (c *Core) record(s *State, h RecordHealth, fx []Effect) []Effect {
 	}
 	return fx
 }
+
+// Controlled reports whether an instrument of the bench takes setpoints.
+func (c *Core) Controlled() bool { return c.controlled }
+
+// Unconfirmed reports whether a command still waits for its answer.
+func (s *State) Unconfirmed() bool { return s.awaiting != 0 }

@@ -1,0 +1,83 @@
+package live
+
+import (
+	"fmt"
+	"strings"
+
+	"barline/model/unit"
+)
+
+// The text of a record's data, as a screen or a terminal shows it.
+
+// String returns the intent in words.
+func (d IntentData) String() string {
+	var b strings.Builder
+	b.WriteString(d.Intent)
+	switch n := len(d.TargetPa); {
+	case n == 1:
+		fmt.Fprintf(&b, " %v", unit.Pascal(d.TargetPa[0]))
+	case n > 1:
+		fmt.Fprintf(&b, ": %d pressures, %v to %v, dwell %g s", n, unit.Pascal(d.TargetPa[0]), unit.Pascal(d.TargetPa[n-1]), d.DwellS)
+	}
+	if d.Alarm != "" {
+		fmt.Fprintf(&b, " %q", d.Alarm)
+	}
+	if d.Refused != "" {
+		fmt.Fprintf(&b, " refused: %s", d.Refused)
+	}
+	return b.String()
+}
+
+// String returns the command in words.
+func (d CommandData) String() string {
+	if d.Hold {
+		return fmt.Sprintf("%d HOLD at %v: %s", d.Command, unit.Pascal(d.SetpointPa), d.Why)
+	}
+	return fmt.Sprintf("%d setpoint %v", d.Command, unit.Pascal(d.SetpointPa))
+}
+
+// String returns the answer in words.
+func (d ReadbackData) String() string {
+	if d.Error != "" {
+		return fmt.Sprintf("%d not taken: %s", d.Command, d.Error)
+	}
+	return fmt.Sprintf("%d taken", d.Command)
+}
+
+// String returns the change of the line in words.
+func (d LinkData) String() string {
+	if d.Reason != "" {
+		return fmt.Sprintf("%s is %s: %s", d.Instrument, d.Link, d.Reason)
+	}
+	return fmt.Sprintf("%s is %s", d.Instrument, d.Link)
+}
+
+// String returns the remark.
+func (d NoteData) String() string { return d.Text }
+
+// String returns the prediction in words.
+func (d PredictionData) String() string {
+	if d.EmissionM == nil {
+		return fmt.Sprintf("%v: no emission, %s", unit.Pascal(d.PressurePa), d.Why)
+	}
+	text := fmt.Sprintf("%v: %.2f nm ± %.2f nm (%s)", unit.Pascal(d.PressurePa), *d.EmissionM*1e9, d.SigmaM*1e9, d.Answer)
+	if d.ResidualM != nil {
+		text += fmt.Sprintf(", measured %.2f nm, residual %+.2f nm", *d.MeasuredM*1e9, *d.ResidualM*1e9)
+	}
+	return text
+}
+
+// String returns the row in words.
+func (d StepData) String() string {
+	text := fmt.Sprintf("%d: set %v, measured %v", d.Step, unit.Pascal(d.SetPa), unit.Pascal(d.MeasuredPa))
+	if d.PredictedM != nil {
+		text += fmt.Sprintf(", predicted %.2f nm", *d.PredictedM*1e9)
+	}
+	if d.MeasuredM != nil {
+		text += fmt.Sprintf(", emission %.2f nm", *d.MeasuredM*1e9)
+	}
+	if d.ResidualM != nil {
+		text += fmt.Sprintf(", residual %+.2f nm over %d readings", *d.ResidualM*1e9, d.Samples)
+	}
+	return text
+}
