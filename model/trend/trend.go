@@ -14,7 +14,8 @@ type Bucket struct {
 
 // View is a picture of one quantity's history, never changed after it is made.
 type View struct {
-	Levels []Level // finest first
+	First  time.Duration // when the first value was taken, in bench Mono
+	Levels []Level       // finest first
 }
 
 // Level is history at one resolution.
