@@ -16,6 +16,8 @@ type (
 	PascalPerSecond float64
 	// Kelvin is a thermodynamic temperature.
 	Kelvin float64
+	// KelvinDifference is a difference of temperatures.
+	KelvinDifference float64
 	// Metre is a length or a vacuum wavelength.
 	Metre float64
 	// Second is a duration as a person writes it, from a pulse to a day.

@@ -11,6 +11,22 @@ import (
 // ErrUnit is wrapped by every error of parsing a quantity.
 var ErrUnit = errors.New("not a quantity")
 
+// TextError says why a text is not a quantity. It wraps ErrUnit.
+type TextError struct {
+	Text   string // as written, cut to a length that fits a message
+	Reason string // what was expected
+}
+
+// Error quotes the text and gives the reason.
+func (e *TextError) Error() string { return fmt.Sprintf("%q is %v: %s", e.Text, ErrUnit, e.Reason) }
+
+// Unwrap returns ErrUnit.
+func (e *TextError) Unwrap() error { return ErrUnit }
+
+func refuse(text, format string, args ...any) error {
+	return &TextError{clip(text), fmt.Sprintf(format, args...)}
+}
+
 // scale says how a number in one written unit becomes SI: si = factor·x + offset.
 // A factor that is a power of ten moves the decimal exponent of the text
 // instead, so that 180 nm is the float64 nearest to 180e-9.
@@ -44,6 +60,9 @@ var (
 	}}
 	temperatureDim = dimension{"temperature", "22 degC", []scale{
 		{[]string{"degC", "°C", "Cel"}, 1, 273.15}, {[]string{"K"}, 1, 0},
+	}}
+	differenceDim = dimension{"temperature difference", "0.1 K", []scale{
+		{[]string{"K", "degC", "°C", "Cel"}, 1, 0}, {[]string{"mK"}, 1e-3, 0},
 	}}
 	lengthDim = dimension{"length", "34 um", []scale{
 		{[]string{"m"}, 1, 0}, {[]string{"cm"}, 1e-2, 0}, {[]string{"mm"}, 1e-3, 0},
@@ -87,8 +106,9 @@ var (
 // gaugeMarks end a unit of pressure that counts from ambient.
 var gaugeMarks = []string{"(g)", "_g", " gauge"}
 
-// split separates the leading number of s from the unit behind it.
-func split(s string) (number, name string) {
+// Cut separates the leading number of s from the unit behind it. It checks
+// neither.
+func Cut(s string) (number, name string) {
 	s = strings.TrimSpace(s)
 	s = strings.Replace(s, "\u2212", "-", 1) // the typographic minus sign that pasted text carries
 	end := 0
@@ -128,26 +148,26 @@ func (sc scale) si(number string) (v float64, ok bool) {
 
 // parse reads text as a quantity of dimension d, in SI units.
 func (d dimension) parse(text string) (float64, error) {
-	number, name := split(text)
+	number, name := Cut(text)
 	if _, ok := (scale{factor: 1}).si(number); !ok {
-		return 0, fmt.Errorf("%q is %w: expected a %s such as %q", clip(text), ErrUnit, d.noun, d.example)
+		return 0, refuse(text, "expected a %s such as %q", d.noun, d.example)
 	}
 	if name == "" {
-		return 0, fmt.Errorf("%q is %w: it has no unit; expected a %s such as %q (%s)",
-			clip(text), ErrUnit, d.noun, d.example, d.list())
+		_, common := Cut(d.example)
+		return 0, refuse(text, "it has no unit; expected a %s such as %q (%s)", d.noun, clip(number)+" "+common, d.list())
 	}
 	for _, sc := range d.scales {
 		for _, n := range sc.names {
 			if n == name {
 				v, ok := sc.si(number)
 				if !ok {
-					return 0, fmt.Errorf("%q is %w: too large a %s", clip(text), ErrUnit, d.noun)
+					return 0, refuse(text, "too large a %s", d.noun)
 				}
 				return v, nil
 			}
 		}
 	}
-	return 0, fmt.Errorf("%q is %w: unit %q is not one of a %s (%s)", clip(text), ErrUnit, clip(name), d.noun, d.list())
+	return 0, refuse(text, "unit %q is not one of a %s (%s)", clip(name), d.noun, d.list())
 }
 
 func (d dimension) list() string {
@@ -171,7 +191,7 @@ func clip(s string) string {
 // is refused here: it needs an ambient pressure, see ParseGauge.
 func ParsePressure(text string) (Pascal, error) {
 	if IsGauge(text) {
-		return 0, fmt.Errorf("%q is %w: it is a gauge pressure; expected an absolute one such as %q", clip(text), ErrUnit, pressureDim.example)
+		return 0, refuse(text, "it is a gauge pressure; expected an absolute one such as %q", pressureDim.example)
 	}
 	v, err := pressureDim.parse(text)
 	return Pascal(v), err
@@ -197,7 +217,7 @@ func ParseGauge(text string) (GaugePascal, error) {
 			return GaugePascal(v), err
 		}
 	}
-	return 0, fmt.Errorf("%q is %w: expected a gauge pressure such as %q", clip(text), ErrUnit, "3 bar(g)")
+	return 0, refuse(text, "expected a gauge pressure such as %q", "3 bar(g)")
 }
 
 // The parsers of the other quantities read text such as the example of each
@@ -213,6 +233,13 @@ func ParsePressureRate(text string) (PascalPerSecond, error) {
 func ParseTemperature(text string) (Kelvin, error) {
 	v, err := temperatureDim.parse(text)
 	return Kelvin(v), err
+}
+
+// ParseKelvinDifference reads a difference of temperatures such as "0.1 K";
+// a degree Celsius is a kelvin here.
+func ParseKelvinDifference(text string) (KelvinDifference, error) {
+	v, err := differenceDim.parse(text)
+	return KelvinDifference(v), err
 }
 
 // ParseLength reads a length or wavelength such as "34 um" or "1030 nm".
@@ -279,78 +306,4 @@ func ParseThroughput(text string) (PascalCubicMetrePerSecond, error) {
 func ParseFraction(text string) (Fraction, error) {
 	v, err := fractionDim.parse(text)
 	return Fraction(v), err
-}
-
-// The UnmarshalText methods let a configuration decoder fill the types.
-
-func (p *Pascal) UnmarshalText(b []byte) (err error) { *p, err = ParsePressure(string(b)); return err }
-func (r *PascalPerSecond) UnmarshalText(b []byte) (err error) {
-	*r, err = ParsePressureRate(string(b))
-	return err
-}
-func (k *Kelvin) UnmarshalText(b []byte) (err error) {
-	*k, err = ParseTemperature(string(b))
-	return err
-}
-func (m *Metre) UnmarshalText(b []byte) (err error)  { *m, err = ParseLength(string(b)); return err }
-func (s *Second) UnmarshalText(b []byte) (err error) { *s, err = ParseSecond(string(b)); return err }
-func (g *SecondSquared) UnmarshalText(b []byte) (err error) {
-	*g, err = ParseGDD(string(b))
-	return err
-}
-func (j *Joule) UnmarshalText(b []byte) (err error) { *j, err = ParseEnergy(string(b)); return err }
-func (w *Watt) UnmarshalText(b []byte) (err error)  { *w, err = ParsePower(string(b)); return err }
-func (h *Hertz) UnmarshalText(b []byte) (err error) { *h, err = ParseFrequency(string(b)); return err }
-func (v *CubicMetre) UnmarshalText(b []byte) (err error) {
-	*v, err = ParseVolume(string(b))
-	return err
-}
-func (d *DecibelPerMetre) UnmarshalText(b []byte) (err error) {
-	*d, err = ParseAttenuation(string(b))
-	return err
-}
-func (n *SquareMetrePerWatt) UnmarshalText(b []byte) (err error) {
-	*n, err = ParseNonlinearIndex(string(b))
-	return err
-}
-func (q *PascalCubicMetrePerSecond) UnmarshalText(b []byte) (err error) {
-	*q, err = ParseThroughput(string(b))
-	return err
-}
-func (f *Fraction) UnmarshalText(b []byte) (err error) {
-	*f, err = ParseFraction(string(b))
-	return err
-}
-
-// String writes p in the unit that keeps its number readable: bar from one
-// millibar up, else pascal.
-func (p Pascal) String() string {
-	switch a := math.Abs(float64(p)); {
-	case a >= 1e5 || a == 0:
-		return strconv.FormatFloat(float64(p)/1e5, 'g', 6, 64) + " bar"
-	case a >= 1:
-		return strconv.FormatFloat(float64(p)/1e2, 'g', 6, 64) + " mbar"
-	}
-	return strconv.FormatFloat(float64(p), 'g', 6, 64) + " Pa"
-}
-
-// String writes k in degrees Celsius.
-func (k Kelvin) String() string { return strconv.FormatFloat(k.Celsius(), 'g', 6, 64) + " degC" }
-
-// String writes m in metres, centimetres, micrometres or nanometres.
-func (m Metre) String() string {
-	switch a := math.Abs(float64(m)); {
-	case a >= 1 || a == 0:
-		return strconv.FormatFloat(float64(m), 'g', 6, 64) + " m"
-	case a >= 1e-3:
-		return strconv.FormatFloat(float64(m)*1e2, 'g', 6, 64) + " cm"
-	case a >= 2e-6:
-		return strconv.FormatFloat(float64(m)*1e6, 'g', 6, 64) + " um"
-	}
-	return strconv.FormatFloat(float64(m)*1e9, 'g', 6, 64) + " nm"
-}
-
-// String writes r in bar per second.
-func (r PascalPerSecond) String() string {
-	return strconv.FormatFloat(float64(r)/1e5, 'g', 4, 64) + " bar/s"
 }

@@ -93,3 +93,65 @@ func FuzzParsePressure(f *testing.F) {
 		}
 	})
 }
+
+func TestTextIsReadBack(t *testing.T) {
+	near := func(got, want float64, err error) bool {
+		return err == nil && math.Abs(got-want) <= 1e-3*math.Abs(want)
+	}
+	for _, v := range []float64{0, 3.7e-30, 4.13e-15, 2.385e-9, 7.1e-6, 1.234e-3, 0.5, 3.1, 99999.4, 1.6e6, -12.5} {
+		for name, ok := range map[string]bool{
+			"pressure": func() bool { g, e := ParsePressure(Pascal(v).String()); return near(float64(g), v, e) }(),
+			"rate":     func() bool { g, e := ParsePressureRate(PascalPerSecond(v).String()); return near(float64(g), v, e) }(),
+			"difference": func() bool {
+				g, e := ParseKelvinDifference(KelvinDifference(v).String())
+				return near(float64(g), v, e)
+			}(),
+			"length":    func() bool { g, e := ParseLength(Metre(v).String()); return near(float64(g), v, e) }(),
+			"duration":  func() bool { g, e := ParseSecond(Second(v).String()); return near(float64(g), v, e) }(),
+			"gdd":       func() bool { g, e := ParseGDD(SecondSquared(v).String()); return near(float64(g), v, e) }(),
+			"energy":    func() bool { g, e := ParseEnergy(Joule(v).String()); return near(float64(g), v, e) }(),
+			"power":     func() bool { g, e := ParsePower(Watt(v).String()); return near(float64(g), v, e) }(),
+			"frequency": func() bool { g, e := ParseFrequency(Hertz(v).String()); return near(float64(g), v, e) }(),
+			"volume":    func() bool { g, e := ParseVolume(CubicMetre(v).String()); return near(float64(g), v, e) }(),
+			"loss":      func() bool { g, e := ParseAttenuation(DecibelPerMetre(v).String()); return near(float64(g), v, e) }(),
+			"n2": func() bool {
+				g, e := ParseNonlinearIndex(SquareMetrePerWatt(v).String())
+				return near(float64(g), v, e)
+			}(),
+			"leak": func() bool {
+				g, e := ParseThroughput(PascalCubicMetrePerSecond(v).String())
+				return near(float64(g), v, e)
+			}(),
+			"share": func() bool { g, e := ParseFraction(Fraction(v).String()); return near(float64(g), v, e) }(),
+			"celsius": func() bool {
+				g, e := ParseTemperature(Celsius(v).String())
+				return near(float64(g), float64(Celsius(v)), e)
+			}(),
+		} {
+			if !ok {
+				t.Errorf("%s of %v SI is not read back from its own text", name, v)
+			}
+		}
+	}
+}
+
+func TestNoNumberIsSaidInWords(t *testing.T) {
+	if got := Pascal(math.NaN()).String(); got != "no value" {
+		t.Errorf("NaN is written %q", got)
+	}
+}
+
+func TestADegreeOfDifferenceIsAKelvin(t *testing.T) {
+	for text, want := range map[string]float64{"0.1 K": 0.1, "0.1 degC": 0.1, "50 mK": 0.05} {
+		if got, err := ParseKelvinDifference(text); err != nil || float64(got) != want {
+			t.Errorf("%s = %v K, %v; want %v K", text, float64(got), err, want)
+		}
+	}
+}
+
+func TestTheNumberWrittenComesBackInTheAdvice(t *testing.T) {
+	var e *TextError
+	if _, err := ParsePressure("16"); !errors.As(err, &e) || !strings.Contains(e.Reason, `such as "16 bar"`) {
+		t.Errorf("advice for 16 is %q", e.Reason)
+	}
+}
