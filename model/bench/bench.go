@@ -1,5 +1,3 @@
-// Package bench reads the bench file: bytes in, a typed bench out, every
-// mistake named with line and column. It does no I/O.
 package bench
 
 import (
@@ -33,7 +31,7 @@ type Bench struct {
 
 // Identity is what a later reader needs to know about the bench.
 type Identity struct {
-	Name                    string `toml:"name"`
+	Name                    string `toml:"name" bench:"required"`
 	Cylinder                string `toml:"cylinder"`
 	FibrePiece              string `toml:"fibre_piece"`
 	SpectrometerCalibration string `toml:"spectrometer_calibration"`
@@ -41,51 +39,53 @@ type Identity struct {
 
 // Fibre is the hollow fibre. Wall is zero for a capillary.
 type Fibre struct {
-	Kind         string               `toml:"kind"`
-	CoreDiameter unit.Metre           `toml:"core_diameter"`
-	Wall         unit.Metre           `toml:"wall"`
-	Length       unit.Metre           `toml:"length"`
-	Loss         unit.DecibelPerMetre `toml:"loss"`
+	Kind         string               `toml:"kind" bench:"required; oneof=capillary|kagome|antiresonant"`
+	CoreDiameter unit.Metre           `toml:"core_diameter" bench:"required; above=0 um; most=2 mm"`
+	Wall         unit.Metre           `toml:"wall" bench:"above=0 nm; most=100 um"`
+	Length       unit.Metre           `toml:"length" bench:"required; above=0 cm; most=1000 m"`
+	Loss         unit.DecibelPerMetre `toml:"loss" bench:"default=0 dB/m; least=0 dB/m"`
 }
 
-// Gas is what fills the fibre and by which sources it is described.
+// Gas is what fills the fibre and by which sources it is described. Index and
+// N2 are empty where the file leaves the source to the gas.
 type Gas struct {
-	Species string `toml:"species"`
-	Density string `toml:"density"`
+	Species string `toml:"species" bench:"required; oneof=helium|neon|argon|krypton|xenon|nitrogen"`
+	Density string `toml:"density" bench:"default=virial; oneof=reference|virial|ideal"`
 	Index   string `toml:"index"`
 	N2      string `toml:"n2"`
 }
 
 // Pulse is the light at the fibre input.
 type Pulse struct {
-	Wavelength     unit.Metre         `toml:"wavelength"`
-	Duration       unit.Second        `toml:"duration"`
-	Shape          string             `toml:"shape"`
-	Energy         unit.Joule         `toml:"energy"`
-	GDD            unit.SecondSquared `toml:"gdd"`
-	RepetitionRate unit.Hertz         `toml:"repetition_rate"`
+	Wavelength     unit.Metre         `toml:"wavelength" bench:"required; least=200 nm; most=10 um"`
+	Duration       unit.Second        `toml:"duration" bench:"required; above=0 fs; most=100 ps"`
+	Shape          string             `toml:"shape" bench:"default=sech2; oneof=sech2|gauss"`
+	Energy         unit.Joule         `toml:"energy" bench:"required; above=0 uJ; most=1 J"`
+	GDD            unit.SecondSquared `toml:"gdd" bench:"default=0 fs2"`
+	RepetitionRate unit.Hertz         `toml:"repetition_rate" bench:"required; above=0 Hz"`
 }
 
 // Panel is the gas panel.
 type Panel struct {
-	CellVolume unit.CubicMetre `toml:"cell_volume"`
-	Supply     unit.Pascal     `toml:"supply"`
-	Ambient    unit.Pascal     `toml:"ambient"`
+	CellVolume unit.CubicMetre `toml:"cell_volume" bench:"required; above=0 cm3"`
+	Supply     unit.Pascal     `toml:"supply" bench:"required; above=0 bar; gauge"`
+	Ambient    unit.Pascal     `toml:"ambient" bench:"default=1 atm; least=0.3 bar; most=1.2 bar"`
 }
 
-// Limits are the bounds of the bench as the file gives them.
+// Limits are the bounds of the bench as the file gives them. All four ratings
+// must be written: a part that is left out would not be protected.
 type Limits struct {
-	FibreSeal    unit.Pascal          `toml:"fibre_seal"`
-	Cells        unit.Pascal          `toml:"cells"`
-	Windows      unit.Pascal          `toml:"windows"`
-	Line         unit.Pascal          `toml:"line"`
-	RiseRate     unit.PascalPerSecond `toml:"rise_rate"`
-	FallRate     unit.PascalPerSecond `toml:"fall_rate"`
-	PumpBelow    unit.Pascal          `toml:"pump_below"`
-	Stale        unit.Second          `toml:"stale"`
-	Disagreement unit.Pascal          `toml:"disagreement"`
-	Arming       unit.Second          `toml:"arming"`
-	Follow       unit.Pascal          `toml:"follow"`
+	FibreSeal    unit.Pascal          `toml:"fibre_seal" bench:"required; above=0 bar; gauge"`
+	Cells        unit.Pascal          `toml:"cells" bench:"required; above=0 bar; gauge"`
+	Windows      unit.Pascal          `toml:"windows" bench:"required; above=0 bar; gauge"`
+	Line         unit.Pascal          `toml:"line" bench:"required; above=0 bar; gauge"`
+	RiseRate     unit.PascalPerSecond `toml:"rise_rate" bench:"required; above=0 bar/s"`
+	FallRate     unit.PascalPerSecond `toml:"fall_rate" bench:"required; above=0 bar/s"`
+	PumpBelow    unit.Pascal          `toml:"pump_below" bench:"default=0 bar; least=0 bar; gauge"` // 0: the pump valve never opens
+	Stale        unit.Second          `toml:"stale" bench:"default=2 s; above=0 s; most=10 min"`
+	Disagreement unit.Pascal          `toml:"disagreement" bench:"default=150 mbar; above=0 bar"`
+	Arming       unit.Second          `toml:"arming" bench:"default=120 s; above=0 s; most=1 h"`
+	Follow       unit.Pascal          `toml:"follow" bench:"default=2 bar; above=0 bar"`
 }
 
 // Enforced returns the limits that every command is checked against.
@@ -103,69 +103,31 @@ func (l Limits) Enforced() limit.Limits {
 	}
 }
 
-// Instrument is one instrument on one line. Exactly one of Port (serial),
-// Address (TCP) and Command (a child process) is set.
-type Instrument struct {
-	Name     string      `toml:"name"`
-	Protocol string      `toml:"protocol"` // modbus-rtu | modbus-tcp | scpi | lines
-	Port     string      `toml:"port"`
-	Address  string      `toml:"address"`
-	Command  []string    `toml:"command"`
-	Baud     int         `toml:"baud"`
-	DataBits int         `toml:"data_bits"`
-	Parity   string      `toml:"parity"` // none | even | odd
-	StopBits int         `toml:"stop_bits"`
-	Every    unit.Second `toml:"every"`   // polling interval
-	Timeout  unit.Second `toml:"timeout"` // wall time to wait for an answer
-	Streams  bool        `toml:"streams"`
-	Pattern  string      `toml:"pattern"`  // lines: named fields in braces
-	Checksum string      `toml:"checksum"` // lines: none | xor8 | crc16
-	Identify string      `toml:"identify"` // scpi: query that names the instrument
-	Hold     []string    `toml:"hold"`     // commands sent on HOLD
-	Channel  []Channel   `toml:"channel"`
-}
-
-// Channel is one quantity of one instrument.
-type Channel struct {
-	Name     string   `toml:"name"`
-	Role     string   `toml:"role"`
-	Unit     int      `toml:"unit"`     // Modbus unit address
-	Function int      `toml:"function"` // Modbus function 3 or 4
-	Register int      `toml:"register"` // Modbus, counted from 0
-	Format   string   `toml:"format"`   // uint16 | int16 | uint32 | int32 | float32
-	Order    string   `toml:"order"`    // ABCD | CDAB | BADC | DCBA
-	Query    string   `toml:"query"`    // scpi
-	Write    string   `toml:"write"`    // scpi, {value} stands for the number
-	Field    string   `toml:"field"`    // lines: field of the pattern
-	Scale    string   `toml:"scale"`    // the quantity that the number 1 means
-	Gauge    bool     `toml:"gauge"`    // pressure above ambient
-	Range    []string `toml:"range"`    // lowest and highest value in specification
-}
-
 // Emission says how prediction and spectrometer are compared.
 type Emission struct {
-	Answer      string `toml:"answer"`
-	Reports     string `toml:"reports"`
-	Wavelengths string `toml:"wavelengths"`
+	Answer      string `toml:"answer" bench:"default=estimate; oneof=linear|estimate|anchored"`
+	Reports     string `toml:"reports" bench:"default=centroid; oneof=centroid|peak"`
+	Wavelengths string `toml:"wavelengths" bench:"default=vacuum; oneof=vacuum|air"`
 }
 
-// Logbook says where and how densely to record.
+// Logbook says where and how densely to record. A deadband of zero records
+// every reading.
 type Logbook struct {
-	Folder              string      `toml:"folder"`
-	Heartbeat           unit.Second `toml:"heartbeat"`
-	DeadbandPressure    unit.Pascal `toml:"deadband_pressure"`
-	DeadbandTemperature string      `toml:"deadband_temperature"`
-	DeadbandWavelength  unit.Metre  `toml:"deadband_wavelength"`
+	Folder              string                `toml:"folder"`
+	Heartbeat           unit.Second           `toml:"heartbeat" bench:"default=60 s; above=0 s; most=1 d"`
+	DeadbandPressure    unit.Pascal           `toml:"deadband_pressure" bench:"default=2 mbar; least=0 bar"`
+	DeadbandTemperature unit.KelvinDifference `toml:"deadband_temperature" bench:"default=0.1 K; least=0 K"`
+	DeadbandWavelength  unit.Metre            `toml:"deadband_wavelength" bench:"default=0.05 nm; least=0 nm"`
 }
 
 // Alarms says whom to call.
 type Alarms struct {
-	OnAlarm []string `toml:"on_alarm"`
+	OnAlarm []string `toml:"on_alarm"` // a program and its arguments
 }
 
 // Screen says how to draw.
 type Screen struct {
-	Background string `toml:"background"`
-	TimeZone   string `toml:"time_zone"`
+	Background string `toml:"background" bench:"default=dark; oneof=dark|light"`
+	TimeZone   string `toml:"time_zone" bench:"default=local"` // local, UTC or a name such as Europe/Lisbon
 	ASCII      bool   `toml:"ascii"`
 }

@@ -123,3 +123,40 @@ type Reading struct {
 	Status  Status
 	Reason  string // why the status is not good; empty where it is
 }
+
+// UnmarshalText reads the role as ParseRole does.
+func (r *Role) UnmarshalText(text []byte) (err error) {
+	*r, err = ParseRole(string(text))
+	return err
+}
+
+// MarshalText writes the role as ParseRole reads it.
+func (r Role) MarshalText() ([]byte, error) {
+	if int(r) >= RoleCount {
+		return nil, fmt.Errorf("%v: expected one below %d", r, RoleCount)
+	}
+	return []byte(r.String()), nil
+}
+
+// IsPressure reports whether readings of the role are absolute pressures.
+func (r Role) IsPressure() bool {
+	switch r {
+	case CellAPressure, CellBPressure, ManifoldPressure, SupplyPressure, Ambient, Setpoint, ControllerSensor:
+		return true
+	}
+	return false
+}
+
+// IsTemperature reports whether readings of the role are temperatures.
+func (r Role) IsTemperature() bool {
+	return r == FibreTemperature || r == CellTemperature || r == RoomTemperature
+}
+
+// IsCommanded reports whether the program may write to a channel of the role.
+func (r Role) IsCommanded() bool {
+	switch r {
+	case Setpoint, InletValve, PumpValve, VentValve, ShutterOpen:
+		return true
+	}
+	return false
+}

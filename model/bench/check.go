@@ -1,0 +1,85 @@
+package bench
+
+import (
+	"strings"
+
+	"barline/model/reading"
+	"barline/model/unit"
+)
+
+// checker finds what is wrong between keys that are right by themselves. A
+// value that was refused before is zero here and is not complained of again.
+type checker struct {
+	*report
+	b *Bench
+}
+
+func (c checker) all() {
+	c.fibre()
+	c.gas()
+	c.pressures()
+	c.instruments()
+	if zone := c.b.Screen.TimeZone; strings.TrimSpace(zone) != zone || zone == "" {
+		c.wrong("screen.time_zone", `expected "local", "UTC" or a name such as "Europe/Lisbon"`)
+	}
+}
+
+func (c checker) fibre() {
+	f := c.b.Fibre
+	switch {
+	case f.Kind == "capillary" && c.has("fibre.wall"):
+		c.wrong("fibre.wall", "a capillary has no thin wall round its core; leave it out")
+	case (f.Kind == "kagome" || f.Kind == "antiresonant") && !c.has("fibre.wall"):
+		c.missing("fibre.wall", "a fibre of kind %q needs the thickness of the glass round its core, such as \"180 nm\"", f.Kind)
+	}
+	if f.Wall > 0 && f.CoreDiameter > 0 && f.Wall > f.CoreDiameter/2 {
+		c.wrong("fibre.wall", "it is more than the core's radius, %v", f.CoreDiameter/2)
+	}
+}
+
+// gas checks a nonlinear index that is written as a value. The names of
+// sources are known to those who hold the data.
+func (c checker) gas() {
+	n2 := strings.TrimSpace(c.b.Gas.N2)
+	if n2 == "" || n2[0] != '-' && n2[0] != '.' && (n2[0] < '0' || n2[0] > '9') {
+		return
+	}
+	if v, err := unit.ParseNonlinearIndex(n2); err != nil {
+		c.wrong("gas.n2", "%s", reason(err))
+	} else if !(v > 0) {
+		c.wrong("gas.n2", "expected more than 0 m2/W")
+	}
+}
+
+// pressures checks the ratings against each other.
+func (c checker) pressures() {
+	l, p := c.b.Limits, c.b.Panel
+	if l.Line > 0 && p.Supply > l.Line {
+		c.wrong("panel.supply", "it is above limits.line, %v: a valve left open would break the line", l.Line)
+	}
+	low := l.Enforced().Lowest()
+	if low.Max > 0 && l.PumpBelow > low.Max {
+		c.wrong("limits.pump_below", "it is above the rating of %s, %v", low.Part, low.Max)
+	}
+	if low.Max > 0 && l.Disagreement > low.Max {
+		c.wrong("limits.disagreement", "it is above the rating of %s, %v: two gauges could never disagree", low.Part, low.Max)
+	}
+}
+
+// roles refuses two channels of one role; those without a role may repeat.
+func (c checker) roles() {
+	var taken [reading.RoleCount]string
+	for i, inst := range c.b.Instrument {
+		for j, ch := range inst.Channel {
+			path := channelPath(i, j) + ".role"
+			if ch.Role == reading.NoRole {
+				continue
+			}
+			if first := taken[ch.Role]; first != "" {
+				c.wrong(path, "channel %q has this role already", first)
+				continue
+			}
+			taken[ch.Role] = ch.Name
+		}
+	}
+}

@@ -1,0 +1,72 @@
+package bench
+
+import (
+	"barline/model/reading"
+	"barline/model/unit"
+)
+
+// Protocols of an instrument.
+const (
+	ModbusRTU = "modbus-rtu"
+	ModbusTCP = "modbus-tcp"
+	SCPI      = "scpi"
+	Lines     = "lines"
+)
+
+// Instrument is one instrument on one line. Exactly one of Port (serial),
+// Address (TCP) and Command (a child process) is set. Fields of other lines
+// and other protocols are zero.
+type Instrument struct {
+	Name     string      `toml:"name" bench:"required"`
+	Protocol string      `toml:"protocol" bench:"required; oneof=modbus-rtu|modbus-tcp|scpi|lines"`
+	Port     string      `toml:"port"`
+	Address  string      `toml:"address"` // host:port
+	Command  []string    `toml:"command"`
+	Baud     int         `toml:"baud" bench:"least=50; most=4000000"`
+	DataBits int         `toml:"data_bits" bench:"least=5; most=8"`
+	Parity   string      `toml:"parity" bench:"oneof=none|even|odd"`
+	StopBits int         `toml:"stop_bits" bench:"least=1; most=2"`
+	Every    unit.Second `toml:"every" bench:"least=1 ms; most=1 h"`     // polling interval, bench time; 0 where it streams
+	Timeout  unit.Second `toml:"timeout" bench:"least=1 ms; most=5 min"` // wall time to wait for an answer
+	Streams  bool        `toml:"streams"`                                // talks by itself
+	Pattern  string      `toml:"pattern"`                                // lines: named fields in braces
+	Checksum string      `toml:"checksum" bench:"oneof=none|xor8|crc16"` // lines
+	Identify string      `toml:"identify"`                               // scpi: query that names the instrument
+	Hold     []string    `toml:"hold"`                                   // commands sent on HOLD, in order
+	Channel  []Channel   `toml:"channel"`
+}
+
+// Channel is one quantity of one instrument. The number on the wire becomes a
+// quantity by SI; Factor, Zero, Low, High and Symbol are filled in by Parse
+// from the texts of the file.
+type Channel struct {
+	Name     string       `toml:"name" bench:"required"`
+	Role     reading.Role `toml:"role" bench:"default=none"`
+	Unit     int          `toml:"unit" bench:"least=1; most=247"`       // Modbus unit address
+	Function int          `toml:"function" bench:"least=3; most=4"`     // Modbus function 3 or 4
+	Register int          `toml:"register" bench:"least=0; most=65535"` // Modbus, counted from 0
+	Format   string       `toml:"format" bench:"oneof=uint16|int16|uint32|int32|float32"`
+	Order    string       `toml:"order" bench:"oneof=ABCD|CDAB|BADC|DCBA"` // bytes of the number, A the most significant
+	Query    string       `toml:"query"`                                   // scpi
+	Write    string       `toml:"write"`                                   // scpi, {value} stands for the number
+	Field    string       `toml:"field"`                                   // lines: field of the pattern
+	Scale    string       `toml:"scale"`                                   // what the number grows by from 0 to 1, as written
+	Offset   string       `toml:"offset"`                                  // the quantity that the number 0 means, as written
+	Gauge    bool         `toml:"gauge"`                                   // pressure above ambient
+	Range    []string     `toml:"range"`                                   // lowest and highest value in specification, as written
+
+	Factor    float64 // SI per count
+	Zero      float64 // SI at the number 0; above ambient where Gauge
+	Low, High float64 // SI, the range in specification; above ambient where Gauge. Equal where no range is given
+	Symbol    string  // unit that SI returns, such as "Pa"
+}
+
+// SI returns the quantity that a number on the wire stands for, in Symbol. Of
+// a gauge channel it is above ambient still.
+func (c *Channel) SI(number float64) float64 { return c.Zero + c.Factor*number }
+
+// Number returns the number on the wire that stands for the quantity si.
+func (c *Channel) Number(si float64) float64 { return (si - c.Zero) / c.Factor }
+
+// HasRange reports whether the file gives a range in specification.
+func (c *Channel) HasRange() bool { return c.Low < c.High }
