@@ -80,7 +80,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 		s.Links[s.LinkCount] = LinkHealth{Instrument: in.Name, Reason: "not opened yet"}
 		s.LinkCount++
 		for _, ch := range in.Channel {
-			if ch.Role == reading.Setpoint.String() && ch.Write != "" {
+			if ch.Role == reading.Setpoint && ch.Write != "" {
 				c.controlled = true
 			}
 		}

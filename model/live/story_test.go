@@ -48,7 +48,7 @@ func testBench() *bench.Bench {
 		},
 		Logbook: bench.Logbook{Heartbeat: 60, DeadbandWavelength: 0.05 * unit.Nanometre},
 		Instrument: []bench.Instrument{{Name: "gauges"}, {Name: "controller", Channel: []bench.Channel{
-			{Name: "setpoint", Role: "setpoint", Write: "SET {value}"},
+			{Name: "setpoint", Role: reading.Setpoint, Write: "SET {value}"},
 		}}},
 	}
 }
