@@ -1,0 +1,27 @@
+package gas
+
+import "errors"
+
+var (
+	// ErrUnknown is wrapped where a gas or a source of numbers is not known.
+	ErrUnknown = errors.New("not known")
+	// ErrState is wrapped where there is no gas to speak of: outside the range
+	// of pressure and temperature, or condensed.
+	ErrState = errors.New("no such gas")
+)
+
+// The refusals of an Isotherm are values made once, so that a stream of bad
+// readings allocates nothing.
+var (
+	errTemperature = stateError("the temperature is outside -23 degC to 127 degC, for which densities were checked")
+	errNegative    = stateError("the pressure is below zero or not a number")
+	errPressure    = stateError("the pressure is above the range in which this density was checked")
+	errCondensed   = stateError("the gas is liquid at this pressure and temperature")
+	errAir         = stateError("the share of air is outside 0 to 100 %")
+	errSolve       = stateError("no density fits this pressure and temperature")
+)
+
+type stateError string
+
+func (e stateError) Error() string        { return string(e) }
+func (e stateError) Is(target error) bool { return target == ErrState }
