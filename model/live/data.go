@@ -7,6 +7,14 @@ import (
 // The data of each kind of record, as the logbook holds them. Keys carry
 // their unit; SI throughout.
 type (
+	// ReadingData is a reading; Value is null where there is none.
+	ReadingData struct {
+		Channel string   `json:"channel"`
+		Role    string   `json:"role"`
+		Value   *float64 `json:"value"` // SI unit of the role
+		Status  string   `json:"status"`
+		Reason  string   `json:"reason,omitempty"`
+	}
 	// IntentData is an intent, and why it was refused where it was.
 	IntentData struct {
 		Intent   string    `json:"intent"`

@@ -1,0 +1,82 @@
+package loop
+
+import (
+	"time"
+
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/model/trend"
+	"barline/model/unit"
+)
+
+const (
+	maxPoints = 512 // of the emission map
+	maxLines  = 200 // of the record on screen
+
+	// A measured emission becomes a point of the map when the gas or the
+	// clock has moved on this far since the last one.
+	pointEvery    = time.Second
+	pointPressure = 10 * unit.Millibar
+)
+
+// history is what the screen shows of the past. The record on disk is the
+// logbook; this is a picture of fixed size.
+type history struct {
+	pressure, expected, residual *trend.Ring
+
+	points []live.Point
+	lines  []string
+}
+
+func newHistory() history {
+	return history{pressure: trend.NewRing(), expected: trend.NewRing(), residual: trend.NewRing()}
+}
+
+func (h *history) reading(s *live.State, r reading.Reading) {
+	if !r.Status.Usable() {
+		return
+	}
+	switch r.Role {
+	case reading.CellAPressure:
+		h.pressure.Add(r.Taken.Mono, r.Value)
+	case reading.Emission:
+		if s.ResidualAt == r.Taken.Mono {
+			h.residual.Add(r.Taken.Mono, float64(s.Residual))
+		}
+		if s.CoreKnown {
+			h.point(live.Point{At: r.Taken, Pressure: s.Core, Emission: unit.Metre(r.Value), Rising: s.Target >= s.Core})
+		}
+	}
+}
+
+func (h *history) point(p live.Point) {
+	if n := len(h.points); n > 0 {
+		last := h.points[n-1]
+		moved := p.Pressure - last.Pressure
+		if p.At.Mono-last.At.Mono < pointEvery && max(moved, -moved) < pointPressure {
+			return
+		}
+	}
+	if len(h.points) == maxPoints {
+		// A snapshot may still be drawing the old slice.
+		h.points = append(make([]live.Point, 0, 2*maxPoints), h.points[maxPoints/4:]...)
+	}
+	h.points = append(h.points, p)
+}
+
+func (h *history) tick(s *live.State) {
+	if s.Setpoint != 0 {
+		h.expected.Add(s.Now.Mono, float64(s.Setpoint))
+	}
+}
+
+func (h *history) line(at reading.Stamp, kind live.Kind, data any) {
+	text := at.UTC.Format("15:04:05.0") + "  " + string(kind)
+	if t, ok := data.(interface{ String() string }); ok {
+		text += "  " + t.String()
+	}
+	if len(h.lines) == maxLines {
+		h.lines = append(make([]string, 0, 2*maxLines), h.lines[maxLines/4:]...)
+	}
+	h.lines = append(h.lines, text)
+}

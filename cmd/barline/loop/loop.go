@@ -1,0 +1,224 @@
+// Package loop runs the effects of the core: it takes events from the
+// instruments, the clock and the person, folds them into the experiment one
+// by one, and does what each step asks for: writes the record, sends commands,
+// rings the bell, publishes a snapshot for the screen.
+//
+// One goroutine owns the state. Whatever may be slow, the disk, a line, the
+// screen, the curve of predictions, runs beside it and is never waited for.
+package loop
+
+import (
+	"context"
+	"fmt"
+	"sync/atomic"
+	"time"
+
+	"barline/model/bench"
+	"barline/model/clock"
+	"barline/model/emission"
+	"barline/model/limit"
+	"barline/model/live"
+	"barline/model/reading"
+)
+
+// Book is the logbook as the loop uses it.
+type Book interface {
+	// Append queues a record and does not wait for the disk.
+	Append(at reading.Stamp, kind string, data any) (seq uint64, err error)
+	// Sync returns when all that was appended is on the disk.
+	Sync() error
+	// Health says how the writing fares.
+	Health() live.RecordHealth
+}
+
+// Wire takes commands to the instruments. Neither method blocks; each command
+// is answered by Loop.Answer.
+type Wire interface {
+	Setpoint(command uint64, sp limit.Setpoint)
+	Hold(command uint64, sp limit.Setpoint)
+}
+
+// Curve fills dst with predictions over pressure.
+type Curve func(in emission.Input, dst []emission.CurvePoint) []emission.CurvePoint
+
+// Options is what a loop is made of.
+type Options struct {
+	Bench     *bench.Bench
+	Core      *live.Core
+	State     live.State
+	Clock     clock.Clock
+	Book      Book
+	Wire      Wire
+	Curve     Curve  // called on a goroutine of its own
+	Folder    string // where the logbook is
+	Simulated bool
+	ReadOnly  bool
+	Bell      func()
+}
+
+const (
+	tickEvery   = 50 * time.Millisecond // bench time
+	redrawEvery = 33 * time.Millisecond // wall time
+)
+
+// Loop is one running experiment.
+type Loop struct {
+	opt     Options
+	queue   *queue
+	state   live.State
+	history history
+	records *deadbands
+	fx      []live.Effect
+	gate    *gate
+	curve   atomic.Pointer[[]emission.CurvePoint]
+	curveIn emission.Input
+	curving atomic.Bool
+	dropped uint64
+
+	snapshot atomic.Pointer[live.Snapshot]
+	changed  chan struct{}
+}
+
+// New returns a loop that has not started.
+func New(opt Options) *Loop {
+	l := &Loop{
+		opt: opt, queue: newQueue(), state: opt.State,
+		history: newHistory(), records: newDeadbands(opt.Bench), changed: make(chan struct{}, 1),
+	}
+	l.gate = &gate{book: opt.Book, wire: opt.Wire, answer: l.Answer, now: opt.Clock.Now}
+	l.publish()
+	return l
+}
+
+// Snapshot returns the newest picture of the experiment.
+func (l *Loop) Snapshot() *live.Snapshot { return l.snapshot.Load() }
+
+// Changed receives when there is a newer snapshot than the last one received.
+func (l *Loop) Changed() <-chan struct{} { return l.changed }
+
+// Do hands in an intent. It does not wait for its effect.
+func (l *Loop) Do(in live.Intent) { l.queue.push(live.Asked{At: l.opt.Clock.Now(), Intent: in}) }
+
+// Reading hands in a reading.
+func (l *Loop) Reading(r reading.Reading) { l.queue.push(live.Read{Reading: r}) }
+
+// Link hands in a change of the line to an instrument.
+func (l *Loop) Link(instrument string, up bool, reason string, at reading.Stamp) {
+	l.queue.push(live.LinkChanged{At: at, Instrument: instrument, Up: up, Reason: reason})
+}
+
+// Answer hands in an instrument's answer to a command.
+func (l *Loop) Answer(command uint64, err error, at reading.Stamp) {
+	e := live.Answered{At: at, Command: command}
+	if err != nil {
+		e.Err = err.Error()
+	}
+	l.queue.push(e)
+}
+
+// Run folds events until ctx ends, then holds the bench, waits until the
+// controller has confirmed it (at most for a second) and returns.
+func (l *Loop) Run(ctx context.Context) {
+	stopGate := l.gate.start()
+	defer stopGate()
+	tick := time.NewTicker(max(time.Millisecond, l.opt.Clock.Wall(tickEvery)))
+	defer tick.Stop()
+	redraw := time.NewTicker(redrawEvery)
+	defer redraw.Stop()
+
+	var events []live.Event
+	dirty := true
+	drain := func() {
+		events, l.dropped = l.queue.take(events)
+		for _, e := range events {
+			l.handle(e)
+		}
+		dirty = dirty || len(events) > 0
+	}
+	for ctx.Err() == nil {
+		select {
+		case <-ctx.Done():
+		case <-l.queue.ready:
+			drain()
+		case <-tick.C:
+			drain()
+			l.Tick()
+			dirty = true
+		case <-redraw.C:
+			if dirty {
+				l.publish()
+				dirty = false
+			}
+		}
+	}
+	l.rest(drain)
+	l.publish()
+}
+
+// rest brings the bench to HOLD at the end of a run.
+func (l *Loop) rest(drain func()) {
+	drain()
+	if l.opt.ReadOnly || !l.opt.Core.Controlled() {
+		return
+	}
+	l.handle(live.Asked{At: l.opt.Clock.Now(), Intent: live.Hold{}})
+	deadline := time.NewTimer(time.Second)
+	defer deadline.Stop()
+	for l.state.Unconfirmed() {
+		select {
+		case <-l.queue.ready:
+			drain()
+		case <-deadline.C:
+			return
+		}
+	}
+}
+
+// Tick folds one tick of bench time. Run calls it; a harness on a fake clock
+// may call it instead of Run.
+func (l *Loop) Tick() {
+	if h := l.opt.Book.Health(); h.Writing != l.state.Record.Writing || h.Reason != l.state.Record.Reason {
+		l.handle(live.RecordChanged{At: l.opt.Clock.Now(), Health: h})
+	} else {
+		l.state.Record = h
+	}
+	l.handle(live.Tick{At: l.opt.Clock.Now()})
+	l.refreshCurve()
+}
+
+// handle folds one event and carries out what follows, in order.
+func (l *Loop) handle(e live.Event) {
+	l.fx = l.opt.Core.Step(&l.state, e, l.fx[:0])
+	if r, ok := e.(live.Read); ok {
+		l.history.reading(&l.state, r.Reading)
+		if data, due := l.records.due(r.Reading); due {
+			l.record(r.Reading.Taken, live.KindReading, data)
+		}
+	}
+	for _, f := range l.fx {
+		switch f := f.(type) {
+		case live.Record:
+			l.record(f.At, f.Kind, f.Data)
+		case live.SendSetpoint:
+			l.gate.setpoint(f.Command, f.Setpoint)
+		case live.SendHold:
+			l.gate.hold(f.Command, f.Setpoint)
+		case live.Bell:
+			if l.opt.Bell != nil {
+				l.opt.Bell()
+			}
+		default:
+			panic(fmt.Sprintf("loop: unknown effect %T", f))
+		}
+	}
+	if _, ok := e.(live.Tick); ok {
+		l.history.tick(&l.state)
+	}
+}
+
+func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) {
+	// A refused record shows in Health, which the next tick brings to the core.
+	if _, err := l.opt.Book.Append(at, string(kind), data); err == nil && kind != live.KindReading {
+		l.history.line(at, kind, data)
+	}
+}

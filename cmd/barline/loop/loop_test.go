@@ -1,0 +1,240 @@
+package loop
+
+import (
+	"context"
+	"errors"
+	"sync"
+	"testing"
+	"testing/synctest"
+	"time"
+
+	"go.uber.org/goleak"
+
+	"barline/model/bench"
+	"barline/model/clock"
+	"barline/model/emission"
+	"barline/model/limit"
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/model/unit"
+)
+
+func TestMain(m *testing.M) { goleak.VerifyTestMain(m) }
+
+// trace is what happened at the edges, in order.
+type trace struct {
+	mu    sync.Mutex
+	lines []string
+}
+
+func (t *trace) add(s string) {
+	t.mu.Lock()
+	t.lines = append(t.lines, s)
+	t.mu.Unlock()
+}
+
+func (t *trace) index(s string) int {
+	t.mu.Lock()
+	defer t.mu.Unlock()
+	for i, l := range t.lines {
+		if l == s {
+			return i
+		}
+	}
+	return -1
+}
+
+type fakeBook struct {
+	*trace
+	release chan struct{} // Sync waits for it where it is not nil
+	err     error
+}
+
+func (b *fakeBook) Append(_ reading.Stamp, kind string, data any) (uint64, error) {
+	if c, ok := data.(live.CommandData); ok {
+		b.add("append " + c.String())
+	} else {
+		b.add("append " + kind)
+	}
+	return 0, nil
+}
+
+func (b *fakeBook) Sync() error {
+	if b.release != nil {
+		<-b.release
+	}
+	b.add("sync")
+	return b.err
+}
+
+func (b *fakeBook) Health() live.RecordHealth {
+	return live.RecordHealth{Writing: true}
+}
+
+type fakeWire struct {
+	*trace
+	answer func(uint64)
+}
+
+func (w *fakeWire) Setpoint(command uint64, sp limit.Setpoint) {
+	p, ok := sp.Pressure()
+	if !ok {
+		panic("an unchecked setpoint reached the wire")
+	}
+	w.add("wire setpoint " + p.String())
+	w.answer(command)
+}
+
+func (w *fakeWire) Hold(command uint64, sp limit.Setpoint) {
+	w.add("wire hold")
+	w.answer(command)
+}
+
+type flat struct{}
+
+func (flat) Predict(in emission.Input, _ *emission.Prediction) emission.Prediction {
+	return emission.Prediction{Input: in, Valid: true, Emission: 260 * unit.Nanometre}
+}
+
+func testBench() *bench.Bench {
+	return &bench.Bench{
+		Limits: bench.Limits{
+			FibreSeal: 16 * unit.Bar, Cells: 16 * unit.Bar, Windows: 16 * unit.Bar, Line: 16 * unit.Bar,
+			RiseRate: 0.2e5, FallRate: 0.2e5, Stale: 2, Arming: 60, Follow: 2 * unit.Bar,
+		},
+		Logbook:    bench.Logbook{Heartbeat: 60},
+		Instrument: []bench.Instrument{{Name: "controller", Channel: []bench.Channel{{Role: reading.Setpoint, Write: "P {value}"}}}},
+	}
+}
+
+func newTestLoop(t *testing.T, book *fakeBook, tr *trace) *Loop {
+	t.Helper()
+	b := testBench()
+	core, state, err := live.New(b, flat{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	clk := clock.NewScaled(1)
+	w := &fakeWire{trace: tr}
+	l := New(Options{Bench: b, Core: core, State: state, Clock: clk, Book: book, Wire: w})
+	w.answer = func(id uint64) { l.Answer(id, nil, clk.Now()) }
+	return l
+}
+
+func (l *Loop) gauge(p unit.Pascal) {
+	l.Reading(reading.Reading{Channel: "cell A", Role: reading.CellAPressure, Value: float64(p), Taken: l.opt.Clock.Now(), Status: reading.Good})
+}
+
+func TestSetpointWaitsForTheDiskAndHoldDoesNot(t *testing.T) {
+	synctest.Test(t, func(t *testing.T) {
+		tr := &trace{}
+		book := &fakeBook{trace: tr, release: make(chan struct{})}
+		l := newTestLoop(t, book, tr)
+		ctx, cancel := context.WithCancel(t.Context())
+		done := make(chan struct{})
+		go func() { l.Run(ctx); close(done) }()
+
+		<-time.After(100 * time.Millisecond)
+		l.gauge(1 * unit.Bar)
+		l.Do(live.Arm{})
+		l.Do(live.GoTo{Target: 3 * unit.Bar})
+		<-time.After(200 * time.Millisecond)
+		if tr.index("append 1 setpoint 1.2 bar") < 0 {
+			t.Fatalf("no record of the setpoint: %v", tr.lines)
+		}
+		if tr.index("wire setpoint 1.2 bar") >= 0 {
+			t.Fatal("the setpoint reached the wire before the disk had its record")
+		}
+		l.Do(live.Hold{})
+		<-time.After(100 * time.Millisecond)
+		if tr.index("wire hold") < 0 {
+			t.Fatal("HOLD waited for the disk")
+		}
+		close(book.release)
+		<-time.After(100 * time.Millisecond)
+		if tr.index("wire setpoint 1.2 bar") >= 0 {
+			t.Fatal("a setpoint older than HOLD reached the wire after it")
+		}
+		if got := l.Snapshot().Mode; got != live.Held {
+			t.Fatalf("mode is %v", got)
+		}
+		cancel()
+		<-done
+	})
+}
+
+func TestSetpointIsNotSentWhereTheDiskRefuses(t *testing.T) {
+	synctest.Test(t, func(t *testing.T) {
+		tr := &trace{}
+		l := newTestLoop(t, &fakeBook{trace: tr, err: errors.New("no space left")}, tr)
+		ctx, cancel := context.WithCancel(t.Context())
+		done := make(chan struct{})
+		go func() { l.Run(ctx); close(done) }()
+		<-time.After(100 * time.Millisecond)
+		l.gauge(1 * unit.Bar)
+		l.Do(live.Arm{})
+		l.Do(live.GoTo{Target: 3 * unit.Bar})
+		<-time.After(200 * time.Millisecond)
+		if tr.index("wire setpoint 1.2 bar") >= 0 {
+			t.Fatal("a setpoint that could not be recorded reached the wire")
+		}
+		if s := l.Snapshot(); s.Mode != live.Held {
+			t.Fatalf("mode is %v (%s), want HOLD", s.Mode, s.Why)
+		}
+		cancel()
+		<-done
+	})
+}
+
+func TestEndOfRunHolds(t *testing.T) {
+	synctest.Test(t, func(t *testing.T) {
+		tr := &trace{}
+		l := newTestLoop(t, &fakeBook{trace: tr}, tr)
+		ctx, cancel := context.WithCancel(t.Context())
+		done := make(chan struct{})
+		go func() { l.Run(ctx); close(done) }()
+		<-time.After(100 * time.Millisecond)
+		cancel()
+		<-done
+		if tr.index("wire hold") < 0 {
+			t.Fatalf("the run ended without HOLD: %v", tr.lines)
+		}
+	})
+}
+
+func TestQueueRefusesReadingsButNothingElse(t *testing.T) {
+	q := newQueue()
+	for range maxReadings + 100 {
+		q.push(live.Read{})
+	}
+	q.push(live.Asked{Intent: live.Hold{}})
+	events, dropped := q.take(nil)
+	if len(events) != maxReadings+1 || dropped != 100 {
+		t.Fatalf("%d events, %d dropped; want %d and 100", len(events), dropped, maxReadings+1)
+	}
+	if _, ok := events[maxReadings].(live.Asked); !ok {
+		t.Fatal("HOLD did not come through a full queue")
+	}
+}
+
+func TestDeadbandKeepsSteadyReadingsOutOfTheRecord(t *testing.T) {
+	b := testBench()
+	b.Logbook.DeadbandPressure = 2 * unit.Millibar
+	d := newDeadbands(b)
+	written := 0
+	for i := range 601 { // a minute at 10 Hz, within ±1 mbar
+		r := reading.Reading{Channel: "cell A", Role: reading.CellAPressure, Status: reading.Good,
+			Value: 9e5 + 100*float64(i%2), Taken: reading.Stamp{Mono: time.Duration(i) * 100 * time.Millisecond}}
+		if _, due := d.due(r); due {
+			written++
+		}
+	}
+	if written != 2 {
+		t.Errorf("%d records of a steady minute, want the first and one heartbeat", written)
+	}
+	failed := reading.Reading{Channel: "cell A", Role: reading.CellAPressure, Reason: "no answer", Taken: reading.Stamp{Mono: 61 * time.Second}}
+	data, due := d.due(failed)
+	if !due || data.Value != nil {
+		t.Errorf("a failure was recorded %v with value %v, want at once and null", due, data.Value)
+	}
+}

@@ -1,0 +1,71 @@
+package loop
+
+import (
+	"math"
+	"slices"
+
+	"barline/model/emission"
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/model/unit"
+)
+
+// publish builds a snapshot and tells the screen that there is one. Slices of
+// the history are shared: the loop only ever appends behind them.
+func (l *Loop) publish() {
+	s, o := &l.state, &l.opt
+	snap := &live.Snapshot{
+		Now: s.Now, Bench: o.Bench,
+		Mode: s.Mode, Why: s.Why, Notice: s.Notice, ArmedUntil: s.ArmedUntil,
+		Target: s.Target, Setpoint: s.Setpoint, Steps: s.Steps.Progress(s.Now.Mono),
+		Core: s.Core, CoreKnown: s.CoreKnown,
+		Prediction: s.Prediction, Residual: s.Residual,
+		ResidualKnown: s.ResidualAt != 0 && s.Now.Mono-s.ResidualAt <= o.Core.Stale(),
+		Points:        slices.Clip(l.history.points),
+		Links:         slices.Clone(s.Links[:s.LinkCount]),
+		Record:        s.Record, Folder: o.Folder, Recent: slices.Clip(l.history.lines),
+		PressureA: l.history.pressure.View(), Expected: l.history.expected.View(), Residuals: l.history.residual.View(),
+		Simulated: o.Simulated, ReadOnly: o.ReadOnly, Dropped: l.dropped,
+	}
+	for role := range snap.Latest {
+		if s.Latest[role].Channel != "" {
+			snap.Latest[role] = s.Reading(reading.Role(role), o.Core.Stale())
+		}
+	}
+	if c := l.curve.Load(); c != nil {
+		snap.Curve = *c
+	}
+	l.snapshot.Store(snap)
+	select {
+	case l.changed <- struct{}{}:
+	default:
+	}
+}
+
+// A curve is drawn anew when what it stands on has moved this far.
+const (
+	curveTemperature = unit.Kelvin(0.2)
+	curveEnergy      = 0.005 // of the energy
+	curvePoints      = 160
+)
+
+// refreshCurve has the predicted curve computed beside the loop when the
+// temperature or the energy that it stands on has moved.
+func (l *Loop) refreshCurve() {
+	in := l.state.Prediction.Input
+	if l.opt.Curve == nil || !l.state.CoreKnown {
+		return
+	}
+	was := l.curveIn
+	same := math.Abs(float64(in.Temperature-was.Temperature)) < float64(curveTemperature) &&
+		math.Abs(float64(in.Energy-was.Energy)) < curveEnergy*float64(in.Energy) && in.Air == was.Air
+	if same || !l.curving.CompareAndSwap(false, true) {
+		return
+	}
+	l.curveIn = in
+	go func() {
+		defer l.curving.Store(false)
+		points := l.opt.Curve(in, make([]emission.CurvePoint, curvePoints))
+		l.curve.Store(&points)
+	}()
+}
