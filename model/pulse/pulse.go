@@ -1,4 +1,3 @@
-// Package pulse describes the light at the fibre input and what becomes of it.
 package pulse
 
 import "barline/model/unit"
