@@ -7,6 +7,7 @@ import (
 
 	"barline/model/bench"
 	"barline/model/emission"
+	"barline/model/flow"
 	"barline/model/limit"
 	"barline/model/reading"
 	"barline/model/unit"
@@ -22,6 +23,7 @@ type Predictor interface {
 type Core struct {
 	limits    limit.Limits
 	predictor Predictor
+	core      *flow.Core // scratch: every step restores it from the state
 	energy    unit.Joule // used while no meter says otherwise
 
 	stale        time.Duration
@@ -71,6 +73,17 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	}
 	if c.stale <= 0 || c.arming <= 0 {
 		return nil, State{}, fmt.Errorf("limits.stale is %v and limits.arming %v, expected both above zero", c.stale, c.arming)
+	}
+	gas, err := flow.Named(b.Gas.Species)
+	if err != nil {
+		return nil, State{}, err
+	}
+	c.core, err = flow.NewCore(flow.Spec{
+		Radius: b.Fibre.CoreDiameter / 2, Length: b.Fibre.Length, Gas: gas,
+		Temperature: assumedTemperature, Cells: coreCells,
+	})
+	if err != nil {
+		return nil, State{}, err
 	}
 	var s State
 	for _, in := range b.Instrument {

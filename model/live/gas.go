@@ -2,31 +2,83 @@ package live
 
 import (
 	"math"
+	"time"
 
 	"barline/model/emission"
 	"barline/model/reading"
 	"barline/model/unit"
 )
 
-// coreGas works out the pressure that the light sees from the cells' gauges.
+// coreCells is the grid of the core: its times are within 0.1 % of the finest.
+const coreCells = 64
+
+// lagEvery is how often the core's lag behind the cells is worked out.
+const lagEvery = 500 * time.Millisecond
+
+// coreGas carries the gas along the core, driven by the cells' gauges, and
+// works out the pressure where the pulse is shortest. Where one cell has no
+// usable gauge the other stands for both.
 func (c *Core) coreGas(s *State) {
 	a, b := s.Reading(reading.CellAPressure, c.stale), s.Reading(reading.CellBPressure, c.stale)
-	switch {
-	case a.Status.Usable() && b.Status.Usable():
-		// With steady viscous flow p² is linear along the core; the pulse
-		// is shortest near the middle of it.
-		s.Core = unit.Pascal(math.Sqrt((a.Value*a.Value + b.Value*b.Value) / 2))
-		s.CoreKnown = true
-	case a.Status.Usable():
-		s.Core, s.CoreKnown = unit.Pascal(a.Value), true
-	case b.Status.Usable():
-		s.Core, s.CoreKnown = unit.Pascal(b.Value), true
-	default:
-		s.CoreKnown = false
+	if !a.Status.Usable() {
+		a = b
 	}
-	if s.CoreKnown && !(s.Core >= 0) {
-		s.Core = 0 // a gauge below zero by its offset: the cell is empty
+	if !b.Status.Usable() {
+		b = a
 	}
+	known := s.CoreKnown
+	s.CoreKnown = false
+	if !a.Status.Usable() {
+		return
+	}
+	t := assumedTemperature
+	if r := s.Reading(reading.FibreTemperature, c.stale); r.Status.Usable() {
+		t = unit.Kelvin(r.Value)
+	}
+	// A gauge below zero by its offset: the cell is empty.
+	pA, pB := unit.Pascal(max(a.Value, 0)), unit.Pascal(max(b.Value, 0))
+	var err error
+	if known {
+		if err = c.core.Restore(s.flow); err == nil {
+			err = c.core.Advance(s.Now.Mono-s.flowAt, pA, pB, t)
+		}
+	} else {
+		// Nothing is known of the time before: take the core as settled.
+		err = c.core.Fill(pA, pB, t)
+	}
+	if err != nil {
+		return
+	}
+	s.flow, s.flowAt, s.CoreKnown = c.core.State(), s.Now.Mono, true
+	s.Core = c.core.At(c.compression(s))
+	if s.Now.Mono-s.lagAt >= lagEvery || s.lagAt == 0 {
+		s.lagAt = s.Now.Mono
+		s.Lag = c.core.Lag()
+		s.SettleIn, _ = c.core.TimeToSettle(settledWithin)
+	}
+}
+
+// compression returns the distance along the fibre at which the pulse is
+// shortest by the last prediction, or the middle of the fibre: solitons of
+// order N compress near L_fission (0.58 + 1.55/N).
+func (c *Core) compression(s *State) unit.Metre {
+	p := &s.Prediction
+	if !p.Valid || !(p.SolitonOrder > 1) || !(p.FissionLength > 0) {
+		return c.core.Length() / 2
+	}
+	return min(p.FissionLength*unit.Metre(0.58+1.55/p.SolitonOrder), c.core.Length())
+}
+
+// Profile fills dst with the pressure along the core in state s, from cell A
+// to cell B, at equal distances. It is for screens and changes nothing.
+func (c *Core) Profile(s *State, dst []unit.Pascal) []unit.Pascal {
+	if !s.CoreKnown || c.core.Restore(s.flow) != nil {
+		return dst[:0]
+	}
+	for i := range dst {
+		dst[i] = c.core.At(c.core.Length() * unit.Metre(i) / unit.Metre(max(len(dst)-1, 1)))
+	}
+	return dst
 }
 
 // predict asks the model what the gas that is in the core now should emit,

@@ -73,6 +73,9 @@ type Snapshot struct {
 	Setpoint   unit.Pascal // last commanded, 0 before the first
 	Core       unit.Pascal // pressure at the point of compression as the model has it
 	CoreKnown  bool
+	Profile    []unit.Pascal // along the core from cell A to cell B; empty where not known
+	Lag        unit.Pascal   // of the core behind the cells, positive where it has yet to rise
+	SettleIn   time.Duration // until the core has caught up, if the cells stay as they are
 	Steps      StepProgress
 
 	Latest     [reading.RoleCount]reading.Reading

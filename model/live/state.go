@@ -4,6 +4,7 @@ import (
 	"time"
 
 	"barline/model/emission"
+	"barline/model/flow"
 	"barline/model/limit"
 	"barline/model/reading"
 	"barline/model/unit"
@@ -28,8 +29,10 @@ type State struct {
 	Setpoint unit.Pascal // last commanded
 	Steps    Steps
 
-	Core       unit.Pascal
+	Core       unit.Pascal // in the core, where the pulse is shortest
 	CoreKnown  bool
+	Lag        unit.Pascal   // of the core behind the cells, positive where it has yet to rise
+	SettleIn   time.Duration // until the core has caught up, if the cells stay as they are
 	Prediction emission.Prediction
 	Residual   unit.Metre // measured minus predicted emission
 	// ResidualAt is when the emission behind Residual was taken; 0 where
@@ -40,6 +43,9 @@ type State struct {
 	LinkCount int
 	Record    RecordHealth
 
+	flow      flow.State
+	flowAt    time.Duration
+	lagAt     time.Duration
 	command   uint64        // number of the last command sent
 	awaiting  uint64        // number of the command whose answer is due; 0 where none
 	awaitFrom time.Duration // when it was sent

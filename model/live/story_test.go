@@ -40,6 +40,8 @@ func (straight) Predict(in emission.Input, _ *emission.Prediction) emission.Pred
 // testBench is the least that the core asks of a bench.
 func testBench() *bench.Bench {
 	return &bench.Bench{
+		Fibre: bench.Fibre{Kind: "antiresonant", CoreDiameter: 34 * unit.Micrometre, Wall: 180 * unit.Nanometre, Length: 30 * unit.Centimetre},
+		Gas:   bench.Gas{Species: "argon"},
 		Pulse: bench.Pulse{Energy: 1.3 * unit.Microjoule},
 		Limits: bench.Limits{
 			FibreSeal: 16 * unit.Bar, Cells: 16 * unit.Bar, Windows: 16 * unit.Bar, Line: 20 * unit.Bar,

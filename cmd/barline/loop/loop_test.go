@@ -98,6 +98,8 @@ func (flat) Predict(in emission.Input, _ *emission.Prediction) emission.Predicti
 
 func testBench() *bench.Bench {
 	return &bench.Bench{
+		Fibre: bench.Fibre{Kind: "antiresonant", CoreDiameter: 34 * unit.Micrometre, Wall: 180 * unit.Nanometre, Length: 30 * unit.Centimetre},
+		Gas:   bench.Gas{Species: "argon"},
 		Limits: bench.Limits{
 			FibreSeal: 16 * unit.Bar, Cells: 16 * unit.Bar, Windows: 16 * unit.Bar, Line: 16 * unit.Bar,
 			RiseRate: 0.2e5, FallRate: 0.2e5, Stale: 2, Arming: 60, Follow: 2 * unit.Bar,

@@ -10,6 +10,9 @@ import (
 	"barline/model/unit"
 )
 
+// profilePoints is how finely a screen sees the pressure along the core.
+const profilePoints = 32
+
 // publish builds a snapshot and tells the screen that there is one. Slices of
 // the history are shared: the loop only ever appends behind them.
 func (l *Loop) publish() {
@@ -18,7 +21,8 @@ func (l *Loop) publish() {
 		Now: s.Now, Bench: o.Bench,
 		Mode: s.Mode, Why: s.Why, Notice: s.Notice, ArmedUntil: s.ArmedUntil,
 		Target: s.Target, Setpoint: s.Setpoint, Steps: s.Steps.Progress(s.Now.Mono),
-		Core: s.Core, CoreKnown: s.CoreKnown,
+		Core: s.Core, CoreKnown: s.CoreKnown, Lag: s.Lag, SettleIn: s.SettleIn,
+		Profile:    o.Core.Profile(s, make([]unit.Pascal, profilePoints)),
 		Prediction: s.Prediction, Residual: s.Residual,
 		ResidualKnown: s.ResidualAt != 0 && s.Now.Mono-s.ResidualAt <= o.Core.Stale(),
 		Points:        slices.Clip(l.history.points),
