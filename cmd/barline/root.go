@@ -58,5 +58,6 @@ func newRoot() *cobra.Command {
 	root.SetFlagErrorFunc(func(cmd *cobra.Command, err error) error {
 		return usage("%w; see barline %s -h", err, cmd.Name())
 	})
+	root.AddCommand(newLog())
 	return root
 }
