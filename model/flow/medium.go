@@ -27,9 +27,6 @@ type Medium struct {
 	// Virial returns B in m³/mol and C in m⁶/mol² of
 	// p = R·T·ρ·(1 + B·ρ + C·ρ²). Nil is the ideal gas.
 	Virial func(unit.Kelvin) (b, c float64)
-	// ValveFactor is the volume of this gas at reference that passes a valve,
-	// relative to air; see Valve.
-	ValveFactor float64
 }
 
 func (m Medium) check() error {
@@ -131,19 +128,19 @@ func helium(t unit.Kelvin) float64 {
 func Named(name string) (Medium, error) {
 	switch strings.ToLower(name) {
 	case "helium":
-		return Medium{name, 4.002602e-3, 5.0 / 3, helium, nil, 2.85}, nil
+		return Medium{name, 4.002602e-3, 5.0 / 3, helium, nil}, nil
 	case "neon":
-		return Medium{name, 20.179e-3, 5.0 / 3, heatAtlas(2.3014e-06, 1.22527e-07, -9.7141e-11, 5.386e-14, -1.103e-17), nil, 1.27}, nil
+		return Medium{name, 20.179e-3, 5.0 / 3, heatAtlas(2.3014e-06, 1.22527e-07, -9.7141e-11, 5.386e-14, -1.103e-17), nil}, nil
 	case "argon":
-		return Medium{name, 39.948e-3, 5.0 / 3, chapman(39.948, 0.335, 143.2), nil, 0.90}, nil
+		return Medium{name, 39.948e-3, 5.0 / 3, chapman(39.948, 0.335, 143.2), nil}, nil
 	case "krypton":
-		return Medium{name, 83.798e-3, 5.0 / 3, heatAtlas(-7.92e-07, 1.02624e-07, -5.5428e-11, 2.187e-14, -3.69e-18), nil, 0.62}, nil
+		return Medium{name, 83.798e-3, 5.0 / 3, heatAtlas(-7.92e-07, 1.02624e-07, -5.5428e-11, 2.187e-14, -3.69e-18), nil}, nil
 	case "xenon":
-		return Medium{name, 131.293e-3, 5.0 / 3, heatAtlas(-2.3692e-06, 9.8454e-08, -4.8314e-11, 1.953e-14, -3.42e-18), nil, 0.50}, nil
+		return Medium{name, 131.293e-3, 5.0 / 3, heatAtlas(-2.3692e-06, 9.8454e-08, -4.8314e-11, 1.953e-14, -3.42e-18), nil}, nil
 	case "nitrogen":
-		return Medium{name, 28.01348e-3, 1.4, chapman(28.01348, 0.3656, 98.94), nil, 1.0}, nil
+		return Medium{name, 28.01348e-3, 1.4, chapman(28.01348, 0.3656, 98.94), nil}, nil
 	case "air":
-		return Medium{name, 28.96546e-3, 1.4, chapman(28.9586, 0.360, 103.3), nil, 1.0}, nil
+		return Medium{name, 28.96546e-3, 1.4, chapman(28.9586, 0.360, 103.3), nil}, nil
 	}
 	return Medium{}, fmt.Errorf("gas %q: expected helium, neon, argon, krypton, xenon, nitrogen or air", name)
 }
