@@ -113,7 +113,10 @@ func newCore(s Spec) (*Core, error) {
 func (c *Core) at(t unit.Kelvin) (atTemperature, error) {
 	m := c.spec.Gas
 	eta, a := m.Viscosity(t), float64(c.spec.Radius)
-	b, cc := m.virial(t)
+	b, cc, err := m.virial(t)
+	if err != nil {
+		return atTemperature{}, fmt.Errorf("%s at %v: %w: %w", m.Name, t, ErrRange, err)
+	}
 	rt := GasConstant * float64(t)
 	kappa := rarefied(m, eta, a, t)
 	g := a * a * kappa * kappa / (8 * eta * rt)

@@ -284,6 +284,8 @@ func TestBadInputIsRefused(t *testing.T) {
 		"infinite pressure":   func() error { return c.Advance(time.Second, unit.Pascal(inf), 1e5, room) },
 		"NaN temperature":     func() error { return c.Advance(time.Second, 2e5, 1e5, unit.Kelvin(nan)) },
 		"zero temperature":    func() error { return c.Advance(time.Second, 2e5, 1e5, 0) },
+		"liquid xenon":        func() error { return c.Advance(time.Second, 90e5, 1e5, 280) },
+		"cold":                func() error { return c.Advance(time.Second, 2e5, 1e5, 40) },
 		"fill below zero":     func() error { return c.Fill(-1, 0, room) },
 		"restore below zero":  func() error { return c.Restore(State{A: -1, Temperature: room}) },
 		"restore NaN density": func() error { s := was; s.Density[3] = nan; return c.Restore(s) },

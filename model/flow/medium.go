@@ -4,8 +4,8 @@ import (
 	"errors"
 	"fmt"
 	"math"
-	"strings"
 
+	"barline/model/gas"
 	"barline/model/unit"
 )
 
@@ -26,7 +26,7 @@ type Medium struct {
 	Viscosity func(unit.Kelvin) float64
 	// Virial returns B in m³/mol and C in m⁶/mol² of
 	// p = R·T·ρ·(1 + B·ρ + C·ρ²). Nil is the ideal gas.
-	Virial func(unit.Kelvin) (b, c float64)
+	Virial func(unit.Kelvin) (b, c float64, err error)
 }
 
 func (m Medium) check() error {
@@ -37,9 +37,9 @@ func (m Medium) check() error {
 }
 
 // virial returns B and C at t, zero for the ideal gas.
-func (m Medium) virial(t unit.Kelvin) (b, c float64) {
+func (m Medium) virial(t unit.Kelvin) (b, c float64, err error) {
 	if m.Virial == nil {
-		return 0, 0
+		return 0, 0, nil
 	}
 	return m.Virial(t)
 }
@@ -58,7 +58,10 @@ func (m Medium) Density(p unit.Pascal, t unit.Kelvin) (unit.MolePerCubicMetre, e
 	if err := checkState(p, t); err != nil {
 		return 0, err
 	}
-	b, c := m.virial(t)
+	b, c, err := m.virial(t)
+	if err != nil {
+		return 0, fmt.Errorf("%s at %v: %w: %w", m.Name, t, ErrRange, err)
+	}
 	rho, ok := virialDensity(float64(p), GasConstant*float64(t), b, c)
 	if !ok {
 		return 0, fmt.Errorf("%s at %v and %v: %w: the virial equation has no gas there", m.Name, p, t, ErrRange)
@@ -123,24 +126,42 @@ func helium(t unit.Kelvin) float64 {
 	return 19.6e-6 * math.Pow(x, 0.71938) * math.Exp(12.451/x-295.67/(x*x)-4.1249)
 }
 
-// Named returns the gas with this name: helium, neon, argon, krypton, xenon,
-// nitrogen or air, as an ideal gas.
-func Named(name string) (Medium, error) {
-	switch strings.ToLower(name) {
+// viscosity returns that of the dilute gas with this name, nil if not known.
+func viscosity(name string) func(unit.Kelvin) float64 {
+	switch name {
 	case "helium":
-		return Medium{name, 4.002602e-3, 5.0 / 3, helium, nil}, nil
+		return helium
 	case "neon":
-		return Medium{name, 20.179e-3, 5.0 / 3, heatAtlas(2.3014e-06, 1.22527e-07, -9.7141e-11, 5.386e-14, -1.103e-17), nil}, nil
+		return heatAtlas(2.3014e-06, 1.22527e-07, -9.7141e-11, 5.386e-14, -1.103e-17)
 	case "argon":
-		return Medium{name, 39.948e-3, 5.0 / 3, chapman(39.948, 0.335, 143.2), nil}, nil
+		return chapman(39.948, 0.335, 143.2)
 	case "krypton":
-		return Medium{name, 83.798e-3, 5.0 / 3, heatAtlas(-7.92e-07, 1.02624e-07, -5.5428e-11, 2.187e-14, -3.69e-18), nil}, nil
+		return heatAtlas(-7.92e-07, 1.02624e-07, -5.5428e-11, 2.187e-14, -3.69e-18)
 	case "xenon":
-		return Medium{name, 131.293e-3, 5.0 / 3, heatAtlas(-2.3692e-06, 9.8454e-08, -4.8314e-11, 1.953e-14, -3.42e-18), nil}, nil
+		return heatAtlas(-2.3692e-06, 9.8454e-08, -4.8314e-11, 1.953e-14, -3.42e-18)
 	case "nitrogen":
-		return Medium{name, 28.01348e-3, 1.4, chapman(28.01348, 0.3656, 98.94), nil}, nil
+		return chapman(28.01348, 0.3656, 98.94)
 	case "air":
-		return Medium{name, 28.96546e-3, 1.4, chapman(28.9586, 0.360, 103.3), nil}, nil
+		return chapman(28.9586, 0.360, 103.3)
 	}
-	return Medium{}, fmt.Errorf("gas %q: expected helium, neon, argon, krypton, xenon, nitrogen or air", name)
+	return nil
+}
+
+// Named returns the gas with this name or symbol: helium, neon, argon, krypton,
+// xenon, nitrogen or air, with the virial coefficients of its reference
+// equation of state, from 250 K to 400 K.
+func Named(name string) (Medium, error) {
+	s, err := gas.Named(name)
+	if err != nil {
+		return Medium{}, err
+	}
+	ratio := 5.0 / 3
+	if s.Name == "nitrogen" || s.Name == "air" {
+		ratio = 1.4
+	}
+	eta := viscosity(s.Name)
+	if eta == nil {
+		return Medium{}, fmt.Errorf("gas %q: its viscosity is not known here", name)
+	}
+	return Medium{Name: s.Name, MolarMass: s.MolarMass, HeatRatio: ratio, Viscosity: eta, Virial: s.Virial}, nil
 }

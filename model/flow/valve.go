@@ -9,9 +9,9 @@ import (
 
 // Reference atmosphere of pneumatics: ISO 8778:2003, 20 °C and 100 kPa.
 const (
-	referencePressure    = 100e3  // Pa
-	referenceTemperature = 293.15 // K
-	airMolarMass         = 28.96546e-3
+	referencePressure    = 100e3      // Pa
+	referenceTemperature = 293.15     // K
+	airMolarMass         = 28.9586e-3 // kg/mol, dry
 	airHeatRatio         = 1.4
 )
 
