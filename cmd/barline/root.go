@@ -48,6 +48,14 @@ func run(args []string, stdin io.Reader, stdout, stderr io.Writer) int {
 	return exitFailed
 }
 
+// noArgs refuses arguments of a command that takes only flags.
+func noArgs(cmd *cobra.Command, args []string) error {
+	if len(args) > 0 {
+		return usage("%s takes no argument, got %q; see barline %s -h", cmd.Name(), args[0], cmd.Name())
+	}
+	return nil
+}
+
 func newRoot() *cobra.Command {
 	root := &cobra.Command{
 		Use:           "barline",
@@ -58,6 +66,10 @@ func newRoot() *cobra.Command {
 	root.SetFlagErrorFunc(func(cmd *cobra.Command, err error) error {
 		return usage("%w; see barline %s -h", err, cmd.Name())
 	})
-	root.AddCommand(newLog())
+	root.AddCommand(
+		newCheck(),
+		newLog(),
+		newVersion(),
+	)
 	return root
 }

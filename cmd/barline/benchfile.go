@@ -1,0 +1,41 @@
+package main
+
+import (
+	"fmt"
+	"os"
+	"path/filepath"
+	"time"
+
+	"barline/model/bench"
+)
+
+// readBench reads the bench file at path. Its mistakes are wrong use of the
+// program; the error then holds bench.Mistakes.
+func readBench(path string) (*bench.Bench, error) {
+	data, err := os.ReadFile(path)
+	if err != nil {
+		return nil, usage("bench file: %w", err)
+	}
+	b, err := bench.Parse(data, filepath.Base(path))
+	if err != nil {
+		return nil, usage("the bench file needs care; barline check -b %s says what was understood\n%w", path, err)
+	}
+	if _, err := timeZone(b); err != nil {
+		return nil, usage("%s: %w", filepath.Base(path), err)
+	}
+	return b, nil
+}
+
+// timeZone returns the place whose local time the screen shows.
+func timeZone(b *bench.Bench) (*time.Location, error) {
+	switch name := b.Screen.TimeZone; name {
+	case "local", "":
+		return time.Local, nil
+	default:
+		zone, err := time.LoadLocation(name)
+		if err != nil {
+			return nil, fmt.Errorf(`screen.time_zone = %q: expected "local", "UTC" or a name such as "Europe/Lisbon": %w`, name, err)
+		}
+		return zone, nil
+	}
+}

@@ -1,0 +1,123 @@
+package main
+
+import (
+	"encoding/json"
+	"errors"
+	"fmt"
+	"io"
+
+	"github.com/spf13/cobra"
+
+	"barline/model/bench"
+)
+
+func newCheck() *cobra.Command {
+	var file string
+	var sample, asJSON bool
+	cmd := &cobra.Command{
+		Use:   "check -b bench.toml",
+		Short: "Read a bench file, say what was understood and everything that is wrong",
+		Long: `Read a bench file, say what was understood and everything that is wrong.
+
+Mistakes go to the error output, each with file, line and column; the exit
+code is then 2. A first bench file is written by
+
+    barline check --sample > bench.toml`,
+		Args: noArgs,
+		RunE: func(cmd *cobra.Command, args []string) error {
+			out := cmd.OutOrStdout()
+			if sample {
+				_, err := out.Write(bench.Sample())
+				return err
+			}
+			if file == "" {
+				return usage("check needs a bench file: -b bench.toml; a first one is written by barline check --sample")
+			}
+			b, err := readBench(file)
+			var found bench.Mistakes
+			errors.As(err, &found)
+			switch {
+			case asJSON && (err == nil || found != nil):
+				if err := writeObject(out, checked(file, b, found)); err != nil {
+					return err
+				}
+			case found == nil && err == nil:
+				writeSummary(out, file, b)
+			}
+			if found != nil {
+				if !asJSON {
+					fmt.Fprintln(cmd.ErrOrStderr(), found)
+				}
+				return usage("%s: %s", file, counted(len(found), "mistake"))
+			}
+			return err
+		},
+	}
+	cmd.Flags().StringVarP(&file, "bench", "b", "", "bench file")
+	cmd.Flags().BoolVar(&sample, "sample", false, "print a commented bench file")
+	cmd.Flags().BoolVar(&asJSON, "json", false, "print the result as one JSON object")
+	cmd.MarkFlagsMutuallyExclusive("bench", "sample")
+	return cmd
+}
+
+// checkedFile is what check --json prints.
+type checkedFile struct {
+	File     string         `json:"file"`
+	OK       bool           `json:"ok"`
+	Name     string         `json:"name,omitempty"`
+	Highest  float64        `json:"highest_setpoint_bar,omitempty"`
+	Bound    string         `json:"bound_by,omitempty"`
+	Channels []checkedEntry `json:"channels,omitempty"`
+	Missing  []string       `json:"without,omitempty"`
+	Mistakes []checkedWrong `json:"mistakes,omitempty"`
+}
+
+type checkedEntry struct {
+	Instrument string `json:"instrument"`
+	Channel    string `json:"channel"`
+	Role       string `json:"role"`
+	Protocol   string `json:"protocol"`
+	Reached    string `json:"reached_by"`
+}
+
+type checkedWrong struct {
+	Line   int    `json:"line,omitempty"`
+	Column int    `json:"column,omitempty"`
+	Key    string `json:"key,omitempty"`
+	Text   string `json:"text"`
+}
+
+func checked(file string, b *bench.Bench, found bench.Mistakes) checkedFile {
+	c := checkedFile{File: file, OK: b != nil}
+	for _, m := range found {
+		c.Mistakes = append(c.Mistakes, checkedWrong{m.Line, m.Column, m.Key, m.Text})
+	}
+	if b == nil {
+		return c
+	}
+	low := b.Limits.Enforced().Lowest()
+	c.Name, c.Highest, c.Bound, c.Missing = b.Bench.Name, low.Max.Bar(), low.Part, lacking(b)
+	for i := range b.Instrument {
+		inst := &b.Instrument[i]
+		for j := range inst.Channel {
+			ch := &inst.Channel[j]
+			c.Channels = append(c.Channels, checkedEntry{inst.Name, ch.Name, ch.Role.String(), inst.Protocol, reachedBy(inst)})
+		}
+	}
+	return c
+}
+
+// writeObject prints v as one object on one line.
+func writeObject(w io.Writer, v any) error {
+	e := json.NewEncoder(w)
+	e.SetEscapeHTML(false)
+	return e.Encode(v)
+}
+
+// counted writes "1 mistake" or "3 mistakes".
+func counted(n int, noun string) string {
+	if n == 1 {
+		return "1 " + noun
+	}
+	return fmt.Sprintf("%d %ss", n, noun)
+}
