@@ -95,7 +95,7 @@ func (p *Pattern) addField(text string) error {
 		return nil
 	}
 	if !isName(name) {
-		return fmt.Errorf("field {%s}: expected letters, digits and underscores", text)
+		return fmt.Errorf("field {%s}: expected letters, digits, - and _", text)
 	}
 	if _, ok := p.Field(name); ok || name == p.list {
 		return fmt.Errorf("field {%s} stands twice", name)

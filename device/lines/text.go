@@ -73,7 +73,7 @@ func cutLiteral(s []byte, text string) (rest []byte, ok bool) {
 func isName(s string) bool {
 	for i := range len(s) {
 		c := s[i]
-		if !(c >= 'a' && c <= 'z' || c >= 'A' && c <= 'Z' || c >= '0' && c <= '9' || c == '_') {
+		if !(c >= 'a' && c <= 'z' || c >= 'A' && c <= 'Z' || c >= '0' && c <= '9' || c == '_' || c == '-') {
 			return false
 		}
 	}

@@ -14,6 +14,7 @@ var (
 	serialKeys   = []string{"baud", "data_bits", "parity", "stop_bits"}
 	protocolKeys = map[string][]string{
 		"pattern": {Lines}, "checksum": {Lines}, "streams": {Lines}, "identify": {SCPI}, "hold": {SCPI, Lines},
+		"resume": {SCPI, Lines}, "terminator": {SCPI, Lines}, "ask": {Lines}, "errors": {SCPI}, "echo": {ModbusRTU, SCPI, Lines},
 	}
 	channelKeys = map[string][]string{
 		"unit": {ModbusRTU, ModbusTCP}, "function": {ModbusRTU, ModbusTCP}, "register": {ModbusRTU, ModbusTCP},
@@ -121,10 +122,15 @@ func (c checker) protocol(path string, inst *Instrument) (fields []string) {
 			c.wrong(path+".pattern", "%s", err)
 		}
 	}
-	for k, command := range inst.Hold {
-		if strings.TrimSpace(command) == "" || strings.ContainsAny(command, "\r\n") {
-			c.wrong(fmt.Sprintf("%s.hold[%d]", path, k), "expected one command without a line break")
+	for key, commands := range map[string][]string{"hold": inst.Hold, "resume": inst.Resume} {
+		for k, command := range commands {
+			if strings.TrimSpace(command) == "" || strings.ContainsAny(command, "\r\n") {
+				c.wrong(fmt.Sprintf("%s.%s[%d]", path, key, k), "expected one command without a line break")
+			}
 		}
+	}
+	if inst.Streams && c.has(path+".ask") {
+		c.about(path+".ask", "is for instruments that are asked, and this one has streams = true")
 	}
 	if len(inst.Channel) == 0 {
 		c.about(path, "%s has no channel; expected at least one [[instrument.channel]] below it", named(inst.Name))
@@ -168,6 +174,9 @@ func (c checker) channel(path string, inst *Instrument, ch *Channel, fields []st
 	}
 	if ch.Scale == "" && isValve(ch.Role) {
 		ch.Scale = "100 %" // the number 1 means open
+	}
+	if c.has(path+".gas_factor") && !(ch.GasFactor >= 0.01 && ch.GasFactor <= 100) {
+		c.wrong(path+".gas_factor", "expected 0.01 to 100")
 	}
 	c.scale(path, ch)
 }

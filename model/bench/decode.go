@@ -174,6 +174,8 @@ func (d *decoder) fits(n *node, v reflect.Value) string {
 		return "expected text in quotes"
 	case v.Kind() == reflect.Int && n.shape != isWhole:
 		return "expected a whole number without quotes"
+	case !quantity && v.Kind() == reflect.Float64 && n.shape != isWhole && n.shape != isNumber:
+		return "expected a number without quotes"
 	case v.Kind() == reflect.Bool && n.shape != isTruth:
 		return "expected true or false, without quotes"
 	}
@@ -192,6 +194,12 @@ func (d *decoder) scalar(text string, v reflect.Value) error {
 			return errors.New("expected a whole number")
 		}
 		v.SetInt(i)
+	case reflect.Float64:
+		x, err := strconv.ParseFloat(text, 64)
+		if err != nil {
+			return errors.New("expected a number")
+		}
+		v.SetFloat(x)
 	case reflect.Bool:
 		v.SetBool(text == "true")
 	default:

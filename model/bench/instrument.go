@@ -33,7 +33,16 @@ type Instrument struct {
 	Checksum string      `toml:"checksum" bench:"oneof=none|xor8|crc16"` // lines
 	Identify string      `toml:"identify"`                               // scpi: query that names the instrument
 	Hold     []string    `toml:"hold"`                                   // commands sent on HOLD, in order
-	Channel  []Channel   `toml:"channel"`
+	Resume   []string    `toml:"resume"`                                 // commands sent before the first setpoint after a HOLD
+
+	Terminator string      `toml:"terminator" bench:"oneof=lf|crlf|cr"`     // scpi, lines: what is sent; any is understood. Default lf
+	Ask        string      `toml:"ask"`                                     // lines: text that asks for a line; without it the instrument streams
+	Errors     string      `toml:"errors"`                                  // scpi: query of the error queue, sent after each write
+	Turnaround unit.Second `toml:"turnaround" bench:"least=0 ms; most=1 s"` // RS-485: silence before each message, wall time
+	Echo       bool        `toml:"echo"`                                    // RS-485: the converter sends our own bytes back
+	Traffic    string      `toml:"traffic"`                                 // file that keeps every byte, for diagnosis
+
+	Channel []Channel `toml:"channel"`
 }
 
 // Channel is one quantity of one instrument. The number on the wire becomes a
@@ -55,9 +64,15 @@ type Channel struct {
 	Gauge    bool         `toml:"gauge"`                                   // pressure above ambient
 	Range    []string     `toml:"range"`                                   // lowest and highest value in specification, as written
 
+	Span       []string    `toml:"span"`                               // instead of scale: the number is a current in mA, and these are the quantities at 4 mA and at 20 mA, as written
+	GasFactor  float64     `toml:"gas_factor"`                         // multiplies the reading of a gauge that depends on the gas; 0 is none
+	Resolution string      `toml:"resolution"`                         // a setpoint read back this near to the one sent was taken, as written
+	Stale      unit.Second `toml:"stale" bench:"least=1 ms; most=1 h"` // instead of that of [limits]; 0 is that
+
 	Factor    float64 // SI per count
 	Zero      float64 // SI at the number 0; above ambient where Gauge
 	Low, High float64 // SI, the range in specification; above ambient where Gauge. Equal where no range is given
+	Step      float64 // SI, the resolution; 0 where none is given
 	Symbol    string  // unit that SI returns, such as "Pa"
 }
 

@@ -147,6 +147,7 @@ func TestEveryMistakeIsNamedWhereItStands(t *testing.T) {
 		{"W {width} nm", "{width} nm W", "", ""},
 		{"EM {emission} nm", "EM {emission}", "", ""},
 		{"{emission} nm W {width}", "{emission}{width}", `"EM`, `instrument.pattern = "EM {emission}{width} nm S {strength} %": nothing stands between {emission} and the next field`},
+		{"{strength} %", "{_...} %", `"EM`, `instrument.pattern = "EM {emission} nm W {width} nm S {_...} %": field {_...}: expected a name of letters, digits, - and _`},
 		{"{strength} %", "{strength %", `"EM`, `instrument.pattern = "EM {emission} nm W {width} nm S {strength %": {strength % has no }`},
 		{"on_alarm = []", "on_alarm = \"ring\"", `"ring"`, `alarms.on_alarm = "ring": expected a list of texts such as ["first", "second"]`},
 		{"ascii = false", "ascii = \"no\"", `"no"`, `screen.ascii = "no": expected true or false, without quotes`},

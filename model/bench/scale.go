@@ -95,6 +95,16 @@ func (c checker) scale(path string, ch *Channel) {
 	if k.symbol != "" && ch.Symbol == "" {
 		ch.Symbol = k.symbol
 	}
+	if c.has(path + ".resolution") {
+		var err error
+		if ch.Step, err = k.span(ch.Resolution); err != nil || !(ch.Step > 0) {
+			c.wrong(path+".resolution", "expected a step above zero, such as \"1 mbar\"")
+		}
+	}
+	if c.has(path + ".span") {
+		c.current(path, ch, k)
+		return
+	}
 	factor, err := k.span(ch.Scale)
 	switch {
 	case err != nil && c.has(path+".scale"):
@@ -122,6 +132,38 @@ func (c checker) scale(path string, ch *Channel) {
 		}
 		ch.Zero = zero
 	}
+	if c.has(path + ".range") {
+		c.limits(path+".range", ch, k)
+	}
+}
+
+// current fills in the scale of a channel whose number is a current of 4 to
+// 20 mA.
+func (c checker) current(path string, ch *Channel, k kind) {
+	for _, key := range []string{"scale", "offset"} {
+		if c.has(path + "." + key) {
+			c.about(path+"."+key, "is one scale too many: span is given as well")
+			return
+		}
+	}
+	if len(ch.Span) != 2 {
+		c.wrong(path+".span", `expected the quantities at 4 mA and at 20 mA, such as ["0 bar", "16 bar"]`)
+		return
+	}
+	var v [2]float64
+	for i, text := range ch.Span {
+		var err error
+		if v[i], err = k.parse(text); err != nil {
+			c.wrong(fmt.Sprintf("%s.span[%d]", path, i), "%s", reason(err))
+			return
+		}
+	}
+	if v[0] == v[1] {
+		c.wrong(path+".span", "expected two different quantities")
+		return
+	}
+	ch.Factor = (v[1] - v[0]) / 16
+	ch.Zero = v[0] - 4*ch.Factor
 	if c.has(path + ".range") {
 		c.limits(path+".range", ch, k)
 	}
