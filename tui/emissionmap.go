@@ -1,0 +1,131 @@
+package tui
+
+import (
+	"math"
+
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/tui/chart"
+	"barline/tui/frame"
+)
+
+// drawMap draws the predicted emission over pressure with its band, the
+// emissions measured on the way up and down, and where the bench is now.
+func drawMap(a frame.Area, s *live.Snapshot) {
+	nan := math.NaN()
+	var x, y chart.Range
+	curve := make([]chart.Point, len(s.Curve))
+	low, high := make([]chart.Point, len(s.Curve)), make([]chart.Point, len(s.Curve))
+	for i, c := range s.Curve {
+		bar, nm, sigma := c.Pressure.Bar(), c.Emission.Nanometres(), c.Sigma.Nanometres()
+		x.Include(bar)
+		if !(c.Emission > 0) {
+			nm = nan
+		}
+		curve[i], low[i], high[i] = chart.Point{X: bar, Y: nm}, chart.Point{X: bar, Y: nm - sigma}, chart.Point{X: bar, Y: nm + sigma}
+		y.Include(nm - sigma)
+		y.Include(nm + sigma)
+	}
+	for _, p := range s.Points {
+		x.Include(p.Pressure.Bar())
+		y.Include(p.Emission.Nanometres())
+	}
+	measured := show(s, reading.Emission)
+	here := chart.Point{X: s.Core.Bar(), Y: nan}
+	if measured.known {
+		here.Y = s.Latest[reading.Emission].Value * 1e9
+		if s.CoreKnown {
+			y.Include(here.Y)
+		}
+	}
+	if s.CoreKnown {
+		x.Include(here.X)
+	}
+
+	at := heading(a, "emission", "nm over bar")
+	at = a.Text(at, 0, "◇ ", frame.Predicted)
+	answer := "predicted"
+	if s.Prediction.Valid {
+		answer = s.Prediction.Answer.String()
+	}
+	a.Text(at, 0, answer, frame.Predicted)
+
+	body := a.Sub(0, 1, a.W, a.H-1)
+	x, y = x.Padded(0.01, 0.1), y.Padded(0.04, 5)
+	if x.Empty() || y.Empty() {
+		blank(body, "no prediction yet")
+		return
+	}
+	p := chart.New(body, chart.Axes{
+		X: x, Y: y, XTicks: chart.Ticks(x, max(2, a.W/8)), YTicks: chart.Ticks(y, max(2, body.H/2)), LabelWidth: 4,
+	})
+	p.Band(low, high, frame.Band)
+	p.Curve(curve, frame.Predicted)
+	if s.CoreKnown {
+		p.Upright(here.X, frame.Faint)
+	}
+	for _, m := range s.Points {
+		mark, ink := '▲', frame.Rising
+		if !m.Rising {
+			mark, ink = '▼', frame.Falling
+		}
+		p.Mark(chart.Point{X: m.Pressure.Bar(), Y: m.Emission.Nanometres()}, mark, ink)
+	}
+	if s.CoreKnown && s.Prediction.Valid && s.Prediction.Emission != 0 {
+		p.Mark(chart.Point{X: here.X, Y: s.Prediction.Emission.Nanometres()}, '◇', frame.Predicted)
+	}
+	if s.CoreKnown {
+		p.Mark(here, '●', frame.Measured)
+	}
+	p.Done()
+	drawMapKey(p.Pane(), s)
+}
+
+// drawMapKey explains the marks where the chart is empty by nature: emission
+// rises with pressure, so the lower right corner is free.
+func drawMapKey(a frame.Area, s *live.Snapshot) {
+	if a.W < 26 || a.H < 8 {
+		return
+	}
+	lines := []struct {
+		mark rune
+		ink  frame.Ink
+		text string
+	}{{'●', frame.Measured, "measured now"}, {'◇', frame.Predicted, "predicted now"}}
+	rising, falling := false, false
+	for _, p := range s.Points {
+		rising, falling = rising || p.Rising, falling || !p.Rising
+	}
+	if rising {
+		lines = append(lines, struct {
+			mark rune
+			ink  frame.Ink
+			text string
+		}{'▲', frame.Rising, "rising"})
+	}
+	if falling {
+		lines = append(lines, struct {
+			mark rune
+			ink  frame.Ink
+			text string
+		}{'▼', frame.Falling, "falling"})
+	}
+	y := a.H - len(lines)
+	a.Sub(a.W-17, y, 17, len(lines)).Fill(' ', frame.Plain)
+	for i, l := range lines {
+		a.Set(a.W-16, y+i, l.mark, l.ink)
+		a.Text(a.W-14, y+i, l.text, frame.Faint)
+	}
+}
+
+// drawRecent shows the last lines of the record, newest at the bottom.
+func drawRecent(a frame.Area, s *live.Snapshot) {
+	x := heading(a, "record", "")
+	if s.Folder != "" {
+		a.Text(x, 0, s.Folder, frame.Faint)
+	}
+	n := min(len(s.Recent), a.H-1)
+	for i, line := range s.Recent[len(s.Recent)-n:] {
+		a.Text(2, 1+i, line, frame.Plain)
+	}
+}

@@ -1,0 +1,64 @@
+package tui
+
+import (
+	"flag"
+	"fmt"
+	"os"
+	"path/filepath"
+	"testing"
+
+	"barline/tui/frame"
+	"barline/tui/tuitest"
+)
+
+var update = flag.Bool("update", false, "rewrite the golden screens; read the difference")
+
+// Golden screens say that nothing moved unseen. They vouch for no number.
+func TestGoldenScreens(t *testing.T) {
+	type sized struct {
+		situation string
+		w, h      int
+		style     Style
+		tag       string
+	}
+	var cases []sized
+	for name := range tuitest.Situations() {
+		cases = append(cases, sized{name, 80, 24, Style{}, "plain"}, sized{name, 120, 40, Style{}, "plain"})
+	}
+	for _, size := range [][2]int{{100, 30}, {200, 60}, {40, 12}, {7, 2}} {
+		cases = append(cases, sized{"filling", size[0], size[1], Style{}, "plain"})
+	}
+	for tag, style := range map[string]Style{
+		"palette": {Colours: frame.Palette}, "light": {Colours: frame.Palette, Light: true},
+		"sixteen": {Colours: frame.Sixteen}, "ascii": {ASCII: true},
+	} {
+		cases = append(cases, sized{"filling", 120, 40, style, tag}, sized{"stale", 80, 24, style, tag})
+	}
+	for _, c := range cases {
+		name := fmt.Sprintf("%s-%dx%d-%s", c.situation, c.w, c.h, c.tag)
+		t.Run(name, func(t *testing.T) {
+			golden(t, name, Render(situations()[c.situation], Bench, c.w, c.h, c.style))
+		})
+	}
+}
+
+func golden(t *testing.T, name, got string) {
+	t.Helper()
+	path := filepath.Join("testdata", name+".screen")
+	if *update {
+		if err := os.MkdirAll("testdata", 0o755); err != nil {
+			t.Fatal(err)
+		}
+		if err := os.WriteFile(path, []byte(got+"\n"), 0o644); err != nil {
+			t.Fatal(err)
+		}
+		return
+	}
+	want, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got+"\n" != string(want) {
+		t.Errorf("screen differs from %s; with -update the difference can be read\n%s", path, got)
+	}
+}

@@ -1,0 +1,321 @@
+package tui
+
+import (
+	"fmt"
+	"math"
+	"strings"
+	"time"
+
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/tui/frame"
+)
+
+// headHeight is the rows that stand at the top of every page: who and when,
+// what the bench is doing, what is wrong.
+const headHeight = 3
+
+func drawHead(a frame.Area, s *live.Snapshot, v view) {
+	drawTitle(a.Sub(0, 0, a.W, 1), s, v)
+	drawMode(a.Sub(0, 1, a.W, 1), s)
+	drawAlarm(a.Sub(0, 2, a.W, 1), s, v)
+}
+
+func drawTitle(a frame.Area, s *live.Snapshot, v view) {
+	name, gas := "bench", ""
+	if s.Bench != nil {
+		if s.Bench.Bench.Name != "" {
+			name = s.Bench.Bench.Name
+		}
+		gas = s.Bench.Gas.Species
+	}
+	x := a.Text(1, 0, name, frame.Strong) + 1
+	if gas != "" {
+		x = a.Text(x, 0, "· "+gas, frame.Faint) + 1
+	}
+	if s.Simulated {
+		x = a.Text(x+1, 0, "SIMULATED", frame.Caution) + 1
+	}
+	if s.ReadOnly {
+		x = a.Text(x+1, 0, "FOLLOWING", frame.Caution) + 1
+	}
+	if v.frozen != nil {
+		x = a.Text(x+1, 0, " CHARTS FROZEN "+spanText(s.Now.Mono-v.frozen.at)+" ", frame.Cursor) + 1
+	}
+	clock := "--:--:--"
+	if !s.Now.UTC.IsZero() {
+		clock = s.Now.UTC.In(a.Style().Location()).Format("15:04:05 MST")
+	}
+	right := a.Right(a.W-1, 0, clock, frame.Plain)
+	text, ink := recordText(s)
+	if a.Width(text) > right-3-x {
+		text = shortRecord(s)
+	}
+	a.Sub(x, 0, right-2-x, 1).Right(right-2-x, 0, text, ink)
+}
+
+// recordText says how the logbook fares.
+func recordText(s *live.Snapshot) (string, frame.Ink) {
+	r := s.Record
+	text := "● recording"
+	ink := frame.Good
+	if !r.Writing {
+		text, ink = "✕ NOT RECORDED", frame.Alarm
+	}
+	text += " · " + countText(r.Written) + " written"
+	if r.Waiting > 0 {
+		text += fmt.Sprintf(", %d waiting", r.Waiting)
+	}
+	if r.Lost > 0 {
+		text += ", " + countText(r.Lost) + " LOST"
+		ink = frame.Alarm
+	}
+	if s.Dropped > 0 {
+		text += ", " + countText(s.Dropped) + " readings dropped"
+		if ink == frame.Good {
+			ink = frame.Caution
+		}
+	}
+	return text, ink
+}
+
+func shortRecord(s *live.Snapshot) string {
+	switch {
+	case s.Record.Lost > 0:
+		return "✕ " + countText(s.Record.Lost) + " LOST"
+	case !s.Record.Writing:
+		return "✕ NOT RECORDED"
+	}
+	return "● recording"
+}
+
+// armed reports whether a command that moves gas would be taken now.
+func armed(s *live.Snapshot) bool { return s.ArmedUntil > s.Now.Mono }
+
+func modeInk(s *live.Snapshot) frame.Ink {
+	switch s.Mode {
+	case live.Held:
+		return frame.Hold
+	case live.Ramping, live.Settling:
+		return frame.Target
+	case live.Armed:
+		return frame.Caution
+	}
+	return frame.Strong
+}
+
+func drawMode(a frame.Area, s *live.Snapshot) {
+	word := strings.ToUpper(modeText(s.Mode))
+	x := a.Text(1, 0, word, modeInk(s))
+	if s.Mode == live.Held {
+		a.Sub(0, 0, x+1, 1).Tint(frame.Hold)
+	}
+	right := a.W - 1
+	if set := setpointText(s); set != "" {
+		right = a.Right(right, 0, set, frame.Target) - 2
+	}
+	why := s.Why
+	if why == "" || why == modeText(s.Mode) {
+		why = ""
+		switch {
+		case s.Mode == live.Ramping:
+			why = rampLeft(s)
+		case s.Mode == live.Watching && s.ReadOnly:
+			why = "a second screen: nothing can be commanded from here"
+		case s.Mode == live.Watching:
+			why = "nothing moves gas until it is armed"
+		case s.Mode == live.Armed:
+			why = "a setpoint would be taken"
+		}
+	}
+	if s.Steps.Count > 0 {
+		step := fmt.Sprintf("step %d of %d", s.Steps.Index+1, s.Steps.Count)
+		if s.Steps.Dwelling {
+			step += ", " + spanText(s.Steps.DwellLeft) + " more"
+		}
+		why = join(step, why)
+	}
+	a.Sub(0, 0, right, 1).Text(max(x+2, 12), 0, why, frame.Plain)
+}
+
+func join(a, b string) string {
+	if a == "" || b == "" {
+		return a + b
+	}
+	return a + " · " + b
+}
+
+func modeText(m live.Mode) string {
+	if m > live.Held {
+		return "unknown"
+	}
+	return m.String()
+}
+
+// rampLeft says how long the setpoint still travels at the allowed rate.
+func rampLeft(s *live.Snapshot) string {
+	if s.Bench == nil {
+		return ""
+	}
+	rate := s.Bench.Limits.RiseRate
+	if s.Target < s.Setpoint {
+		rate = s.Bench.Limits.FallRate
+	}
+	if !(rate > 0) {
+		return ""
+	}
+	left := time.Duration(math.Abs(float64(s.Target-s.Setpoint)) / float64(rate) * 1e9)
+	return spanText(left) + " to the target"
+}
+
+// setpointText is where the pressure is sent.
+func setpointText(s *live.Snapshot) string {
+	if s.Setpoint == 0 && s.Target == 0 {
+		if !fitted(s, reading.Setpoint) {
+			return ""
+		}
+		if r := show(s, reading.Setpoint); r.known {
+			return "setpoint " + r.value
+		}
+		return "no setpoint yet"
+	}
+	text := "setpoint " + pressureText(s.Setpoint)
+	if s.Target != 0 && s.Target != s.Setpoint {
+		text = "setpoint " + strings.TrimSuffix(pressureText(s.Setpoint), " bar") + " → " + pressureText(s.Target)
+	}
+	return text
+}
+
+// worst returns the alarm that the banner shows: the most urgent that nobody
+// has seen, else the most urgent.
+func worst(s *live.Snapshot) (live.Alarm, bool) {
+	for _, al := range s.Alarms {
+		if !al.Acked {
+			return al, true
+		}
+	}
+	if len(s.Alarms) > 0 {
+		return s.Alarms[0], true
+	}
+	return live.Alarm{}, false
+}
+
+func drawAlarm(a frame.Area, s *live.Snapshot, v view) {
+	if v.late > 0 {
+		a.Fill(' ', frame.Banner)
+		a.Text(1, 0, "✕ THE PROGRAM HAS SAID NOTHING FOR "+spanText(v.late)+": what you see is old. Look at the gauges", frame.Banner)
+		return
+	}
+	al, some := worst(s)
+	if !some {
+		x := a.Text(1, 0, "no alarms", frame.Faint)
+		if v.message != "" {
+			a.Text(max(x+2, 12), 0, v.message, frame.Caution)
+		} else if s.Notice != "" {
+			a.Text(max(x+2, 12), 0, s.Notice, frame.Caution)
+		}
+		return
+	}
+	text := "▲ ALARM"
+	if n := len(s.Alarms); n > 1 {
+		text += fmt.Sprintf(" 1 of %d", n)
+	}
+	text += "  " + al.Name
+	// What happened, what the bench does, what to do. Where that is too long,
+	// the name has to stand for the cause; the list has it all.
+	rest := sentences(al.Consequence, al.Action)
+	if full := sentences(al.Cause, al.Consequence, al.Action); a.Width(text)+2+a.Width(full) < a.W-1 {
+		rest = full
+	}
+	if rest != "" {
+		text += ": " + rest
+	}
+	ink := frame.Banner
+	switch {
+	case al.Acked && !al.Active:
+		ink = frame.Faint
+	case al.Acked:
+		text = strings.Replace(text, "ALARM", "seen", 1)
+		ink = frame.Alarm
+	case !al.Active:
+		text = strings.Replace(text, "ALARM", "alarm over", 1)
+	}
+	if ink == frame.Banner {
+		a.Fill(' ', ink)
+	}
+	// A message about the key just pressed matters more than the alarm's tail.
+	if v.message != "" {
+		a.Sub(0, 0, a.W, 1).Text(1, 0, "▲ "+al.Name+" · "+v.message, ink)
+		return
+	}
+	a.Text(1, 0, text, ink)
+}
+
+// sentences joins what is not empty.
+func sentences(parts ...string) string {
+	text := ""
+	for _, p := range parts {
+		if p == "" {
+			continue
+		}
+		if text != "" {
+			text += "; "
+		}
+		text += p
+	}
+	return text
+}
+
+// drawSmall keeps the essentials where no page fits.
+func drawSmall(a frame.Area, s *live.Snapshot, v view) {
+	y := 0
+	line := func(text string, ink frame.Ink) {
+		if y < a.H {
+			a.Text(0, y, text, ink)
+			y++
+		}
+	}
+	p, mark, ink := mainPressure(s)
+	line(p+" "+mark, ink)
+	line(strings.ToUpper(modeText(s.Mode))+" · Tab: HOLD", modeInk(s))
+	if v.late > 0 {
+		line("✕ OLD: silent "+spanText(v.late), frame.Banner)
+	}
+	if al, some := worst(s); some {
+		line("▲ "+al.Name, frame.Banner)
+	}
+	if !s.Record.Writing {
+		line("✕ NOT RECORDED", frame.Alarm)
+	}
+	if e := show(s, reading.Emission); fitted(s, reading.Emission) {
+		line(e.value+" "+e.mark, e.ink)
+	}
+	line(fmt.Sprintf("%d×%d is too small,", a.W, a.H), frame.Faint)
+	line(fmt.Sprintf("%d×%d shows the page", minWidth, minHeight), frame.Faint)
+}
+
+// mainPressure is the one pressure to show where there is room for one: cell
+// A's gauge, else the next that is fitted.
+func mainPressure(s *live.Snapshot) (text, mark string, ink frame.Ink) {
+	for _, role := range []reading.Role{reading.CellAPressure, reading.CellBPressure, reading.ControllerSensor, reading.ManifoldPressure} {
+		if r := show(s, role); r.known {
+			return r.value, r.mark, r.ink
+		}
+	}
+	r := show(s, reading.CellAPressure)
+	return r.value, r.mark, r.ink
+}
+
+// frozen is a snapshot kept for reading while the bench goes on.
+type frozen struct {
+	snapshot *live.Snapshot
+	at       time.Duration
+}
+
+// over returns now with the charts of then: values, mode, alarms and the state
+// of the record are never frozen.
+func (f *frozen) over(now *live.Snapshot) *live.Snapshot {
+	mixed := *now
+	mixed.PressureA, mixed.Expected, mixed.Residuals = f.snapshot.PressureA, f.snapshot.Expected, f.snapshot.Residuals
+	return &mixed
+}

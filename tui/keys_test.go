@@ -1,0 +1,211 @@
+package tui
+
+import (
+	"math/rand/v2"
+	"strings"
+	"sync"
+	"testing"
+
+	tea "github.com/charmbracelet/bubbletea"
+	"github.com/charmbracelet/x/ansi"
+
+	"barline/model/live"
+	"barline/tui/tuitest"
+)
+
+// Every key that the help names does something on some bench, and the help
+// fits the smallest screen in full.
+func TestHelpShowsEveryKeyInFull(t *testing.T) {
+	screen := ansi.Strip(draw(tuitest.Calm(), view{overlay: helpOverlay}, minWidth, minHeight, Style{}).String())
+	for _, b := range bindings {
+		if !strings.Contains(screen, b.label+" "+b.what) {
+			t.Errorf("help does not show %q %q:\n%s", b.label, b.what, screen)
+		}
+	}
+}
+
+// A key works where it changes the view, asks for something or says why not.
+func TestEveryKeyInHelpWorksAndNoOther(t *testing.T) {
+	listed := map[string]bool{}
+	for _, b := range bindings {
+		for _, key := range append([]string{b.key}, b.also...) {
+			listed[key] = true
+			if !works(key) {
+				t.Errorf("key %q is in the help and does nothing", key)
+			}
+		}
+	}
+	names := []string{"enter", "backspace", "up", "down", "pgup", "pgdown", "home", "end", "delete", "insert", "shift+tab", " "}
+	for c := rune('!'); c <= '~'; c++ {
+		names = append(names, string(c))
+	}
+	for c := 'a'; c <= 'z'; c++ {
+		names = append(names, "ctrl+"+string(c))
+	}
+	for i := range 12 {
+		names = append(names, tea.Key{Type: tea.KeyF1 - tea.KeyType(i)}.String())
+	}
+	for _, key := range names {
+		if !listed[key] && works(key) {
+			t.Errorf("key %q works and is not in the help", key)
+		}
+	}
+}
+
+// situations are made once: their histories are long.
+var situations = sync.OnceValue(func() map[string]*live.Snapshot {
+	made := map[string]*live.Snapshot{}
+	for name, make := range tuitest.Situations() {
+		made[name] = make()
+	}
+	return made
+})
+
+func works(key string) bool {
+	for _, s := range situations() {
+		for _, before := range []view{{}, {frozen: freeze(s), back: 1e9, zoom: 1}, {overlay: helpOverlay}} {
+			after, intents := before.press(key, s)
+			if after != before && key != "esc" && before.overlay == noOverlay || len(intents) > 0 {
+				return true
+			}
+			if key == "esc" && after.overlay != before.overlay {
+				return true
+			}
+		}
+	}
+	return false
+}
+
+func TestHoldIsOneKeyEverywhere(t *testing.T) {
+	for o := noOverlay; o <= leaveOverlay; o++ {
+		v, intents := view{overlay: o, text: "9"}.press("tab", tuitest.Filling())
+		if len(intents) != 1 || intents[0] != live.Intent(live.Hold{}) {
+			t.Errorf("Tab over overlay %d asks for %v, want HOLD alone", o, intents)
+		}
+		if v.overlay != noOverlay || v.text != "" {
+			t.Errorf("Tab leaves overlay %d open", o)
+		}
+	}
+}
+
+func TestArmingNeedsTheWord(t *testing.T) {
+	s := tuitest.Calm()
+	for text, want := range map[string]int{"": 0, "a": 0, "armm": 0, "yes": 0, "arm": 1, " arm ": 1} {
+		v, _ := view{}.press("a", s)
+		for _, r := range text {
+			v, _ = v.press(string(r), s)
+		}
+		if _, intents := v.press("enter", s); len(intents) != want {
+			t.Errorf("%q and Enter gives %v, want %d intents", text, intents, want)
+		}
+	}
+}
+
+func TestSetpointPrompt(t *testing.T) {
+	s := tuitest.Filling()
+	for _, c := range []struct {
+		text    string
+		bar     float64 // 0: refused
+		message string
+	}{
+		{"9.2 bar", 9.2, ""},
+		{"920kPa", 9.2, ""},
+		{"3 bar(g)", 4.013, ""}, // the bench file's ambient of 1.013 bar
+		{"9.2", 0, "no unit"},
+		{"", 0, "expected a pressure"},
+		{"16.01 bar", 0, "fibre seal allows 0 bar to 16 bar"},
+		{"-1 bar", 0, "fibre seal allows"},
+		{"9 nm", 0, "is not one of a pressure"},
+	} {
+		v := view{overlay: setpointOverlay, text: c.text}
+		after, intents := v.press("enter", s)
+		if c.bar == 0 {
+			if len(intents) != 0 || !strings.Contains(after.message, c.message) || after.overlay != setpointOverlay {
+				t.Errorf("%q gives %v and %q, want a refusal with %q", c.text, intents, after.message, c.message)
+			}
+			continue
+		}
+		if len(intents) != 1 {
+			t.Errorf("%q gives %v and %q, want a setpoint", c.text, intents, after.message)
+			continue
+		}
+		if got := intents[0].(live.GoTo).Target.Bar(); got < c.bar-1e-9 || got > c.bar+1e-9 {
+			t.Errorf("%q goes to %v bar, want %v bar", c.text, got, c.bar)
+		}
+	}
+}
+
+func TestSecondScreenCommandsNothing(t *testing.T) {
+	s := tuitest.Filling()
+	s.ReadOnly = true
+	for _, b := range bindings {
+		_, intents := view{}.press(b.key, s)
+		for _, in := range intents {
+			if _, leave := in.(quit); !leave {
+				t.Errorf("key %q on a second screen asks for %T", b.key, in)
+			}
+		}
+	}
+}
+
+// A hundred thousand keys and sizes: no panic, no line too wide, and no
+// setpoint asked for while the bench is not armed.
+func TestStormOfKeysAndSizes(t *testing.T) {
+	r := rand.New(rand.NewPCG(1, 2))
+	keys := []string{"enter", "esc", "backspace", "tab", "left", "right", "arm", "9.2 bar", "ctrl+u", "up", "\x00", "é", "界"}
+	for c := rune(' '); c <= '~'; c++ {
+		keys = append(keys, string(c))
+	}
+	var benches []*live.Snapshot
+	for _, s := range situations() {
+		benches = append(benches, s)
+	}
+	v, s, w, h := view{}, benches[0], 80, 24
+	frames := 0
+	for i := range 100_000 {
+		switch n := r.IntN(100); {
+		case n < 5:
+			w, h = r.IntN(140), r.IntN(45)
+		case n < 8:
+			s = benches[r.IntN(len(benches))]
+		default:
+			key := keys[r.IntN(len(keys))]
+			typed := []string{key}
+			if len(key) > 3 && key[0] == '9' || key == "arm" {
+				typed = strings.Split(key, "")
+			}
+			for _, k := range typed {
+				var intents []live.Intent
+				v, intents = v.press(k, s)
+				for _, in := range intents {
+					if _, move := in.(live.GoTo); move && !armed(s) {
+						t.Fatalf("event %d: a setpoint asked for while not armed", i)
+					}
+				}
+			}
+		}
+		if i%50 == 0 {
+			frames++
+			checkWidth(t, draw(s, v, w, h, Style{}).String(), w, h)
+		}
+	}
+	if frames != 2000 {
+		t.Fatalf("%d frames drawn, want 2000", frames)
+	}
+}
+
+func checkWidth(t *testing.T, screen string, w, h int) {
+	t.Helper()
+	lines := strings.Split(screen, "\n")
+	if h > 0 && len(lines) != h {
+		t.Fatalf("%d lines on a screen of %d", len(lines), h)
+	}
+	for _, l := range lines {
+		if got := ansi.StringWidth(l); got > w {
+			t.Fatalf("line of %d columns on a screen of %d: %q", got, w, l)
+		}
+	}
+	if strings.Contains(screen, "NaN") || strings.Contains(screen, "Inf") {
+		t.Fatalf("the screen shows what is not a number:\n%s", screen)
+	}
+}

@@ -1,0 +1,177 @@
+package tui
+
+import (
+	"math"
+	"strings"
+
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/model/unit"
+	"barline/tui/frame"
+)
+
+// pathHeight is the rows of the gas path.
+const pathHeight = 4
+
+// drawPath draws the light's way through the cells and the fibre, and beneath
+// it the gas line that joins them:
+//
+//	1.30 µJ ─▶┤cell A  9.003 bar├══════ core 9.001 bar ══════┤cell B  8.999 bar├─▶ 261.2 nm
+//	          │ ● good              30 cm, 22.4 °C           │ ● good
+//	 supply ──┴────── inlet ──── controller 9.006 bar ───────┴── vent ── pump
+func drawPath(a frame.Area, s *live.Snapshot) {
+	w := a.W
+	energy := show(s, reading.PulseEnergy)
+	in := energy.value
+	inInk := energy.ink
+	if !fitted(s, reading.PulseEnergy) {
+		in, inInk = "light", frame.Faint
+		if s.Bench != nil && s.Bench.Pulse.Energy > 0 {
+			in = fixed(s.Bench.Pulse.Energy.Microjoules(), 2) + " µJ"
+		}
+	}
+	out := show(s, reading.Emission)
+
+	left := 12 // columns before cell A
+	right := w - 14
+	cell := 18 // from bracket to bracket
+	ax, bx := left, right-cell
+
+	// The light.
+	a.Text(1, 0, in, inInk)
+	a.Text(left-2, 0, "─▶", frame.Gas)
+	a.Text(right, 0, "─▶", frame.Gas)
+	a.Text(right+3, 0, out.value, out.ink)
+
+	drawCell(a.Sub(ax, 0, cell, 2), "A", show(s, reading.CellAPressure))
+	drawCell(a.Sub(bx, 0, cell, 2), "B", show(s, reading.CellBPressure))
+	a.Sub(right+3, 1, w-right-3, 1).Text(0, 0, strings.Replace(out.mark, "silent ", "", 1), statusInk(out))
+
+	// The fibre between them.
+	fibre := a.Sub(ax+cell, 0, bx-ax-cell, 2)
+	for x := range fibre.W {
+		fibre.Set(x, 0, '═', frame.Gas)
+	}
+	core := "core –"
+	coreInk := frame.Faint
+	if s.CoreKnown {
+		core, coreInk = "◇ core "+pressureText(s.Core), frame.Predicted
+	}
+	fibre.Centre(0, 0, fibre.W, " "+core+" ", coreInk)
+	note := "fibre"
+	ink := frame.Faint
+	if t := show(s, reading.FibreTemperature); fitted(s, reading.FibreTemperature) {
+		note = "fibre " + t.value
+		if t.mark != "● good" {
+			note = strings.TrimSpace("fibre " + t.mark)
+			ink = t.ink
+		}
+	}
+	fibre.Centre(0, 1, fibre.W, note, ink)
+
+	drawLine(a.Sub(0, 2, w, 2), s, ax, bx)
+}
+
+func statusInk(r shown) frame.Ink {
+	if r.ink == frame.Measured {
+		return frame.Good
+	}
+	return r.ink
+}
+
+func drawCell(a frame.Area, name string, r shown) {
+	a.Set(0, 0, '┤', frame.Gas)
+	a.Set(a.W-1, 0, '├', frame.Gas)
+	a.Text(1, 0, "cell "+name, frame.Strong)
+	a.Right(a.W-1, 0, r.value, r.ink)
+	a.Set(0, 1, '│', frame.Gas)
+	a.Text(2, 1, r.mark, statusInk(r))
+}
+
+// part is one piece of the gas line, from the supply on.
+type part struct {
+	text string
+	ink  frame.Ink
+}
+
+// drawLine draws the gas line below the cells, from the supply to the pump.
+func drawLine(a frame.Area, s *live.Snapshot, ax, bx int) {
+	supply := part{"supply", frame.Faint}
+	if r := show(s, reading.SupplyPressure); fitted(s, reading.SupplyPressure) {
+		supply = part{"supply " + r.value, r.ink}
+		if !r.known {
+			supply.text = "supply " + r.brief()
+		}
+	}
+	inlet := valve(s, "inlet", reading.InletValve)
+	vent, pump := valve(s, "vent", reading.VentValve), valve(s, "pump", reading.PumpValve)
+
+	var middle part
+	for _, m := range []struct {
+		role reading.Role
+		name string
+	}{{reading.ManifoldPressure, "manifold"}, {reading.ControllerSensor, "controller"}} {
+		if !fitted(s, m.role) {
+			continue
+		}
+		r := show(s, m.role)
+		middle = part{m.name + " " + r.value, r.ink}
+		if !r.known {
+			middle.text = m.name + " " + r.brief()
+		}
+		break
+	}
+	for x := 1; x < max(bx+3, a.W-18); x++ {
+		a.Set(x, 0, '─', frame.Gas)
+	}
+	put := func(x int, p part) int {
+		if p.text == "" {
+			return x
+		}
+		return a.Text(x, 0, " "+p.text+" ", p.ink)
+	}
+	a.Set(ax, 0, '┴', frame.Gas)
+	a.Set(bx, 0, '┴', frame.Gas)
+	if a.Width(supply.text)+2 <= ax {
+		put(0, supply)
+	} else {
+		put(0, part{"supply", frame.Faint})
+	}
+	x := put(ax+3, inlet)
+	tail := a.Width(vent.text) + a.Width(pump.text) + 6
+	from := max(bx+3, 0)
+	if from+tail > a.W { // no room to the right of cell B: begin before it
+		from = a.W - tail
+	}
+	put(put(from, vent)+1, pump)
+	if mid := a.Width(middle.text); middle.text != "" && mid+2 <= bx-x {
+		put(max(x+2, (x+bx-mid-2)/2), middle)
+	}
+}
+
+// valve writes a valve and how it stands, where it reports that.
+func valve(s *live.Snapshot, name string, role reading.Role) part {
+	if !fitted(s, role) {
+		return part{name, frame.Faint}
+	}
+	r := show(s, role)
+	if !r.known {
+		return part{name + " " + r.brief(), r.ink}
+	}
+	ink := frame.Plain
+	if s.Latest[role].Value > 0.01 {
+		ink = frame.Caution
+	}
+	return part{name + " " + r.value, ink}
+}
+
+// highest returns the highest pressure that any usable gauge shows.
+func highest(s *live.Snapshot) (unit.Pascal, bool) {
+	p := math.Inf(-1)
+	for _, role := range []reading.Role{reading.CellAPressure, reading.CellBPressure, reading.ManifoldPressure, reading.ControllerSensor} {
+		if r := show(s, role); r.known {
+			p = max(p, s.Latest[role].Value)
+		}
+	}
+	return unit.Pascal(p), !math.IsInf(p, 0)
+}

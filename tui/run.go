@@ -1,0 +1,266 @@
+package tui
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"strings"
+	"time"
+	"unicode/utf8"
+
+	_ "barline/tui/background" // before bubbletea, see there
+
+	tea "github.com/charmbracelet/bubbletea"
+
+	"barline/model/bench"
+	"barline/model/live"
+	"barline/tui/frame"
+)
+
+// Source is where snapshots come from and intents go to.
+type Source interface {
+	// Snapshot returns the newest snapshot; it never blocks.
+	Snapshot() *live.Snapshot
+	// Changed says that Snapshot would return a newer one. It is coalesced:
+	// a channel of capacity one.
+	Changed() <-chan struct{}
+	// Do hands over an intent. It never blocks.
+	Do(live.Intent)
+}
+
+// Options are how the dashboard meets its terminal.
+type Options struct {
+	Style Style
+	In    io.Reader // nil is the standard input
+	Out   io.Writer // nil is the standard output
+}
+
+const (
+	// redrawEvery is the shortest time between two frames.
+	redrawEvery = 33 * time.Millisecond
+	// lateAfter is how long the bench may say nothing before the screen says
+	// that it is old.
+	lateAfter = 3 * time.Second
+)
+
+// Run shows the dashboard until the person leaves or ctx ends, both of which
+// return nil. Leaving asks for HOLD first. Whatever goes wrong in drawing,
+// the terminal is given back and HOLD is asked for. Signals are the caller's.
+func Run(ctx context.Context, src Source, o Options) error {
+	if o.Out == nil {
+		o.Out = os.Stdout
+	}
+	inner, end := context.WithCancel(ctx)
+	defer end()
+	m := &model{ctx: inner, src: src, out: o.Out, style: o.Style, s: src.Snapshot(), moved: time.Now()}
+	options := []tea.ProgramOption{
+		tea.WithContext(inner), tea.WithAltScreen(), tea.WithoutSignalHandler(), tea.WithFPS(30), tea.WithOutput(o.Out),
+	}
+	if o.In != nil {
+		options = append(options, tea.WithInput(o.In))
+	}
+	_, err := tea.NewProgram(m, options...).Run()
+	if err == nil || ctx.Err() != nil && !errors.Is(err, tea.ErrProgramPanic) {
+		return nil
+	}
+	src.Do(live.Hold{})
+	return fmt.Errorf("screen: %w", err)
+}
+
+// StyleFor returns what the terminal can show, from the [screen] section of
+// the bench file and the environment: NO_COLOR (any value but empty), TERM,
+// COLORTERM and the locale. An unknown time zone is an error.
+func StyleFor(screen bench.Screen, getenv func(string) string) (Style, error) {
+	st := Style{Light: screen.Background == "light", ASCII: screen.ASCII, Zone: time.Local}
+	if screen.TimeZone != "" && screen.TimeZone != "local" {
+		zone, err := time.LoadLocation(screen.TimeZone)
+		if err != nil {
+			return st, fmt.Errorf("time zone %q: expected \"local\" or a name such as \"Europe/Lisbon\": %w", screen.TimeZone, err)
+		}
+		st.Zone = zone
+	}
+	locale := ""
+	for _, name := range []string{"LC_ALL", "LC_CTYPE", "LANG"} { // POSIX.1-2017, section 8.2: the first that is set
+		if locale = getenv(name); locale != "" {
+			break
+		}
+	}
+	if upper := strings.ToUpper(locale); locale != "" && !strings.Contains(upper, "UTF-8") && !strings.Contains(upper, "UTF8") {
+		st.ASCII = true
+	}
+	term := getenv("TERM")
+	switch {
+	case getenv("NO_COLOR") != "" || term == "dumb":
+		st.Colours = frame.NoColours
+	case strings.Contains(term, "256color") || getenv("COLORTERM") != "":
+		st.Colours = frame.Palette
+	default:
+		st.Colours = frame.Sixteen
+	}
+	return st, nil
+}
+
+// model is the dashboard as bubbletea runs it. Frames are drawn when something
+// changed; View only hands out the last.
+type model struct {
+	ctx   context.Context
+	src   Source
+	out   io.Writer
+	style Style
+	w, h  int
+	v     view
+	s     *live.Snapshot
+	text  string
+
+	moved time.Time // wall time at which bench time was last seen to move
+	drawn time.Time
+	rung  map[string]bool // alarms that the bell rang for
+}
+
+// newer says that the bench has changed, pulse that a second has passed.
+type (
+	newer struct{}
+	pulse struct{}
+)
+
+func (m *model) Init() tea.Cmd { return tea.Batch(m.wait(), m.second()) }
+
+// wait returns the command that sleeps until the bench changes, at least
+// redrawEvery after the last frame.
+func (m *model) wait() tea.Cmd {
+	after := redrawEvery - time.Since(m.drawn)
+	return func() tea.Msg {
+		if after > 0 {
+			t := time.NewTimer(after)
+			defer t.Stop()
+			select {
+			case <-m.ctx.Done():
+				return nil
+			case <-t.C:
+			}
+		}
+		select {
+		case <-m.ctx.Done():
+			return nil
+		case <-m.src.Changed():
+			return newer{}
+		}
+	}
+}
+
+func (m *model) second() tea.Cmd {
+	return func() tea.Msg {
+		t := time.NewTimer(time.Second)
+		defer t.Stop()
+		select {
+		case <-m.ctx.Done():
+			return nil
+		case <-t.C:
+			return pulse{}
+		}
+	}
+}
+
+func (m *model) Update(msg tea.Msg) (tea.Model, tea.Cmd) {
+	var cmd tea.Cmd
+	switch msg := msg.(type) {
+	case tea.WindowSizeMsg:
+		m.w, m.h = msg.Width, msg.Height
+	case newer:
+		m.take()
+		m.draw()
+		return m, tea.Batch(m.wait(), m.bell())
+	case pulse:
+		m.take()
+		m.v.late = 0
+		if late := time.Since(m.moved); late > lateAfter {
+			m.v.late = late
+		}
+		cmd = tea.Batch(m.second(), m.bell())
+	case tea.KeyMsg:
+		cmd = m.key(msg)
+	default:
+		return m, nil
+	}
+	m.draw()
+	return m, cmd
+}
+
+// take fetches the newest snapshot and notes whether bench time moves.
+func (m *model) take() {
+	s := m.src.Snapshot()
+	if s != nil && (m.s == nil || s.Now.Mono != m.s.Now.Mono) {
+		m.moved, m.v.late = time.Now(), 0
+	}
+	m.s = s
+}
+
+func (m *model) draw() {
+	m.drawn = time.Now()
+	m.text = draw(m.s, m.v, m.w, m.h, m.style).String()
+}
+
+func (m *model) View() string { return m.text }
+
+// key answers a key message, which may carry many characters. Pasted text is
+// text for a form that is open and nothing otherwise: it presses no keys.
+func (m *model) key(msg tea.KeyMsg) tea.Cmd {
+	m.take()
+	s := m.s
+	if s == nil {
+		s = &live.Snapshot{}
+	}
+	if msg.Paste && !m.v.typing() {
+		return nil
+	}
+	for _, name := range names(msg) {
+		var intents []live.Intent
+		m.v, intents = m.v.press(name, s)
+		for _, in := range intents {
+			if _, leave := in.(quit); leave {
+				return tea.Quit
+			}
+			m.src.Do(in)
+		}
+	}
+	return nil
+}
+
+// names are the keys in a message: one a character, or the one with a name.
+func names(msg tea.KeyMsg) []string {
+	if msg.Alt || msg.Type != tea.KeyRunes && msg.Type != tea.KeySpace {
+		return []string{tea.Key{Type: msg.Type, Alt: msg.Alt, Runes: msg.Runes}.String()}
+	}
+	out := make([]string, 0, len(msg.Runes))
+	for _, r := range msg.Runes {
+		if r != utf8.RuneError {
+			out = append(out, string(r))
+		}
+	}
+	return out
+}
+
+// bell rings once for every alarm that has not been seen.
+func (m *model) bell() tea.Cmd {
+	if m.s == nil {
+		return nil
+	}
+	ring := false
+	now := make(map[string]bool, len(m.s.Alarms))
+	for _, al := range m.s.Alarms {
+		if al.Active && !al.Acked {
+			now[al.Name] = true
+			ring = ring || !m.rung[al.Name]
+		}
+	}
+	m.rung = now
+	if !ring {
+		return nil
+	}
+	return func() tea.Msg {
+		io.WriteString(m.out, "\a") // a bell that cannot ring is no reason to stop
+		return nil
+	}
+}

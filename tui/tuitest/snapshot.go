@@ -1,0 +1,288 @@
+// Package tuitest makes snapshots of bench situations for tests of screens
+// and for pictures: what the bench looks like calm, filling, in alarm and so
+// on. The numbers are plausible and nothing more: no physics is in them.
+package tuitest
+
+import (
+	"fmt"
+	"math"
+	"time"
+
+	"barline/model/bench"
+	"barline/model/emission"
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/model/trend"
+	"barline/model/unit"
+)
+
+// Start is when every situation's record began.
+var start = time.Date(2026, 12, 1, 11, 0, 0, 0, time.UTC)
+
+// Elapsed is how long every situation's record has been running.
+const Elapsed = 42*time.Minute + 5*time.Second + 120*time.Millisecond
+
+func at(mono time.Duration) reading.Stamp { return reading.Stamp{UTC: start.Add(mono), Mono: mono} }
+
+// Heron returns the demo bench as its sample file describes it.
+func Heron() *bench.Bench {
+	return &bench.Bench{
+		Bench: bench.Identity{Name: "Heron"},
+		Fibre: bench.Fibre{
+			Kind: "antiresonant", CoreDiameter: 34 * unit.Micrometre, Wall: 180 * unit.Nanometre,
+			Length: 30 * unit.Centimetre, Loss: 1,
+		},
+		Gas: bench.Gas{Species: "argon", Density: "virial", Index: "peck-fisher-1964", N2: "lehmeier-1985"},
+		Pulse: bench.Pulse{
+			Wavelength: 1030 * unit.Nanometre, Duration: 35 * unit.Femtosecond, Shape: "sech2",
+			Energy: 1.3 * unit.Microjoule, RepetitionRate: 100e3,
+		},
+		Panel: bench.Panel{CellVolume: 60e-6, Supply: 18 * unit.Bar, Ambient: 1.013 * unit.Bar},
+		Limits: bench.Limits{
+			FibreSeal: 16 * unit.Bar, Cells: 16 * unit.Bar, Windows: 16 * unit.Bar, Line: 20 * unit.Bar,
+			RiseRate: 0.2e5, FallRate: 0.2e5, PumpBelow: 1.2 * unit.Bar, Stale: 2,
+			Disagreement: 0.15 * unit.Bar, Arming: 120, Follow: 2 * unit.Bar,
+		},
+		Instrument: []bench.Instrument{
+			{Name: "gauges", Channel: []bench.Channel{
+				{Name: "cell A", Role: "cell-a-pressure"}, {Name: "cell B", Role: "cell-b-pressure"}, {Name: "fibre", Role: "fibre-temperature"},
+			}},
+			{Name: "controller", Channel: []bench.Channel{
+				{Name: "setpoint", Role: "setpoint", Write: "SOUR:PRES:LEV {value}"}, {Name: "controller", Role: "controller-pressure"},
+			}},
+			{Name: "spectrometer", Channel: []bench.Channel{
+				{Name: "emission", Role: "emission"}, {Name: "width", Role: "emission-width"}, {Name: "strength", Role: "emission-strength"},
+			}},
+		},
+		Emission: bench.Emission{Answer: "estimate", Reports: "centroid", Wavelengths: "vacuum"},
+		Screen:   bench.Screen{Background: "dark", TimeZone: "UTC"},
+	}
+}
+
+// predicted is a smooth stand-in for a curve of emission over pressure, in nm
+// over bar.
+func predicted(bar float64) float64 { return 262 + 9.4*(bar-9) - 0.35*(bar-9)*(bar-9) }
+
+// wobble is a repeatable stand-in for noise, within ±1.
+func wobble(i int) float64 {
+	return 0.6*math.Sin(float64(i)*2.399) + 0.4*math.Sin(float64(i)*0.731+1)
+}
+
+func set(s *live.Snapshot, role reading.Role, channel string, v float64, age time.Duration) {
+	s.Latest[role] = reading.Reading{Channel: channel, Role: role, Value: v, Taken: at(Elapsed - age), Status: reading.Good}
+}
+
+// Calm is a bench that stands at 9 bar and emits where it should.
+func Calm() *live.Snapshot {
+	s := &live.Snapshot{
+		Now: at(Elapsed), Bench: Heron(), Simulated: true,
+		Mode: live.Watching, Setpoint: 9 * unit.Bar, Core: 9.001 * unit.Bar, CoreKnown: true,
+		Residual: -0.8 * unit.Nanometre, ResidualKnown: true,
+		Record: live.RecordHealth{Writing: true, Written: 1042, Waiting: 3},
+		Folder: "heron-2026-12-01",
+		Recent: []string{
+			"11:41:02 reading cell A 9.003 bar", "11:41:20 reading emission 261.2 nm",
+			"11:41:31 note purge valve checked", "11:42:02 reading cell A 9.002 bar", "11:42:04 prediction 262 nm estimate",
+		},
+	}
+	for _, l := range []string{"gauges", "controller", "spectrometer"} {
+		s.Links = append(s.Links, live.LinkHealth{Instrument: l, Up: true, Since: at(time.Second)})
+	}
+	set(s, reading.CellAPressure, "cell A", 9.003e5, 80*time.Millisecond)
+	set(s, reading.CellBPressure, "cell B", 8.999e5, 90*time.Millisecond)
+	set(s, reading.FibreTemperature, "fibre", 295.55, 100*time.Millisecond)
+	set(s, reading.Setpoint, "setpoint", 9e5, 200*time.Millisecond)
+	set(s, reading.ControllerSensor, "controller", 9.006e5, 210*time.Millisecond)
+	set(s, reading.Emission, "emission", 261.2e-9, 60*time.Millisecond)
+	set(s, reading.EmissionWidth, "width", 14.2e-9, 60*time.Millisecond)
+	set(s, reading.EmissionStrength, "strength", 0.062, 60*time.Millisecond)
+	s.Prediction = Prediction(9.001)
+	s.Curve = Curve()
+	for i := range 13 {
+		up := 7 + 0.4*float64(i)
+		if up <= 9.01 {
+			s.Points = append(s.Points, live.Point{
+				At: at(time.Duration(i) * time.Minute), Pressure: unit.Pascal(up * 1e5),
+				Emission: unit.Metre((predicted(up) - 0.9 + 0.5*wobble(i)) * 1e-9), Rising: true,
+			})
+		}
+	}
+	a, e, r := trend.NewRing(), trend.NewRing(), trend.NewRing()
+	for i := 0; ; i++ {
+		t := time.Duration(i) * 100 * time.Millisecond
+		if t > Elapsed {
+			break
+		}
+		set := 9.0
+		if back := (Elapsed - t).Seconds(); back > 70 { // the step that came before
+			set = 9 - min(0.4, 0.2*(back-70))
+		}
+		lag := 0.02 * wobble(i/40)
+		a.Add(t, (set+lag*0.2+0.0015*wobble(i))*1e5)
+		e.Add(t, set*1e5)
+		if i%2 == 0 {
+			r.Add(t, (-0.8+0.25*wobble(i/60)+0.3*wobble(i))*1e-9)
+		}
+	}
+	s.PressureA, s.Expected, s.Residuals = a.View(), e.View(), r.View()
+	return s
+}
+
+// Prediction returns what the model is taken to say at a pressure in bar.
+func Prediction(bar float64) emission.Prediction {
+	p := emission.Prediction{
+		Input:  emission.Input{Pressure: unit.Pascal(bar * 1e5), Temperature: 295.55, Energy: 1.3 * unit.Microjoule},
+		Answer: emission.Estimate, Valid: true,
+		ZeroDispersionCount: 1, SolitonOrder: 4.02, FissionLength: 10.4 * unit.Centimetre,
+		Emission: unit.Metre(predicted(bar) * 1e-9), Sigma: 10 * unit.Nanometre,
+	}
+	p.ZeroDispersion[0] = 622.7 * unit.Nanometre
+	p.Verdicts[0] = emission.Verdict{Name: "soliton order", Value: 4.02, Bound: 15, OK: true, Consequence: "incoherent"}
+	p.Verdicts[1] = emission.Verdict{Name: "fission length", Value: 10.4, Bound: 30, Unit: "cm", OK: true, Consequence: "the pulse leaves before it splits"}
+	p.VerdictCount = 2
+	return p
+}
+
+// Curve returns the prediction over the working range.
+func Curve() []emission.CurvePoint {
+	var c []emission.CurvePoint
+	for bar := 6.0; bar <= 12.5; bar += 0.25 {
+		p := emission.CurvePoint{Pressure: unit.Pascal(bar * 1e5)}
+		if bar >= 6.5 {
+			p.Emission, p.Sigma = unit.Metre(predicted(bar)*1e-9), 10*unit.Nanometre
+		}
+		c = append(c, p)
+	}
+	return c
+}
+
+// Filling is a ramp under way from 9 to 11 bar, with a scan's points behind it.
+func Filling() *live.Snapshot {
+	s := Calm()
+	s.Mode, s.Why, s.ArmedUntil = live.Ramping, "ramping", Elapsed+104*time.Second
+	s.Target, s.Setpoint, s.Core = 11*unit.Bar, 9.8*unit.Bar, 9.58*unit.Bar
+	set(s, reading.CellAPressure, "cell A", 9.71e5, 80*time.Millisecond)
+	set(s, reading.CellBPressure, "cell B", 9.69e5, 90*time.Millisecond)
+	set(s, reading.ControllerSensor, "controller", 9.74e5, 210*time.Millisecond)
+	set(s, reading.Setpoint, "setpoint", 9.8e5, 200*time.Millisecond)
+	set(s, reading.Emission, "emission", 266.9e-9, 60*time.Millisecond)
+	s.Prediction = Prediction(9.58)
+	s.Residual = 0.1 * unit.Nanometre
+	a, e := trend.NewRing(), trend.NewRing()
+	for i := range int(Elapsed / (100 * time.Millisecond)) {
+		t := time.Duration(i) * 100 * time.Millisecond
+		set := 9 + 0.2*max(0, 4-(Elapsed-t).Seconds())
+		a.Add(t, (9+0.2*max(0, 3.55-(Elapsed-t).Seconds())+0.0015*wobble(i))*1e5)
+		e.Add(t, set*1e5)
+	}
+	s.PressureA, s.Expected = a.View(), e.View()
+	s.Steps = live.StepProgress{Index: 4, Count: 11}
+	s.Points = nil
+	for i := range 22 {
+		bar, rising := 7+0.4*float64(i), true
+		if i > 10 {
+			bar, rising = 11-0.4*float64(i-11), false
+		}
+		s.Points = append(s.Points, live.Point{
+			At: at(time.Duration(i) * time.Minute), Pressure: unit.Pascal(bar * 1e5),
+			Emission: unit.Metre((predicted(bar) - 0.9 + 0.5*wobble(i)) * 1e-9), Rising: rising,
+		})
+	}
+	return s
+}
+
+// Stale is a bench whose gauge of cell B fell silent while it settled.
+func Stale() *live.Snapshot {
+	s := Calm()
+	s.Latest[reading.CellBPressure].Taken = at(Elapsed - 12400*time.Millisecond)
+	s.Latest[reading.CellBPressure].Status = reading.Failure
+	s.Latest[reading.CellBPressure].Reason = "no reading for 12 s"
+	s.Mode, s.Why = live.Held, "cell B is silent"
+	s.Alarms = []live.Alarm{{
+		Name: "cell B silent", Priority: 1, Active: true, Since: at(Elapsed - 10400*time.Millisecond),
+		Cause: "no reading from cell B for 12 s", Consequence: "setpoint frozen at 9.000 bar", Action: "check the cable of the gauges",
+	}}
+	return s
+}
+
+// LostLink is a bench whose spectrometer was unplugged.
+func LostLink() *live.Snapshot {
+	s := Calm()
+	s.Links[2].Up, s.Links[2].Since, s.Links[2].Reason = false, at(Elapsed-95*time.Second), "cable pulled"
+	for _, r := range []reading.Role{reading.Emission, reading.EmissionWidth, reading.EmissionStrength} {
+		s.Latest[r].Taken = at(Elapsed - 95*time.Second)
+		s.Latest[r].Status = reading.Failure
+	}
+	s.ResidualKnown = false
+	s.Alarms = []live.Alarm{{
+		Name: "spectrometer lost", Priority: 2, Active: true, Acked: true, Since: at(Elapsed - 95*time.Second),
+		Cause: "the line to the spectrometer is gone: cable pulled", Consequence: "no residual, drift is not watched", Action: "plug it in, it is opened again by itself",
+	}}
+	r := trend.NewRing()
+	for i := range int((Elapsed - 95*time.Second) / (200 * time.Millisecond)) {
+		r.Add(time.Duration(i)*200*time.Millisecond, (-0.8+0.25*wobble(i/30)+0.3*wobble(i))*1e-9)
+	}
+	s.Residuals = r.View()
+	return s
+}
+
+// FullDisk is a bench whose records wait in memory.
+func FullDisk() *live.Snapshot {
+	s := Calm()
+	s.Mode, s.Why = live.Held, "nothing is being recorded: no space left on device"
+	s.Record = live.RecordHealth{Reason: "no space left on device", Written: 1042, Waiting: 388, Lost: 0}
+	s.Alarms = []live.Alarm{{
+		Name: "logbook not written", Priority: 1, Active: true, Since: at(Elapsed - 31*time.Second),
+		Cause: "no space left on device", Consequence: "only HOLD is taken", Action: "free space in the logbook's folder",
+	}}
+	return s
+}
+
+// NoEmission is a bench at a pressure where the model sees none, and nor does
+// the spectrometer.
+func NoEmission() *live.Snapshot {
+	s := Calm()
+	s.Core, s.Setpoint = 6.2*unit.Bar, 6.2*unit.Bar
+	set(s, reading.CellAPressure, "cell A", 6.203e5, 80*time.Millisecond)
+	set(s, reading.CellBPressure, "cell B", 6.199e5, 90*time.Millisecond)
+	s.Latest[reading.Emission].Status = reading.FunctionCheck
+	s.Latest[reading.Emission].Reason = "no lobe above the threshold"
+	s.Prediction = Prediction(6.2)
+	s.Prediction.Emission, s.Prediction.Sigma = 0, 0
+	s.Prediction.Why = "inside the margin of the resonance at 210 nm"
+	s.ResidualKnown = false
+	return s
+}
+
+// Fresh is a bench in its first moments: nothing has spoken yet.
+func Fresh() *live.Snapshot {
+	s := &live.Snapshot{
+		Now: at(200 * time.Millisecond), Bench: Heron(), Simulated: true,
+		Record: live.RecordHealth{Writing: true, Written: 2}, Folder: "heron-2026-12-01",
+	}
+	for _, l := range []string{"gauges", "controller", "spectrometer"} {
+		s.Links = append(s.Links, live.LinkHealth{Instrument: l, Reason: "not opened yet"})
+	}
+	return s
+}
+
+// Alarms is a bench with more alarms than fit a banner.
+func Alarms() *live.Snapshot {
+	s := FullDisk()
+	for i := range 8 {
+		s.Alarms = append(s.Alarms, live.Alarm{
+			Name: fmt.Sprintf("channel %d out of range", i+1), Priority: 3, Active: i%2 == 0, Acked: i%3 == 0,
+			Since: at(Elapsed - time.Duration(i)*time.Minute),
+			Cause: "value above the specified range", Consequence: "kept out of fits", Action: "check the range in the bench file",
+		})
+	}
+	return s
+}
+
+// Situations are all of them by name.
+func Situations() map[string]func() *live.Snapshot {
+	return map[string]func() *live.Snapshot{
+		"calm": Calm, "filling": Filling, "stale": Stale, "lost-link": LostLink, "full-disk": FullDisk,
+		"no-emission": NoEmission, "fresh": Fresh, "alarms": Alarms,
+	}
+}

@@ -1,0 +1,54 @@
+package tui
+
+import (
+	"time"
+
+	"barline/model/live"
+)
+
+// view is what a person has done to the screen: which page, how far back,
+// which form is open. It holds nothing about the gas.
+type view struct {
+	page    Page
+	zoom    int           // steps from the usual span, negative is closer
+	back    time.Duration // from the present to the right end of the time axes
+	frozen  *frozen
+	overlay overlay
+	text    string // what has been typed into the form
+	message string // why the last key did nothing, or what it did
+	late    time.Duration
+}
+
+// overlay is what stands over the page.
+type overlay uint8
+
+const (
+	noOverlay overlay = iota
+	helpOverlay
+	armOverlay      // the caution, before the bench is armed
+	setpointOverlay // a pressure is being typed
+	noteOverlay     // a remark is being typed
+	alarmOverlay    // the list of alarms
+	leaveOverlay    // leaving was asked for
+)
+
+// typing reports whether keys are text.
+func (v view) typing() bool {
+	return v.overlay == armOverlay || v.overlay == setpointOverlay || v.overlay == noteOverlay
+}
+
+// spans are the stretches of time that the time axes can show, usualSpan the
+// one that a view begins with.
+var spans = [...]time.Duration{
+	20 * time.Second, time.Minute, 2 * time.Minute, 5 * time.Minute, 10 * time.Minute, 30 * time.Minute,
+	time.Hour, 3 * time.Hour, 6 * time.Hour, 12 * time.Hour, 24 * time.Hour,
+	3 * 24 * time.Hour, 7 * 24 * time.Hour, 14 * 24 * time.Hour, 30 * 24 * time.Hour,
+}
+
+const usualSpan = 2
+
+// span is the stretch that the time axes show.
+func (v view) span() time.Duration { return spans[min(max(usualSpan+v.zoom, 0), len(spans)-1)] }
+
+// freeze keeps the charts of s.
+func freeze(s *live.Snapshot) *frozen { return &frozen{snapshot: s, at: s.Now.Mono} }
