@@ -188,7 +188,7 @@ func fitted(s *live.Snapshot, role reading.Role) bool {
 	}
 	for i := range s.Bench.Instrument {
 		for j := range s.Bench.Instrument[i].Channel {
-			if s.Bench.Instrument[i].Channel[j].Role == role.String() {
+			if s.Bench.Instrument[i].Channel[j].Role == role {
 				return true
 			}
 		}

@@ -56,13 +56,19 @@ func (d *dots) line(x0, y0, x1, y1 float64, ink frame.Ink) {
 	}
 	dx, dy := x1-x0, y1-y0
 	ax, ay, bx, by := x0+t0*dx, y0+t0*dy, x0+t1*dx, y0+t1*dy
-	n := int(math.Ceil(max(math.Abs(bx-ax), math.Abs(by-ay)))) + 1
+	// Where the ends are so far away that clipping lost its digits, the line
+	// cannot be placed.
+	long := math.Ceil(max(math.Abs(bx-ax), math.Abs(by-ay)))
+	if !(long <= float64(d.w+d.h+4)) {
+		return
+	}
+	n := int(long) + 1
 	for i := range n {
 		f := 0.0
 		if n > 1 {
 			f = float64(i) / float64(n-1)
 		}
-		d.set(int(math.Round(ax+f*(bx-ax))), int(math.Round(ay+f*(by-ay))), ink)
+		d.set(clampInt(math.Round(ax+f*(bx-ax))), clampInt(math.Round(ay+f*(by-ay))), ink)
 	}
 }
 

@@ -69,12 +69,12 @@ func New(a frame.Area, axes Axes) *Plot {
 		a.Right(label, y, t.Label, frame.Faint)
 		a.Set(label, y, '┤', frame.Rule)
 		for x := 0; x < p.dots.w; x += 4 {
-			p.dots.set(x, int(math.Round(p.y(t.At))), frame.Rule)
+			p.dots.set(x, clampInt(math.Round(p.y(t.At))), frame.Rule)
 		}
 	}
 	free := 0 // labels do not run into each other
 	for _, t := range axes.XTicks {
-		x := label + 1 + int(math.Round(p.x(t.At)))/2
+		x := label + 1 + clampInt(math.Round(p.x(t.At)))/2
 		from := x - a.Width(t.Label)/2
 		from = min(from, a.W-a.Width(t.Label))
 		if from < free || from < label || x < label+1 || x >= a.W {
@@ -133,7 +133,7 @@ func (p *Plot) Band(lo, hi []Point, ink frame.Ink) {
 		if math.IsNaN(x0+x1+a0+a1+b0+b1) || !(x1 > x0) {
 			continue
 		}
-		for x := int(max(math.Ceil(x0), 0)); float64(x) <= min(x1, float64(p.dots.w-1)); x++ {
+		for x := clampInt(max(math.Ceil(x0), 0)); float64(x) <= min(x1, float64(p.dots.w-1)); x++ {
 			if x%2 != 0 {
 				continue
 			}
@@ -142,7 +142,7 @@ func (p *Plot) Band(lo, hi []Point, ink frame.Ink) {
 			if !(top <= low) {
 				continue
 			}
-			for y := int(max(math.Ceil(top), 0)); float64(y) <= min(low, float64(p.dots.h-1)); y++ {
+			for y := clampInt(max(math.Ceil(top), 0)); float64(y) <= min(low, float64(p.dots.h-1)); y++ {
 				if (y+x)%4 == 0 {
 					p.dots.set(x, y, ink)
 				}
@@ -174,7 +174,7 @@ func (p *Plot) Dashes(points []Point, ink frame.Ink) {
 		if math.IsNaN(x0+x1+y0+y1) || !(x1 > x0) {
 			continue
 		}
-		for x := int(max(math.Ceil(x0), 0)); float64(x) <= min(x1, float64(p.dots.w-1)); x++ {
+		for x := clampInt(max(math.Ceil(x0), 0)); float64(x) <= min(x1, float64(p.dots.w-1)); x++ {
 			if x%6 < 4 {
 				f := (float64(x) - x0) / (x1 - x0)
 				p.dots.set(x, clampInt(math.Round(y0+f*(y1-y0))), ink)
@@ -184,7 +184,12 @@ func (p *Plot) Dashes(points []Point, ink frame.Ink) {
 }
 
 // clampInt keeps what is far outside any screen an int.
-func clampInt(v float64) int { return int(max(-1, min(v, 1e6))) }
+func clampInt(v float64) int {
+	if math.IsNaN(v) {
+		return -1
+	}
+	return int(max(-1, min(v, 1e6)))
+}
 
 // Level draws a line across at y.
 func (p *Plot) Level(y float64, ink frame.Ink) {
@@ -236,7 +241,7 @@ func (p *Plot) History(l trend.Level, scale float64, gap time.Duration, ink fram
 		if b.Count == 0 || mid < from-gap-l.Width || mid > to+gap+l.Width {
 			continue
 		}
-		x := int(math.Round(p.x(mid.Seconds())))
+		x := clampInt(math.Round(p.x(mid.Seconds())))
 		if c.n > 0 && x != c.x {
 			draw()
 		}

@@ -45,13 +45,13 @@ func Heron() *bench.Bench {
 		},
 		Instrument: []bench.Instrument{
 			{Name: "gauges", Channel: []bench.Channel{
-				{Name: "cell A", Role: "cell-a-pressure"}, {Name: "cell B", Role: "cell-b-pressure"}, {Name: "fibre", Role: "fibre-temperature"},
+				{Name: "cell A", Role: reading.CellAPressure}, {Name: "cell B", Role: reading.CellBPressure}, {Name: "fibre", Role: reading.FibreTemperature},
 			}},
 			{Name: "controller", Channel: []bench.Channel{
-				{Name: "setpoint", Role: "setpoint", Write: "SOUR:PRES:LEV {value}"}, {Name: "controller", Role: "controller-pressure"},
+				{Name: "setpoint", Role: reading.Setpoint, Write: "SOUR:PRES:LEV {value}"}, {Name: "controller", Role: reading.ControllerSensor},
 			}},
 			{Name: "spectrometer", Channel: []bench.Channel{
-				{Name: "emission", Role: "emission"}, {Name: "width", Role: "emission-width"}, {Name: "strength", Role: "emission-strength"},
+				{Name: "emission", Role: reading.Emission}, {Name: "width", Role: reading.EmissionWidth}, {Name: "strength", Role: reading.EmissionStrength},
 			}},
 		},
 		Emission: bench.Emission{Answer: "estimate", Reports: "centroid", Wavelengths: "vacuum"},
