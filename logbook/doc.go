@@ -82,9 +82,10 @@
 // but may leave gaps. A segment without a seal is one that is being written,
 // or whose writing was cut off.
 //
-// After a failed write a Book goes on in a new segment, behind the last record
-// that is surely on the disk. What the old one may hold beyond that record
-// stands again, byte for byte, in the new one; readers take it once.
+// After a failed write, or a crash, a Book goes on in a new segment, behind the
+// last record that is surely on the disk. What earlier segments hold beyond
+// after_seq does not count: it stands again in the new segment, or was never
+// acknowledged. Readers leave it out.
 //
 // # Kinds written by the logbook itself
 //

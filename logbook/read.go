@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"iter"
+	"math"
 	"slices"
 	"time"
 )
@@ -93,16 +94,55 @@ func records(d disk, f Filter) iter.Seq2[Record, error] {
 			yield(Record{}, err)
 			return
 		}
-		t := tour{disk: d, match: f.matcher(), yield: yield}
-		for i, s := range c.segments {
-			if i > 0 && c.segments[i-1].number == s.number {
-				continue // the packed copy of a segment that is still there
-			}
+		t := tour{disk: d, match: f.matcher(), yield: yield, crc: noDigits}
+		files, headings := chapters(d, c.segments)
+		for i, s := range files {
+			t.bound = bound(headings[i+1:])
 			if !t.segment(s) {
 				return
 			}
 		}
 	}
+}
+
+// chapters returns the segments that make up the logbook, and the heading of
+// each, nil where that is not sound. Where a segment is there both plain and
+// packed, the plain one counts.
+func chapters(d disk, all []segmentFile) (files []segmentFile, headings []*heading) {
+	for i, s := range all {
+		if i > 0 && all[i-1].number == s.number {
+			continue
+		}
+		files = append(files, s)
+		headings = append(headings, peekHeading(d, s))
+	}
+	return files, headings
+}
+
+// peekHeading reads the first line of a segment; nil where that is not sound.
+func peekHeading(d disk, s segmentFile) *heading {
+	r, err := openSegment(d, s)
+	if err != nil {
+		return nil
+	}
+	defer r.Close()
+	h, damage := newWalker(r, s.name).begin()
+	if damage != nil || h.Segment != s.number {
+		return nil
+	}
+	return &h
+}
+
+// bound returns up to which record a segment counts, given the headings of
+// those behind it: what the next one does not continue was never acknowledged,
+// or stands there again.
+func bound(later []*heading) uint64 {
+	for _, h := range later {
+		if h != nil {
+			return h.AfterSeq
+		}
+	}
+	return math.MaxUint64
 }
 
 // tour goes through the segments of a logbook in order.
@@ -111,7 +151,8 @@ type tour struct {
 	match matcher
 	yield func(Record, error) bool
 	last  uint64 // seq of the last record passed, wanted or not
-	begun bool
+	crc   digits // of that record
+	bound uint64 // the last record that counts in this segment
 }
 
 // segment yields what is wanted of s and reports whether to go on.
@@ -123,19 +164,18 @@ func (t *tour) segment(s segmentFile) bool {
 	defer r.Close()
 	w := newWalker(r, s.name)
 	h, damage := w.begin()
+	skip := damage != nil && damage.Kind != Heading
 	if damage == nil {
-		damage = t.link(s, h)
+		if damage = h.link(s, t.last, string(t.crc[:])); damage != nil {
+			skip = damage.Kind == Twice
+		}
 	}
 	if damage != nil {
 		if damage.After = t.last; !t.yield(Record{}, damage) {
 			return false
 		}
-		if damage.Kind != Missing {
-			return true
-		}
 	}
-	t.begun = true
-	return t.walk(w)
+	return skip || t.walk(w)
 }
 
 // walk yields what is wanted of the lines that w has still to come.
@@ -145,41 +185,41 @@ func (t *tour) walk(w *walker) bool {
 		if !more {
 			return true
 		}
+		if damage == nil && (w.sealed || l.seq <= t.last || l.seq > t.bound) {
+			continue
+		}
+		var rec Record
+		if damage == nil {
+			t.last, t.crc = l.seq, l.crc
+			if !t.match.wants(&l) {
+				continue
+			}
+			var err error
+			if rec, err = l.record(); err != nil {
+				damage = w.damage(Edited, "record %d: %v", l.seq, err)
+			}
+		}
 		if damage != nil {
 			if !t.yield(Record{}, damage) {
 				return false
 			}
-			continue
-		}
-		if w.sealed || l.seq <= t.last {
-			continue // written again after a failure
-		}
-		t.last = l.seq
-		if !t.match.wants(&l) {
-			continue
-		}
-		rec, err := l.record()
-		if err != nil {
-			damage = w.damage(Edited, "record %d: %v", l.seq, err)
-			if !t.yield(Record{}, damage) {
-				return false
-			}
-			continue
-		}
-		if !t.yield(rec, nil) {
+		} else if !t.yield(rec, nil) {
 			return false
 		}
 	}
 }
 
-// link reports where a segment does not continue what was read before.
-func (t *tour) link(s segmentFile, h heading) *Damage {
-	d := &Damage{Segment: s.name, After: t.last}
+// link reports where the segment s with heading h does not continue the
+// record last, whose crc is given.
+func (h heading) link(s segmentFile, last uint64, crc string) *Damage {
+	d := &Damage{Segment: s.name, After: min(last, h.AfterSeq)}
 	switch {
 	case h.Segment != s.number:
 		d.Kind, d.Text = Twice, fmt.Sprintf("it says that it is segment %d: its records are left out", h.Segment)
-	case h.AfterSeq > t.last:
-		d.Kind, d.Text = Missing, fmt.Sprintf("records %d to %d, in front of this segment", t.last+1, h.AfterSeq)
+	case h.AfterSeq > last:
+		d.Kind, d.Text = Missing, fmt.Sprintf("records %d to %d, in front of this segment", last+1, h.AfterSeq)
+	case h.AfterSeq < last || h.AfterCRC != crc:
+		d.Kind, d.Text = Disordered, fmt.Sprintf("it continues record %d with crc %q, before it stands record %d with %q", h.AfterSeq, h.AfterCRC, last, crc)
 	default:
 		return nil
 	}

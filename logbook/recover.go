@@ -35,6 +35,9 @@ func recoverEnd(d disk) (end, error) {
 	e := end{crc: noDigits}
 	for i := len(c.segments) - 1; i >= 0; i-- {
 		s := c.segments[i]
+		if i > 0 && c.segments[i-1].number == s.number {
+			continue // the packed copy of a segment that is still there
+		}
 		e.number = max(e.number, s.number)
 		found, err := recoverSegment(d, s, &e)
 		if err != nil {
@@ -58,6 +61,8 @@ type ending struct {
 	sealed  bool
 	rest    bool // bytes stand behind size
 	spoilt  bool // damage stands in front of size
+	// fragment: there is not even a whole first line.
+	fragment bool
 }
 
 // recoverSegment fills e from s, and closes s where a crash left it open.
@@ -73,7 +78,7 @@ func recoverSegment(d disk, s segmentFile, e *end) (found bool, err error) {
 		return false, err
 	}
 	if !found {
-		if s.packed {
+		if !g.fragment {
 			return false, nil
 		}
 		to, err := freeName(d, segmentName(s.number, tornSuffix))
@@ -101,7 +106,7 @@ func findEnd(w *walker) (found bool, g ending, err error) {
 	case damage.Kind == IO, damage.Kind == Newer:
 		return false, g, errors.New(damage.Text)
 	default:
-		g.rest = damage.Bytes > 0
+		g.rest, g.fragment = damage.Bytes > 0, damage.Kind == Torn
 	}
 	for {
 		l, damage, more := w.next()

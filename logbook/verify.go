@@ -6,8 +6,8 @@ import (
 	"encoding/hex"
 	"encoding/json"
 	"fmt"
+	"math"
 	"runtime"
-	"strings"
 	"sync"
 	"time"
 )
@@ -16,7 +16,7 @@ import (
 type SegmentReport struct {
 	Name        string
 	Records     uint64 // sound ones
-	Repeated    uint64 // of these, written again in the next segment after a failure
+	Void        uint64 // more, behind what the next segment continues: written there again, or never acknowledged
 	Bytes       int64  // decompressed
 	First, Last uint64 // seq of the first and the last sound record
 	From, To    string // t of these, RFC 3339
@@ -24,12 +24,26 @@ type SegmentReport struct {
 	Packed      bool
 	SHA256      string // computed, of what the seal covers; empty where unsealed
 
-	heading   heading
-	damage    []*Damage
-	notices   []string
-	linkCRC   string // crc of the record that the next segment continues
-	linkFound bool
-	lastCRC   string
+	heading    heading
+	sound      bool // the heading is
+	damage     []*Damage
+	notices    []string
+	lastDigits digits
+	lastCRC    string // of the last sound record, or of the one that the heading continues
+}
+
+// mostDamage bounds what one segment can fill memory with.
+const mostDamage = 1000
+
+// spoil adds damage to the report.
+func (r *SegmentReport) spoil(d *Damage) {
+	switch n := len(r.damage); {
+	case n < mostDamage:
+		r.damage = append(r.damage, d)
+	case n == mostDamage:
+		r.damage = append(r.damage, &Damage{Segment: d.Segment, Offset: d.Offset, After: d.After, Kind: d.Kind,
+			Text: fmt.Sprintf("more than %d places are damaged, the rest is not listed", mostDamage)})
+	}
 }
 
 // Report is what Verify found.
@@ -74,70 +88,44 @@ func verify(d disk, deep bool) (Report, error) {
 		report.Notices = append(report.Notices, fmt.Sprintf("%s holds a torn tail that was set aside after a crash", name))
 	}
 
-	report.Segments = make([]SegmentReport, len(c.segments))
-	headings := make([]*heading, len(c.segments))
-	for i, s := range c.segments {
-		headings[i] = peekHeading(d, s)
-	}
+	files, headings := chapters(d, c.segments)
+	report.Segments = make([]SegmentReport, len(files))
 	var wait sync.WaitGroup
 	slots := make(chan struct{}, runtime.GOMAXPROCS(0))
-	for i, s := range c.segments {
-		var next *heading
-		if i+1 < len(headings) && c.segments[i+1].number != s.number {
-			next = headings[i+1]
-		}
+	for i, s := range files {
 		slots <- struct{}{}
 		wait.Go(func() {
 			defer func() { <-slots }()
-			report.Segments[i] = verifySegment(d, s, next, deep)
+			report.Segments[i] = verifySegment(d, s, bound(headings[i+1:]), deep)
 		})
 	}
 	wait.Wait()
-	report.join(c.segments)
+	report.join(files)
+	report.twins(d, c.segments)
 	if deep {
 		report.verifySpectra(d)
 	}
 	return report, nil
 }
 
-// peekHeading reads the first line of a segment; nil where that is not sound.
-func peekHeading(d disk, s segmentFile) *heading {
-	r, err := openSegment(d, s)
-	if err != nil {
-		return nil
-	}
-	defer r.Close()
-	h, damage := newWalker(r, s.name).begin()
-	if damage != nil {
-		return nil
-	}
-	return &h
-}
-
-// verifySegment checks one segment by itself. next is the heading of the one
-// behind it, nil where there is none.
-func verifySegment(d disk, s segmentFile, next *heading, deep bool) SegmentReport {
+// verifySegment checks one segment by itself. Records above bound do not count.
+func verifySegment(d disk, s segmentFile, bound uint64, deep bool) SegmentReport {
 	r := SegmentReport{Name: s.name, Packed: s.packed}
 	src, err := openSegment(d, s)
 	if err != nil {
-		r.damage = append(r.damage, &Damage{Segment: s.name, Kind: IO, Text: err.Error()})
+		r.spoil(&Damage{Segment: s.name, Kind: IO, Text: err.Error()})
 		return r
 	}
 	defer src.Close()
 	w := newWalker(src, s.name)
 	w.sum = sha256.New()
 	h, damage := w.begin()
-	r.heading, r.lastCRC = h, h.AfterCRC
+	r.heading, r.lastCRC, r.sound = h, h.AfterCRC, damage == nil
 	if damage != nil {
-		r.damage = append(r.damage, damage)
-		if damage.Kind == Newer || damage.Kind == IO {
+		r.spoil(damage)
+		if damage.Kind != Heading {
 			return r
 		}
-	} else if h.Segment != s.number {
-		r.damage = append(r.damage, w.damage(Twice, "it says that it is segment %d", h.Segment))
-	}
-	if next != nil && next.AfterSeq == h.AfterSeq {
-		r.linkCRC, r.linkFound = h.AfterCRC, true
 	}
 	var (
 		clock [stampSize]byte // t of the record before
@@ -149,11 +137,15 @@ func verifySegment(d disk, s segmentFile, next *heading, deep bool) SegmentRepor
 			break
 		}
 		if damage != nil {
-			r.damage = append(r.damage, damage)
+			r.spoil(damage)
 			continue
 		}
 		if w.sealed {
 			r.checkSeal(w, l)
+			continue
+		}
+		if l.seq > bound {
+			r.Void++
 			continue
 		}
 		if r.Records == 0 {
@@ -163,22 +155,15 @@ func verifySegment(d disk, s segmentFile, next *heading, deep bool) SegmentRepor
 		}
 		copy(clock[:], l.t)
 		r.Records++
-		r.Last, r.lastCRC = l.seq, string(l.crc[:])
-		if next != nil && l.seq >= next.AfterSeq {
-			if l.seq > next.AfterSeq {
-				r.Repeated++
-			} else {
-				r.linkCRC, r.linkFound = string(l.crc[:]), true
-			}
-		}
+		r.Last, r.lastDigits = l.seq, l.crc
 		if deep {
 			if err := check.line(l); err != nil {
-				r.damage = append(r.damage, w.damage(Edited, "record %d (%s): %v", l.seq, l.kind, err))
+				r.spoil(w.damage(Edited, "record %d (%s): %v", l.seq, l.kind, err))
 			}
 		}
 	}
 	if r.Records > 0 {
-		r.To = string(clock[:])
+		r.To, r.lastCRC = string(clock[:]), string(r.lastDigits[:])
 	}
 	r.Bytes, r.Sealed = w.offset, w.sealed
 	return r
@@ -199,17 +184,17 @@ func (r *SegmentReport) clockBack(l line, before []byte) {
 func (r *SegmentReport) checkSeal(w *walker, l line) {
 	var s seal
 	if err := json.Unmarshal(l.data, &s); err != nil {
-		r.damage = append(r.damage, w.damage(Seal, "%v", err))
+		r.spoil(w.damage(Seal, "%v", err))
 		return
 	}
 	r.SHA256 = hex.EncodeToString(w.digest())
 	switch {
 	case s.Bytes != w.at:
-		r.damage = append(r.damage, w.damage(Seal, "%d bytes stand before it, it says %d", w.at, s.Bytes))
+		r.spoil(w.damage(Seal, "%d bytes stand before it, it says %d", w.at, s.Bytes))
 	case s.SHA256 != r.SHA256:
-		r.damage = append(r.damage, w.damage(Seal, "digest %s, computed %s", s.SHA256, r.SHA256))
-	case s.Records != r.Records && len(r.damage) == 0:
-		r.damage = append(r.damage, w.damage(Seal, "%d records stand before it, it says %d", r.Records, s.Records))
+		r.spoil(w.damage(Seal, "digest %s, computed %s", s.SHA256, r.SHA256))
+	case s.Records != r.Records+r.Void && len(r.damage) == 0:
+		r.spoil(w.damage(Seal, "%d records stand before it, it says %d", r.Records, s.Records))
 	}
 	if s.TornBytes > 0 {
 		r.notices = append(r.notices, fmt.Sprintf("%s: a crash cut it off; %d bytes behind its last whole record were set aside", r.Name, s.TornBytes))
@@ -218,68 +203,67 @@ func (r *SegmentReport) checkSeal(w *walker, l line) {
 
 // join checks each segment against the one before it and adds everything up.
 func (r *Report) join(files []segmentFile) {
-	var before *SegmentReport
+	var (
+		before *SegmentReport
+		last   uint64
+		crc    = string(noDigits[:])
+	)
 	for i := range r.Segments {
 		s := &r.Segments[i]
 		r.Bytes += s.Bytes
-		if i > 0 && files[i-1].number == files[i].number {
-			r.twin(s, &r.Segments[i-1])
-			continue
-		}
-		if s.heading.Format == formatVersion && s.heading.Segment == files[i].number {
-			if d := s.follows(before); d != nil {
+		if s.sound {
+			if d := s.heading.link(files[i], last, crc); d != nil {
+				r.Damage = append(r.Damage, d)
+				if d.Kind == Twice {
+					continue
+				}
+			} else if d := s.digestBefore(before); d != nil {
 				r.Damage = append(r.Damage, d)
 			}
-			if before != nil && s.From != "" && before.To != "" && s.From < before.To {
-				s.clockBack(line{t: []byte(s.From), seq: s.First}, []byte(before.To))
-			}
-			before = s
+		}
+		if before != nil && s.From != "" && s.From < before.To {
+			s.clockBack(line{t: []byte(s.From), seq: s.First}, []byte(before.To))
+		}
+		if s.lastCRC != "" {
+			before, last, crc = s, max(s.Last, s.heading.AfterSeq), s.lastCRC
 		}
 		r.Damage = append(r.Damage, s.damage...)
 		r.Notices = append(r.Notices, s.notices...)
-		r.Records += s.Records - s.Repeated
-		if s.Repeated > 0 {
-			r.Notices = append(r.Notices, fmt.Sprintf("%s: its last %d records stand again in the next segment, because writing failed there", s.Name, s.Repeated))
+		r.Records += s.Records
+		if s.Void > 0 {
+			r.Notices = append(r.Notices, fmt.Sprintf("%s: its last %d records do not count: writing failed there and was taken up in the next segment", s.Name, s.Void))
 		}
 	}
 }
 
-// twin judges a packed segment whose plain one is still there.
-func (r *Report) twin(packed, plain *SegmentReport) {
-	if packed.Packed && packed.SHA256 != "" && packed.SHA256 == plain.SHA256 && len(packed.damage) == 0 {
-		r.Notices = append(r.Notices, fmt.Sprintf("%s is a whole copy of %s", packed.Name, plain.Name))
-		return
-	}
-	r.Damage = append(r.Damage, &Damage{
-		Segment: packed.Name, After: plain.heading.AfterSeq, Kind: Twice,
-		Text: fmt.Sprintf("it does not hold the same as %s", plain.Name),
-	})
-}
-
-// follows reports where s does not continue the segment before it, which is
-// nil where s is the first.
-func (s *SegmentReport) follows(before *SegmentReport) *Damage {
-	h, d := s.heading, &Damage{Segment: s.Name, Kind: Missing}
-	last, crc := uint64(0), string(noDigits[:])
-	if before != nil {
-		last, crc = max(before.Last, before.heading.AfterSeq), before.lastCRC
-		if h.AfterSeq < last {
-			crc = before.linkCRC
-		}
-	}
-	d.After = min(last, h.AfterSeq)
-	switch {
-	case h.AfterSeq > last:
-		d.Text = fmt.Sprintf("records %d to %d, in front of this segment", last+1, h.AfterSeq)
-	case crc != h.AfterCRC:
-		d.Kind = Disordered
-		d.Text = fmt.Sprintf("it continues record %d with crc %q, that has %q", h.AfterSeq, h.AfterCRC, crc)
-	case before != nil && h.PreviousSHA256 != nil && before.SHA256 == "":
-		d.Kind, d.Text = Seal, fmt.Sprintf("%s was sealed and is not any more", before.Name)
-	case before != nil && h.PreviousSHA256 != nil && !strings.EqualFold(*h.PreviousSHA256, before.SHA256):
-		d.Kind, d.Text = Seal, fmt.Sprintf("%s had digest %s, now %s", before.Name, *h.PreviousSHA256, before.SHA256)
-	default:
+// digestBefore reports where s quotes another digest of the segment before it.
+func (s *SegmentReport) digestBefore(before *SegmentReport) *Damage {
+	said := s.heading.PreviousSHA256
+	if before == nil || said == nil || *said == before.SHA256 {
 		return nil
 	}
+	d := &Damage{Segment: s.Name, After: s.heading.AfterSeq, Kind: Seal}
+	if d.Text = fmt.Sprintf("%s had digest %s, now %s", before.Name, *said, before.SHA256); before.SHA256 == "" {
+		d.Text = fmt.Sprintf("%s was sealed and is not any more", before.Name)
+	}
 	return d
+}
+
+// twins judges packed segments whose plain ones are still there.
+func (r *Report) twins(d disk, all []segmentFile) {
+	for i := 1; i < len(all); i++ {
+		packed, plain := all[i], all[i-1]
+		if packed.number != plain.number {
+			continue
+		}
+		a, b := verifySegment(d, packed, math.MaxUint64, false), verifySegment(d, plain, math.MaxUint64, false)
+		if a.SHA256 != "" && a.SHA256 == b.SHA256 && len(a.damage) == 0 {
+			r.Notices = append(r.Notices, fmt.Sprintf("%s is a whole copy of %s", packed.name, plain.name))
+			continue
+		}
+		r.Damage = append(r.Damage, &Damage{
+			Segment: packed.name, After: b.heading.AfterSeq, Kind: Twice,
+			Text: fmt.Sprintf("it does not hold the same as %s", plain.name),
+		})
+	}
 }

@@ -22,6 +22,7 @@ type walker struct {
 	from, to int // unread bytes of buf
 	looked   int // of these, known to hold no LF
 	hashed   int // beginning of what is not yet in sum
+	full     bool // the last read filled buf
 	eof      bool
 	err      error // from src, other than io.EOF
 
@@ -36,10 +37,15 @@ type walker struct {
 	head    reading.Stamp // of the segment line
 }
 
-const walkBuffer = 256 << 10
+// A walker's buffer begins small, because many only look at the first line,
+// and doubles up to walkMost while reads fill it.
+const (
+	walkLeast = 8 << 10
+	walkMost  = 256 << 10
+)
 
 func newWalker(src io.Reader, name string) *walker {
-	return &walker{src: src, name: name, buf: make([]byte, walkBuffer)}
+	return &walker{src: src, name: name, buf: make([]byte, walkLeast)}
 }
 
 // begin reads the segment line and starts the chain from it.
@@ -106,7 +112,7 @@ func (w *walker) next() (l line, d *Damage, more bool) {
 	if !ok {
 		w.known = false
 		w.skipped++
-		return l, w.damage(Unreadable, "not a record: %s", quote(b[:len(b)-1])), true
+		return l, w.unreadable(b), true
 	}
 	known, prev := w.known, w.prev
 	w.prev, w.known = l.crc, true
@@ -133,6 +139,32 @@ func (w *walker) next() (l line, d *Damage, more bool) {
 	}
 	w.seq, w.skipped = l.seq, 0
 	return l, nil, true
+}
+
+// unreadable reports the line b, and the ones behind it that are no records
+// either, as one damage.
+func (w *walker) unreadable(b []byte) *Damage {
+	d := w.damage(Unreadable, "not a record: %s", quote(b[:len(b)-1]))
+	lines := 1
+	for {
+		b, whole, long := w.readLine()
+		sound := false
+		if whole && !long {
+			_, sound = parseLine(b[:len(b)-1])
+		}
+		if !whole || sound { // leave it for the next call
+			w.from -= len(b)
+			w.offset -= int64(len(b))
+			break
+		}
+		lines++
+		w.skipped++
+		d.Bytes += w.size
+	}
+	if lines > 1 {
+		d.Text = fmt.Sprintf("%d lines are no records, the first: %s", lines, d.Text[len("not a record: "):])
+	}
+	return d
 }
 
 // mismatch says why a line does not chain from the one before.
@@ -188,11 +220,14 @@ func (w *walker) fill() {
 	copy(w.buf, w.buf[w.from:w.to])
 	w.to -= w.from
 	w.from, w.hashed = 0, 0
-	if w.to == len(w.buf) {
-		w.buf = append(w.buf, make([]byte, len(w.buf))...)
+	if w.to == len(w.buf) || w.full && len(w.buf) < walkMost {
+		bigger := make([]byte, 2*len(w.buf))
+		copy(bigger, w.buf[:w.to])
+		w.buf = bigger
 	}
 	n, err := w.src.Read(w.buf[w.to:])
 	w.to += n
+	w.full = w.to == len(w.buf)
 	if errors.Is(err, io.EOF) {
 		w.eof = true
 	} else if err != nil {

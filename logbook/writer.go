@@ -140,7 +140,8 @@ func (w *writer) fits(c *chunk) bool {
 	return sameDay(o.first.UTC, c.first.UTC) && (o.records == 0 || o.size+int64(len(c.lines)) <= w.options.SegmentBytes)
 }
 
-// start opens the next segment and writes its first line.
+// start opens the next segment and writes its first line. It syncs that by
+// itself: records in a file whose first line was lost would be hard to place.
 func (w *writer) start(at reading.Stamp) error {
 	for number := w.end.number + 1; ; number++ {
 		s := segmentFile{number: number, name: segmentName(number, plainSuffix)}
@@ -160,22 +161,26 @@ func (w *writer) start(at reading.Stamp) error {
 	}
 	b := appendHead(nil, &w.open.stamper, w.end.seq, at, kindSegment)
 	b, _ = appendTail(h.append(b), 0, noDigits)
-	return w.open.append(b)
-}
-
-// sync makes the open segment durable, its name too where it is new.
-func (w *writer) sync() error {
-	o := w.open
-	if err := o.f.Sync(); err != nil {
+	if err := w.open.append(b); err != nil {
 		return err
 	}
-	if o.durable == 0 {
-		if err := w.disk.syncDir(""); err != nil {
-			return err
-		}
-		w.end.number, w.end.sha256 = o.number, nil
+	if err := w.sync(); err != nil {
+		return err
 	}
-	o.durable = o.size
+	if err := w.disk.syncDir(""); err != nil {
+		w.open.durable = 0
+		return err
+	}
+	w.end.number, w.end.sha256 = w.open.number, nil
+	return nil
+}
+
+// sync makes the open segment durable.
+func (w *writer) sync() error {
+	if err := w.open.f.Sync(); err != nil {
+		return err
+	}
+	w.open.durable = w.open.size
 	return nil
 }
 
