@@ -23,7 +23,7 @@ type memDisk struct {
 	locked  bool
 
 	ops    int
-	cutAt  int                  // operation that the power fails in; 0 is never
+	cutAt  int                   // operation that the power fails in; 0 is never
 	fault  func(op string) error // asked before each operation; may be nil
 	random *rand.Rand
 	gone   bool // the folder vanished

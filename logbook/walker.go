@@ -19,9 +19,9 @@ type walker struct {
 	sum  hash.Hash // of everything before the seal; nil where not wanted
 
 	buf      []byte
-	from, to int // unread bytes of buf
-	looked   int // of these, known to hold no LF
-	hashed   int // beginning of what is not yet in sum
+	from, to int  // unread bytes of buf
+	looked   int  // of these, known to hold no LF
+	hashed   int  // beginning of what is not yet in sum
 	full     bool // the last read filled buf
 	eof      bool
 	err      error // from src, other than io.EOF
