@@ -7,8 +7,8 @@ import (
 	"barline/model/unit"
 )
 
-// Grid is the sampling of the field: Points instants Step apart, the middle
-// one at time zero, and the bins of angular frequency from Lo up to but not
+// Grid is the sampling of the field: Points instants Step apart, Origin at time
+// zero, and the bins of angular frequency from Lo up to but not
 // including Hi that are kept. Bin k is at 2πk/(Points·Step).
 type Grid struct {
 	Points int
@@ -54,6 +54,10 @@ func (g Grid) Bins() int { return g.Hi - g.Lo }
 
 // Window returns the length of the time window.
 func (g Grid) Window() unit.Second { return unit.Second(g.Points) * g.Step }
+
+// Origin returns the instant at which the pulse is launched. It stands early in
+// the window, since emission and shed light lag behind the pump.
+func (g Grid) Origin() int { return g.Points * 5 / 16 }
 
 // Frequencies returns the angular frequencies of the kept bins in rad/s,
 // ascending.

@@ -29,7 +29,7 @@ func Launch(g Grid, m Medium, p Pulse) ([]complex128, error) {
 	}
 	field, all := make([]float64, g.Points), make([]complex128, g.Points/2+1)
 	for j := range field {
-		t := float64(j-g.Points/2) * float64(g.Step)
+		t := float64(j-g.Origin()) * float64(g.Step)
 		field[j] = p.Shape.envelope(t/float64(p.Duration)) * math.Cos(omega0*t)
 	}
 	plan.Forward(all, field)

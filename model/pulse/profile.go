@@ -48,6 +48,15 @@ func (p *Profile) At(z float64) float64 {
 	return p.line(i, z)
 }
 
+// Most returns the largest ratio.
+func (p *Profile) Most() float64 {
+	most := 0.0
+	for _, r := range p.ratio {
+		most = max(most, r)
+	}
+	return most
+}
+
 // Integrals returns ∫ ratio dz and ∫ ratio² dz over [from, to].
 func (p *Profile) Integrals(from, to float64) (first, squared float64) {
 	if p == nil {

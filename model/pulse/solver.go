@@ -35,7 +35,9 @@ type Solver struct {
 	evaluations int
 	steps       int
 	rejected    int
+	first       float64 // J at the input
 	absorbed    float64 // J given to the plasma so far
+	attenuated  float64 // J lost by attenuation so far
 	workAt      [stages]float64
 }
 
@@ -109,6 +111,7 @@ func NewSolver(g Grid, m Medium, spectrum []complex128, tolerance float64) (*Sol
 	}
 	s.slopeAt(0, s.start, 0)
 	s.step = s.firstStep()
+	s.first = s.Energy()
 	return s, nil
 }
 
@@ -300,6 +303,9 @@ func (s *Solver) accept(h float64) {
 	for k, b := range stageFrom[stages-1] {
 		s.absorbed += h * b * s.workAt[k]
 	}
+	if s.medium.Loss != nil {
+		s.attenuated += h / 2 * (s.attenuation(s.trial) + s.attenuation(s.start))
+	}
 	s.workAt[0] = s.workAt[stages-1]
 	s.z += h
 	s.steps++
@@ -326,7 +332,31 @@ func (m *Medium) energy(g Grid, spectrum []complex128) float64 {
 	for i, v := range spectrum {
 		sum += norm2(v) * m.beta(i, 1) / g.Omega(g.Lo+i)
 	}
-	return sum * 2 * vacuumPermit * lightSpeed * lightSpeed * m.Area * float64(g.Window())
+	return sum * m.joules(g)
+}
+
+// joules returns the factor of (β/ω)|E|² of one bin in J.
+func (m *Medium) joules(g Grid) float64 {
+	return 2 * vacuumPermit * lightSpeed * lightSpeed * m.Area * float64(g.Window())
+}
+
+// attenuation returns the energy in J that the spectrum loses per metre.
+func (s *Solver) attenuation(spectrum []complex128) float64 {
+	sum := 0.0
+	for i, v := range spectrum {
+		sum += norm2(v) * s.medium.Loss[i] * s.medium.beta(i, 1) / s.grid.Omega(s.grid.Lo+i)
+	}
+	return sum * s.medium.joules(s.grid)
+}
+
+// energies returns the energy in J per rad/s of the kept bins.
+func (s *Solver) energies() []float64 {
+	dst := make([]float64, len(s.start))
+	scale := s.medium.joules(s.grid) / s.grid.Spacing()
+	for i, v := range s.start {
+		dst[i] = norm2(v) * s.medium.beta(i, 1) / s.grid.Omega(s.grid.Lo+i) * scale
+	}
+	return dst
 }
 
 func norm2(z complex128) float64 { return real(z)*real(z) + imag(z)*imag(z) }

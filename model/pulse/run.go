@@ -1,0 +1,242 @@
+package pulse
+
+import (
+	"context"
+	"fmt"
+	"math"
+
+	"barline/model/fibre"
+	"barline/model/pulse/fourier"
+	"barline/model/spectrum"
+	"barline/model/unit"
+)
+
+// Options says how a setup is propagated. The zero value is the default.
+type Options struct {
+	// Tolerance is the relative error allowed in one step; 0 means
+	// DefaultTolerance.
+	Tolerance float64
+	// Samples is the number of places along the fibre at which Evolution is
+	// kept.
+	Samples int
+	// Grid is the sampling; its zero value means that it is chosen from the
+	// setup.
+	Grid Grid
+	// Progress is called after every step with the share of the fibre that is
+	// done; nil means nobody asks.
+	Progress func(share float64)
+}
+
+// DefaultTolerance gives the centroid of the emission within 0.3 nm of the
+// converged one.
+const DefaultTolerance = 2e-4
+
+// Result is what became of the light.
+type Result struct {
+	Setup     Setup
+	Grid      Grid
+	Tolerance float64
+
+	Output spectrum.Density // energy in J per rad/s
+	Power  []float64        // W of the envelope over the instants of Grid
+	Lobes  []spectrum.Lobe  // the emission first; none where nothing is emitted
+
+	EnergyIn, EnergyOut unit.Joule
+	Ultraviolet         unit.Joule // at wavelengths below 400 nm
+	Compression         unit.Metre // where the envelope peaks highest
+	CompressedPower     unit.Watt  // there
+	PulsePower          unit.Watt  // of the envelope at the input
+	Ionised             float64    // largest share of atoms along the fibre
+
+	Balance    float64 // energy that went missing, over the input
+	TimeEdge   float64 // largest share of energy at the ends of time
+	BandEdge   float64 // largest share of energy at the edges of the band
+	Steps      int
+	Evaluated  int
+	Evolution  []Sample
+	Reliable   bool
+	Reasons    []string // why it is not to be trusted, one line each
+	Notes      []string // what to know beside it
+	peakField  float64  // V/m, largest along the fibre
+	tableField float64  // V/m, top of the ionisation table
+	region     fibre.Region
+}
+
+// Sample is the light at one place along the fibre.
+type Sample struct {
+	Position unit.Metre
+	Energy   []float64 // J per rad/s in the kept bins
+	Peak     unit.Watt // of the envelope
+	Ionised  float64   // share of atoms behind the pulse
+}
+
+// Emission returns the emission and whether there is one.
+func (r *Result) Emission() (spectrum.Lobe, bool) {
+	if len(r.Lobes) == 0 {
+		return spectrum.Lobe{}, false
+	}
+	return r.Lobes[0], true
+}
+
+// Run propagates the setup to the end of its fibre. It returns the context's
+// error as soon as that ends.
+func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
+	g := o.Grid
+	if g == (Grid{}) {
+		var err error
+		if g, err = s.Grid(); err != nil {
+			return nil, err
+		}
+	}
+	m, region, err := s.Medium(g)
+	if err != nil {
+		return nil, err
+	}
+	in, err := Launch(g, m, s.Pulse)
+	if err != nil {
+		return nil, err
+	}
+	if o.Tolerance == 0 {
+		o.Tolerance = DefaultTolerance
+	}
+	solver, err := NewSolver(g, m, in, o.Tolerance)
+	if err != nil {
+		return nil, err
+	}
+	w, err := newWatch(solver, o.Samples)
+	if err != nil {
+		return nil, err
+	}
+	r := &Result{Setup: s, Grid: g, Tolerance: o.Tolerance, EnergyIn: unit.Joule(solver.Energy()), region: region}
+	r.PulsePower = unit.Watt(w.envelope())
+	w.look()
+	for done := false; !done; {
+		if err := ctx.Err(); err != nil {
+			return nil, err
+		}
+		if done, err = solver.Advance(); err != nil {
+			return nil, fmt.Errorf("propagation: %w", err)
+		}
+		w.look()
+		if o.Progress != nil {
+			o.Progress(solver.Position() / m.Length)
+		}
+	}
+	return r, r.finish(solver, w)
+}
+
+// finish fills in what is known at the end of the fibre.
+func (r *Result) finish(s *Solver, w *watch) error {
+	w.envelope()
+	r.Power = w.power
+	r.Output = spectrum.Density{First: r.Grid.Omega(r.Grid.Lo), Spacing: r.Grid.Spacing(), Energy: s.energies()}
+	lobes, err := spectrum.Lobes(r.Output, r.Setup.Pulse.Wavelength)
+	if err != nil {
+		return fmt.Errorf("propagation: %w", err)
+	}
+	r.Lobes = lobes
+	r.EnergyOut = unit.Joule(s.Energy())
+	for i, e := range r.Output.Energy {
+		if r.Output.Wavelength(i) < 400*unit.Nanometre {
+			r.Ultraviolet += unit.Joule(e * r.Output.Spacing)
+		}
+	}
+	r.Compression, r.CompressedPower = unit.Metre(w.bestAt), unit.Watt(w.best)
+	r.Ionised = w.ionised
+	r.TimeEdge, r.BandEdge = w.timeEdge, w.bandEdge
+	r.Balance = (float64(r.EnergyIn-r.EnergyOut) - s.absorbed - s.attenuated) / float64(r.EnergyIn)
+	r.Steps, r.Evaluated = s.steps, s.evaluations
+	r.Evolution = w.samples
+	r.peakField = w.peak
+	if s.medium.Rate != nil {
+		r.tableField = s.medium.Rate.high
+	}
+	r.judge()
+	return nil
+}
+
+// watch follows a solver along the fibre.
+type watch struct {
+	solver *Solver
+	plan   *fourier.Complex
+	signal []complex128
+	power  []float64
+
+	crest, best, bestAt float64
+	ionised, peak       float64
+	timeEdge, bandEdge  float64
+	total               int // samples wanted
+	samples             []Sample
+}
+
+func newWatch(s *Solver, samples int) (*watch, error) {
+	n := s.grid.Points
+	plan, err := fourier.NewComplex(n)
+	if err != nil {
+		return nil, err
+	}
+	return &watch{solver: s, plan: plan, signal: make([]complex128, n), power: make([]float64, n),
+		total: samples, samples: make([]Sample, 0, samples)}, nil
+}
+
+// envelope computes the power of the envelope and returns its maximum in W.
+func (w *watch) envelope() float64 {
+	s := w.solver
+	clear(w.signal)
+	copy(w.signal[s.grid.Lo:], s.start)
+	w.plan.Inverse(w.signal)
+	peak := 0.0
+	scale := 2 * vacuumPermit * lightSpeed * s.medium.Area
+	for i, a := range w.signal {
+		w.power[i] = scale * norm2(a)
+		peak = max(peak, w.power[i])
+	}
+	return peak
+}
+
+// nearCrest is the share of the highest crest so far from which on the
+// envelope, which costs a transform, may be a new highest one.
+const nearCrest = 0.7
+
+// look takes note of the light where the solver stands.
+func (w *watch) look() {
+	s := w.solver
+	w.ionised = max(w.ionised, s.pol.ionised)
+	w.peak = max(w.peak, s.pol.peak)
+	w.edges()
+	power := 0.0
+	if crest := s.pol.peak * s.pol.peak; crest > nearCrest*w.crest {
+		w.crest = max(w.crest, crest)
+		power = w.envelope()
+		if power > w.best {
+			w.best, w.bestAt = power, s.z
+		}
+	}
+	if n := len(w.samples); n < w.total && s.z >= s.medium.Length*float64(n)/float64(max(w.total-1, 1))*(1-1e-12) {
+		if power == 0 {
+			power = w.envelope()
+		}
+		w.samples = append(w.samples, Sample{unit.Metre(s.z), s.energies(), unit.Watt(power), s.pol.ionised})
+	}
+}
+
+// edges follows the share of energy at the ends of time and of the band.
+func (w *watch) edges() {
+	s := w.solver
+	field := s.pol.field
+	ends := int(timeEdge * float64(len(field)))
+	sum := 0.0
+	for i := range ends {
+		a, b := field[i], field[len(field)-1-i]
+		sum += a*a + b*b
+	}
+	sum *= vacuumPermit * lightSpeed * s.medium.Area * float64(s.grid.Step)
+	w.timeEdge = max(w.timeEdge, sum/s.first)
+	bins := int(math.Ceil(bandEdge * float64(len(s.start))))
+	sum = 0
+	for i := range bins {
+		sum += norm2(s.start[i]) + norm2(s.start[len(s.start)-1-i])
+	}
+	sum *= 2 * vacuumPermit * lightSpeed * s.medium.Area * float64(s.grid.Window())
+	w.bandEdge = max(w.bandEdge, sum/s.first)
+}
