@@ -37,7 +37,12 @@ const (
 // Render draws page of s as h lines of at most w columns, parted by "\n". It
 // is pure. A nil snapshot is drawn as a bench of which nothing is known.
 func Render(s *live.Snapshot, page Page, w, h int, style Style) string {
-	return draw(s, view{page: page}, w, h, style).String()
+	return Draw(s, page, w, h, style).String()
+}
+
+// Draw is Render as cells, for pictures of a screen.
+func Draw(s *live.Snapshot, page Page, w, h int, style Style) *frame.Frame {
+	return draw(s, view{page: page}, w, h, style)
 }
 
 // draw draws what v shows of s.

@@ -1,0 +1,6 @@
+// Package figure turns a screen into a picture.
+//
+// Braille dots and line drawing become shapes, so that the picture looks the
+// same whatever fonts its viewer has; words stay text that can be searched and
+// read aloud.
+package figure
