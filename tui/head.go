@@ -128,10 +128,10 @@ func drawMode(a frame.Area, s *live.Snapshot) {
 			why = "a setpoint would be taken"
 		}
 	}
-	if s.Steps.Count > 0 {
-		step := fmt.Sprintf("step %d of %d", s.Steps.Index+1, s.Steps.Count)
-		if s.Steps.Dwelling {
-			step += ", " + spanText(s.Steps.DwellLeft) + " more"
+	if s.Program.Count > 0 {
+		step := fmt.Sprintf("step %d of %d", s.Program.Index+1, s.Program.Count)
+		if s.Program.Dwelling {
+			step += ", " + spanText(s.Program.DwellLeft) + " more"
 		}
 		why = join(step, why)
 	}

@@ -110,3 +110,12 @@ func (l Limits) Freeze(last unit.Pascal) Setpoint {
 	}
 	return Setpoint{min(last, l.Lowest().Max), true}
 }
+
+// AtMost returns the limits with neither rate above rate; a rate of zero
+// changes nothing.
+func (l Limits) AtMost(rate unit.PascalPerSecond) Limits {
+	if rate > 0 {
+		l.RiseRate, l.FallRate = min(l.RiseRate, rate), min(l.FallRate, rate)
+	}
+	return l
+}

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"time"
 
+	"barline/model/alarm"
 	"barline/model/bench"
 	"barline/model/emission"
 	"barline/model/flow"
@@ -33,6 +34,8 @@ type Core struct {
 	heartbeat    time.Duration
 	wavelength   unit.Metre // deadband of recorded predictions
 	controlled   bool       // an instrument takes setpoints
+	watched      []watched
+	lineAlarms   []string // names, in the order of the links
 }
 
 const (
@@ -92,11 +95,17 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 		}
 		s.Links[s.LinkCount] = LinkHealth{Instrument: in.Name, Reason: "not opened yet"}
 		s.LinkCount++
+		c.lineAlarms = append(c.lineAlarms, lineAlarm(in.Name))
 		for _, ch := range in.Channel {
 			if ch.Role == reading.Setpoint && ch.Write != "" {
 				c.controlled = true
 			}
 		}
+	}
+	definitions, channels := alarmsOf(b)
+	c.watched = channels
+	if s.alarms, err = alarm.New(definitions, reading.Stamp{}); err != nil {
+		return nil, State{}, err
 	}
 	return c, s, nil
 }
@@ -145,6 +154,7 @@ func (c *Core) read(s *State, r reading.Reading, fx []Effect) []Effect {
 	if r.Role == reading.Emission {
 		c.compare(s, r)
 	}
+	c.sample(s, r)
 	return fx
 }
 
@@ -156,10 +166,6 @@ func (c *Core) compare(s *State, r reading.Reading) {
 	}
 	s.Residual = unit.Metre(r.Value) - s.Prediction.Emission
 	s.ResidualAt = r.Taken.Mono
-	if s.Steps.Active() && s.Steps.SettledAt != 0 {
-		s.Steps.sum += float64(s.Residual)
-		s.Steps.taken++
-	}
 }
 
 func (c *Core) tick(s *State, fx []Effect) []Effect {
@@ -171,12 +177,26 @@ func (c *Core) tick(s *State, fx []Effect) []Effect {
 	}
 	c.coreGas(s)
 	fx = c.predict(s, fx)
-	if s.Mode == Ramping || s.Mode == Settling {
+	fx = c.act(s, fx)
+	return c.watch(s, fx)
+}
+
+// act moves gas, or stops moving it.
+func (c *Core) act(s *State, fx []Effect) []Effect {
+	switch {
+	case s.commanding():
 		if why := c.unsafe(s); why != "" {
 			return c.hold(s, why, fx)
 		}
-		fx = c.ramp(s, fx)
-		fx = c.advance(s, fx)
+		return c.proceed(s, fx)
+	case s.Mode == Steady:
+		// The controller keeps the pressure by its own sensor: a lost gauge
+		// is an alarm here, and no reason to stop somebody's light.
+		if p, ok := c.pressure(s); ok {
+			if why := c.overRating(p); why != "" {
+				return c.hold(s, why, fx)
+			}
+		}
 	}
 	return fx
 }
@@ -196,7 +216,7 @@ func (c *Core) link(s *State, e LinkChanged, fx []Effect) []Effect {
 
 func (c *Core) record(s *State, h RecordHealth, fx []Effect) []Effect {
 	s.Record = h
-	if !h.Writing && (s.Mode == Ramping || s.Mode == Settling) {
+	if !h.Writing && s.commanding() {
 		return c.hold(s, "nothing is being recorded: "+h.Reason, fx)
 	}
 	return fx

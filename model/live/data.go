@@ -19,7 +19,8 @@ type (
 	IntentData struct {
 		Intent   string    `json:"intent"`
 		TargetPa []float64 `json:"target_Pa,omitempty"`
-		DwellS   float64   `json:"dwell_s,omitempty"`
+		Program  string    `json:"program,omitempty"`
+		Phases   int       `json:"phases,omitempty"`
 		Alarm    string    `json:"alarm,omitempty"`
 		Refused  string    `json:"refused,omitempty"`
 	}
@@ -41,6 +42,14 @@ type (
 		Link       string `json:"link"`
 		Reason     string `json:"reason,omitempty"`
 	}
+	// AlarmData is a change of an alarm's state.
+	AlarmData struct {
+		Name     string `json:"name"`
+		State    string `json:"state"`
+		Was      string `json:"was"`
+		Priority int    `json:"priority"`
+		Cause    string `json:"cause"`
+	}
 	// NoteData is a remark.
 	NoteData struct {
 		Text string `json:"text"`
@@ -61,7 +70,9 @@ type (
 	}
 	// StepData is one row of a run of pressure steps.
 	StepData struct {
-		Step         int      `json:"step"`
+		Program      string   `json:"program"`
+		Step         int      `json:"step"` // phase of the program, from 1
+		Label        string   `json:"label"`
 		SetPa        float64  `json:"set_Pa"`
 		MeasuredPa   float64  `json:"measured_Pa"`
 		CorePa       float64  `json:"core_Pa"`
@@ -69,8 +80,9 @@ type (
 		EnergyJ      float64  `json:"energy_J"`
 		PredictedM   *float64 `json:"predicted_m"`
 		MeasuredM    *float64 `json:"measured_m"`
-		ResidualM    *float64 `json:"residual_m"` // mean over the dwell
-		Samples      int      `json:"samples"`
+		ResidualM    *float64 `json:"residual_m"`
+		ScatterM     float64  `json:"scatter_m"` // standard deviation of one measured emission
+		Samples      int      `json:"samples"`   // of the measured emission
 		SigmaM       float64  `json:"sigma_m"`
 		Status       string   `json:"status"`
 	}
@@ -101,23 +113,32 @@ func (c *Core) predictionData(s *State) PredictionData {
 	return d
 }
 
+// stepData is the row of the phase under way: means over its dwell, or the
+// newest values where nothing was sampled.
 func (c *Core) stepData(s *State) StepData {
 	a, e := s.Reading(reading.CellAPressure, c.stale), s.Reading(reading.Emission, c.stale)
+	r := &s.run
 	d := StepData{
-		Step: s.Steps.Index + 1, SetPa: float64(s.Target), MeasuredPa: a.Value, CorePa: float64(s.Core),
+		Program: r.program.Name, Step: r.index + 1, Label: r.phase().Label,
+		SetPa: float64(s.Setpoint), MeasuredPa: a.Value, CorePa: float64(s.Core),
 		TemperatureK: float64(s.Prediction.Input.Temperature), EnergyJ: float64(s.Prediction.Input.Energy),
-		Samples: s.Steps.taken, SigmaM: float64(s.Prediction.Sigma), Status: e.Status.String(),
+		Samples: r.emission.n, ScatterM: r.emission.deviation(),
+		SigmaM: float64(s.Prediction.Sigma), Status: e.Status.String(),
+	}
+	if r.pressure.n > 0 {
+		d.MeasuredPa = r.pressure.value
 	}
 	if s.Prediction.Emission != 0 {
 		p := float64(s.Prediction.Emission)
 		d.PredictedM = &p
 	}
-	if e.Status.Usable() {
-		d.MeasuredM = &e.Value
+	if r.emission.n > 0 {
+		m := r.emission.value
+		d.MeasuredM = &m
 	}
-	if s.Steps.taken > 0 {
-		mean := s.Steps.sum / float64(s.Steps.taken)
-		d.ResidualM = &mean
+	if r.residual.n > 0 {
+		m := r.residual.value
+		d.ResidualM = &m
 	}
 	return d
 }

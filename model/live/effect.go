@@ -34,10 +34,18 @@ type SendHold struct {
 // Bell asks for the terminal's bell.
 type Bell struct{}
 
+// Call asks for the people who are elsewhere.
+type Call struct {
+	Alarm  string
+	Cause  string
+	Action string
+}
+
 func (Record) effect()       {}
 func (SendSetpoint) effect() {}
 func (SendHold) effect()     {}
 func (Bell) effect()         {}
+func (Call) effect()         {}
 
 // Kind is what a record is about, spelled as in the logbook.
 type Kind string

@@ -1,6 +1,8 @@
 package live
 
 import (
+	"time"
+
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -81,6 +83,14 @@ type (
 	Note struct{ Text string }
 	// Acknowledge says that a person has seen the alarm with this name.
 	Acknowledge struct{ Alarm string }
+	// Reset ends a latched alarm whose condition is gone.
+	Reset struct{ Alarm string }
+	// Shelve puts an alarm aside for a stated time; Unshelve brings it back.
+	Shelve struct {
+		Alarm string
+		For   time.Duration
+	}
+	Unshelve struct{ Alarm string }
 )
 
 func (Hold) intent()        {}
@@ -89,3 +99,6 @@ func (Disarm) intent()      {}
 func (GoTo) intent()        {}
 func (Note) intent()        {}
 func (Acknowledge) intent() {}
+func (Reset) intent()       {}
+func (Shelve) intent()      {}
+func (Unshelve) intent()    {}

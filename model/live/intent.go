@@ -2,13 +2,14 @@ package live
 
 import (
 	"fmt"
+	"strings"
 )
 
 // asked carries out an intent or refuses it; either is recorded.
 func (c *Core) asked(s *State, in Intent, fx []Effect) []Effect {
 	s.Notice = ""
 	if _, ok := in.(Hold); ok {
-		fx = c.hold(s, "asked for", fx)
+		fx = c.hold(s, heldByPerson, fx)
 		return append(fx, Record{At: s.Now, Kind: KindIntent, Data: IntentData{Intent: "hold"}})
 	}
 	data, err := c.carryOut(s, in, &fx)
@@ -55,31 +56,41 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 			return data, err
 		}
 		record()
-		s.Steps = Steps{}
 		s.ArmedUntil = s.Now.Mono + c.arming
-		*fx = c.begin(s, in.Target, *fx)
+		*fx = c.start(s, &Program{
+			Name:   "go to " + in.Target.String(),
+			Phases: []Phase{{Label: "going to " + in.Target.String(), Target: in.Target}},
+		}, *fx)
 	case Run:
-		data.Intent, data.DwellS = "run steps", in.Dwell.Seconds()
-		for _, p := range in.Targets {
-			data.TargetPa = append(data.TargetPa, float64(p))
+		data.Intent = "run"
+		if err := in.Program.Check(c.limits); err != nil {
+			return data, err
 		}
+		data.Program, data.Phases = in.Program.Name, len(in.Program.Phases)
 		if err := c.movable(s); err != nil {
 			return data, err
 		}
-		if err := in.check(c.limits); err != nil {
-			return data, err
+		record()
+		s.ArmedUntil = s.Now.Mono + c.arming
+		*fx = c.start(s, in.Program, *fx)
+	case Pause, Resume, Skip, Stop:
+		data.Intent = strings.ToLower(strings.TrimPrefix(fmt.Sprintf("%T", in), "live."))
+		if !s.run.active() {
+			return data, fmt.Errorf("no program is under way")
 		}
 		record()
-		s.Steps = Steps{Count: len(in.Targets), Dwell: in.Dwell}
-		copy(s.Steps.Targets[:], in.Targets)
-		s.ArmedUntil = s.Now.Mono + c.arming
-		*fx = c.begin(s, in.Targets[0], *fx)
+		var err error
+		*fx, err = c.change(s, in, *fx)
+		return data, err
 	case Note:
 		data.Intent = "note"
 		*fx = append(*fx, Record{At: s.Now, Kind: KindNote, Data: NoteData{Text: in.Text}, Sync: true})
-	case Acknowledge:
-		data.Intent, data.Alarm = "acknowledge", in.Alarm
+	case Acknowledge, Reset, Shelve, Unshelve:
+		data.Intent, data.Alarm = aboutAlarm(in)
 		record()
+		var err error
+		*fx, err = c.person(s, in, *fx)
+		return data, err
 	default:
 		panic(fmt.Sprintf("live: unknown intent %T", in))
 	}
@@ -95,4 +106,18 @@ func (c *Core) movable(s *State) error {
 		return fmt.Errorf("%s", why)
 	}
 	return nil
+}
+
+func aboutAlarm(in Intent) (verb, name string) {
+	switch in := in.(type) {
+	case Acknowledge:
+		return "acknowledge", in.Alarm
+	case Reset:
+		return "reset", in.Alarm
+	case Shelve:
+		return "shelve for " + in.For.String(), in.Alarm
+	case Unshelve:
+		return "unshelve", in.Alarm
+	}
+	return "", ""
 }

@@ -22,11 +22,15 @@ const (
 	Ramping
 	// Settling: the setpoint stands at the target, the gas follows.
 	Settling
+	// Isolated: inlet, pump and vent are shut and the pressure is watched.
+	Isolated
+	// Steady: nothing is under way, the controller keeps the setpoint.
+	Steady
 	// Held: HOLD was asked for or came by itself. Nothing resumes by itself.
 	Held
 )
 
-var modeText = [...]string{"watching", "armed", "ramping", "settling", "HOLD"}
+var modeText = [...]string{"watching", "armed", "ramping", "settling", "isolated", "steady", "HOLD"}
 
 // String returns the mode as the screen and the logbook write it.
 func (m Mode) String() string { return modeText[m] }
@@ -43,8 +47,10 @@ type LinkHealth struct {
 type Alarm struct {
 	Name        string // such as "cell A stale"
 	Priority    int    // 1 is the most urgent
-	Active      bool
+	State       string // as ISA-18.2 names it
+	Active      bool   // the condition holds now
 	Acked       bool
+	Hidden      bool // shelved, suppressed by design or out of service
 	Since       reading.Stamp
 	Cause       string // what happened
 	Consequence string // what the bench does now
@@ -76,7 +82,7 @@ type Snapshot struct {
 	Profile    []unit.Pascal // along the core from cell A to cell B; empty where not known
 	Lag        unit.Pascal   // of the core behind the cells, positive where it has yet to rise
 	SettleIn   time.Duration // until the core has caught up, if the cells stay as they are
-	Steps      StepProgress
+	Program    Progress
 
 	Latest     [reading.RoleCount]reading.Reading
 	Prediction emission.Prediction

@@ -3,6 +3,7 @@ package live
 import (
 	"time"
 
+	"barline/model/alarm"
 	"barline/model/emission"
 	"barline/model/flow"
 	"barline/model/limit"
@@ -27,7 +28,6 @@ type State struct {
 
 	Target   unit.Pascal
 	Setpoint unit.Pascal // last commanded
-	Steps    Steps
 
 	Core       unit.Pascal // in the core, where the pulse is shortest
 	CoreKnown  bool
@@ -43,6 +43,11 @@ type State struct {
 	LinkCount int
 	Record    RecordHealth
 
+	alarms       alarm.List
+	heldByItself bool // HOLD came without being asked for
+	refused      bool // an instrument did not take the last command
+
+	run       progress
 	flow      flow.State
 	flowAt    time.Duration
 	lagAt     time.Duration

@@ -79,6 +79,10 @@ func (st *story) step(e Event) []string {
 		switch f := f.(type) {
 		case Record:
 			synced = synced || f.Sync
+			if d, ok := f.Data.(AlarmData); ok {
+				text = append(text, "alarm "+d.Name+" "+d.State)
+				continue
+			}
 			text = append(text, "record "+string(f.Kind))
 		case SendSetpoint:
 			p, ok := f.Setpoint.Pressure()
@@ -99,6 +103,8 @@ func (st *story) step(e Event) []string {
 			text = append(text, "hold "+p.String())
 		case Bell:
 			text = append(text, "bell")
+		case Call:
+			text = append(text, "call")
 		}
 	}
 	return text
@@ -110,6 +116,12 @@ func (st *story) reading(channel string, role reading.Role, v float64, status re
 		r.Reason = "no answer"
 	}
 	return Read{r}
+}
+
+// tick feeds one tick, and before it what the controller reads back.
+func (st *story) tick() []string {
+	st.step(st.reading("setpoint", reading.Setpoint, float64(st.wire), reading.Good))
+	return st.step(Tick{At: st.stamp()})
 }
 
 // run ticks every 50 ms until the given time.
@@ -124,7 +136,7 @@ func (st *story) run(until time.Duration) {
 			st.step(st.reading("cell A", reading.CellAPressure, float64(st.wire), reading.Good))
 			st.step(st.reading("cell B", reading.CellBPressure, float64(st.wire), reading.Good))
 		}
-		st.step(Tick{At: st.stamp()})
+		st.tick()
 	}
 }
 
@@ -170,7 +182,7 @@ func (st *story) event(words string) ([]string, error) {
 	ask := func(in Intent) []string { return st.step(Asked{At: st.stamp(), Intent: in}) }
 	switch {
 	case words == "tick":
-		return st.step(Tick{At: st.stamp()}), nil
+		return st.tick(), nil
 	case words == "arm":
 		return ask(Arm{}), nil
 	case words == "disarm":
@@ -189,16 +201,28 @@ func (st *story) event(words string) ([]string, error) {
 		p, err := unit.ParsePressure(strings.TrimPrefix(words, "go to "))
 		return ask(GoTo{Target: p}), err
 	case fields[0] == "steps":
-		var run Run
-		run.Dwell = 2 * time.Second
+		p := &Program{Name: "steps"}
 		for _, w := range fields[1:] {
-			p, err := unit.ParsePressure(w)
+			target, err := unit.ParsePressure(w)
 			if err != nil {
 				return nil, err
 			}
-			run.Targets = append(run.Targets, p)
+			p.Phases = append(p.Phases, Phase{Label: "step to " + w, Target: target, Dwell: 2 * time.Second, Row: true})
 		}
-		return ask(run), nil
+		return ask(Run{Program: p}), nil
+	case words == "isolate":
+		p := &Program{Name: "leak test", Phases: []Phase{{Label: "valves shut", Action: Isolate, Dwell: 10 * time.Second, Row: true, MaxRise: 10}}}
+		return ask(Run{Program: p}), nil
+	case fields[0] == "acknowledge":
+		return ask(Acknowledge{Alarm: strings.TrimPrefix(words, "acknowledge ")}), nil
+	case words == "pause":
+		return ask(Pause{}), nil
+	case words == "resume":
+		return ask(Resume{}), nil
+	case words == "skip":
+		return ask(Skip{}), nil
+	case words == "stop":
+		return ask(Stop{}), nil
 	case fields[0] == "answer":
 		e := Answered{At: st.stamp(), Command: st.state.command, Err: strings.Join(fields[1:], " ")}
 		return st.step(e), nil
@@ -265,6 +289,9 @@ func TestStories(t *testing.T) {
 			}
 			st := &story{t: t, core: core, state: state}
 			st.step(RecordChanged{At: st.stamp(), Health: RecordHealth{Writing: true}})
+			for _, in := range []string{"gauges", "controller"} {
+				st.step(LinkChanged{At: st.stamp(), Instrument: in, Up: true})
+			}
 			lines := bufio.NewScanner(f)
 			for n := 1; lines.Scan(); n++ {
 				line := strings.TrimSpace(lines.Text())

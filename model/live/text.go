@@ -13,11 +13,11 @@ import (
 func (d IntentData) String() string {
 	var b strings.Builder
 	b.WriteString(d.Intent)
-	switch n := len(d.TargetPa); {
-	case n == 1:
-		fmt.Fprintf(&b, " %v", unit.Pascal(d.TargetPa[0]))
-	case n > 1:
-		fmt.Fprintf(&b, ": %d pressures, %v to %v, dwell %g s", n, unit.Pascal(d.TargetPa[0]), unit.Pascal(d.TargetPa[n-1]), d.DwellS)
+	for _, p := range d.TargetPa {
+		fmt.Fprintf(&b, " %v", unit.Pascal(p))
+	}
+	if d.Program != "" {
+		fmt.Fprintf(&b, " %q", d.Program)
 	}
 	if d.Alarm != "" {
 		fmt.Fprintf(&b, " %q", d.Alarm)
@@ -52,6 +52,9 @@ func (d LinkData) String() string {
 	return fmt.Sprintf("%s is %s", d.Instrument, d.Link)
 }
 
+// String returns the change of the alarm in words.
+func (d AlarmData) String() string { return fmt.Sprintf("%s: %s (%s)", d.Name, d.State, d.Cause) }
+
 // String returns the remark.
 func (d NoteData) String() string { return d.Text }
 
@@ -69,7 +72,7 @@ func (d PredictionData) String() string {
 
 // String returns the row in words.
 func (d StepData) String() string {
-	text := fmt.Sprintf("%d: set %v, measured %v", d.Step, unit.Pascal(d.SetPa), unit.Pascal(d.MeasuredPa))
+	text := fmt.Sprintf("%s %d (%s): set %v, measured %v", d.Program, d.Step, d.Label, unit.Pascal(d.SetPa), unit.Pascal(d.MeasuredPa))
 	if d.PredictedM != nil {
 		text += fmt.Sprintf(", predicted %.2f nm", *d.PredictedM*1e9)
 	}

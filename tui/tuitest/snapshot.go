@@ -176,7 +176,7 @@ func Filling() *live.Snapshot {
 		e.Add(t, set*1e5)
 	}
 	s.PressureA, s.Expected = a.View(), e.View()
-	s.Steps = live.StepProgress{Index: 4, Count: 11}
+	s.Program = live.Progress{Name: "scan", Label: "step to 9 bar", Index: 4, Count: 11}
 	s.Points = nil
 	for i := range 22 {
 		bar, rising := 7+0.4*float64(i), true

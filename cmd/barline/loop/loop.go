@@ -54,6 +54,7 @@ type Options struct {
 	Simulated bool
 	ReadOnly  bool
 	Bell      func()
+	Call      func(live.Call) // must not block
 }
 
 const (
@@ -206,6 +207,10 @@ func (l *Loop) handle(e live.Event) {
 		case live.Bell:
 			if l.opt.Bell != nil {
 				l.opt.Bell()
+			}
+		case live.Call:
+			if l.opt.Call != nil {
+				l.opt.Call(f)
 			}
 		default:
 			panic(fmt.Sprintf("loop: unknown effect %T", f))

@@ -5,7 +5,7 @@ at 0.0s  run until 0.5s
 at 0.5s  arm
 at 0.6s  steps 1.5bar 2bar 2.5bar
 at 0.6s  run until 6s
-at 6.0s  hold                    -> hold 1.5 bar, record command, bell, record intent
+at 6.0s  hold                    -> hold 1.5 bar, record command, record intent
 expect mode HOLD because asked for
 at 6.0s  run until 30s
 expect mode HOLD

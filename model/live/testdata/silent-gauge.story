@@ -11,5 +11,5 @@ at 0.5s  cell B 2.40 bar         ->
 at 1.0s  tick                    -> record prediction
 at 1.3s  tick                    -> record command, setpoint 2.785 bar
 at 1.4s  answer
-at 2.6s  tick                    -> hold 2.785 bar, record command, bell
+at 2.6s  tick                    -> hold 2.785 bar, record command, alarm held by itself unacknowledged, bell, call
 expect mode HOLD because stale

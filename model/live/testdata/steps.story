@@ -7,6 +7,6 @@ at 0.6s  steps 1.5bar 2bar 1.5bar
 at 0.6s  run until 7s
 expect setpoint 1.5 bar
 at 7.0s  run until 60s
-expect mode settling because settled
+expect mode steady because settled
 expect setpoint 1.5 bar
-expect notice run of steps complete
+expect notice steps: complete

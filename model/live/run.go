@@ -1,0 +1,198 @@
+package live
+
+import (
+	"fmt"
+	"math"
+
+	"barline/model/reading"
+	"barline/model/unit"
+)
+
+// start begins a program at its first phase.
+func (c *Core) start(s *State, p *Program, fx []Effect) []Effect {
+	s.run = progress{program: p}
+	return c.beginPhase(s, fx)
+}
+
+// beginPhase starts the phase that the program stands at.
+func (c *Core) beginPhase(s *State, fx []Effect) []Effect {
+	ph := s.run.phase()
+	isolated := s.Mode == Isolated
+	s.run = progress{program: s.run.program, index: s.run.index, began: s.Now.Mono}
+	p, ok := c.pressure(s)
+	if !ok {
+		return c.hold(s, "no usable pressure reading", fx)
+	}
+	if ph.Action == Isolate {
+		s.run.from, s.run.settledAt = p, s.Now.Mono
+		return c.isolate(s, fx)
+	}
+	from := p
+	if s.commanding() && !isolated || s.Mode == Steady {
+		from = s.Setpoint // under way: no leap back to a gas that lags
+	}
+	s.Setpoint = min(max(from, 0), c.limits.Lowest().Max)
+	s.Target, s.Mode, s.Why, s.nearSince = ph.Target, Ramping, ph.Label, 0
+	return c.rampOn(s, fx)
+}
+
+// isolate shuts inlet, pump and vent. The pressure is then only watched.
+func (c *Core) isolate(s *State, fx []Effect) []Effect {
+	p, _ := c.pressure(s)
+	sp := c.limits.Freeze(p)
+	frozen, _ := sp.Pressure()
+	s.command++
+	s.Mode, s.Why, s.Target, s.Setpoint = Isolated, s.run.phase().Label, 0, frozen
+	s.awaiting, s.awaitFrom, s.nearSince = s.command, s.Now.Mono, 0
+	return append(fx,
+		SendHold{Command: s.command, Setpoint: sp},
+		Record{At: s.Now, Kind: KindCommand, Data: CommandData{Command: s.command, Hold: true, SetpointPa: float64(frozen), Why: "isolating"}, Sync: true})
+}
+
+// rampOn moves the setpoint on by at most one second's worth of the allowed
+// rate.
+func (c *Core) rampOn(s *State, fx []Effect) []Effect {
+	ph := s.run.phase()
+	sp, err := c.limits.AtMost(ph.Rate).Step(s.Setpoint, s.Target, rampEvery)
+	if err != nil {
+		return c.hold(s, err.Error(), fx)
+	}
+	fx = c.send(s, sp, fx)
+	if s.Setpoint == s.Target {
+		s.Mode, s.run.began = Settling, s.Now.Mono
+	}
+	return fx
+}
+
+// proceed carries the program on by one tick.
+func (c *Core) proceed(s *State, fx []Effect) []Effect {
+	r := &s.run
+	if !r.active() || r.paused {
+		return fx
+	}
+	ph := r.phase()
+	switch s.Mode {
+	case Ramping:
+		if s.Now.Mono-s.rampedAt < rampEvery || s.awaiting != 0 {
+			return fx
+		}
+		return c.rampOn(s, fx)
+	case Settling:
+		if r.settledAt == 0 {
+			return c.settle(s, fx)
+		}
+	case Isolated:
+		p, _ := c.pressure(s)
+		elapsed := s.Now.Mono - r.settledAt
+		if ph.MaxRise > 0 && elapsed >= ph.Dwell {
+			if rise := unit.PascalPerSecond(float64(p-r.from) / elapsed.Seconds()); rise > ph.MaxRise {
+				fx = c.row(s, fx)
+				return c.hold(s, fmt.Sprintf("%s: pressure rose by %.3g Pa/s, allowed %.3g Pa/s", ph.Label, float64(rise), float64(ph.MaxRise)), fx)
+			}
+		}
+	default:
+		return fx
+	}
+	if s.Now.Mono-r.settledAt < ph.Dwell {
+		return fx
+	}
+	fx = c.row(s, fx)
+	return c.next(s, fx)
+}
+
+// settle watches a gas that is on its way to the target: settled is what has
+// been near to it for a while, in the cell and in the core.
+func (c *Core) settle(s *State, fx []Effect) []Effect {
+	ph := s.run.phase()
+	a := s.Reading(reading.CellAPressure, c.stale)
+	near := math.Abs(a.Value-float64(s.Target)) <= float64(ph.within()) && math.Abs(float64(s.Lag)) <= float64(ph.within())
+	switch {
+	case !near:
+		s.nearSince = 0
+		if s.Now.Mono-s.run.began > ph.patience() {
+			return c.hold(s, fmt.Sprintf("the gas did not settle at %v within %v", s.Target, ph.patience()), fx)
+		}
+	case s.nearSince == 0:
+		s.nearSince = s.Now.Mono
+	case s.Now.Mono-s.nearSince >= settledFor:
+		s.run.settledAt = s.Now.Mono
+	}
+	return fx
+}
+
+// next goes on to the next phase or ends the program.
+func (c *Core) next(s *State, fx []Effect) []Effect {
+	if s.run.index+1 < len(s.run.program.Phases) {
+		s.run.index++
+		return c.beginPhase(s, fx)
+	}
+	name := s.run.program.Name
+	s.run = progress{}
+	s.Notice = name + ": complete"
+	if s.Mode == Isolated {
+		s.Mode, s.Why = Held, "valves shut at the end of "+name
+	} else {
+		s.Mode, s.Why = Steady, "settled"
+	}
+	return append(fx, Record{At: s.Now, Kind: KindIntent, Data: IntentData{Intent: "complete", Program: name}})
+}
+
+// row writes what was measured during the dwell of a phase that asks for it.
+func (c *Core) row(s *State, fx []Effect) []Effect {
+	if !s.run.phase().Row {
+		return fx
+	}
+	return append(fx, Record{At: s.Now, Kind: KindStep, Data: c.stepData(s), Sync: true})
+}
+
+// sample adds a reading to the row that is being measured.
+func (c *Core) sample(s *State, r reading.Reading) {
+	if !s.run.active() || s.run.settledAt == 0 || s.run.paused || !r.Status.Usable() {
+		return
+	}
+	switch r.Role {
+	case reading.CellAPressure:
+		s.run.pressure.add(r.Value)
+	case reading.Emission:
+		s.run.emission.add(r.Value)
+		if s.ResidualAt == r.Taken.Mono {
+			s.run.residual.add(float64(s.Residual))
+		}
+	}
+}
+
+// change carries out Pause, Resume, Skip and Stop.
+func (c *Core) change(s *State, in Intent, fx []Effect) ([]Effect, error) {
+	r := &s.run
+	if !r.active() {
+		return fx, fmt.Errorf("no program is under way")
+	}
+	switch in.(type) {
+	case Pause:
+		if r.paused {
+			return fx, fmt.Errorf("the program is paused already")
+		}
+		r.paused, r.pausedAt, s.Why = true, s.Now.Mono, "paused"
+	case Resume:
+		if !r.paused {
+			return fx, fmt.Errorf("the program is not paused")
+		}
+		away := s.Now.Mono - r.pausedAt
+		r.began += away
+		if r.settledAt != 0 {
+			r.settledAt += away
+		}
+		r.paused, s.Why = false, r.phase().Label
+	case Skip:
+		return c.next(s, fx), nil
+	case Stop:
+		name := r.program.Name
+		*r = progress{}
+		if s.Mode == Isolated {
+			s.Mode, s.Why = Held, "valves shut; "+name+" stopped"
+		} else {
+			s.Target, s.Mode, s.Why = s.Setpoint, Steady, name+" stopped"
+		}
+	}
+	return fx, nil
+}
