@@ -76,53 +76,55 @@ func (u *pure) set(s *Species, d Density, t float64) error {
 	return nil
 }
 
-// molar returns the molar density in mol/m³ at the pressure p in Pa.
-func (u *pure) molar(p float64) (float64, error) {
+// molar returns the molar density in mol/m³ at the pressure p > 0 in Pa, and
+// (∂p/∂ρ)_T there.
+func (u *pure) molar(p float64) (rho, slope float64, err error) {
 	switch {
-	case !(p >= 0):
-		return 0, errNegative
-	case p == 0:
-		return 0, nil
+	case !(p > 0):
+		return 0, 0, errNegative
 	case p >= u.boiling:
-		return 0, errCondensed
+		return 0, 0, errCondensed
 	case p > highestPressure:
-		return 0, errPressure
+		return 0, 0, errPressure
 	}
 	switch u.density {
 	case Ideal:
-		return p / (idealR * u.fluid.t), nil
+		rt := idealR * u.fluid.t
+		return p / rt, rt, nil
 	case Virial:
 		if p > highestVirial || p > highestVirialOfXenon && u.species.id == xenon {
-			return 0, errPressure
+			return 0, 0, errPressure
 		}
-		return u.virial(p), nil
+		rho, slope = u.virial(p)
+		return rho, slope, nil
 	}
 	return u.reference(p)
 }
 
 // virial solves ρRT(1 + Bρ + Cρ²) = p by Newton steps from the ideal gas, from
 // where the root on the gas branch is reached from one side.
-func (u *pure) virial(p float64) float64 {
+func (u *pure) virial(p float64) (rho, slope float64) {
 	rt := idealR * u.fluid.t
-	rho := p / rt
+	rho = p / rt
 	for range 20 {
 		f := rho*(1+rho*(u.b+rho*u.c)) - p/rt
-		step := f / (1 + rho*(2*u.b+3*rho*u.c))
+		slope = 1 + rho*(2*u.b+3*rho*u.c)
+		step := f / slope
 		rho -= step
 		if math.Abs(step) <= densityRelativeTarget*rho {
 			break
 		}
 	}
-	return rho
+	return rho, slope * rt
 }
 
 // reference solves the equation of state for the gas branch: Newton steps from
 // the virial density, kept inside a bracket that the gas branch never leaves.
 // Started from the ideal gas and left alone, Newton falls through to the liquid
 // near the critical point of xenon.
-func (u *pure) reference(p float64) (float64, error) {
+func (u *pure) reference(p float64) (density, stiffness float64, err error) {
 	lo, hi := 0.0, u.limit
-	rho := u.virial(p)
+	rho, _ := u.virial(p)
 	if !(rho > 0 && rho < hi) {
 		rho = 0.5 * hi
 	}
@@ -130,7 +132,7 @@ func (u *pure) reference(p float64) (float64, error) {
 		have, slope := u.fluid.pressure(rho)
 		miss := have - p
 		if slope > 0 && math.Abs(miss) <= densityRelativeTarget*rho*slope {
-			return rho - miss/slope, nil
+			return rho - miss/slope, slope, nil
 		}
 		if miss > 0 {
 			hi = rho
@@ -142,11 +144,11 @@ func (u *pure) reference(p float64) (float64, error) {
 			next = 0.5 * (lo + hi)
 		}
 		if hi-lo <= densityRelativeTarget*hi {
-			return next, nil // where the isotherm is flat
+			return next, slope, nil // where the isotherm is flat
 		}
 		rho = next
 	}
-	return 0, errSolve
+	return 0, 0, errSolve
 }
 
 // spinodal returns the density at which ∂p/∂ρ of the gas branch vanishes, a

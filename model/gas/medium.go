@@ -105,7 +105,8 @@ func referenceDensity(s *Species, d Density, t, p float64) (float64, error) {
 	if err := u.set(s, d, t); err != nil {
 		return 0, err
 	}
-	return u.molar(p)
+	rho, _, err := u.molar(p)
+	return rho, err
 }
 
 func (m *Medium) has(id speciesID) bool {

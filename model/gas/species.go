@@ -20,6 +20,10 @@ type Species struct {
 	// that leaves: 0 for helium and nitrogen, 1 for the p shells.
 	OrbitalMomentum int
 
+	// ThermalConductivity is that of the dilute gas at 293 K in W/(m K).
+	// Source: VDI Heat Atlas, 2nd ed. (2010).
+	ThermalConductivity float64
+
 	id       speciesID
 	equation *equation
 	critical critical
@@ -51,13 +55,13 @@ type critical struct {
 // Molecular Thermodynamics of Fluid-Phase Equilibria, 3rd ed. (1999), table 5-6
 // (from memory).
 var speciesTable = [...]Species{
-	{Name: "helium", Symbol: "He", MolarMass: 4.002602e-3, IonisationEnergy: 24.58738901, OrbitalMomentum: 0, id: helium, equation: &heliumEquation, critical: critical{10.47, 37.5e-6}},
-	{Name: "neon", Symbol: "Ne", MolarMass: 20.179e-3, IonisationEnergy: 21.564541, OrbitalMomentum: 1, id: neon, equation: &neonEquation, critical: critical{45.5, 40.3e-6}},
-	{Name: "argon", Symbol: "Ar", MolarMass: 39.948e-3, IonisationEnergy: 15.7596119, OrbitalMomentum: 1, id: argon, equation: &argonEquation, critical: critical{150.687, 74.59e-6}},
-	{Name: "krypton", Symbol: "Kr", MolarMass: 83.798e-3, IonisationEnergy: 13.9996055, OrbitalMomentum: 1, id: krypton, equation: &kryptonEquation, critical: critical{209.48, 92.17e-6}},
-	{Name: "xenon", Symbol: "Xe", MolarMass: 131.293e-3, IonisationEnergy: 12.1298437, OrbitalMomentum: 1, id: xenon, equation: &xenonEquation, critical: critical{289.733, 119.05e-6}, boundary: xenonBoiling[:]},
-	{Name: "nitrogen", Symbol: "N2", MolarMass: 28.01348e-3, IonisationEnergy: 15.581, OrbitalMomentum: 0, id: nitrogen, equation: &nitrogenEquation, critical: critical{126.192, 89.41e-6}},
-	{Name: "air", Symbol: "air", MolarMass: 28.9586e-3, IonisationEnergy: 12.0697, OrbitalMomentum: 1, id: air, equation: &airEquation, critical: critical{132.531, 92.0e-6}},
+	{Name: "helium", Symbol: "He", MolarMass: 4.002602e-3, IonisationEnergy: 24.58738901, OrbitalMomentum: 0, ThermalConductivity: 0.1519, id: helium, equation: &heliumEquation, critical: critical{10.47, 37.5e-6}},
+	{Name: "neon", Symbol: "Ne", MolarMass: 20.179e-3, IonisationEnergy: 21.564541, OrbitalMomentum: 1, ThermalConductivity: 0.0483, id: neon, equation: &neonEquation, critical: critical{45.5, 40.3e-6}},
+	{Name: "argon", Symbol: "Ar", MolarMass: 39.948e-3, IonisationEnergy: 15.7596119, OrbitalMomentum: 1, ThermalConductivity: 0.0174, id: argon, equation: &argonEquation, critical: critical{150.687, 74.59e-6}},
+	{Name: "krypton", Symbol: "Kr", MolarMass: 83.798e-3, IonisationEnergy: 13.9996055, OrbitalMomentum: 1, ThermalConductivity: 0.00943, id: krypton, equation: &kryptonEquation, critical: critical{209.48, 92.17e-6}},
+	{Name: "xenon", Symbol: "Xe", MolarMass: 131.293e-3, IonisationEnergy: 12.1298437, OrbitalMomentum: 1, ThermalConductivity: 0.00554, id: xenon, equation: &xenonEquation, critical: critical{289.733, 119.05e-6}, boundary: xenonBoiling[:]},
+	{Name: "nitrogen", Symbol: "N2", MolarMass: 28.01348e-3, IonisationEnergy: 15.581, OrbitalMomentum: 0, ThermalConductivity: 0.0251, id: nitrogen, equation: &nitrogenEquation, critical: critical{126.192, 89.41e-6}},
+	{Name: "air", Symbol: "air", MolarMass: 28.9586e-3, IonisationEnergy: 12.0697, OrbitalMomentum: 1, ThermalConductivity: 0.0258, id: air, equation: &airEquation, critical: critical{132.531, 92.0e-6}},
 }
 
 // Named returns the species of that name or chemical symbol.

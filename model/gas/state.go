@@ -73,11 +73,12 @@ func (iso *Isotherm) State(p unit.Pascal, airShare unit.Fraction) (State, error)
 	if !(p > 0) {
 		if p == 0 {
 			s.fractions[m.main] = 1
+			s.DensitySlope = 1 / (idealR * float64(iso.t))
 			return s, nil
 		}
 		return State{}, errNegative
 	}
-	volume := 0.0 // m³/mol
+	volume, shrink := 0.0, 0.0 // m³/mol, and its fall with pressure
 	for i := range m.count {
 		x := m.parts[i].fraction * (1 - float64(airShare))
 		if m.parts[i].species.id == air {
@@ -92,11 +93,12 @@ func (iso *Isotherm) State(p unit.Pascal, airShare unit.Fraction) (State, error)
 				return State{}, err
 			}
 		}
-		rho, err := iso.parts[i].molar(float64(p))
+		rho, stiffness, err := iso.parts[i].molar(float64(p))
 		if err != nil {
 			return State{}, err
 		}
 		volume += x / rho
+		shrink += x / (rho * rho * stiffness)
 		if m.density == Ideal {
 			continue
 		}
@@ -105,6 +107,7 @@ func (iso *Isotherm) State(p unit.Pascal, airShare unit.Fraction) (State, error)
 		}
 	}
 	s.Density = unit.MolePerCubicMetre(1 / volume)
+	s.DensitySlope = shrink / (volume * volume)
 	return s, nil
 }
 
@@ -128,6 +131,8 @@ type State struct {
 	Pressure    unit.Pascal
 	Temperature unit.Kelvin
 	Density     unit.MolePerCubicMetre
+	// DensitySlope is (∂ρ/∂p)_T in mol/(m³ Pa).
+	DensitySlope float64
 
 	medium    *Medium
 	fractions [mostComponents + 1]float64
@@ -137,6 +142,10 @@ const c = 299792458.0 // m/s, exact (SI Brochure, 9th ed., 2019)
 
 // WithDensity returns the same gas at another molar density.
 func (s State) WithDensity(rho unit.MolePerCubicMetre) State { s.Density = rho; return s }
+
+// As returns the same gas, of the same composition and density, with its index
+// and nonlinear index from the sources of another medium.
+func (s State) As(m *Medium) State { s.medium = m; return s }
 
 // Susceptibility returns n²−1 about the angular frequency omega in rad/s, by
 // Lorentz–Lorenz with additive molar refractivities. It is exact to the third
