@@ -1,5 +1,3 @@
-// Package emission predicts from the state of the gas and the pulse where the
-// source emits, and how sure that is.
 package emission
 
 import "barline/model/unit"
@@ -45,6 +43,8 @@ const (
 	MaxZeroDispersion = 8
 	// MaxVerdicts bounds the limits beside one prediction.
 	MaxVerdicts = 12
+	// MaxBranches bounds the lobes that one prediction can name.
+	MaxBranches = 4
 )
 
 // Prediction is what the model says of one Input. It is a value without
@@ -77,8 +77,23 @@ type Prediction struct {
 	Sigma        unit.Metre // standard uncertainty of Emission
 	Extrapolated bool       // index source beyond its checked range
 
+	// Kappa is the nonlinear part of phase matching that was used, in 1/m.
+	Kappa float64
+	// IonisedFraction is a rough guess for the compressed pulse.
+	IonisedFraction unit.Fraction
+
+	Branches    [MaxBranches]Branch // strongest first
+	BranchCount int
+
 	Verdicts     [MaxVerdicts]Verdict
 	VerdictCount int
+}
+
+// Branch is one lobe that the source may emit. Conversion is zero where the
+// answer does not know it.
+type Branch struct {
+	Emission   unit.Metre
+	Conversion unit.Fraction // of the output energy
 }
 
 // CurvePoint is one point of the predicted emission over pressure.

@@ -182,3 +182,21 @@ func (g *Guide) Beta(dst, omega []float64) Region {
 func (g *Guide) Gamma(omega float64) float64 {
 	return float64(g.Gas.Kerr()) * omega / (c * g.Fibre.area)
 }
+
+// ResonanceDistance returns the distance of omega from the nearest resonance of
+// the wall, relative in wavelength, and whether there is such a wall.
+func (g *Guide) ResonanceDistance(omega float64) (float64, bool) {
+	lambda := 2 * math.Pi * c / omega
+	if g.Fibre.spec.Kind == Capillary || !(lambda >= glassFrom && lambda <= glassTo) {
+		return 0, false
+	}
+	v := 1e-6 / lambda
+	k := taylor.Frequency(omega / c)
+	step := glass(v * v).Sub(g.Gas.Susceptibility(omega))
+	if !(step.C0 > 0) {
+		return 0, false
+	}
+	phase := k.Mul(step.Sqrt()).Times(float64(g.Fibre.spec.Wall))
+	m := math.Max(1, math.Round(phase.C0/math.Pi))
+	return math.Abs(phase.C0-m*math.Pi) / phase.C1, true
+}

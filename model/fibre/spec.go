@@ -154,3 +154,6 @@ func (f *Fibre) KagomeReach() (plain, form unit.Metre) {
 	scale := math.Sqrt(f.radius * float64(f.spec.Wall))
 	return unit.Metre(plainReach * scale), unit.Metre(formReach * scale)
 }
+
+// Profile returns order and argument of the mode's radial shape J_order(u r/a).
+func (f *Fibre) Profile() (order int, u float64) { return f.spec.Mode.order(), f.u }

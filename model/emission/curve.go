@@ -1,0 +1,18 @@
+package emission
+
+import "barline/model/unit"
+
+// Curve fills dst with predictions at pressures evenly spaced from from to to,
+// all else as in in. Each follows the one before, so that a curve stays on its
+// branch. dst is overwritten; it may be empty.
+func (p *Predictor) Curve(dst []CurvePoint, from, to unit.Pascal, in Input) {
+	var before Prediction
+	for i := range dst {
+		in.Pressure = from
+		if len(dst) > 1 {
+			in.Pressure = from + (to-from)*unit.Pascal(i)/unit.Pascal(len(dst)-1)
+		}
+		before = p.Predict(in, &before)
+		dst[i] = CurvePoint{Pressure: in.Pressure, Emission: before.Emission, Sigma: before.Sigma}
+	}
+}

@@ -1,0 +1,165 @@
+package emission
+
+import (
+	"math"
+
+	"barline/model/fibre"
+	"barline/model/unit"
+)
+
+// found is what a search along the bands turns up, in angular frequency.
+type found struct {
+	zeros [MaxZeroDispersion]float64 // of β₂, descending in ω
+	count int
+	root  float64 // phase matching; 0 where there is none
+}
+
+// samples per band of a cold search. They crowd towards the ends of a band,
+// where the wall bends the dispersion.
+const samples = 56
+
+// abscissa holds the places of the samples in a band, 0 to 1.
+var abscissa = func() (x [samples]float64) {
+	for i := range x {
+		x[i] = 0.5 * (1 - math.Cos(math.Pi*float64(i)/(samples-1)))
+	}
+	return x
+}()
+
+// search looks through all bands. It reports every zero of β₂, and the highest
+// root of Δβ − κ that passes from negative to positive on the short-wave side
+// of the first zero above the pump.
+func (m *mismatch) search(bands []fibre.Band) (f found) {
+	var zeros [2 * MaxZeroDispersion]float64 // ascending in ω
+	count := 0
+	first := math.Inf(1)
+	for b := range bands {
+		from, to := fibre.Frequency(bands[b].To), fibre.Frequency(bands[b].From)
+		// A hair inside, where the region is the band's own.
+		from, to = from*(1+1e-9), to*(1-1e-9)
+		var before point
+		var at float64
+		for i := range samples {
+			omega := from + (to-from)*abscissa[i]
+			now := m.at(omega)
+			if now.region != fibre.Guided {
+				before = point{region: fibre.Dark}
+				continue
+			}
+			if i > 0 && before.region == fibre.Guided {
+				if (before.beta2 > 0) != (now.beta2 > 0) && count < len(zeros) {
+					zero := m.polish(at, omega, zeroOfBeta2)
+					zeros[count] = zero
+					count++
+					if zero > m.omega && zero < first {
+						first = zero
+					}
+				}
+				if before.excess() < 0 && now.excess() >= 0 && omega > first && omega > m.omega {
+					if root := m.polish(at, omega, phaseMatch); root > first {
+						f.root = root // bands and samples rise in ω: the last is the highest
+					}
+				}
+			}
+			before, at = now, omega
+		}
+	}
+	for i := count - 1; i >= 0 && f.count < MaxZeroDispersion; i-- {
+		f.zeros[f.count] = zeros[i]
+		f.count++
+	}
+	return f
+}
+
+// goal names the function that polish and follow bring to zero.
+type goal uint8
+
+const (
+	zeroOfBeta2 goal = iota
+	phaseMatch
+)
+
+func (p point) value(g goal) (f, slope float64) {
+	if g == zeroOfBeta2 {
+		return p.beta2, p.beta3
+	}
+	return p.excess(), p.rise()
+}
+
+// polish refines a root between two frequencies of opposite sign: Newton steps,
+// halved where they would leave the bracket.
+func (m *mismatch) polish(lo, hi float64, g goal) float64 {
+	f, _ := m.at(lo).value(g)
+	rising := f < 0
+	x := 0.5 * (lo + hi)
+	for range 60 {
+		f, slope := m.at(x).value(g)
+		if (f < 0) == rising {
+			lo = x
+		} else {
+			hi = x
+		}
+		next := x - f/slope
+		if !(next > lo && next < hi) {
+			next = 0.5 * (lo + hi)
+		}
+		if math.Abs(next-x) <= 1e-13*x {
+			return next
+		}
+		x = next
+	}
+	return x
+}
+
+// follow refines a root from where it was at the reading before. It gives up
+// where the root has moved by more than reach (relative) or left the band.
+func (m *mismatch) follow(from float64, g goal, reach float64) (float64, bool) {
+	x := from
+	for range 8 {
+		p := m.at(x)
+		if p.region != fibre.Guided {
+			return 0, false
+		}
+		f, slope := p.value(g)
+		step := f / slope
+		x -= step
+		if !(math.Abs(x-from) <= reach*from) {
+			return 0, false
+		}
+		if math.Abs(step) <= 1e-7*x { // the next step would be its square
+			return x, g == zeroOfBeta2 || slope > 0
+		}
+	}
+	return 0, false
+}
+
+// track follows everything that the prediction before had found. It gives up,
+// for a cold search, where anything was lost.
+func (m *mismatch) track(before *Prediction) (f found, ok bool) {
+	const reach = 0.03
+	f.count = before.ZeroDispersionCount
+	for i := range f.count {
+		f.zeros[i], ok = m.follow(fibre.Frequency(before.ZeroDispersion[i]), zeroOfBeta2, reach)
+		if !ok || i > 0 && !(f.zeros[i] < f.zeros[i-1]) {
+			return found{}, false
+		}
+	}
+	if before.Emission == 0 {
+		return found{}, false
+	}
+	f.root, ok = m.follow(fibre.Frequency(before.Emission), phaseMatch, reach)
+	return f, ok && m.beyondZero(&f)
+}
+
+// beyondZero reports whether the root lies above the first zero of β₂ above
+// the pump.
+func (m *mismatch) beyondZero(f *found) bool {
+	for i := f.count - 1; i >= 0; i-- {
+		if f.zeros[i] > m.omega {
+			return f.root > f.zeros[i]
+		}
+	}
+	return false
+}
+
+func wavelength(omega float64) unit.Metre { return fibre.Wavelength(omega) }
