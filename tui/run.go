@@ -54,7 +54,7 @@ func Run(ctx context.Context, src Source, o Options) error {
 	}
 	inner, end := context.WithCancel(ctx)
 	defer end()
-	m := &model{ctx: inner, src: src, out: o.Out, style: o.Style, s: src.Snapshot(), moved: time.Now()}
+	m := &model{ctx: inner, src: src, style: o.Style, s: src.Snapshot(), moved: time.Now()}
 	options := []tea.ProgramOption{
 		tea.WithContext(inner), tea.WithAltScreen(), tea.WithoutSignalHandler(), tea.WithFPS(30), tea.WithOutput(o.Out),
 	}
@@ -107,7 +107,6 @@ func StyleFor(screen bench.Screen, getenv func(string) string) (Style, error) {
 type model struct {
 	ctx   context.Context
 	src   Source
-	out   io.Writer
 	style Style
 	w, h  int
 	v     view
@@ -116,7 +115,6 @@ type model struct {
 
 	moved time.Time // wall time at which bench time was last seen to move
 	drawn time.Time
-	rung  map[string]bool // alarms that the bell rang for
 }
 
 // newer says that the bench has changed, pulse that a second has passed.
@@ -171,14 +169,14 @@ func (m *model) Update(msg tea.Msg) (tea.Model, tea.Cmd) {
 	case newer:
 		m.take()
 		m.draw()
-		return m, tea.Batch(m.wait(), m.bell())
+		return m, m.wait()
 	case pulse:
 		m.take()
 		m.v.late = 0
 		if late := time.Since(m.moved); late > lateAfter {
 			m.v.late = late
 		}
-		cmd = tea.Batch(m.second(), m.bell())
+		cmd = m.second()
 	case tea.KeyMsg:
 		cmd = m.key(msg)
 	default:
@@ -240,27 +238,4 @@ func names(msg tea.KeyMsg) []string {
 		}
 	}
 	return out
-}
-
-// bell rings once for every alarm that has not been seen.
-func (m *model) bell() tea.Cmd {
-	if m.s == nil {
-		return nil
-	}
-	ring := false
-	now := make(map[string]bool, len(m.s.Alarms))
-	for _, al := range m.s.Alarms {
-		if al.Active && !al.Acked {
-			now[al.Name] = true
-			ring = ring || !m.rung[al.Name]
-		}
-	}
-	m.rung = now
-	if !ring {
-		return nil
-	}
-	return func() tea.Msg {
-		io.WriteString(m.out, "\a") // a bell that cannot ring is no reason to stop
-		return nil
-	}
 }

@@ -104,6 +104,11 @@ type Snapshot struct {
 	Expected  *trend.View // Pa: setpoint
 	Residuals *trend.View // m
 
+	// Trends is the history of every role that is measured, in its SI unit;
+	// a view may be a second older than the rest.
+	Trends [reading.RoleCount]*trend.View
+	Rows   []StepData // of the runs of steps since the start, oldest first
+
 	Simulated bool
 	ReadOnly  bool
 	Dropped   uint64 // readings that a full queue refused

@@ -12,6 +12,9 @@ import (
 const (
 	maxPoints = 512 // of the emission map
 	maxLines  = 200 // of the record on screen
+	maxRows   = 512 // of runs of steps
+
+	trendsEvery = time.Second
 
 	// A measured emission becomes a point of the map when the gas or the
 	// clock has moved on this far since the last one.
@@ -23,6 +26,11 @@ const (
 // logbook; this is a picture of fixed size.
 type history struct {
 	pressure, expected, residual *trend.Ring
+
+	roles  [reading.RoleCount]*trend.Ring // nil until something was measured
+	views  [reading.RoleCount]*trend.View
+	viewed time.Duration
+	rows   []live.StepData
 
 	points []live.Point
 	lines  []string
@@ -36,6 +44,10 @@ func (h *history) reading(s *live.State, r reading.Reading) {
 	if !r.Status.Usable() {
 		return
 	}
+	if h.roles[r.Role] == nil {
+		h.roles[r.Role] = trend.NewRing()
+	}
+	h.roles[r.Role].Add(r.Taken.Mono, r.Value)
 	switch r.Role {
 	case reading.CellAPressure:
 		h.pressure.Add(r.Taken.Mono, r.Value)
@@ -62,6 +74,27 @@ func (h *history) point(p live.Point) {
 		h.points = append(make([]live.Point, 0, 2*maxPoints), h.points[maxPoints/4:]...)
 	}
 	h.points = append(h.points, p)
+}
+
+// trends returns the history of every role, made anew once a second: it is
+// for charts of minutes and more, and a copy of them all is not free.
+func (h *history) trends(now time.Duration) [reading.RoleCount]*trend.View {
+	if h.viewed == 0 || now-h.viewed >= trendsEvery {
+		for i, r := range h.roles {
+			if r != nil {
+				h.views[i] = r.View()
+			}
+		}
+		h.viewed = now
+	}
+	return h.views
+}
+
+func (h *history) row(r live.StepData) {
+	if len(h.rows) == maxRows {
+		h.rows = append(make([]live.StepData, 0, 2*maxRows), h.rows[maxRows/4:]...)
+	}
+	h.rows = append(h.rows, r)
 }
 
 func (h *history) tick(s *live.State) {

@@ -200,6 +200,9 @@ func (l *Loop) handle(e live.Event) {
 		switch f := f.(type) {
 		case live.Record:
 			l.record(f.At, f.Kind, f.Data)
+			if row, ok := f.Data.(live.StepData); ok {
+				l.history.row(row)
+			}
 		case live.SendSetpoint:
 			l.gate.setpoint(f.Command, f.Setpoint)
 		case live.SendHold:
