@@ -1,0 +1,148 @@
+package panel
+
+import "math"
+
+// flux is what a passage carries from its first to its second node per
+// second: moles of gas, moles of air, enthalpy.
+type flux [perNode]float64
+
+func (n *Network) end(y []float64, v Node) State {
+	if v < 0 {
+		return n.reservoirs[-v-1]
+	}
+	return n.stateOf(y, v)
+}
+
+func (n *Network) flow(p *passage, a, b State) flux {
+	if p.opening == 0 {
+		return flux{}
+	}
+	f := p.opening * p.law.Flow(a, b)
+	up := a
+	if f < 0 {
+		up = b
+	}
+	g := f * (1 - up.Air)
+	x := f * up.Air
+	return flux{g, x, (g*n.gas.cp() + x*air.cp()) * up.T}
+}
+
+func (c *contact) conductance(p float64) float64 {
+	const convection, molecular = 10e5, 50.0 // Pa
+	p = max(p, 0)
+	return (c.still + c.moving*math.Sqrt(p/convection)) * p / (p + molecular)
+}
+
+// heat is the power from the gas at s into the wall at t.
+func (c *contact) heat(s State, t float64) float64 { return c.conductance(s.P) * (s.T - t) }
+
+// rates writes dy/dt.
+func (n *Network) rates(y, dydt []float64) {
+	clear(dydt)
+	for i := range n.passages {
+		p := &n.passages[i]
+		if p.opening == 0 {
+			continue
+		}
+		f := n.flow(p, n.end(y, p.from), n.end(y, p.to))
+		from, to := n.at(p.from), n.at(p.to)
+		for k, v := range f {
+			dydt[from+k] -= v
+			dydt[to+k] += v
+		}
+	}
+	for i := range n.contacts {
+		c := &n.contacts[i]
+		w := n.wallAt(c.wall)
+		q := c.heat(n.stateOf(y, c.volume), y[w]/n.walls[c.wall].capacity)
+		dydt[n.at(c.volume)+2] -= q
+		dydt[w] += q
+	}
+	for i := range n.walls {
+		w := &n.walls[i]
+		at := n.wallAt(Wall(i))
+		q := w.to * (y[at]/w.capacity - w.room)
+		dydt[at] -= q
+		dydt[n.roomAt()] += q
+	}
+}
+
+// jacobian writes ∂(dy/dt)/∂y, rows of all components by columns of the inner
+// ones, from one-sided differences of every passage by itself. What one end
+// gains the other loses in the same number, so that the columns of moles sum
+// to zero and the integrator keeps them to rounding.
+func (n *Network) jacobian(y []float64) {
+	m := n.inner()
+	j := n.ws.jac
+	clear(j)
+	for i := range n.passages {
+		p := &n.passages[i]
+		if p.opening == 0 {
+			continue
+		}
+		a, b := n.end(y, p.from), n.end(y, p.to)
+		base := n.flow(p, a, b)
+		from, to := n.at(p.from), n.at(p.to)
+		for side, v := range [2]Node{p.from, p.to} {
+			if v < 0 {
+				continue
+			}
+			for k := range perNode {
+				col := n.at(v) + k
+				d := n.nudge(y, col)
+				old := y[col]
+				y[col] += d
+				s := n.stateOf(y, v)
+				d = y[col] - old
+				y[col] = old
+				var f flux
+				if side == 0 {
+					f = n.flow(p, s, b)
+				} else {
+					f = n.flow(p, a, s)
+				}
+				for q := range f {
+					slope := (f[q] - base[q]) / d
+					j[(from+q)*m+col] -= slope
+					j[(to+q)*m+col] += slope
+				}
+			}
+		}
+	}
+	for i := range n.contacts {
+		c := &n.contacts[i]
+		w := n.wallAt(c.wall)
+		e := n.at(c.volume) + 2
+		capacity := n.walls[c.wall].capacity
+		s := n.stateOf(y, c.volume)
+		base := c.heat(s, y[w]/capacity)
+		for k := range perNode {
+			col := n.at(c.volume) + k
+			old := y[col]
+			y[col] += n.nudge(y, col)
+			d := y[col] - old
+			slope := (c.heat(n.stateOf(y, c.volume), y[w]/capacity) - base) / d
+			y[col] = old
+			j[e*m+col] -= slope
+			j[w*m+col] += slope
+		}
+		slope := -c.conductance(s.P) / capacity
+		j[e*m+w] -= slope
+		j[w*m+w] += slope
+	}
+	for i := range n.walls {
+		at := n.wallAt(Wall(i))
+		slope := n.walls[i].to / n.walls[i].capacity
+		j[at*m+at] -= slope
+		j[n.roomAt()*m+at] += slope
+	}
+}
+
+// nudge returns a step of component i for a difference quotient.
+func (n *Network) nudge(y []float64, i int) float64 {
+	v := i / perNode * perNode
+	if i%perNode == 2 {
+		return 1e-7 * y[i]
+	}
+	return 1e-7 * (y[v] + y[v+1])
+}
