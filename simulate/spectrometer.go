@@ -1,0 +1,84 @@
+package simulate
+
+import (
+	"math"
+	"strconv"
+
+	"barline/simulate/panel"
+)
+
+// spectrometer sums light over its integration time and then says one line:
+//
+//	EM 268.14 nm W 18.32 nm S 7.41 %
+//
+// wavelength and width of the emission and its share of the light. Where it
+// finds no emission it has dashes for wavelength and width, where there is no
+// light at all also for the share.
+type spectrometer struct {
+	frames int
+	lit    int
+	gas    panel.State // sums
+	energy float64     // sum, J
+	lines  int64
+}
+
+const (
+	integration = 10 // frames: 200 ms
+	threshold   = 0.0015
+	fullScale   = 0.12 // share at which the detector saturates
+)
+
+// expose adds the frame that has just ended.
+func (s *spectrometer) expose(b *Bench) {
+	if !b.faults.shutter {
+		c := b.core()
+		s.gas.P += c.P
+		s.gas.T += c.T
+		s.gas.Air += c.Air
+		s.energy += b.energy
+		s.lit++
+	}
+	if s.frames++; s.frames < integration {
+		return
+	}
+	s.lines++
+	if b.faults.dead["spectrometer"] || b.faults.unplugged[spectrometerLine] {
+		*s = spectrometer{lines: s.lines}
+		return
+	}
+	line := []byte("EM --- nm W --- nm S --- %\r\n")
+	if s.lit > 0 {
+		n := float64(s.lit)
+		e := b.light.emit(panel.State{P: s.gas.P / n, T: s.gas.T / n, Air: s.gas.Air / n}, s.energy/n)
+		e.strength *= n / integration
+		line = s.line(b, e)
+	}
+	b.ports[spectrometerLine].say(b, line)
+	*s = spectrometer{lines: s.lines}
+}
+
+// line writes what the detector makes of an emission.
+func (s *spectrometer) line(b *Bench, e emission) []byte {
+	strength := max(0, e.strength*(1+0.01*b.noise.normal(ofStrength, s.lines))+2e-4*b.noise.normal(ofStrength, -1-s.lines))
+	if !(strength > threshold) || e.wavelength == 0 {
+		return share(append([]byte(nil), "EM --- nm W --- nm S "...), strength)
+	}
+	width := e.width
+	if strength > fullScale { // the top is cut off, which widens what is left
+		width *= strength / fullScale
+		strength = fullScale
+	}
+	// The centroid is the surer the more light there is.
+	rms := 0.03e-9 * math.Sqrt(0.05/strength)
+	wavelength := e.wavelength + float64(b.truth.Wavelength) + rms*b.noise.normal(ofWavelength, s.lines)
+	width *= 1 + 0.01*b.noise.normal(ofWidth, s.lines)
+	line := append([]byte(nil), "EM "...)
+	line = strconv.AppendFloat(line, wavelength*1e9, 'f', 2, 64)
+	line = append(line, " nm W "...)
+	line = strconv.AppendFloat(line, width*1e9, 'f', 2, 64)
+	return share(append(line, " nm S "...), strength)
+}
+
+func share(line []byte, strength float64) []byte {
+	return append(strconv.AppendFloat(line, strength*100, 'f', 2, 64), " %\r\n"...)
+}

@@ -1,0 +1,47 @@
+package simulate
+
+import "barline/model/unit"
+
+// Truth is how the bench really is, beside what its file says. It is drawn
+// from the seed once and never told on the wire.
+type Truth struct {
+	CoreRadius unit.Fraction // larger than stated by this share
+	Wall       unit.Fraction // thicker than stated by this share
+	Index      unit.Fraction // refractivity above the published one by this share
+	N2         unit.Fraction // nonlinear index, likewise
+	Energy     unit.Fraction // energy in the fibre, likewise
+	Wavelength unit.Metre    // the spectrometer reads this much too long
+	ZeroA      unit.Pascal   // cell A's transducer reads this much too high
+	ZeroB      unit.Pascal
+	SpanA      unit.Fraction // and this share of the reading
+	SpanB      unit.Fraction
+	// Mismatch shapes the nonlinear phase mismatch of the truth against any
+	// formula: relative amplitudes of smooth functions of density and energy.
+	Mismatch [4]float64
+}
+
+// Standard deviations of what is drawn, of the size that a careful bench
+// would find: common practice, no source.
+func drawTruth(n noise) Truth {
+	i := int64(0)
+	draw := func(sigma float64) float64 {
+		i++
+		return sigma * n.bounded(ofTruth, i)
+	}
+	t := Truth{
+		CoreRadius: unit.Fraction(draw(0.004)),
+		Wall:       unit.Fraction(draw(0.01)),
+		Index:      unit.Fraction(draw(0.003)),
+		N2:         unit.Fraction(draw(0.05)),
+		Energy:     unit.Fraction(draw(0.02)),
+		Wavelength: unit.Metre(draw(0.15e-9)),
+		ZeroA:      unit.Pascal(draw(600)),
+		ZeroB:      unit.Pascal(draw(600)),
+		SpanA:      unit.Fraction(draw(4e-4)),
+		SpanB:      unit.Fraction(draw(4e-4)),
+	}
+	for k := range t.Mismatch {
+		t.Mismatch[k] = draw(0.05)
+	}
+	return t
+}
