@@ -49,8 +49,10 @@ type Bench struct {
 	spectro    spectrometer
 	faults     faults
 
-	ports map[string]*port
-	clock func() time.Duration // bench time to catch up with; nil: Advance alone
+	ports   map[string]*port
+	clock   func() time.Duration // bench time to catch up with; nil: Advance alone
+	waits   bool                 // the clock runs by itself
+	serving sync.WaitGroup
 }
 
 // New returns a bench at time zero: clean, still, valves shut but for those of

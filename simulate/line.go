@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"os"
+	"sync/atomic"
 	"time"
 
 	"barline/model/clock"
@@ -13,12 +14,12 @@ import (
 var ErrUnplugged = errors.New("cable pulled")
 
 // Line is the driver's end of a line in memory. What a request asks for can be
-// read as soon as it has been written.
+// read as soon as it has been written. Write and Read are for one goroutine at
+// a time; Close may come from any.
 type Line struct {
 	bench *Bench
 	port  *port
-	shut  bool
-	wait  time.Duration
+	shut  atomic.Bool
 }
 
 // Lines returns the lines of all instruments, by the names that the bench file
@@ -38,6 +39,7 @@ func (b *Bench) Follow(c clock.Clock) {
 	defer b.mu.Unlock()
 	start := c.Now().Mono - b.asked
 	b.clock = func() time.Duration { return c.Now().Mono - start }
+	b.waits = c.Wall(time.Second) > 0
 }
 
 // catchUp advances to the clock that the bench follows. The bench is locked.
@@ -59,37 +61,40 @@ func (l *Line) Write(bytes []byte) (int, error) {
 	return len(bytes), nil
 }
 
-// Read takes what the instrument has said. Where it has said nothing within
-// the line's timeout, the error is a timeout: errors.Is(err,
-// os.ErrDeadlineExceeded).
-func (l *Line) Read(into []byte) (int, error) {
+// Read takes what the instrument has said. It waits up to wait on the wall for
+// the first byte if the bench follows a clock that runs by itself, else not at
+// all. Silence is an error that wraps os.ErrDeadlineExceeded.
+func (l *Line) Read(into []byte, wait time.Duration) (int, error) {
 	const look = 2 * time.Millisecond
-	for end := time.Now().Add(l.wait); ; {
-		n, err := l.take(into)
-		if n > 0 || err != nil || len(into) == 0 {
+	if len(into) == 0 {
+		return 0, fmt.Errorf("line %s: read into no bytes", l.port.name)
+	}
+	for end := time.Now().Add(wait); ; {
+		n, waits, err := l.take(into)
+		if n > 0 || err != nil {
 			return n, err
 		}
 		left := time.Until(end)
-		if left <= 0 {
-			return 0, fmt.Errorf("line %s: %w", l.port.name, os.ErrDeadlineExceeded)
+		if left <= 0 || !waits {
+			return 0, fmt.Errorf("line %s says nothing: %w", l.port.name, os.ErrDeadlineExceeded)
 		}
 		<-time.After(min(look, left))
 	}
 }
 
-func (l *Line) take(into []byte) (int, error) {
+func (l *Line) take(into []byte) (n int, waits bool, err error) {
 	l.bench.mu.Lock()
 	defer l.bench.mu.Unlock()
 	if err := l.ready(); err != nil {
-		return 0, err
+		return 0, false, err
 	}
-	n := copy(into, l.port.out)
+	n = copy(into, l.port.out)
 	l.port.out = l.port.out[n:]
-	return n, nil
+	return n, l.bench.waits, nil
 }
 
 func (l *Line) ready() error {
-	if l.shut {
+	if l.shut.Load() {
 		return fmt.Errorf("line %s: %w", l.port.name, os.ErrClosed)
 	}
 	if err := l.bench.catchUp(); err != nil {
@@ -101,20 +106,9 @@ func (l *Line) ready() error {
 	return nil
 }
 
-// SetReadTimeout sets how long Read waits on the wall for an instrument that
-// talks by itself; 0, as at first, is not at all.
-func (l *Line) SetReadTimeout(d time.Duration) error {
-	l.bench.mu.Lock()
-	defer l.bench.mu.Unlock()
-	l.wait = max(d, 0)
-	return nil
-}
-
 // Close ends the use of the line. The instrument goes on; Lines gives a new
 // one.
 func (l *Line) Close() error {
-	l.bench.mu.Lock()
-	defer l.bench.mu.Unlock()
-	l.shut = true
+	l.shut.Store(true)
 	return nil
 }

@@ -15,6 +15,9 @@ const (
 	// volume of 10 cm³.
 	absoluteMoles = 4e-12
 	absoluteJoule = 1e-8
+	// Mole fractions below this count as nothing, and may be negative by as
+	// much: where flow turns round, the linearised upwind side is the wrong one.
+	trace = 1e-7
 )
 
 // workspace is the integrator's scratch, allocated once.
@@ -130,15 +133,17 @@ func (n *Network) floor(i int) float64 {
 	if i >= perNode*len(n.volumes) || i%perNode == 2 {
 		return absoluteJoule
 	}
-	return absoluteMoles
+	v := i / perNode * perNode
+	return absoluteMoles + trace*(n.y[v]+n.y[v+1])
 }
 
-// sound reports whether every volume holds some gas and some energy. A trace
-// of one species may be negative by rounding.
+// sound reports whether every volume holds some gas and some energy.
 func (n *Network) sound(y []float64) bool {
 	for v := range n.volumes {
 		i := v * perNode
-		if !(y[i]+y[i+1] > 0 && y[i+2] > 0 && y[i] > -absoluteMoles && y[i+1] > -absoluteMoles) {
+		total := y[i] + y[i+1]
+		least := -10 * (absoluteMoles + trace*total)
+		if !(total > 0 && y[i+2] > 0 && y[i] > least && y[i+1] > least) {
 			return false
 		}
 	}
