@@ -69,6 +69,7 @@ func newRoot() *cobra.Command {
 	root.AddCommand(
 		newCheck(),
 		newLog(),
+		newPredict(),
 		newVersion(),
 	)
 	return root

@@ -7,6 +7,7 @@ import (
 	"barline/model/fibre"
 	"barline/model/gas"
 	"barline/model/ionise"
+	"barline/model/pulse"
 	"barline/model/unit"
 )
 
@@ -57,8 +58,12 @@ func NewPredictor(s Setup) (*Predictor, error) {
 	if err != nil {
 		return nil, err
 	}
+	averaging := ionise.Electrons
+	if s.Plasma == pulse.Averaged {
+		averaging = ionise.Uniform
+	}
 	order, u := f.Profile()
-	p.electron = ionise.NewTable(rate, ionise.Profile{Order: order, Zero: u}, ionise.Electrons)
+	p.electron = ionise.NewTable(rate, ionise.Profile{Order: order, Zero: u}, averaging)
 	for _, name := range gas.IndexNames(medium.Main()) {
 		if name == medium.IndexSource().Name {
 			continue

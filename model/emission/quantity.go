@@ -40,7 +40,9 @@ func (q Quantity) text(x float64) string {
 	case Temperature:
 		return fmt.Sprintf("%.3g K", x)
 	case Air:
-		return fmt.Sprintf("%.3g ppm", x*1e6)
+		if x < 1e-3 {
+			return fmt.Sprintf("%.3g ppm", x*1e6)
+		}
 	case PumpWavelength:
 		return fmt.Sprintf("%.3g nm", x*1e9)
 	case PulseGDD:

@@ -33,6 +33,7 @@ type Setup struct {
 	Pulse          pulse.Pulse // its Energy stands in where an Input has none
 	RepetitionRate unit.Hertz  // 0: heating is not judged
 	Answer         Answer
+	Plasma         pulse.Plasma // over what the rough ionised fraction is taken
 
 	Uncertainty  Uncertainty
 	Spectrometer gas.Span    // what it can see; zero: not judged

@@ -14,6 +14,7 @@ const (
 	attenuationBound = 3.0             // dB over the fibre (practice)
 	heatingBound     = 1.0             // K (practice)
 	resonanceBound   = 0.05            // relative distance in wavelength
+	decibel          = 10 / math.Ln10  // dB per 1/m of power
 	compression      = 7.0             // rough peak power of the compressed pulse over P₀
 	electronvolt     = 1.602176634e-19 // J, exact (SI 2019)
 	avogadro         = 6.02214076e23   // 1/mol, exact (SI 2019)
@@ -67,6 +68,13 @@ func (p *Predictor) judge(m *mismatch, out *Prediction) {
 		Name: "attenuation of the pump", Value: loss, Bound: attenuationBound, Unit: "dB", OK: loss <= attenuationBound,
 		Consequence: "the pump is lost before it is compressed",
 	})
+	if spec.Kind == fibre.Capillary {
+		least := m.guide.Bore(p.omega) * decibel * length
+		add(Verdict{
+			Name: "least attenuation of such a bore", Value: least, Bound: attenuationBound, Unit: "dB", OK: least <= attenuationBound,
+			Consequence: "a bore this narrow leaks more than its file says: a thin-walled fibre is meant",
+		})
+	}
 	if out.Emission > 0 {
 		p.judgeEmission(out, add)
 	}

@@ -8,7 +8,6 @@ import (
 // bench file gives, raised near the resonances of a thin wall by as much as one
 // such wall leaks more there than halfway between resonances. The leakage of
 // one wall is far above that of a real cladding, so that only its shape counts.
-// A capillary without a loss in the file leaks as Marcatili and Schmeltzer say.
 func (g *Guide) Decibel(omega float64) float64 {
 	return g.Attenuation(omega) / neperPerDecibel
 }
@@ -17,27 +16,24 @@ func (g *Guide) Decibel(omega float64) float64 {
 func (g *Guide) Attenuation(omega float64) float64 {
 	lambda := 2 * math.Pi * c / omega
 	given := g.Fibre.spec.Loss.at(lambda) * neperPerDecibel
-	switch g.Fibre.spec.Kind {
-	case Capillary:
-		if given == 0 && len(g.Fibre.spec.Loss.Table) == 0 {
-			return g.Fibre.bore(lambda, g.Gas.Susceptibility(omega).C0)
-		}
-	case Antiresonant:
+	if g.Fibre.spec.Kind == Antiresonant && given > 0 {
 		return given * g.Fibre.resonantRise(omega, g.Gas.Susceptibility(omega).C0)
 	}
 	return given
 }
 
-// bore returns the attenuation of power in a bore of thick glass, 1/m:
+// Bore returns the attenuation of power in 1/m at omega in rad/s of a smooth
+// bore in thick glass, below which no capillary gets:
 // 2(u/2π)²(λ²/a³)V with v = n_glass/n and V = (v²+1)/(2√(v²−1)) for HE and EH,
 // 1/√(v²−1) for TE, v²/√(v²−1) for TM.
 //
 // Source: E. A. J. Marcatili, R. A. Schmeltzer, Bell Syst. Tech. J. 43, 1783
 // (1964), doi:10.1002/j.1538-7305.1964.tb04108.x.
-func (f *Fibre) bore(lambda, chi float64) float64 {
-	lambda = math.Min(math.Max(lambda, glassFrom), glassTo)
-	n := glassIndex(lambda)
-	v2 := n * n / (1 + chi)
+func (g *Guide) Bore(omega float64) float64 {
+	f := g.Fibre
+	lambda := 2 * math.Pi * c / omega
+	n := glassIndex(math.Min(math.Max(lambda, glassFrom), glassTo))
+	v2 := n * n / (1 + g.Gas.Susceptibility(omega).C0)
 	root := math.Sqrt(v2 - 1)
 	v := (v2 + 1) / (2 * root)
 	switch f.spec.Mode.Family {

@@ -16,13 +16,28 @@ func dawson(x float64) float64 {
 		v := 2 * x * x
 		return x * (1 - v/3*(1-v/5*(1-v/7*(1-v/9))))
 	}
-	const h = 0.25
-	n0 := 2 * math.Round(x/(2*h)) // even, so that x ≈ n0·h
-	rest := x - n0*h
+	n0 := 2 * math.Round(x/(2*rybicki)) // even, so that x ≈ n0·h
+	rest := x - n0*rybicki
+	// e^{−(rest−nh)²} = e^{−rest²} · (e^{2·rest·h})ⁿ · e^{−n²h²}, n odd.
+	up := math.Exp(2 * rest * rybicki)
+	down := 1 / up
+	up2, down2 := up*up, down*down
 	sum := 0.0
-	for n := -27.0; n <= 27; n += 2 {
-		d := rest - n*h
-		sum += math.Exp(-d*d) / (n + n0)
+	for i, w := range bells {
+		n := float64(2*i + 1)
+		sum += w * (up/(n0+n) + down/(n0-n))
+		up, down = up*up2, down*down2
 	}
-	return sum / math.SqrtPi
+	return math.Exp(-rest*rest) * sum / math.SqrtPi
 }
+
+const rybicki = 0.25 // step h
+
+// bells holds e^{−n²h²} for n = 1, 3, 5, …
+var bells = func() (w [13]float64) {
+	for i := range w {
+		n := float64(2*i + 1)
+		w[i] = math.Exp(-n * n * rybicki * rybicki)
+	}
+	return w
+}()

@@ -33,7 +33,7 @@ const (
 	// highest is the top of a table in κ³, far above barrier suppression
 	// (near κ³/16). Beyond it the rate stays.
 	highest = 0.5
-	radii   = 200
+	radii   = 120
 )
 
 // Table is a rate over the field E of the mode, |E|² being 2/(ε₀c) times the
