@@ -3,11 +3,10 @@ package tui
 import (
 	"fmt"
 	"math"
-	"time"
 
 	"barline/model/live"
 	"barline/model/reading"
-	"barline/model/trend"
+	"barline/model/unit"
 	"barline/tui/chart"
 	"barline/tui/frame"
 )
@@ -15,13 +14,21 @@ import (
 // drawBench lays the page out: the gas path, the emission in numbers, and
 // three charts. The taller the screen, the more air and the more record.
 func drawBench(a frame.Area, s *live.Snapshot, v view) {
+	if v.plain {
+		drawPlain(a, s)
+		return
+	}
 	roomy := a.H >= 26
 	y := 0
 	if roomy {
 		y++
 	}
-	drawPath(a.Sub(0, y, a.W, 3), s)
-	y += 3
+	path := 3
+	if roomy {
+		path = 5
+	}
+	drawPath(a.Sub(0, y, a.W, path), s)
+	y += path
 	if roomy {
 		y++
 	}
@@ -120,13 +127,13 @@ func drawVerdicts(a frame.Area, s *live.Snapshot) {
 	}
 }
 
-func amount(v float64, unit string) string {
+func amount(v float64, in string) string {
 	s := fixed(v, 2)
 	if math.Abs(v) >= 100 {
 		s = fixed(v, 0)
 	}
-	if unit != "" {
-		s += " " + unit
+	if in != "" {
+		s += " " + in
 	}
 	return s
 }
@@ -143,32 +150,13 @@ func drawCharts(a frame.Area, s *live.Snapshot, v view) {
 
 // heading draws the title of a chart with a rule behind it and returns the
 // column for what follows on the right.
-func heading(a frame.Area, title string, unit string) int {
+func heading(a frame.Area, title, in string) int {
 	x := a.Text(1, 0, title, frame.Strong)
-	if unit != "" {
-		x = a.Text(x, 0, ", "+unit, frame.Faint)
+	if in != "" {
+		x = a.Text(x, 0, ", "+in, frame.Faint)
 	}
 	return x + 2
 }
-
-// timeAxis is the stretch of bench time that charts show.
-type timeAxis struct {
-	end, span time.Duration
-	ticks     []chart.Tick
-}
-
-func (v view) axis(s *live.Snapshot, a frame.Area) timeAxis {
-	end := s.Now.Mono
-	if v.frozen != nil {
-		end = v.frozen.at
-	}
-	end -= v.back
-	span := v.span()
-	clock := s.Now.UTC.Add(end - s.Now.Mono).In(a.Style().Location())
-	return timeAxis{end: end, span: span, ticks: chart.TimeTicks(end, span, v.back == 0, clock, max(1, (a.W-yLabel)/9))}
-}
-
-func (t timeAxis) x() chart.Range { return chart.Between((t.end - t.span).Seconds(), t.end.Seconds()) }
 
 // yLabel is the width of the numbers of both time charts, so that they align.
 const yLabel = 6
@@ -179,12 +167,21 @@ func drawPressure(a frame.Area, s *live.Snapshot, v view) {
 	a.Text(x, 0, "╌ setpoint", frame.Target)
 	t := v.axis(s, a)
 	var y chart.Range
-	include(&y, s.PressureA.Since(t.end-t.span), t, 1e-5)
-	include(&y, s.Expected.Since(t.end-t.span), t, 1e-5)
+	t.include(&y, s.PressureA, times(1e-5))
+	t.include(&y, s.Expected, times(1e-5))
 	if s.Target != 0 && !y.Empty() {
 		y.Include(s.Target.Bar())
 	}
-	a.Right(a.W, 0, spanText(v.span()), frame.Faint)
+	corner, cornerInk := spanText(v.span()), frame.Faint
+	if t.cursor != 0 {
+		corner, cornerInk = t.clock(s, a)+"  no value", frame.Plain
+		if at, ok := t.at(s.PressureA); ok {
+			corner = t.clock(s, a) + "  " + pressureText(unit.Pascal(at))
+		}
+		a.Sub(0, 0, a.W, 1).Fill(' ', frame.Plain)
+		heading(a, "pressure", "bar")
+	}
+	a.Right(a.W, 0, corner, cornerInk)
 	body := a.Sub(0, 1, a.W, a.H-1)
 	if y.Empty() {
 		blank(body, "no pressure measured yet")
@@ -202,9 +199,10 @@ func drawPressure(a frame.Area, s *live.Snapshot, v view) {
 			p.Label(low.Max.Bar(), "rating of "+low.Part, frame.Alarm)
 		}
 	}
+	t.drawCursor(p)
 	gap := staleAfter(s)
-	p.Dotted(s.Expected.Since(t.end-t.span), 1e-5, gap, frame.Target)
-	p.History(s.PressureA.Since(t.end-t.span), 1e-5, gap, frame.Measured)
+	p.Dotted(s.Expected.Since(t.start()), times(1e-5), gap, frame.Target)
+	p.HistoryOf(s.PressureA.Since(t.start()), times(1e-5), gap, frame.Measured)
 	p.Done()
 }
 
@@ -214,8 +212,15 @@ func drawResidual(a frame.Area, s *live.Snapshot, v view) {
 		a.Text(x, 0, s.Prediction.Answer.String(), frame.Predicted)
 	}
 	t := v.axis(s, a)
+	if t.cursor != 0 {
+		text := "no value"
+		if at, ok := t.at(s.Residuals); ok {
+			text = signed(at*1e9, 1) + " nm"
+		}
+		a.Right(a.W, 0, text, frame.Plain)
+	}
 	var y chart.Range
-	include(&y, s.Residuals.Since(t.end-t.span), t, 1e9)
+	t.include(&y, s.Residuals, times(1e9))
 	body := a.Sub(0, 1, a.W, a.H-1)
 	if y.Empty() {
 		axes := chart.Axes{X: t.x(), Y: chart.Between(-1, 1), XTicks: t.ticks, LabelWidth: yLabel}
@@ -227,20 +232,11 @@ func drawResidual(a frame.Area, s *live.Snapshot, v view) {
 	y = y.Padded(0.1, 2)
 	p := chart.New(body, chart.Axes{X: t.x(), Y: y, XTicks: t.ticks, YTicks: chart.Ticks(y, max(2, body.H/2)), LabelWidth: yLabel})
 	p.Level(0, frame.Predicted)
-	p.History(s.Residuals.Since(t.end-t.span), 1e9, 2*staleAfter(s), frame.Measured)
+	t.drawCursor(p)
+	p.HistoryOf(s.Residuals.Since(t.start()), times(1e9), 2*staleAfter(s), frame.Measured)
 	p.Done()
 }
 
 func blank(a frame.Area, why string) {
 	a.Text(max(yLabel+2, (a.W-a.Width(why))/2), a.H/2, why, frame.Faint)
-}
-
-// include widens y to the part of a history that the axis shows.
-func include(y *chart.Range, l trend.Level, t timeAxis, scale float64) {
-	for _, b := range l.Buckets {
-		if b.Count > 0 && b.Start+l.Width > t.end-t.span && b.Start <= t.end {
-			y.Include(b.Min * scale)
-			y.Include(b.Max * scale)
-		}
-	}
 }

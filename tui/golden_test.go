@@ -34,6 +34,27 @@ func TestGoldenScreens(t *testing.T) {
 	} {
 		cases = append(cases, sized{"filling", 120, 40, style, tag}, sized{"stale", 80, 24, style, tag})
 	}
+	for page := Scan; page < pageCount; page++ {
+		for _, size := range [][2]int{{80, 24}, {120, 40}} {
+			name := fmt.Sprintf("%v-%dx%d", page, size[0], size[1])
+			t.Run(name, func(t *testing.T) {
+				golden(t, name, Render(situations()["filling"], page, size[0], size[1], Style{}))
+			})
+		}
+	}
+	for name, v := range map[string]view{
+		"help": {overlay: helpOverlay}, "arm": {overlay: armOverlay, text: "ar"}, "greeting": {overlay: greetOverlay},
+		"setpoint": {overlay: setpointOverlay, text: "9.2 bar"}, "setpoint-refused": {overlay: setpointOverlay, text: "17 bar"},
+		"scan-form": {overlay: scanOverlay, text: scanExample}, "alarm-list": {overlay: alarmOverlay, pick: 3},
+		"plain": {plain: true}, "frozen": {frozen: freeze(situations()["filling"]), back: 20e9, cursor: tuitest.Elapsed - 60e9},
+		"found": {page: Log, find: "NOTE"},
+	} {
+		s := situations()["filling"]
+		if name == "alarm-list" {
+			s = situations()["alarms"]
+		}
+		t.Run(name, func(t *testing.T) { golden(t, name, draw(s, v, 80, 24, Style{}).String()) })
+	}
 	for _, c := range cases {
 		name := fmt.Sprintf("%s-%dx%d-%s", c.situation, c.w, c.h, c.tag)
 		t.Run(name, func(t *testing.T) {

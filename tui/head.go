@@ -3,6 +3,7 @@ package tui
 import (
 	"fmt"
 	"math"
+	"strconv"
 	"strings"
 	"time"
 
@@ -126,14 +127,15 @@ func drawMode(a frame.Area, s *live.Snapshot) {
 			why = "nothing moves gas until it is armed"
 		case s.Mode == live.Armed:
 			why = "a setpoint would be taken"
+		case s.Mode == live.Steady:
+			why = "the controller keeps the setpoint"
 		}
 	}
+	if s.SettleIn > 0 && s.Mode != live.Ramping && lagText(s) != "" {
+		why = join(why, "core even in "+spanText(s.SettleIn))
+	}
 	if s.Program.Count > 0 {
-		step := fmt.Sprintf("step %d of %d", s.Program.Index+1, s.Program.Count)
-		if s.Program.Dwelling {
-			step += ", " + spanText(s.Program.DwellLeft) + " more"
-		}
-		why = join(step, why)
+		why = join(programText(s), why)
 	}
 	a.Sub(0, 0, right, 1).Text(max(x+2, 12), 0, why, frame.Plain)
 }
@@ -150,6 +152,19 @@ func modeText(m live.Mode) string {
 		return "unknown"
 	}
 	return m.String()
+}
+
+// programText says how far a program has come.
+func programText(s *live.Snapshot) string {
+	p := s.Program
+	text := fmt.Sprintf("%s %d of %d", p.Name, p.Index+1, p.Count)
+	switch {
+	case p.Paused:
+		text += " PAUSED"
+	case p.Dwelling:
+		text += ", " + spanText(p.DwellLeft) + " more"
+	}
+	return text
 }
 
 // rampLeft says how long the setpoint still travels at the allowed rate.
@@ -188,16 +203,18 @@ func setpointText(s *live.Snapshot) string {
 
 // worst returns the alarm that the banner shows: the most urgent that nobody
 // has seen, else the most urgent.
-func worst(s *live.Snapshot) (live.Alarm, bool) {
-	for _, al := range s.Alarms {
-		if !al.Acked {
-			return al, true
+func worst(s *live.Snapshot) (al live.Alarm, count int) {
+	found := false
+	for _, next := range s.Alarms {
+		if next.Hidden {
+			continue
+		}
+		count++
+		if !found || al.Acked && !next.Acked {
+			al, found = next, true
 		}
 	}
-	if len(s.Alarms) > 0 {
-		return s.Alarms[0], true
-	}
-	return live.Alarm{}, false
+	return al, count
 }
 
 func drawAlarm(a frame.Area, s *live.Snapshot, v view) {
@@ -206,9 +223,14 @@ func drawAlarm(a frame.Area, s *live.Snapshot, v view) {
 		a.Text(1, 0, "✕ THE PROGRAM HAS SAID NOTHING FOR "+spanText(v.late)+": what you see is old. Look at the gauges", frame.Banner)
 		return
 	}
-	al, some := worst(s)
-	if !some {
+	al, count := worst(s)
+	if count == 0 {
+		drawTabs(a, v.page)
+		a = a.Sub(0, 0, a.W-tabsWidth(a), 1)
 		x := a.Text(1, 0, "no alarms", frame.Faint)
+		if hidden := len(s.Alarms); hidden > 0 {
+			x = a.Text(1, 0, fmt.Sprintf("no alarms, %d put aside", hidden), frame.Caution)
+		}
 		if v.message != "" {
 			a.Text(max(x+2, 12), 0, v.message, frame.Caution)
 		} else if s.Notice != "" {
@@ -217,8 +239,8 @@ func drawAlarm(a frame.Area, s *live.Snapshot, v view) {
 		return
 	}
 	text := "▲ ALARM"
-	if n := len(s.Alarms); n > 1 {
-		text += fmt.Sprintf(" 1 of %d", n)
+	if count > 1 {
+		text += fmt.Sprintf(" 1 of %d", count)
 	}
 	text += "  " + al.Name
 	// What happened, what the bench does, what to do. Where that is too long,
@@ -261,9 +283,30 @@ func sentences(parts ...string) string {
 		if text != "" {
 			text += "; "
 		}
-		text += p
+		text += strings.TrimSuffix(p, ".")
 	}
 	return text
+}
+
+// drawTabs names the pages and the keys that turn to them.
+func drawTabs(a frame.Area, page Page) {
+	x := a.W - tabsWidth(a)
+	for p := range pageCount {
+		ink := frame.Faint
+		if p == page {
+			ink = frame.Strong
+		}
+		x = a.Text(x, 0, strconv.Itoa(int(p)+1), frame.Keys)
+		x = a.Text(x+1, 0, p.String(), ink) + 2
+	}
+}
+
+func tabsWidth(a frame.Area) int {
+	w := 0
+	for p := range pageCount {
+		w += a.Width(p.String()) + 4
+	}
+	return w
 }
 
 // drawSmall keeps the essentials where no page fits.
@@ -281,7 +324,7 @@ func drawSmall(a frame.Area, s *live.Snapshot, v view) {
 	if v.late > 0 {
 		line("✕ OLD: silent "+spanText(v.late), frame.Banner)
 	}
-	if al, some := worst(s); some {
+	if al, count := worst(s); count > 0 {
 		line("▲ "+al.Name, frame.Banner)
 	}
 	if !s.Record.Writing {
@@ -317,5 +360,6 @@ type frozen struct {
 func (f *frozen) over(now *live.Snapshot) *live.Snapshot {
 	mixed := *now
 	mixed.PressureA, mixed.Expected, mixed.Residuals = f.snapshot.PressureA, f.snapshot.Expected, f.snapshot.Residuals
+	mixed.Trends = f.snapshot.Trends
 	return &mixed
 }

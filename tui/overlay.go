@@ -3,9 +3,11 @@ package tui
 import (
 	"fmt"
 	"math"
+	"sort"
 	"strings"
 	"time"
 
+	"barline/model/emission"
 	"barline/model/live"
 	"barline/model/reading"
 	"barline/model/unit"
@@ -33,8 +35,9 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 		put("Esc", "close")
 		return
 	}
+	put("?", "keys")
 	for _, b := range bindings[1:] {
-		if b.short == "" || b.gas && s.ReadOnly || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || b.key == "s" && !armed(s) {
+		if b.short == "" || b.gas && s.ReadOnly || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || b.key == "s" && !armed(s) || (b.key == "p" || b.key == "x") && s.Program.Count == 0 {
 			continue
 		}
 		put(b.label, b.short)
@@ -74,7 +77,14 @@ func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 		b := box(a, "note for the record", 64, 3, frame.Rule)
 		input(b.Sub(0, 1, b.W, 1), v.text)
 	case alarmOverlay:
-		drawAlarms(a, s)
+		drawAlarms(a, s, min(v.pick, len(s.Alarms)-1))
+	case scanOverlay:
+		drawScanForm(a, s, v)
+	case findOverlay:
+		b := box(a, "find in the record", 64, 3, frame.Rule)
+		input(b.Sub(0, 1, b.W, 1), v.text)
+	case greetOverlay:
+		drawGreeting(a, s)
 	case leaveOverlay:
 		b := box(a, "leave", 50, 3, frame.Caution)
 		b.Text(0, 0, "The bench is put on HOLD and the record closed.", frame.Plain)
@@ -100,10 +110,8 @@ func drawHelp(a frame.Area) {
 		mark, text string
 		ink        frame.Ink
 	}{
-		{"HOLD", "shuts inlet, pump and vent and freezes the setpoint", frame.Hold},
 		{"● ▲ ▼", "measured: now, with pressure rising, with pressure falling", frame.Measured},
-		{"◇ ╌", "predicted, by the answer named beside it: linear, estimate", frame.Predicted},
-		{"", "or anchored; the shaded band is one standard uncertainty", frame.Faint},
+		{"◇ ╌", "predicted, by the answer beside it; band: one standard uncertainty", frame.Predicted},
 		{"✕ ○ △ ◆", "failure, function check, out of specification, maintenance", frame.Alarm},
 	}
 	rows := [2]int{}
@@ -111,11 +119,11 @@ func drawHelp(a frame.Area) {
 		rows[column(k)]++
 	}
 	most := max(rows[0], rows[1])
-	b := box(a, "keys", 74, most+1+len(legend), frame.Rule)
+	b := box(a, "keys", 76, most+len(legend), frame.Rule)
 	y := [2]int{}
 	for _, k := range bindings {
 		side := column(k)
-		half := b.Sub(side*38, 0, 37, b.H)
+		half := b.Sub(side*37, 0, 39, b.H)
 		ink := frame.Keys
 		if k.key == "tab" {
 			ink = frame.Hold
@@ -124,9 +132,13 @@ func drawHelp(a frame.Area) {
 		half.Text(8, y[side], k.what, frame.Plain)
 		y[side]++
 	}
+	note := b.Sub(37, most-2, 39, 2)
+	note.Right(7, 0, "HOLD", frame.Hold)
+	note.Text(8, 0, "shuts inlet, pump and vent", frame.Faint)
+	note.Text(8, 1, "and freezes the setpoint", frame.Faint)
 	for i, m := range legend {
-		b.Right(7, most+1+i, m.mark, m.ink)
-		b.Text(8, most+1+i, m.text, frame.Faint)
+		b.Right(7, most+i, m.mark, m.ink)
+		b.Text(8, most+i, m.text, frame.Faint)
 	}
 }
 
@@ -231,16 +243,27 @@ func outlook(s *live.Snapshot, from, target unit.Pascal) string {
 	return text
 }
 
+// onCurve returns the emission of the curve at a pressure, straight between
+// its points; ok is false beyond its ends and where it has none.
+func onCurve(curve []emission.CurvePoint, p unit.Pascal) (at, sigma unit.Metre, ok bool) {
+	i := sort.Search(len(curve), func(i int) bool { return curve[i].Pressure >= p })
+	if i == 0 && len(curve) > 0 && curve[0].Pressure == p {
+		return curve[0].Emission, curve[0].Sigma, curve[0].Emission > 0
+	}
+	if i == 0 || i == len(curve) {
+		return 0, 0, false
+	}
+	a, b := curve[i-1], curve[i]
+	if !(a.Emission > 0) || !(b.Emission > 0) || !(b.Pressure > a.Pressure) {
+		return 0, 0, false
+	}
+	f := unit.Metre((p - a.Pressure) / (b.Pressure - a.Pressure))
+	return a.Emission + f*(b.Emission-a.Emission), a.Sigma + f*(b.Sigma-a.Sigma), true
+}
+
 // emissionAt reads the predicted emission off the snapshot's curve.
 func emissionAt(s *live.Snapshot, p unit.Pascal) string {
-	for i := 1; i < len(s.Curve); i++ {
-		a, b := s.Curve[i-1], s.Curve[i]
-		if p < a.Pressure || p > b.Pressure || a.Emission == 0 || b.Emission == 0 || !(b.Pressure > a.Pressure) {
-			continue
-		}
-		f := float64((p - a.Pressure) / (b.Pressure - a.Pressure))
-		emission := a.Emission + unit.Metre(f)*(b.Emission-a.Emission)
-		sigma := a.Sigma + unit.Metre(f)*(b.Sigma-a.Sigma)
+	if emission, sigma, ok := onCurve(s.Curve, p); ok {
 		answer := ""
 		if s.Prediction.Valid {
 			answer = " " + s.Prediction.Answer.String()
@@ -275,7 +298,8 @@ func wrap(a frame.Area, text string, ink frame.Ink) int {
 	return y
 }
 
-func drawAlarms(a frame.Area, s *live.Snapshot) {
+// drawAlarms lists the alarms, the chosen one in sight.
+func drawAlarms(a frame.Area, s *live.Snapshot, pick int) {
 	if len(s.Alarms) == 0 {
 		b := box(a, "alarms", 40, 1, frame.Rule)
 		b.Text(0, 0, "none", frame.Faint)
@@ -283,10 +307,17 @@ func drawAlarms(a frame.Area, s *live.Snapshot) {
 	}
 	b := box(a, "alarms", a.W-8, min(a.H-2, 4*len(s.Alarms)), frame.Alarm)
 	y := 0
-	for i, al := range s.Alarms {
+	first := min(max(pick, 0), len(s.Alarms)-1)
+	for first > 0 && (first+1)*4 > b.H && pick-first < b.H/4-1 {
+		first--
+	}
+	for i, al := range s.Alarms[first:] {
 		if y+3 > b.H {
-			b.Right(b.W, b.H-1, fmt.Sprintf(" and %d more", len(s.Alarms)-i), frame.Caution)
+			b.Right(b.W, b.H-1, fmt.Sprintf(" and %d more", len(s.Alarms)-first-i), frame.Caution)
 			return
+		}
+		if first+i == pick {
+			b.Set(0, y, '▶', frame.Keys)
 		}
 		state, ink := "▲ active, not seen", frame.Alarm
 		switch {
@@ -297,10 +328,13 @@ func drawAlarms(a frame.Area, s *live.Snapshot) {
 		case !al.Active:
 			state, ink = "△ over, seen", frame.Faint
 		}
-		x := b.Text(0, y, al.Since.UTC.In(a.Style().Location()).Format("15:04:05")+" ", frame.Faint)
+		if al.Hidden {
+			state, ink = "○ "+al.State, frame.Faint
+		}
+		x := b.Text(2, y, al.Since.UTC.In(a.Style().Location()).Format("15:04:05")+" ", frame.Faint)
 		x = b.Text(x, 0+y, al.Name, frame.Strong) + 2
 		b.Right(b.W, y, state, ink)
 		y++
-		y += wrap(b.Sub(9, y, b.W-9, 3), al.Cause+". "+al.Consequence+". "+al.Action+".", frame.Plain) + 1
+		y += wrap(b.Sub(11, y, b.W-11, 3), sentences(al.Cause, al.Consequence, al.Action), frame.Plain) + 1
 	}
 }

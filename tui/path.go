@@ -7,11 +7,9 @@ import (
 	"barline/model/live"
 	"barline/model/reading"
 	"barline/model/unit"
+	"barline/tui/chart"
 	"barline/tui/frame"
 )
-
-// pathHeight is the rows of the gas path.
-const pathHeight = 4
 
 // drawPath draws the light's way through the cells and the fibre, and beneath
 // it the gas line that joins them:
@@ -19,6 +17,9 @@ const pathHeight = 4
 //	1.30 µJ ─▶┤cell A  9.003 bar├══════ core 9.001 bar ══════┤cell B  8.999 bar├─▶ 261.2 nm
 //	          │ ● good              30 cm, 22.4 °C           │ ● good
 //	 supply ──┴────── inlet ──── controller 9.006 bar ───────┴── vent ── pump
+//
+// Where there are more than three rows, the pressure along the core stands
+// between the cells.
 func drawPath(a frame.Area, s *live.Snapshot) {
 	w := a.W
 	energy := show(s, reading.PulseEnergy)
@@ -67,9 +68,58 @@ func drawPath(a frame.Area, s *live.Snapshot) {
 			ink = t.ink
 		}
 	}
+	if behind := lagText(s); behind != "" && fibre.W >= fibre.Width(note+" · "+behind) {
+		note += " · " + behind
+		ink = frame.Predicted
+	}
 	fibre.Centre(0, 1, fibre.W, note, ink)
 
-	drawLine(a.Sub(0, 2, w, 2), s, ax, bx)
+	for y := 2; y < a.H-1; y++ {
+		a.Set(ax, y, '│', frame.Gas)
+		a.Set(bx, y, '│', frame.Gas)
+	}
+	if a.H > 3 {
+		drawProfile(a.Sub(ax+cell, 2, bx-ax-cell, a.H-3), s)
+	}
+	drawLine(a.Sub(0, a.H-1, w, 1), s, ax, bx)
+}
+
+// noticeableLag is the lag of the core that is worth a word.
+const noticeableLag = 5 * unit.Millibar
+
+// lagText says how far the gas in the core is behind the cells.
+func lagText(s *live.Snapshot) string {
+	lag := max(s.Lag, -s.Lag)
+	if !s.CoreKnown || !(lag >= noticeableLag) {
+		return ""
+	}
+	side := "below"
+	if s.Lag < 0 {
+		side = "above"
+	}
+	text := "core " + fixed(float64(lag)/1e2, 0) + " mbar " + side
+	if s.SettleIn > 0 {
+		text += ", even in " + spanText(s.SettleIn)
+	}
+	return text
+}
+
+// drawProfile draws the pressure along the core, as the model has it, under
+// the fibre that it belongs to.
+func drawProfile(a frame.Area, s *live.Snapshot) {
+	if len(s.Profile) < 2 {
+		return
+	}
+	var y chart.Range
+	points := make([]chart.Point, len(s.Profile))
+	for i, p := range s.Profile {
+		y.Include(p.Bar())
+		points[i] = chart.Point{X: float64(i), Y: p.Bar()}
+	}
+	y = y.Padded(0.02, 0.02) // 20 mbar: an even core is a straight line
+	p := chart.New(a, chart.Axes{X: chart.Between(0, float64(len(points)-1)), Y: y, Bare: true})
+	p.Curve(points, frame.Predicted)
+	p.Done()
 }
 
 func statusInk(r shown) frame.Ink {

@@ -12,10 +12,17 @@ const (
 	// Bench shows the gas path, the pressure, the emission and how far it is
 	// from where it should be.
 	Bench Page = iota
+	// Scan shows a run of pressure steps: progress, rows, and how far each
+	// point is from the prediction, rising and falling apart.
+	Scan
+	// Drift lays what is measured beside the residual, on one time axis.
+	Drift
+	// Log shows the record as it grows.
+	Log
 	pageCount
 )
 
-var pageText = [pageCount]string{"bench"}
+var pageText = [pageCount]string{"bench", "scan", "drift", "log"}
 
 // String returns the page's name as the screen writes it.
 func (p Page) String() string {
@@ -61,7 +68,16 @@ func draw(s *live.Snapshot, v view, w, h int, style Style) *frame.Frame {
 	}
 	drawHead(a.Sub(0, 0, w, headHeight), s, v)
 	body := a.Sub(0, headHeight, w, h-headHeight-1)
-	drawBench(body, s, v)
+	switch v.page {
+	case Scan:
+		drawScan(body, s)
+	case Drift:
+		drawDrift(body, s, v)
+	case Log:
+		drawLog(body, s, v)
+	default:
+		drawBench(body, s, v)
+	}
 	drawFoot(a.Sub(0, h-1, w, 1), s, v)
 	drawOverlay(body, s, v)
 	return f

@@ -35,11 +35,15 @@ type Options struct {
 	Style Style
 	In    io.Reader // nil is the standard input
 	Out   io.Writer // nil is the standard output
+	Greet bool      // begin with how to begin
+	Plain bool      // begin without charts, for slow lines
 }
 
 const (
 	// redrawEvery is the shortest time between two frames.
 	redrawEvery = 33 * time.Millisecond
+	// plainEvery is that without charts, which is for slow lines.
+	plainEvery = 2 * time.Second
 	// lateAfter is how long the bench may say nothing before the screen says
 	// that it is old.
 	lateAfter = 3 * time.Second
@@ -55,6 +59,10 @@ func Run(ctx context.Context, src Source, o Options) error {
 	inner, end := context.WithCancel(ctx)
 	defer end()
 	m := &model{ctx: inner, src: src, style: o.Style, s: src.Snapshot(), moved: time.Now()}
+	m.v.plain = o.Plain
+	if o.Greet {
+		m.v.overlay = greetOverlay
+	}
 	options := []tea.ProgramOption{
 		tea.WithContext(inner), tea.WithAltScreen(), tea.WithoutSignalHandler(), tea.WithFPS(30), tea.WithOutput(o.Out),
 	}
@@ -128,7 +136,11 @@ func (m *model) Init() tea.Cmd { return tea.Batch(m.wait(), m.second()) }
 // wait returns the command that sleeps until the bench changes, at least
 // redrawEvery after the last frame.
 func (m *model) wait() tea.Cmd {
-	after := redrawEvery - time.Since(m.drawn)
+	every := redrawEvery
+	if m.v.plain {
+		every = plainEvery
+	}
+	after := every - time.Since(m.drawn)
 	return func() tea.Msg {
 		if after > 0 {
 			t := time.NewTimer(after)

@@ -13,6 +13,11 @@ type view struct {
 	zoom    int           // steps from the usual span, negative is closer
 	back    time.Duration // from the present to the right end of the time axes
 	frozen  *frozen
+	cursor  time.Duration // bench Mono that is read out; 0: none
+	plain   bool          // no charts, for slow lines
+	scroll  int           // lines of the record back from the newest
+	find    string        // only lines of the record with this
+	pick    int           // alarm chosen in the list
 	overlay overlay
 	text    string // what has been typed into the form
 	message string // why the last key did nothing, or what it did
@@ -30,11 +35,19 @@ const (
 	noteOverlay     // a remark is being typed
 	alarmOverlay    // the list of alarms
 	leaveOverlay    // leaving was asked for
+	scanOverlay     // a scan is being typed
+	findOverlay     // what to find in the record is being typed
+	greetOverlay    // how to begin
+	overlayCount
 )
 
 // typing reports whether keys are text.
 func (v view) typing() bool {
-	return v.overlay == armOverlay || v.overlay == setpointOverlay || v.overlay == noteOverlay
+	switch v.overlay {
+	case armOverlay, setpointOverlay, noteOverlay, scanOverlay, findOverlay:
+		return true
+	}
+	return false
 }
 
 // spans are the stretches of time that the time axes can show, usualSpan the

@@ -12,6 +12,8 @@ import (
 	"barline/tui/frame"
 )
 
+func same(v float64) float64 { return v }
+
 func labels(ticks []Tick) string {
 	var l []string
 	for _, t := range ticks {
@@ -89,7 +91,7 @@ func TestSpikeIsNeverLost(t *testing.T) {
 		}
 		f := frame.New(30, 10, frame.Style{})
 		p := New(f.Area(), Axes{X: Between(0, 1000), Y: Between(0, 10)})
-		p.History(l, 1, time.Second, frame.Measured)
+		p.HistoryOf(l, same, time.Second, frame.Measured)
 		p.Done()
 		found := false
 		for x := range 30 {
@@ -112,7 +114,7 @@ func TestGapStaysOpen(t *testing.T) {
 	}
 	f := frame.New(51, 10, frame.Style{})
 	p := New(f.Area(), Axes{X: Between(0, 100), Y: Between(0, 10)})
-	p.History(l, 1, 2*time.Second, frame.Measured)
+	p.HistoryOf(l, same, 2*time.Second, frame.Measured)
 	p.Done()
 	for x := range 51 {
 		drawn := false
@@ -188,8 +190,8 @@ func TestChartStandsAnything(t *testing.T) {
 		p.Dashes(b, frame.Predicted)
 		p.Level(anything(t, "level"), frame.Target)
 		p.Upright(anything(t, "upright"), frame.Target)
-		p.History(l, 1, time.Second, frame.Measured)
-		p.Dotted(l, 1, time.Second, frame.Measured)
+		p.HistoryOf(l, same, time.Second, frame.Measured)
+		p.Dotted(l, same, time.Second, frame.Measured)
 		p.Label(anything(t, "label y"), "label", frame.Plain)
 		p.Mark(Point{anything(t, "mx"), anything(t, "my")}, '●', frame.Plain)
 		p.Done()
@@ -214,7 +216,7 @@ func BenchmarkHistory(b *testing.B) {
 	for b.Loop() {
 		f := frame.New(78, 21, frame.Style{})
 		p := New(f.Area(), Axes{X: Between(0, 100), Y: Between(-1.1, 1.1)})
-		p.History(l, 1, time.Second, frame.Measured)
+		p.HistoryOf(l, same, time.Second, frame.Measured)
 		p.Done()
 	}
 }

@@ -13,6 +13,8 @@ type Axes struct {
 	X, Y           Range
 	XTicks, YTicks []Tick
 	LabelWidth     int // of the numbers on the left; 0 takes what they need
+
+	Bare bool // no axis at all: the pane is the whole area
 }
 
 // Point is a place in the units of the axes.
@@ -54,6 +56,11 @@ func New(a frame.Area, axes Axes) *Plot {
 	}
 	if a.W-label-1 < 2 || a.H-bottom < 1 || axes.X.Empty() || axes.Y.Empty() ||
 		!(axes.X.Hi > axes.X.Lo) || !(axes.Y.Hi > axes.Y.Lo) {
+		return p
+	}
+	if axes.Bare {
+		p.pane = a
+		p.dots = newDots(a)
 		return p
 	}
 	p.pane = a.Sub(label+1, 0, a.W-label-1, a.H-bottom)
@@ -206,14 +213,15 @@ func (p *Plot) Upright(x float64, ink frame.Ink) {
 	}
 }
 
-// History draws a level of history, its times in seconds on X and its values
-// times scale on Y. Buckets that lie further apart than gap are not joined.
-func (p *Plot) History(l trend.Level, scale float64, gap time.Duration, ink frame.Ink) {
+// HistoryOf draws a level of history, its times in seconds on X and its values
+// turned by to, which must rise, on Y. Buckets that lie further apart than gap
+// are not joined.
+func (p *Plot) HistoryOf(l trend.Level, to func(float64) float64, gap time.Duration, ink frame.Ink) {
 	if p.dots == nil || l.Width <= 0 {
 		return
 	}
 	from := time.Duration(max(p.axes.X.Lo, -1e9) * 1e9)
-	to := time.Duration(min(p.axes.X.Hi, 9e9) * 1e9)
+	until := time.Duration(min(p.axes.X.Hi, 9e9) * 1e9)
 	var c struct { // the dot column being gathered
 		x              int
 		low, high, sum float64
@@ -238,7 +246,7 @@ func (p *Plot) History(l trend.Level, scale float64, gap time.Duration, ink fram
 	}
 	for _, b := range l.Buckets {
 		mid := b.Start + l.Width/2
-		if b.Count == 0 || mid < from-gap-l.Width || mid > to+gap+l.Width {
+		if b.Count == 0 || mid < from-gap-l.Width || mid > until+gap+l.Width {
 			continue
 		}
 		x := clampInt(math.Round(p.x(mid.Seconds())))
@@ -249,21 +257,21 @@ func (p *Plot) History(l trend.Level, scale float64, gap time.Duration, ink fram
 			c.x, c.low, c.high, c.sum = x, math.Inf(1), math.Inf(-1), 0
 			c.joined = drawn && b.Start-lastEnd <= gap
 		}
-		c.low, c.high = min(c.low, b.Min*scale), max(c.high, b.Max*scale)
-		c.sum += b.Mean * scale
+		c.low, c.high = min(c.low, to(b.Min)), max(c.high, to(b.Max))
+		c.sum += to(b.Mean)
 		c.n++
 		c.end = b.Start + l.Width
 	}
 	draw()
 }
 
-// Dotted is History as a broken line.
-func (p *Plot) Dotted(l trend.Level, scale float64, gap time.Duration, ink frame.Ink) {
+// Dotted is HistoryOf as a broken line.
+func (p *Plot) Dotted(l trend.Level, to func(float64) float64, gap time.Duration, ink frame.Ink) {
 	if p.dots == nil {
 		return
 	}
 	p.dots.broken = true
-	p.History(l, scale, gap, ink)
+	p.HistoryOf(l, to, gap, ink)
 	p.dots.broken = false
 }
 

@@ -19,18 +19,22 @@ var update = flag.Bool("update", false, "rewrite the pictures in testdata, which
 func TestPictures(t *testing.T) {
 	for _, c := range []struct {
 		name, situation string
+		page            tui.Page
 		w, h            int
-		style           frame.Style
+		light           bool
 	}{
-		{"bench", "filling", 120, 40, frame.Style{Colours: frame.Palette}},
-		{"bench-80x24", "filling", 80, 24, frame.Style{Colours: frame.Palette}},
-		{"bench-light", "calm", 120, 40, frame.Style{Colours: frame.Palette, Light: true}},
-		{"bench-alarm", "stale", 100, 30, frame.Style{Colours: frame.Palette}},
+		{"bench", "filling", tui.Bench, 120, 40, false},
+		{"bench-light", "calm", tui.Bench, 80, 24, true},
+		{"bench-alarm", "stale", tui.Bench, 100, 30, false},
+		{"scan", "filling", tui.Scan, 120, 40, false},
+		{"drift", "calm", tui.Drift, 120, 40, false},
+		{"log", "filling", tui.Log, 80, 24, false},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			var b bytes.Buffer
-			f := tui.Draw(tuitest.Situations()[c.situation](), tui.Bench, c.w, c.h, c.style)
-			if err := SVG(&b, f, c.style, "the bench page: "+c.situation); err != nil {
+			style := frame.Style{Colours: frame.Palette, Light: c.light}
+			f := tui.Draw(tuitest.Situations()[c.situation](), c.page, c.w, c.h, style)
+			if err := SVG(&b, f, style, "the "+c.page.String()+" page: "+c.situation); err != nil {
 				t.Fatal(err)
 			}
 			path := filepath.Join("testdata", c.name+".svg")

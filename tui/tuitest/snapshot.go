@@ -96,6 +96,7 @@ func Calm() *live.Snapshot {
 	set(s, reading.Emission, "emission", 261.2e-9, 60*time.Millisecond)
 	set(s, reading.EmissionWidth, "width", 14.2e-9, 60*time.Millisecond)
 	set(s, reading.EmissionStrength, "strength", 0.062, 60*time.Millisecond)
+	s.Profile = profile(9.003, 9.001, 8.999)
 	s.Prediction = Prediction(9.001)
 	s.Curve = Curve()
 	for i := range 13 {
@@ -125,7 +126,57 @@ func Calm() *live.Snapshot {
 		}
 	}
 	s.PressureA, s.Expected, s.Residuals = a.View(), e.View(), r.View()
+	s.Trends[reading.CellAPressure] = s.PressureA
+	for role, f := range map[reading.Role]func(i int) float64{
+		reading.FibreTemperature: func(i int) float64 { return 295.5 + 0.3*float64(i)/2525 + 0.01*wobble(i) },
+		reading.EmissionWidth:    func(i int) float64 { return (14.2 + 0.2*wobble(i)) * 1e-9 },
+		reading.EmissionStrength: func(i int) float64 { return 0.062 + 0.001*wobble(i) },
+	} {
+		ring := trend.NewRing()
+		for i := range int(Elapsed / time.Second) {
+			ring.Add(time.Duration(i)*time.Second, f(i))
+		}
+		s.Trends[role] = ring.View()
+	}
 	return s
+}
+
+// profile sags smoothly from the cells' pressures to the middle's, in bar.
+func profile(a, middle, b float64) []unit.Pascal {
+	p := make([]unit.Pascal, 32)
+	for i := range p {
+		x := float64(i) / float64(len(p)-1)
+		ends := a + (b-a)*x
+		sag := (a+b)/2 - middle
+		p[i] = unit.Pascal((ends - sag*4*x*(1-x)) * 1e5)
+	}
+	return p
+}
+
+// rows are what a scan of eleven steps up and some down has written.
+func rows() []live.StepData {
+	var all []live.StepData
+	for i := range 17 {
+		bar := 7 + 0.4*float64(i)
+		if i > 10 {
+			bar = 11 - 0.4*float64(i-10)
+		}
+		r := live.StepData{
+			Program: "scan", Step: i + 1, Label: "step", SetPa: bar * 1e5, MeasuredPa: (bar + 0.002) * 1e5, CorePa: (bar + 0.001) * 1e5,
+			TemperatureK: 295.55, EnergyJ: 1.3e-6, SigmaM: 10e-9, ScatterM: 0.3e-9, Samples: 40, Status: "good",
+		}
+		if i == 8 {
+			r.Status, r.Samples = "function check", 0
+			all = append(all, r)
+			continue
+		}
+		p := predicted(bar) * 1e-9
+		d := (-0.9 + 0.15*float64(i%11)*0.3 + 0.3*wobble(i)) * 1e-9
+		m := p + d
+		r.PredictedM, r.MeasuredM, r.ResidualM = &p, &m, &d
+		all = append(all, r)
+	}
+	return all
 }
 
 // Prediction returns what the model is taken to say at a pressure in bar.
@@ -166,6 +217,8 @@ func Filling() *live.Snapshot {
 	set(s, reading.ControllerSensor, "controller", 9.74e5, 210*time.Millisecond)
 	set(s, reading.Setpoint, "setpoint", 9.8e5, 200*time.Millisecond)
 	set(s, reading.Emission, "emission", 266.9e-9, 60*time.Millisecond)
+	s.Lag, s.SettleIn = 0.13*unit.Bar, 38*time.Second
+	s.Profile = profile(9.71, 9.58, 9.69)
 	s.Prediction = Prediction(9.58)
 	s.Residual = 0.1 * unit.Nanometre
 	a, e := trend.NewRing(), trend.NewRing()
@@ -176,7 +229,8 @@ func Filling() *live.Snapshot {
 		e.Add(t, set*1e5)
 	}
 	s.PressureA, s.Expected = a.View(), e.View()
-	s.Program = live.Progress{Name: "scan", Label: "step to 9 bar", Index: 4, Count: 11}
+	s.Program = live.Progress{Name: "scan", Label: "step to 11.000 bar", Index: 10, Count: 21, Left: 4*time.Minute + 40*time.Second}
+	s.Rows = rows()
 	s.Points = nil
 	for i := range 22 {
 		bar, rising := 7+0.4*float64(i), true

@@ -1,0 +1,91 @@
+package tui
+
+import (
+	"strings"
+	"unicode"
+
+	"barline/model/live"
+)
+
+const maxNote = 200
+
+// typed answers a key while a form is open.
+func (v view) typed(key string, s *live.Snapshot) (view, []live.Intent) {
+	switch key {
+	case "esc":
+		return pressClose(v, s, key)
+	case "backspace", "ctrl+h":
+		if r := []rune(v.text); len(r) > 0 {
+			v.text = string(r[:len(r)-1])
+		}
+		return v, nil
+	case "ctrl+u":
+		v.text = ""
+		return v, nil
+	case "enter":
+		return v.enter(s)
+	}
+	if r := []rune(key); len(r) == 1 && unicode.IsPrint(r[0]) && len([]rune(v.text)) < maxNote {
+		v.text += key
+	}
+	return v, nil
+}
+
+// enter finishes a form.
+func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
+	text := strings.TrimSpace(v.text)
+	switch v.overlay {
+	case armOverlay:
+		if text != armWord {
+			v.message = "type " + armWord + ", or Esc"
+			return v, nil
+		}
+		v.overlay, v.text = noOverlay, ""
+		return v, []live.Intent{live.Arm{}}
+	case setpointOverlay:
+		target, err := parseTarget(s, text)
+		if err != nil {
+			v.message = err.Error()
+			return v, nil
+		}
+		if !armed(s) { // it may have lapsed while typing
+			v.overlay, v.text = noOverlay, ""
+			v.message = "no longer armed: press a, then s"
+			return v, nil
+		}
+		v.overlay, v.text = noOverlay, ""
+		return v, []live.Intent{live.GoTo{Target: target}}
+	case scanOverlay:
+		program, err := parseScan(s, text)
+		if err != nil {
+			v.message = err.Error()
+			return v, nil
+		}
+		v.overlay, v.text = noOverlay, ""
+		if !armed(s) {
+			v.message = "no longer armed: press a, then r"
+			return v, nil
+		}
+		v.page = Scan
+		return v, []live.Intent{live.Run{Program: program}}
+	case findOverlay:
+		v.overlay, v.text, v.find, v.scroll = noOverlay, "", text, 0
+		return v, nil
+	}
+	v.overlay, v.text = noOverlay, ""
+	if text == "" {
+		return v, nil
+	}
+	v.message = "noted"
+	return v, []live.Intent{live.Note{Text: text}}
+}
+
+// circumstances are what a mark keeps beside its time.
+func circumstances(s *live.Snapshot) string {
+	p, _, _ := mainPressure(s)
+	text := "pressure " + p
+	if s.ResidualKnown {
+		text += ", measured minus predicted " + signed(s.Residual.Nanometres(), 1) + " nm"
+	}
+	return text
+}

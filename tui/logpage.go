@@ -1,0 +1,76 @@
+package tui
+
+import (
+	"fmt"
+	"strings"
+
+	"barline/model/live"
+	"barline/tui/frame"
+)
+
+// found returns the lines that hold text, whatever their case.
+func found(lines []string, text string) []string {
+	if text == "" {
+		return lines
+	}
+	text = strings.ToLower(text)
+	var kept []string
+	for _, l := range lines {
+		if strings.Contains(strings.ToLower(l), text) {
+			kept = append(kept, l)
+		}
+	}
+	return kept
+}
+
+// drawLog shows the lines to the instruments and the record as it grows, its
+// newest line at the bottom.
+func drawLog(a frame.Area, s *live.Snapshot, v view) {
+	x := 1
+	for _, l := range s.Links {
+		text, ink := "● "+l.Instrument, frame.Good
+		if !l.Up {
+			text, ink = "✕ "+l.Instrument+": "+l.Reason, frame.Alarm
+		}
+		x = a.Text(x, 0, text, ink) + 3
+	}
+	x = heading(a.Sub(0, 1, a.W, 1), "record", "")
+	if s.Folder != "" {
+		x = a.Text(x, 1, s.Folder, frame.Faint) + 2
+	}
+	lines := found(s.Recent, v.find)
+	if v.find != "" {
+		a.Text(x, 1, fmt.Sprintf("with %q: %d of %d lines, 0 shows all", v.find, len(lines), len(s.Recent)), frame.Caution)
+	}
+	rows := a.H - 2
+	newest := len(lines) - min(v.scroll, max(0, len(lines)-1))
+	if v.scroll > 0 && newest < len(lines) {
+		a.Right(a.W-1, 1, fmt.Sprintf("%d newer below, 0 goes there", len(lines)-newest), frame.Caution)
+	}
+	shown := lines[max(0, newest-rows):newest]
+	if len(shown) == 0 {
+		blank(a.Sub(0, 2, a.W, rows), "no such line yet")
+	}
+	for i, l := range shown {
+		a.Text(1, 2+i, l, lineInk(l))
+	}
+}
+
+// lineInk tells the kinds of record apart; the kind itself stands in the line.
+func lineInk(line string) frame.Ink {
+	fields := strings.Fields(line)
+	if len(fields) < 2 {
+		return frame.Plain
+	}
+	switch live.Kind(fields[1]) {
+	case live.KindAlarm:
+		return frame.Alarm
+	case live.KindNote:
+		return frame.Strong
+	case live.KindIntent, live.KindCommand, live.KindReadback:
+		return frame.Target
+	case live.KindPrediction, live.KindNode, live.KindCalibration:
+		return frame.Predicted
+	}
+	return frame.Plain
+}

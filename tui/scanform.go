@@ -1,0 +1,148 @@
+package tui
+
+import (
+	"fmt"
+	"math"
+	"strings"
+	"time"
+
+	"barline/model/live"
+	"barline/model/unit"
+	"barline/tui/frame"
+)
+
+func pressScan(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+	if !armed(s) {
+		v.message = "not armed: press a first"
+		return v, nil
+	}
+	v.overlay, v.text = scanOverlay, ""
+	return v, nil
+}
+
+func pressPause(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+	switch {
+	case s.Program.Count == 0:
+		v.message = "no program is under way"
+	case !s.Program.Paused:
+		return v, []live.Intent{live.Pause{}}
+	case !armed(s):
+		v.message = "not armed: press a, then p"
+	default:
+		return v, []live.Intent{live.Resume{}}
+	}
+	return v, nil
+}
+
+func pressEnd(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+	if s.Program.Count == 0 {
+		v.message = "no program is under way"
+		return v, nil
+	}
+	return v, []live.Intent{live.Stop{}}
+}
+
+// scanExample is how a scan is written: from, to, step, dwell; "back" comes
+// down again the same way.
+const scanExample = "7 bar : 12 bar : 0.5 bar : 20 s : back"
+
+// parseScan reads a scan as a person types it and checks it against the limits
+// of the bench.
+func parseScan(s *live.Snapshot, text string) (*live.Program, error) {
+	parts := strings.Split(text, ":")
+	for i := range parts {
+		parts[i] = strings.TrimSpace(parts[i])
+	}
+	back := len(parts) == 5 && parts[4] == "back"
+	if len(parts) != 4 && !back {
+		return nil, fmt.Errorf("expected from : to : step : dwell, such as %s", scanExample)
+	}
+	from, err := parseTarget(s, parts[0])
+	if err != nil {
+		return nil, err
+	}
+	to, err := parseTarget(s, parts[1])
+	if err != nil {
+		return nil, err
+	}
+	step, err := unit.ParsePressure(parts[2])
+	if err != nil {
+		return nil, err
+	}
+	dwell, err := unit.ParseSecond(parts[3])
+	if err != nil {
+		return nil, err
+	}
+	if !(step > 0) {
+		return nil, fmt.Errorf("step %v: expected more than 0 bar", step)
+	}
+	if !(dwell >= 0) {
+		return nil, fmt.Errorf("dwell %g s: expected 0 s or more", float64(dwell))
+	}
+	// A hair of tolerance: 7 bar to 12 bar by 0.1 bar is 50 steps and not 49.
+	n := math.Floor(math.Abs(float64(to-from))/float64(step) + 1e-9)
+	if n+1 > live.MaxPhases/2 {
+		return nil, fmt.Errorf("%.0f steps: expected at most %d", n+1, live.MaxPhases/2)
+	}
+	if to < from {
+		step = -step
+	}
+	p := &live.Program{Name: "scan"}
+	add := func(target unit.Pascal) {
+		p.Phases = append(p.Phases, live.Phase{
+			Label: "step to " + pressureText(target), Action: live.Reach, Target: target, Dwell: dwell.Duration(), Row: true,
+		})
+	}
+	for i := range int(n) + 1 {
+		add(from + unit.Pascal(i)*step)
+	}
+	if back {
+		for i := int(n) - 1; i >= 0; i-- {
+			add(from + unit.Pascal(i)*step)
+		}
+	}
+	if err := p.Check(s.Bench.Limits.Enforced()); err != nil {
+		return nil, err
+	}
+	return p, nil
+}
+
+// shortest returns how long a scan takes if every step settles at once.
+func shortest(s *live.Snapshot, p *live.Program) time.Duration {
+	l := s.Bench.Limits.Enforced()
+	at, total := s.Setpoint, time.Duration(0)
+	for _, ph := range p.Phases {
+		rate := l.RiseRate
+		if ph.Target < at {
+			rate = l.FallRate
+		}
+		total += ph.Dwell
+		if rate > 0 {
+			total += time.Duration(math.Abs(float64(ph.Target-at)) / float64(rate) * 1e9)
+		}
+		at = ph.Target
+	}
+	return total
+}
+
+func drawScanForm(a frame.Area, s *live.Snapshot, v view) {
+	b := box(a, "run a scan", 66, 7, frame.Target)
+	b.Text(0, 0, "from : to : step : dwell, such as "+scanExample, frame.Faint)
+	input(b.Sub(0, 2, b.W, 1), v.text)
+	if v.text == "" {
+		return
+	}
+	p, err := parseScan(s, v.text)
+	if err != nil {
+		wrap(b.Sub(0, 4, b.W, 3), err.Error(), frame.Caution)
+		return
+	}
+	first, last := p.Phases[0].Target, p.Phases[len(p.Phases)/2].Target
+	b.Text(0, 4, fmt.Sprintf("%d steps, at least %s", len(p.Phases), spanText(shortest(s, p))), frame.Plain)
+	if from := emissionAt(s, first); from != "" {
+		b.Text(0, 5, from+" at "+pressureText(first), frame.Predicted)
+	}
+	if to := emissionAt(s, last); to != "" {
+		b.Text(0, 6, to+" at "+pressureText(last), frame.Predicted)
+	}
+}
