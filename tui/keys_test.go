@@ -204,7 +204,7 @@ func TestStormOfKeysAndSizes(t *testing.T) {
 		"enter", "esc", "backspace", "tab", "left", "right", "arm", "9.2 bar", "7 bar:9 bar:1 bar:2 s:back",
 		"ctrl+u", "ctrl+c", "up", "down", "pgup", "pgdown", "\x00", "é", "界",
 	}
-	likely := []string{"a", "arm", "s", "9.2 bar", "r", "7 bar:9 bar:1 bar:2 s:back", "p", "x", "enter", "ctrl+u"}
+	likely := []string{"a", "arm", "s", "9.2 bar", "r", "7 bar:9 bar:1 bar:2 s:back", "p", "x", "enter", "enter", "ctrl+u", "esc"}
 	for c := rune(' '); c <= '~'; c++ {
 		keys = append(keys, string(c))
 	}
@@ -215,14 +215,14 @@ func TestStormOfKeysAndSizes(t *testing.T) {
 	v, s, w, h := view{}, benches[0], 80, 24
 	frames, asked := 0, 0
 	for i := range 100_000 {
-		switch n := r.IntN(100); {
-		case n < 5:
+		switch n := r.IntN(1000); {
+		case n < 50:
 			w, h = r.IntN(140), r.IntN(45)
-		case n < 8:
+		case n < 53:
 			s = benches[r.IntN(len(benches))]
 		default:
 			key := keys[r.IntN(len(keys))]
-			if r.IntN(2) == 0 { // the keys that gas hangs on, in any order
+			if r.IntN(5) > 0 { // the keys that gas hangs on, in any order
 				key = likely[r.IntN(len(likely))]
 			}
 			typed := []string{key}
