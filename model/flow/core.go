@@ -140,6 +140,9 @@ func (c *Core) Restore(s State) error {
 			return fmt.Errorf("core density %v mol/m³: %w", s.Density[i], ErrRange)
 		}
 	}
+	if c.n < MaxCells && s.Density[c.n] != 0 {
+		return fmt.Errorf("state of a finer core: %w: wanted one of %d volumes", ErrRange, c.n)
+	}
 	c.gas, c.state = gas, s
 	return nil
 }

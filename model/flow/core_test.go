@@ -288,6 +288,7 @@ func TestBadInputIsRefused(t *testing.T) {
 		"cold":                func() error { return c.Advance(time.Second, 2e5, 1e5, 40) },
 		"fill below zero":     func() error { return c.Fill(-1, 0, room) },
 		"restore below zero":  func() error { return c.Restore(State{A: -1, Temperature: room}) },
+		"restore finer grid":  func() error { s := was; s.Density[c.n] = 1; return c.Restore(s) },
 		"restore NaN density": func() error { s := was; s.Density[3] = nan; return c.Restore(s) },
 	} {
 		err := f()
@@ -320,8 +321,8 @@ func TestExtremesStayBounded(t *testing.T) {
 				t.Fatalf("%d: pressure %v outside 0 to %v", i, float64(p), high)
 			}
 		}
-		if lag := c.Lag(); math.IsNaN(float64(lag)) {
-			t.Fatalf("%d: lag is NaN", i)
+		if lag := c.Lag(); math.IsNaN(float64(lag)) || !c.settle() {
+			t.Fatalf("%d: %v to %v: no steady state, lag %v", i, a, b, float64(lag))
 		}
 	}
 }

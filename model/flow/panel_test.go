@@ -130,6 +130,22 @@ func TestOutgassing(t *testing.T) {
 	near(t, "pressure", float64(p.Pressure(s)), 3e-4*math.Log(3)/60e-6, 1e-4)
 }
 
+// A vent as wide as a hand comes into balance with the room and stays there for
+// an hour, in a moment.
+func TestWideVent(t *testing.T) {
+	p := Panel{Cell: cell(t, "argon", 15*time.Second), Vent: Valve{Conductance: 1e-5}, Ambient: 101325}
+	s, err := p.Advance(at(t, p.Cell, 9e5, room), time.Hour)
+	if err != nil {
+		t.Fatal(err)
+	}
+	near(t, "pressure", float64(p.Pressure(s)), 101325, 1e-6)
+	near(t, "temperature", float64(s.Temperature), float64(room), 1e-6)
+	took, _, err := p.TimeTo(at(t, p.Cell, 9e5, room), 101326)
+	if err != nil || took > 100*time.Millisecond {
+		t.Errorf("vented in %v, %v", took, err)
+	}
+}
+
 func TestPanelRefuses(t *testing.T) {
 	good := Panel{Cell: cell(t, "argon", 0)}
 	if _, err := good.Advance(CellState{}, -1); err == nil {

@@ -29,7 +29,14 @@ func (c *Core) settle() bool {
 	a, b := float64(c.state.A), float64(c.state.B)
 	copy(c.rho[:n], c.state.Density[:n])
 	if _, _, err := c.euler(math.Inf(1), c.state.Density[:n], a, b); err != nil {
-		return false
+		// From far off: a uniform guess at the higher end always comes down.
+		rho, _ := virialDensity(max(a, b), c.gas.rt, c.gas.b, c.gas.c)
+		for i := range n {
+			c.rho[i] = rho
+		}
+		if _, _, err := c.euler(math.Inf(1), c.state.Density[:n], a, b); err != nil {
+			return false
+		}
 	}
 	copy(c.settled[:n], c.rho[:n])
 	return true
