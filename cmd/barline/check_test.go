@@ -2,7 +2,6 @@ package main
 
 import (
 	"bytes"
-	"context"
 	"encoding/json"
 	"os"
 	"path/filepath"
@@ -15,7 +14,7 @@ import (
 // command runs one command line and returns its exit code and what it wrote.
 func command(args ...string) (code int, stdout, stderr string) {
 	var out, err bytes.Buffer
-	code = run(context.Background(), args, strings.NewReader(""), &out, &err)
+	code = run(args, strings.NewReader(""), &out, &err)
 	return code, out.String(), err.String()
 }
 

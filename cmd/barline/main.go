@@ -2,16 +2,8 @@
 // gas-filled hollow-core-fibre ultraviolet source.
 package main
 
-import (
-	"context"
-	"os"
-	"os/signal"
-	"syscall"
-)
+import "os"
 
 func main() {
-	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
-	code := run(ctx, os.Args[1:], os.Stdin, os.Stdout, os.Stderr)
-	stop()
-	os.Exit(code)
+	os.Exit(run(os.Args[1:], os.Stdin, os.Stdout, os.Stderr))
 }

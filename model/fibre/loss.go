@@ -57,5 +57,14 @@ func (l Loss) at(lambda float64) float64 {
 	return float64(a.Loss) + x*float64(b.Loss-a.Loss)
 }
 
+// Raised returns the loss with by dB/m added at every wavelength.
+func (l Loss) Raised(by unit.DecibelPerMetre) Loss {
+	raised := Loss{Constant: l.Constant + by}
+	for _, p := range l.Table {
+		raised.Table = append(raised.Table, LossPoint{p.Wavelength, p.Loss + by})
+	}
+	return raised
+}
+
 // neperPerDecibel turns dB/m of power into 1/m of power: ln(10)/10.
 const neperPerDecibel = math.Ln10 / 10

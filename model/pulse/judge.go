@@ -25,7 +25,7 @@ func (r *Result) judge() {
 	pump := guide.At(omega0)
 	if pump.Beta2 >= 0 {
 		doubt("the pump at %v is in normal dispersion (%.0f fs2/m): the pulse spreads instead of compressing", p.Wavelength, pump.Beta2*1e30)
-	} else if n := solitonOrder(guide.Gamma(omega0), float64(r.PulsePower), float64(p.Duration), p.Shape, pump.Beta2); n > mostOrder {
+	} else if n := solitonOrder(guide.Gamma(omega0)*r.Setup.kerrScale(), float64(r.PulsePower), float64(p.Duration), p.Shape, pump.Beta2); n > mostOrder {
 		doubt("soliton order %.1f is above %d: the light breaks up from noise, which one pulse does not show", n, mostOrder)
 	}
 	if pump.Region != fibre.Guided {
@@ -58,7 +58,17 @@ func (r *Result) judge() {
 	case fibre.OffRange:
 		r.Notes = append(r.Notes, "in part of the band the fibre's formula is beyond its range and the propagation constant that of a plain capillary")
 	}
+	if bare := guide.Decibel(omega0); !r.Setup.lossy() && bare > 0 {
+		r.Notes = append(r.Notes, fmt.Sprintf("propagated without loss; a bare bore of this size loses %.3g dB/m at the pump", bare))
+	}
 	r.Reliable = len(r.Reasons) == 0
+}
+
+func (s Setup) kerrScale() float64 {
+	if s.KerrScale == 0 {
+		return 1
+	}
+	return s.KerrScale
 }
 
 // solitonOrder returns N of the pulse as it enters: N² = γP₀T₀²/|β₂|.

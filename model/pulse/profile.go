@@ -2,6 +2,7 @@ package pulse
 
 import (
 	"fmt"
+	"math"
 	"sort"
 )
 
@@ -55,6 +56,23 @@ func (p *Profile) Most() float64 {
 		most = max(most, r)
 	}
 	return most
+}
+
+// Near reports whether two profiles have the same nodes and ratios that differ
+// by at most within. Two that are nil are near.
+func (p *Profile) Near(q *Profile, within float64) bool {
+	if p == nil || q == nil {
+		return p == q
+	}
+	if len(p.z) != len(q.z) {
+		return false
+	}
+	for i := range p.z {
+		if p.z[i] != q.z[i] || math.Abs(p.ratio[i]-q.ratio[i]) > within {
+			return false
+		}
+	}
+	return true
 }
 
 // Integrals returns ∫ ratio dz and ∫ ratio² dz over [from, to].

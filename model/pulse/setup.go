@@ -36,11 +36,16 @@ func ParsePlasma(text string) (Plasma, error) {
 }
 
 // Setup is a fibre filled with gas and the light at its input.
+//
+// Setups of the same bench share the Fibre and the Medium of the Gas: that is
+// how two of them are known to be alike.
 type Setup struct {
 	Fibre  *fibre.Fibre
 	Gas    gas.State // at relative density 1
 	Pulse  Pulse
 	Plasma Plasma
+	// KerrScale multiplies the nonlinear index; 0 means 1.
+	KerrScale float64
 	// Density is the gas density along the fibre relative to Gas; nil means
 	// the same everywhere.
 	Density *Profile
@@ -53,13 +58,19 @@ func (s Setup) Medium(g Grid) (Medium, fibre.Region, error) {
 	omega := g.Frequencies()
 	m := Medium{
 		Area:    s.Fibre.EffectiveArea(),
-		Chi3:    Chi3FromN2(float64(s.Gas.Kerr())),
+		Chi3:    Chi3FromN2(float64(s.Gas.Kerr())) * s.kerrScale(),
 		Density: s.Density,
 		Length:  float64(s.Fibre.Spec().Length),
 	}
 	worst, err := s.propagation(&m, omega)
 	if err != nil {
 		return Medium{}, worst, err
+	}
+	if s.lossy() {
+		m.Loss = make([]float64, len(omega))
+		for i, w := range omega {
+			m.Loss[i] = guide.Attenuation(w)
+		}
 	}
 	pump := guide.At(fibre.Frequency(s.Pulse.Wavelength))
 	if pump.Region == fibre.Dark {
@@ -70,6 +81,13 @@ func (s Setup) Medium(g Grid) (Medium, fibre.Region, error) {
 		return Medium{}, worst, err
 	}
 	return m, worst, nil
+}
+
+// lossy reports whether a loss is given. Where none is the light is propagated
+// without: the leak of a bare bore is no measured one.
+func (s Setup) lossy() bool {
+	l := s.Fibre.Spec().Loss
+	return l.Constant > 0 || len(l.Table) > 0
 }
 
 // propagation fills in β: alone where the density is uniform, else as the

@@ -71,8 +71,7 @@ func (l *Loop) refreshCurve() {
 	l.curveIn = in
 	go func() {
 		defer l.curving.Store(false)
-		points := make([]emission.CurvePoint, curvePoints)
-		l.opt.Curve(in, points)
+		points := l.opt.Curve(in, make([]emission.CurvePoint, curvePoints))
 		l.curve.Store(&points)
 	}()
 }
