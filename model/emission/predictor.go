@@ -29,28 +29,38 @@ type Predictor struct {
 	warmT unit.Kelvin
 }
 
-// NewPredictor checks a setup and makes it ready.
-func NewPredictor(s Setup) (*Predictor, error) {
+// check refuses what no prediction can be made from, and returns the gas and
+// the fibre of the setup.
+func (s *Setup) check() (*gas.Medium, *fibre.Fibre, error) {
 	medium, err := gas.New(s.Gas)
 	if err != nil {
-		return nil, err
+		return nil, nil, err
 	}
 	f, err := fibre.New(s.Fibre)
 	if err != nil {
-		return nil, err
+		return nil, nil, err
 	}
 	if err := checkPulse(s.Pulse); err != nil {
-		return nil, err
+		return nil, nil, err
 	}
 	if err := s.Uncertainty.check(); err != nil {
-		return nil, err
+		return nil, nil, err
 	}
 	switch s.Answer {
 	case Linear, Estimate:
 	case Anchored:
-		return nil, fmt.Errorf("emission %q needs full-field nodes of this bench: expected linear or estimate until they stand", s.Answer)
+		return nil, nil, fmt.Errorf("emission %q needs full-field nodes of this bench: expected linear or estimate until they stand", s.Answer)
 	default:
-		return nil, fmt.Errorf("emission answer %d is not known", s.Answer)
+		return nil, nil, fmt.Errorf("emission answer %d is not known", s.Answer)
+	}
+	return medium, f, nil
+}
+
+// NewPredictor checks a setup and makes it ready.
+func NewPredictor(s Setup) (*Predictor, error) {
+	medium, f, err := s.check()
+	if err != nil {
+		return nil, err
 	}
 	p := &Predictor{setup: s, medium: medium, fibre: f, launch: launch(s.Pulse), omega: fibre.Frequency(s.Pulse.Wavelength)}
 	p.slopes = launchSlopesOf(s.Pulse)

@@ -40,7 +40,9 @@ type Setup struct {
 	Rating       unit.Pascal // lowest pressure rating; 0: not judged
 }
 
-// SetupFromBench makes the setup that a bench file describes.
+// SetupFromBench makes the setup that a bench file describes. Where the file
+// asks for the anchored answer the setup asks for the estimate, which serves
+// until full-field nodes stand.
 func SetupFromBench(b *bench.Bench) (Setup, error) {
 	kind, err := fibre.ParseKind(b.Fibre.Kind)
 	if err != nil {
@@ -65,12 +67,12 @@ func SetupFromBench(b *bench.Bench) (Setup, error) {
 			Energy: b.Pulse.Energy, GDD: b.Pulse.GDD,
 		},
 		RepetitionRate: b.Pulse.RepetitionRate,
-		Answer:         answer,
+		Answer:         min(answer, Estimate), // until full-field nodes stand
 		Uncertainty:    DefaultUncertainty(),
 		Rating:         b.Limits.Enforced().Lowest().Max,
 		Spectrometer:   sees(b),
 	}
-	_, err = NewPredictor(s)
+	_, _, err = s.check()
 	return s, err
 }
 

@@ -21,23 +21,37 @@ func (g *Guide) Resonance(m int) (unit.Metre, bool) {
 	if g.Fibre.spec.Kind == Capillary || m < 1 {
 		return 0, false
 	}
+	lambda, ok := g.resonance(m)
+	return lambda, ok && float64(lambda) >= glassFrom
+}
+
+// justBelow is how far below the range of the glass a resonance is still
+// looked for, since its margin may reach into the range.
+const justBelow = 0.94
+
+func (g *Guide) resonance(m int) (unit.Metre, bool) {
 	t := float64(g.Fibre.spec.Wall)
+	floor := justBelow * math.Max(glassFrom, float64(g.Gas.Usable().From))
 	lambda := 2 * t / float64(m)
-	usable := g.Gas.Usable()
-	for range 60 {
-		if lambda < math.Max(glassFrom, float64(usable.From)) || lambda > glassTo {
-			return 0, false
-		}
+	for range 80 {
+		lambda = math.Min(math.Max(lambda, floor), glassTo)
 		v := 1e-6 / lambda
 		step := glass(v*v).C0 - g.Gas.Susceptibility(2*math.Pi*c/lambda).C0
 		next := 2 * t / float64(m) * math.Sqrt(step)
 		if math.Abs(next-lambda) < 1e-13*lambda {
-			return unit.Metre(next), true
+			return unit.Metre(next), next > floor
+		}
+		if !(next > floor) && lambda == floor || next > glassTo && lambda == glassTo {
+			return 0, false // it lies outside
 		}
 		lambda = 0.5 * (lambda + next)
 	}
-	return unit.Metre(lambda), true
+	return unit.Metre(lambda), lambda > floor
 }
+
+// hair widens the margins of Bands so that a band's ends are inside by the
+// first-order measure that tells a region at one frequency.
+const hair = 5e-4
 
 // Bands fills dst with the transmission bands, longest wavelengths first, and
 // returns how many there are. The long end is the cut-off or the range of the
@@ -53,11 +67,11 @@ func (g *Guide) Bands(dst *[MaxBands]Band) int {
 	}
 	n := 0
 	for m := 1; n < MaxBands-1 && g.Fibre.spec.Kind == Antiresonant; m++ {
-		lambda, ok := g.Resonance(m)
+		lambda, ok := g.resonance(m)
 		if !ok {
 			break
 		}
-		margin := float64(g.Fibre.spec.Margin) * float64(lambda)
+		margin := (float64(g.Fibre.spec.Margin) + hair) * float64(lambda)
 		if from := float64(lambda) + margin; from < long {
 			dst[n] = Band{unit.Metre(from), unit.Metre(long)}
 			n++

@@ -7,7 +7,7 @@ const (
 	bar1     = 1e5
 	freezing = 273.15
 	// borzsonyiT is the reference temperature of borzsonyi-2008. The paper
-	// prints 273 K; with 273.15 K it meets the other sources within 0.02 %.
+	// prints 273 K; it is taken to mean the ice point, 0.05 % of density away.
 	borzsonyiT = 273.15
 )
 
