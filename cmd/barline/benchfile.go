@@ -9,21 +9,22 @@ import (
 	"barline/model/bench"
 )
 
-// readBench reads the bench file at path. Its mistakes are wrong use of the
-// program; the error then holds bench.Mistakes.
-func readBench(path string) (*bench.Bench, error) {
-	data, err := os.ReadFile(path)
+// readBench reads the bench file at path and returns its text and its meaning.
+// Its mistakes are wrong use of the program; the error then holds
+// bench.Mistakes.
+func readBench(path string) (text []byte, b *bench.Bench, err error) {
+	text, err = os.ReadFile(path)
 	if err != nil {
-		return nil, usage("bench file: %w", err)
+		return nil, nil, usage("bench file: %w", err)
 	}
-	b, err := bench.Parse(data, filepath.Base(path))
+	b, err = bench.Parse(text, filepath.Base(path))
 	if err != nil {
-		return nil, usage("the bench file needs care; barline check -b %s says what was understood\n%w", path, err)
+		return nil, nil, usage("the bench file needs care; barline check -b %s says what was understood\n%w", path, err)
 	}
 	if _, err := timeZone(b); err != nil {
-		return nil, usage("%s: %w", filepath.Base(path), err)
+		return nil, nil, usage("%s: %w", filepath.Base(path), err)
 	}
-	return b, nil
+	return text, b, nil
 }
 
 // timeZone returns the place whose local time the screen shows.

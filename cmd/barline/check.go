@@ -33,7 +33,7 @@ code is then 2. A first bench file is written by
 			if file == "" {
 				return usage("check needs a bench file: -b bench.toml; a first one is written by barline check --sample")
 			}
-			b, err := readBench(file)
+			_, b, err := readBench(file)
 			var found bench.Mistakes
 			errors.As(err, &found)
 			switch {

@@ -2,6 +2,7 @@ package main
 
 import (
 	"bytes"
+	"context"
 	"encoding/json"
 	"os"
 	"path/filepath"
@@ -14,7 +15,7 @@ import (
 // command runs one command line and returns its exit code and what it wrote.
 func command(args ...string) (code int, stdout, stderr string) {
 	var out, err bytes.Buffer
-	code = run(args, strings.NewReader(""), &out, &err)
+	code = run(context.Background(), args, strings.NewReader(""), &out, &err)
 	return code, out.String(), err.String()
 }
 

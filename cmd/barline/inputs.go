@@ -57,7 +57,7 @@ func (in *inputs) setup(command, swept string) (emission.Setup, emission.Input, 
 	var s emission.Setup
 	s.Uncertainty = emission.DefaultUncertainty()
 	if in.bench != "" {
-		b, err := readBench(in.bench)
+		_, b, err := readBench(in.bench)
 		if err != nil {
 			return s, emission.Input{}, err
 		}

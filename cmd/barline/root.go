@@ -1,9 +1,11 @@
 package main
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"io"
+	"strings"
 
 	"github.com/spf13/cobra"
 )
@@ -30,13 +32,13 @@ func usage(format string, args ...any) error { return coded{exitUsage, fmt.Error
 
 // run carries out one command line and returns the exit code. Results go to
 // stdout, everything else to stderr.
-func run(args []string, stdin io.Reader, stdout, stderr io.Writer) int {
+func run(ctx context.Context, args []string, stdin io.Reader, stdout, stderr io.Writer) int {
 	root := newRoot()
 	root.SetArgs(args)
 	root.SetIn(stdin)
 	root.SetOut(stdout)
 	root.SetErr(stderr)
-	err := root.Execute()
+	err := root.ExecuteContext(ctx)
 	if err == nil {
 		return exitDone
 	}
@@ -44,6 +46,9 @@ func run(args []string, stdin io.Reader, stdout, stderr io.Writer) int {
 	var c coded
 	if errors.As(err, &c) {
 		return c.code
+	}
+	if strings.HasPrefix(err.Error(), "unknown command") { // the library has no type for it
+		return exitUsage
 	}
 	return exitFailed
 }
@@ -70,7 +75,9 @@ func newRoot() *cobra.Command {
 		newCheck(),
 		newLog(),
 		newPredict(),
+		newSimulate(),
 		newVersion(),
+		newWatch(),
 	)
 	return root
 }

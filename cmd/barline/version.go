@@ -69,6 +69,19 @@ func newVersion() *cobra.Command {
 	return cmd
 }
 
+// buildVersion returns the version that records name.
+func buildVersion() string {
+	info, ok := debug.ReadBuildInfo()
+	if !ok {
+		return "(unversioned)"
+	}
+	b := describe(info)
+	if b.Revision != "" {
+		return b.Version + " " + b.Revision
+	}
+	return b.Version
+}
+
 func describe(info *debug.BuildInfo) build {
 	b := build{Version: info.Main.Version, Go: info.GoVersion, System: runtime.GOOS + "/" + runtime.GOARCH, Modules: []string{}}
 	if b.Version == "" {

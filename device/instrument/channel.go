@@ -50,6 +50,14 @@ const (
 func (c *channel) read(number float64, at reading.Stamp) reading.Reading {
 	switch {
 	case math.IsNaN(number):
+		switch c.spec.Role {
+		case reading.Emission, reading.EmissionWidth, reading.EmissionStrength:
+			// A spectrum without an emission, or without light, is seen by
+			// an instrument that works.
+			r := c.fail(at, "no emission in the spectrum")
+			r.Status = reading.FunctionCheck
+			return r
+		}
 		return c.fail(at, "the instrument says that it has no value")
 	case math.IsInf(number, 0):
 		return c.fail(at, "the instrument says that it is over its range")

@@ -19,12 +19,25 @@ type Clock interface {
 	Wall(d time.Duration) time.Duration
 }
 
-// Scaled is a clock that runs speed times as fast as life.
+// Scaled is a clock that runs speed times as fast as life. It is safe for
+// concurrent use.
+//
+// At any speed but 1 it is the clock of a simulation, and stands still while
+// nobody looks at it for longer than a moment: a machine that stalls for a
+// tenth of a second must not make two seconds of bench time pass between a
+// question and its answer.
 type Scaled struct {
-	start time.Time // carries the runtime's monotonic reading
-	utc   time.Time
 	speed float64
+
+	mu   sync.Mutex
+	utc  time.Time // at the start
+	last time.Time // carries the runtime's monotonic reading
+	mono time.Duration
 }
+
+// longestLook is the longest time on the wall that may pass between two looks
+// at the clock of a simulation and still count.
+const longestLook = 10 * time.Millisecond
 
 // NewScaled starts a clock at the present instant. Speed must be positive;
 // 1 is real time.
@@ -33,18 +46,23 @@ func NewScaled(speed float64) *Scaled {
 		panic("clock: speed must be positive")
 	}
 	now := time.Now()
-	return &Scaled{start: now, utc: now.UTC().Round(0), speed: speed}
+	return &Scaled{speed: speed, utc: now.UTC().Round(0), last: now}
 }
 
 // Now implements Clock. At speed 1 UTC follows the system clock, so that a
 // step of it is seen; otherwise it runs from the start at the given speed.
 func (c *Scaled) Now() reading.Stamp {
+	c.mu.Lock()
+	defer c.mu.Unlock()
 	now := time.Now()
-	mono := time.Duration(float64(now.Sub(c.start)) * c.speed)
+	passed := now.Sub(c.last)
+	c.last = now
 	if c.speed == 1 {
-		return reading.Stamp{UTC: now.UTC().Round(0), Mono: mono}
+		c.mono += passed
+		return reading.Stamp{UTC: now.UTC().Round(0), Mono: c.mono}
 	}
-	return reading.Stamp{UTC: c.utc.Add(mono), Mono: mono}
+	c.mono += time.Duration(float64(min(passed, longestLook)) * c.speed)
+	return reading.Stamp{UTC: c.utc.Add(c.mono), Mono: c.mono}
 }
 
 // Wall implements Clock.

@@ -10,7 +10,10 @@ func TestScaledClockRunsAsFastAsItIsTold(t *testing.T) {
 	synctest.Test(t, func(t *testing.T) {
 		c := NewScaled(20)
 		before := c.Now()
-		<-time.After(3 * time.Second)
+		for range 600 {
+			<-time.After(5 * time.Millisecond)
+			c.Now()
+		}
 		after := c.Now()
 		if got := after.Mono - before.Mono; got != time.Minute {
 			t.Errorf("3 s on the wall are %v on the bench, want 1 min", got)
@@ -20,6 +23,19 @@ func TestScaledClockRunsAsFastAsItIsTold(t *testing.T) {
 		}
 		if got := c.Wall(time.Minute); got != 3*time.Second {
 			t.Errorf("1 min on the bench lasts %v, want 3 s", got)
+		}
+	})
+}
+
+func TestSimulatedTimeStandsStillWhileTheMachineStalls(t *testing.T) {
+	synctest.Test(t, func(t *testing.T) {
+		simulated, real := NewScaled(20), NewScaled(1)
+		<-time.After(3 * time.Second)
+		if got := simulated.Now().Mono; got != 200*time.Millisecond {
+			t.Errorf("a stall of 3 s was %v on the bench, want 200 ms", got)
+		}
+		if got := real.Now().Mono; got != 3*time.Second {
+			t.Errorf("real time lost %v in a stall", 3*time.Second-got)
 		}
 	})
 }

@@ -23,6 +23,7 @@ type Core struct {
 	t              float64 // K
 
 	volume float64   // m³, of one finite volume
+	across float64   // πa²/(RTΔz)
 	moles  []float64 // mol, both species together
 	air    []float64 // mol
 
@@ -96,6 +97,7 @@ type Exchange struct {
 // implicit upwind differences and binary diffusion.
 func (c *Core) Advance(dt, t float64, before, after [2]State) (Exchange, error) {
 	c.t = t
+	c.across = math.Pi * c.radius * c.radius * float64(len(c.moles)) / (R * t * c.length)
 	copy(c.old, c.moles)
 	inflow, err := c.second(dt, before, after)
 	if err != nil {
@@ -144,13 +146,13 @@ func (c *Core) second(dt float64, before, after [2]State) (float64, error) {
 	return inflow, nil
 }
 
-// conductance is the factor πa²/(RTΔz) before the bracket of Core.
+// conductance is the factor before the bracket of Core: to the ends it is half
+// a finite volume only.
 func (c *Core) conductance(face int) float64 {
-	dz := c.length / float64(len(c.moles))
 	if face == 0 || face == len(c.moles) {
-		dz /= 2
+		return 2 * c.across
 	}
-	return math.Pi * c.radius * c.radius / (R * c.t * dz)
+	return c.across
 }
 
 // flows writes the flow through every face from the pressures p and ends.
@@ -213,7 +215,7 @@ func (c *Core) solve(step float64, ends [2]float64) error {
 			c.p[i] -= d
 			worst = max(worst, math.Abs(d)/(c.p[i]+1e-6))
 		}
-		if worst < 1e-9 {
+		if worst < 1e-6 { // what is left is of the order of its square
 			break
 		}
 		if iteration == 50 || math.IsNaN(worst) {

@@ -19,7 +19,7 @@ const perNode = 3 // moles of gas, moles of air, internal energy
 // Network is volumes, walls, reservoirs and the passages between them. Build
 // it with the Add methods, then Advance it. It is not safe for concurrent use.
 type Network struct {
-	gas Gas
+	heats
 
 	volumes    []float64 // m³
 	walls      []wall
@@ -27,8 +27,10 @@ type Network struct {
 	passages   []passage
 	contacts   []contact
 
-	y  []float64 // volumes × perNode, walls (J above 0 K), reservoirs × perNode, room (J)
-	h  float64   // s, the step that the error control would take next
+	// Volumes × perNode; behind them what only counts: walls (J above 0 K),
+	// reservoirs × perNode, room (J).
+	y  []float64
+	h  float64 // s, the step that the error control would take next
 	ws workspace
 
 	built bool
@@ -36,6 +38,7 @@ type Network struct {
 
 type wall struct {
 	capacity float64 // J/K
+	t        float64 // K, at the start of the present Advance
 	to       float64 // W/K, to the room
 	room     float64 // K
 }
@@ -54,15 +57,20 @@ type contact struct {
 	moving float64 // W/K more at 10 bar, growing as the root of pressure
 }
 
+// heats are the molar heat capacities of the two species, J/(mol K).
+type heats struct{ cv, cp [2]float64 }
+
 // NewNetwork returns an empty network for a working gas.
-func NewNetwork(g Gas) *Network { return &Network{gas: g} }
+func NewNetwork(g Gas) *Network {
+	return &Network{heats: heats{cv: [2]float64{g.cv(), air.cv()}, cp: [2]float64{g.cp(), air.cp()}}}
+}
 
 // AddVolume adds a volume in m³ that stands at s.
 func (n *Network) AddVolume(volume float64, s State) Node {
 	n.volumes = append(n.volumes, volume)
 	moles := s.P * volume / (R * s.T)
 	g, a := moles*(1-s.Air), moles*s.Air
-	n.y = append(n.y, g, a, (g*n.gas.cv()+a*air.cv())*s.T)
+	n.y = append(n.y, g, a, (g*n.cv[0]+a*n.cv[1])*s.T)
 	return Node(len(n.volumes) - 1)
 }
 
@@ -119,7 +127,7 @@ func (n *Network) stateOf(y []float64, v Node) State {
 	i := int(v) * perNode
 	g, a := y[i], y[i+1]
 	moles := g + a
-	t := y[i+2] / (g*n.gas.cv() + a*air.cv())
+	t := y[i+2] / (g*n.cv[0] + a*n.cv[1])
 	return State{P: moles * R * t / n.volumes[v], T: t, Air: a / moles}
 }
 
@@ -167,15 +175,21 @@ func (n *Network) Deposit(v Node, gas, airMoles, t float64) {
 	}
 	n.y[i] += gas
 	n.y[i+1] += airMoles
-	n.y[i+2] += (gas*n.gas.cp() + airMoles*air.cp()) * t
+	n.y[i+2] += (gas*n.cp[0] + airMoles*n.cp[1]) * t
 }
 
 var errStep = errors.New("no step is small enough")
 
 // Advance integrates over dt seconds with openings and reservoirs as they
-// stand, to a relative error of about 1e-6 a step.
+// stand, to a relative error of some 1e-5. Walls count as standing at their
+// temperature of the start, which is an error of first order in dt over their
+// own time of minutes.
 func (n *Network) Advance(dt float64) error {
 	n.build()
+	for i := range n.walls {
+		w := &n.walls[i]
+		w.t = n.y[n.wallAt(Wall(i))] / w.capacity
+	}
 	if err := n.integrate(dt); err != nil {
 		return fmt.Errorf("panel: over %g s: %w", dt, err)
 	}
@@ -197,16 +211,16 @@ func (n *Network) build() {
 
 // inner is how many components of y have a say in the rates; those behind it
 // only count.
-func (n *Network) inner() int { return perNode*len(n.volumes) + len(n.walls) }
+func (n *Network) inner() int { return perNode * len(n.volumes) }
 
-func (n *Network) wallAt(w Wall) int { return perNode*len(n.volumes) + int(w) }
+func (n *Network) wallAt(w Wall) int { return n.inner() + int(w) }
 
 // roomAt is the heat that the room took up from the walls.
-func (n *Network) roomAt() int { return n.inner() + perNode*len(n.reservoirs) }
+func (n *Network) roomAt() int { return len(n.y) - 1 }
 
 func (n *Network) at(v Node) int {
 	if v < 0 {
-		return n.inner() + perNode*int(-v-1)
+		return n.inner() + len(n.walls) + perNode*int(-v-1)
 	}
 	return perNode * int(v)
 }

@@ -1,6 +1,9 @@
 package panel
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // flux is what a passage carries from its first to its second node per
 // second: moles of gas, moles of air, enthalpy.
@@ -24,7 +27,7 @@ func (n *Network) flow(p *passage, a, b State) flux {
 	}
 	g := f * (1 - up.Air)
 	x := f * up.Air
-	return flux{g, x, (g*n.gas.cp() + x*air.cp()) * up.T}
+	return flux{g, x, (g*n.cp[0] + x*n.cp[1]) * up.T}
 }
 
 func (c *contact) conductance(p float64) float64 {
@@ -54,14 +57,14 @@ func (n *Network) rates(y, dydt []float64) {
 	for i := range n.contacts {
 		c := &n.contacts[i]
 		w := n.wallAt(c.wall)
-		q := c.heat(n.stateOf(y, c.volume), y[w]/n.walls[c.wall].capacity)
+		q := c.heat(n.stateOf(y, c.volume), n.walls[c.wall].t)
 		dydt[n.at(c.volume)+2] -= q
 		dydt[w] += q
 	}
 	for i := range n.walls {
 		w := &n.walls[i]
 		at := n.wallAt(Wall(i))
-		q := w.to * (y[at]/w.capacity - w.room)
+		q := w.to * (w.t - w.room)
 		dydt[at] -= q
 		dydt[n.roomAt()] += q
 	}
@@ -113,28 +116,24 @@ func (n *Network) jacobian(y []float64) {
 		c := &n.contacts[i]
 		w := n.wallAt(c.wall)
 		e := n.at(c.volume) + 2
-		capacity := n.walls[c.wall].capacity
-		s := n.stateOf(y, c.volume)
-		base := c.heat(s, y[w]/capacity)
+		t := n.walls[c.wall].t
+		base := c.heat(n.stateOf(y, c.volume), t)
 		for k := range perNode {
 			col := n.at(c.volume) + k
 			old := y[col]
 			y[col] += n.nudge(y, col)
 			d := y[col] - old
-			slope := (c.heat(n.stateOf(y, c.volume), y[w]/capacity) - base) / d
+			slope := (c.heat(n.stateOf(y, c.volume), t) - base) / d
 			y[col] = old
 			j[e*m+col] -= slope
 			j[w*m+col] += slope
 		}
-		slope := -c.conductance(s.P) / capacity
-		j[e*m+w] -= slope
-		j[w*m+w] += slope
 	}
-	for i := range n.walls {
-		at := n.wallAt(Wall(i))
-		slope := n.walls[i].to / n.walls[i].capacity
-		j[at*m+at] -= slope
-		j[n.roomAt()*m+at] += slope
+	n.ws.busy = n.ws.busy[:0]
+	for r := m; r < len(y); r++ {
+		if slices.ContainsFunc(j[r*m:r*m+m], func(v float64) bool { return v != 0 }) {
+			n.ws.busy = append(n.ws.busy, r)
+		}
 	}
 }
 

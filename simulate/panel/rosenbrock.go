@@ -10,7 +10,7 @@ import "math"
 // 2nd ed. (1996), section IV.7).
 const (
 	rosGamma = 0.5
-	relative = 1e-6
+	relative = 1e-5
 	// Moles and joules below these count as nothing: about 1e-3 Pa in a
 	// volume of 10 cm³.
 	absoluteMoles = 4e-12
@@ -25,6 +25,7 @@ type workspace struct {
 	jac           []float64 // all × inner
 	lu            []float64 // inner × inner
 	pivot         []int
+	busy          []int // rows behind the inner ones in which jac is not zero
 	f, yn, k1, k2 []float64
 	k3, k4, rhs   []float64
 }
@@ -130,7 +131,7 @@ func (n *Network) step(h float64) float64 {
 }
 
 func (n *Network) floor(i int) float64 {
-	if i >= perNode*len(n.volumes) || i%perNode == 2 {
+	if i%perNode == 2 {
 		return absoluteJoule
 	}
 	v := i / perNode * perNode
@@ -221,6 +222,9 @@ func (n *Network) solve(shift float64, rhs, k []float64) {
 		k[r] = s / lu[r*m+r]
 	}
 	for r := m; r < len(rhs); r++ {
+		k[r] = rhs[r] / shift
+	}
+	for _, r := range n.ws.busy {
 		s := rhs[r]
 		for c, v := range n.ws.jac[r*m : r*m+m] {
 			s += v * k[c]

@@ -39,7 +39,7 @@ type Wire interface {
 }
 
 // Curve fills dst with predictions over pressure.
-type Curve func(in emission.Input, dst []emission.CurvePoint) []emission.CurvePoint
+type Curve func(in emission.Input, dst []emission.CurvePoint)
 
 // Options is what a loop is made of.
 type Options struct {

@@ -71,7 +71,8 @@ func (l *Loop) refreshCurve() {
 	l.curveIn = in
 	go func() {
 		defer l.curving.Store(false)
-		points := l.opt.Curve(in, make([]emission.CurvePoint, curvePoints))
+		points := make([]emission.CurvePoint, curvePoints)
+		l.opt.Curve(in, points)
 		l.curve.Store(&points)
 	}()
 }

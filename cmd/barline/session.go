@@ -1,0 +1,204 @@
+package main
+
+import (
+	"context"
+	"crypto/sha256"
+	"encoding/hex"
+	"errors"
+	"fmt"
+	"io"
+	"runtime/debug"
+	"sync"
+	"time"
+
+	"barline/cmd/barline/loop"
+	"barline/device/instrument"
+	"barline/logbook"
+	"barline/model/bench"
+	"barline/model/clock"
+	"barline/model/emission"
+	"barline/model/live"
+)
+
+// session is one experiment, from the opening of its logbook to the closing
+// of it.
+type session struct {
+	bench     *bench.Bench
+	text      []byte // of the bench file, which goes whole into the record
+	predictor *emission.Predictor
+	core      *live.Core
+	state     live.State
+
+	folder    string
+	clock     clock.Clock
+	speed     float64
+	opener    func(bench.Instrument) (instrument.Open, error)
+	simulated bool
+	stderr    io.Writer
+}
+
+// front shows a running experiment to somebody until it is over.
+type front func(ctx context.Context, l *loop.Loop) error
+
+// Data of the records that open and close a session.
+type (
+	startData struct {
+		Version   string  `json:"version"`
+		Bench     string  `json:"bench"`
+		Simulated bool    `json:"simulated,omitempty"`
+		Speed     float64 `json:"speed"`
+	}
+	configurationData struct {
+		Digest string `json:"digest"`
+		Text   string `json:"text"`
+	}
+	stopData struct {
+		Reason string `json:"reason"`
+	}
+)
+
+// newSession makes what a bench file describes. It takes a good part of a
+// second of computing, which is why bench time begins afterwards.
+func newSession(b *bench.Bench, text []byte) (*session, error) {
+	setup, err := emission.SetupFromBench(b)
+	if err != nil {
+		return nil, coded{exitUsage, err}
+	}
+	predictor, err := emission.NewPredictor(setup)
+	if err != nil {
+		return nil, coded{exitUsage, err}
+	}
+	core, state, err := live.New(b, predictor)
+	if err != nil {
+		return nil, coded{exitUsage, err}
+	}
+	return &session{bench: b, text: text, predictor: predictor, core: core, state: state}, nil
+}
+
+// run opens the logbook and the lines, shows the experiment through f until f
+// returns or ctx ends, holds the bench and closes the record.
+func (s *session) run(ctx context.Context, f front) (err error) {
+	book, err := logbook.Open(s.folder, logbook.Options{})
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, book.Close()) }()
+	if err := s.open(book); err != nil {
+		return err
+	}
+
+	ctx, cancel := context.WithCancelCause(ctx)
+	defer cancel(nil)
+	curve := s.predictor.Clone()
+	w := &wire{now: s.clock.Now}
+	calls := newCaller(ctx, s.bench.Alarms.OnAlarm, s.stderr)
+	l := loop.New(loop.Options{
+		Bench: s.bench, Core: s.core, State: s.state, Clock: s.clock, Book: lent{book}, Wire: w,
+		Curve: func(in emission.Input, dst []emission.CurvePoint) {
+			curve.Curve(dst, 0, s.core.Limits().Lowest().Max, in)
+		},
+		Call:   calls.call,
+		Folder: s.folder, Simulated: s.simulated,
+	})
+	w.answer = l.Answer
+
+	// A broken assumption of ours anywhere ends here: hold what can be held,
+	// close the record, give the terminal back, and say so.
+	var panicked sync.Once
+	broken := func(where string) func(value any, stack []byte) {
+		return func(value any, stack []byte) {
+			panicked.Do(func() {
+				w.Hold(holdOfPanic, s.core.Limits().Freeze(l.Snapshot().Core))
+				cancel(fmt.Errorf("%s broke down: %v\n%s", where, value, stack))
+			})
+		}
+	}
+	lines, err := s.lines(l, w, broken)
+	if err != nil {
+		return err
+	}
+	// The lines outlive the loop, so that its last HOLD reaches them.
+	linesCtx, closeLines := context.WithCancel(context.WithoutCancel(ctx))
+	var served sync.WaitGroup
+	for _, r := range lines {
+		served.Go(func() { r.Run(linesCtx) })
+	}
+	looped := make(chan struct{})
+	go func() {
+		defer close(looped)
+		defer func() {
+			if v := recover(); v != nil {
+				broken("the loop")(v, debug.Stack())
+				<-time.After(panicGrace) // for HOLD to reach the wire
+			}
+		}()
+		l.Run(ctx)
+	}()
+	err = f(ctx, l)
+	cancel(context.Canceled)
+	<-looped
+	closeLines()
+	served.Wait()
+	reason := "asked for"
+	if cause := context.Cause(ctx); cause != nil && !errors.Is(cause, context.Canceled) {
+		err, reason = errors.Join(err, cause), "broken assumption"
+	}
+	_, stopErr := book.Append(s.clock.Now(), string(live.KindStop), stopData{Reason: reason})
+	return errors.Join(err, stopErr)
+}
+
+const (
+	// holdOfPanic is the number of the HOLD that is sent when the loop can no
+	// longer number its own.
+	holdOfPanic = ^uint64(0)
+	panicGrace  = 500 * time.Millisecond
+)
+
+// open writes the first records of the session.
+func (s *session) open(book *logbook.Book) error {
+	digest := sha256.Sum256(s.text)
+	_, err := book.Append(s.clock.Now(), string(live.KindStart), startData{
+		Version: buildVersion(), Bench: s.bench.Bench.Name, Simulated: s.simulated, Speed: s.speed,
+	})
+	if err != nil {
+		return err
+	}
+	_, err = book.Append(s.clock.Now(), string(live.KindConfiguration), configurationData{
+		Digest: hex.EncodeToString(digest[:]), Text: string(s.text),
+	})
+	return err
+}
+
+// lines makes a runner for every instrument and hands those that take
+// setpoints to w.
+func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []byte)) ([]*instrument.Runner, error) {
+	var lines []*instrument.Runner
+	for _, spec := range s.bench.Instrument {
+		in, err := instrument.New(spec, s.bench.Panel.Ambient)
+		if err != nil {
+			return nil, coded{exitUsage, err}
+		}
+		if s.bench.Emission.Wavelengths == "air" {
+			in.WavelengthsInAir()
+		}
+		open, err := s.opener(spec)
+		if err != nil {
+			return nil, coded{exitUsage, err}
+		}
+		r := instrument.NewRunner(in, open, s.clock, l, broken("instrument "+spec.Name))
+		if in.TakesSetpoint() {
+			w.controllers = append(w.controllers, r)
+		}
+		lines = append(lines, r)
+	}
+	return lines, nil
+}
+
+// lent is a logbook as the loop knows it.
+type lent struct{ *logbook.Book }
+
+// Health implements loop.Book.
+func (b lent) Health() live.RecordHealth {
+	h := b.Book.Health()
+	return live.RecordHealth{Writing: h.Writing, Reason: h.Reason, Written: h.Written, Waiting: h.Waiting, Lost: h.Lost}
+}

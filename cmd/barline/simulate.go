@@ -1,0 +1,167 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"io"
+	"strings"
+	"time"
+
+	"github.com/spf13/cobra"
+
+	"barline/cmd/barline/loop"
+	"barline/model/bench"
+	"barline/model/clock"
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/simulate"
+)
+
+type simulateFlags struct {
+	scenario string
+	seed     uint64
+	speed    float64
+	headless bool
+	json     bool
+	lasts    time.Duration
+	logbook  string
+}
+
+func newSimulate() *cobra.Command {
+	var f simulateFlags
+	var stories strings.Builder
+	for _, s := range simulate.Scenarios() {
+		fmt.Fprintf(&stories, "  %-10s %s\n", s.Name, s.About)
+	}
+	cmd := &cobra.Command{
+		Use:   "simulate",
+		Short: "A simulated bench and its dashboard, without hardware",
+		Long: `A simulated bench and its dashboard, without hardware: Heron, an invented
+bench of 34 um single-ring fibre, argon and 1030 nm pulses. Its instruments
+talk over pseudo-terminals in the protocols of real ones. What the seed hides
+from you, fibre, gauges and pulse energy as they truly are, makes prediction
+and measurement part as they do on a real bench.
+
+Scenarios:
+` + stories.String(),
+		Args: noArgs,
+		RunE: func(cmd *cobra.Command, _ []string) error {
+			return f.run(cmd.Context(), cmd.OutOrStdout(), cmd.ErrOrStderr())
+		},
+	}
+	flags := cmd.Flags()
+	flags.StringVar(&f.scenario, "scenario", "fill", "what happens on the bench")
+	flags.Uint64Var(&f.seed, "seed", 1, "draws the hidden truth, the noise and the faults")
+	flags.Float64Var(&f.speed, "speed", 1, "bench time over wall time, 0.1 to 100")
+	flags.BoolVar(&f.headless, "headless", false, "no screen: run for --for, print a summary and leave")
+	flags.BoolVar(&f.json, "json", false, "with --headless: the summary as JSON")
+	flags.DurationVar(&f.lasts, "for", 0, "bench time after which to leave, such as 60s; 0 is never")
+	flags.StringVar(&f.logbook, "logbook", "", "folder of the logbook; without it one in your data folder")
+	return cmd
+}
+
+func (f simulateFlags) run(ctx context.Context, stdout, stderr io.Writer) error {
+	switch {
+	case !(f.speed >= 0.1 && f.speed <= 100):
+		return usage("--speed %g: expected 0.1 to 100", f.speed)
+	case f.lasts < 0:
+		return usage("--for %v: expected a bench time above zero", f.lasts)
+	case f.headless && f.lasts == 0:
+		return usage("--headless needs --for, such as --for 60s")
+	case f.json && !f.headless:
+		return usage("--json goes with --headless")
+	}
+	sim, err := simulate.New(simulate.Options{Seed: f.seed, Scenario: f.scenario})
+	if err != nil {
+		return usage("--scenario: %w", err)
+	}
+	text := bench.Sample()
+	b, err := bench.Parse(text, "heron.toml")
+	if err != nil {
+		return err
+	}
+	folder, err := logbookFolder(f.logbook, "", b.Bench.Name, true)
+	if err != nil {
+		return err
+	}
+	s, err := newSession(b, text)
+	if err != nil {
+		return err
+	}
+	clk := clock.NewScaled(f.speed)
+	ctx, cancel := context.WithCancel(ctx)
+	defer cancel()
+	open, wait, err := serveSimulated(ctx, sim, clk)
+	if err != nil {
+		return err
+	}
+	defer func() { cancel(); wait() }()
+	s.folder, s.clock, s.opener, s.simulated, s.speed, s.stderr = folder, clk, open, true, f.speed, stderr
+	fmt.Fprintf(stderr, "barline: logbook in %s\n", folder)
+	show := s.face(f.headless, stdout)
+	return s.run(ctx, func(ctx context.Context, l *loop.Loop) error {
+		ctx, cancel := context.WithCancel(ctx)
+		defer cancel()
+		if f.lasts > 0 {
+			go func() {
+				defer cancel()
+				untilBenchTime(ctx, clk, f.lasts)
+			}()
+		}
+		moved := make(chan struct{})
+		go func() {
+			defer close(moved)
+			play(ctx, clk, l, sim.Scenario().Moves)
+		}()
+		err := show(ctx, l)
+		cancel()
+		<-moved
+		if f.headless && err == nil {
+			err = summarise(l.Snapshot()).write(stdout, f.json)
+		}
+		return err
+	})
+}
+
+// play is the person at the simulated bench: it asks for the pressures of the
+// scenario, each at its time, as long as nobody has held the bench.
+func play(ctx context.Context, clk clock.Clock, l *loop.Loop, moves []simulate.Move) {
+	for i, m := range moves {
+		if !untilBenchTime(ctx, clk, m.At) {
+			return
+		}
+		for !ready(l.Snapshot()) {
+			if !untilBenchTime(ctx, clk, clk.Now().Mono+100*time.Millisecond) {
+				return
+			}
+		}
+		if i > 0 && l.Snapshot().Mode == live.Held {
+			return
+		}
+		l.Do(live.Arm{})
+		l.Do(live.GoTo{Target: m.To})
+	}
+}
+
+// ready reports whether the bench has come up far enough to be asked.
+func ready(s *live.Snapshot) bool {
+	return s.Record.Writing && s.Latest[reading.CellAPressure].Status.Usable()
+}
+
+// untilBenchTime waits for a bench time and reports whether it came before ctx
+// ended.
+func untilBenchTime(ctx context.Context, clk clock.Clock, at time.Duration) bool {
+	for {
+		left := at - clk.Now().Mono
+		if left <= 0 {
+			return ctx.Err() == nil
+		}
+		timer := time.NewTimer(max(clk.Wall(left), time.Millisecond))
+		select {
+		case <-ctx.Done():
+			timer.Stop()
+			return false
+		case <-timer.C:
+		}
+	}
+}

@@ -1,0 +1,70 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"io"
+
+	"github.com/spf13/cobra"
+
+	"barline/device/instrument"
+	"barline/device/link"
+	"barline/model/bench"
+	"barline/model/clock"
+)
+
+type watchFlags struct {
+	bench   string
+	logbook string
+}
+
+func newWatch() *cobra.Command {
+	var f watchFlags
+	cmd := &cobra.Command{
+		Use:   "watch -b bench.toml",
+		Short: "The dashboard on real instruments",
+		Long: `The dashboard on the instruments of a bench file. Ctrl-C or q holds the bench,
+closes the logbook and leaves. Where the shell goes away the bench is held and
+recording goes on.
+
+barline is no safety device: pressure ratings, relief valve and hardware
+interlocks come first.`,
+		Args: noArgs,
+		RunE: func(cmd *cobra.Command, _ []string) error {
+			return f.run(cmd.Context(), cmd.OutOrStdout(), cmd.ErrOrStderr())
+		},
+	}
+	cmd.Flags().StringVarP(&f.bench, "bench", "b", "", "the bench file; barline check --sample prints one")
+	cmd.Flags().StringVar(&f.logbook, "logbook", "", "folder of the logbook; without it that of the bench file, else one in your data folder")
+	return cmd
+}
+
+func (f watchFlags) run(ctx context.Context, stdout, stderr io.Writer) error {
+	if f.bench == "" {
+		return usage("watch needs a bench file: -b bench.toml; barline check --sample prints one to start from")
+	}
+	text, b, err := readBench(f.bench)
+	if err != nil {
+		return err
+	}
+	folder, err := logbookFolder(f.logbook, b.Logbook.Folder, b.Bench.Name, false)
+	if err != nil {
+		return err
+	}
+	s, err := newSession(b, text)
+	if err != nil {
+		return err
+	}
+	s.folder, s.clock, s.opener, s.speed, s.stderr = folder, clock.NewScaled(1), openLine, 1, stderr
+	fmt.Fprintf(stderr, "barline: logbook in %s\n", folder)
+	return s.run(ctx, s.face(false, stdout))
+}
+
+// openLine returns how the line of an instrument is opened.
+func openLine(in bench.Instrument) (instrument.Open, error) {
+	o, err := link.NewOpener(in)
+	if err != nil {
+		return nil, err
+	}
+	return o.Open, nil
+}
