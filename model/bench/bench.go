@@ -31,7 +31,7 @@ type Bench struct {
 
 // Identity is what a later reader needs to know about the bench.
 type Identity struct {
-	Name                    string `toml:"name" bench:"required"`
+	Name                    string `toml:"name" form:"required"`
 	Cylinder                string `toml:"cylinder"`
 	FibrePiece              string `toml:"fibre_piece"`
 	SpectrometerCalibration string `toml:"spectrometer_calibration"`
@@ -39,53 +39,53 @@ type Identity struct {
 
 // Fibre is the hollow fibre. Wall is zero for a capillary.
 type Fibre struct {
-	Kind         string               `toml:"kind" bench:"required; oneof=capillary|kagome|antiresonant"`
-	CoreDiameter unit.Metre           `toml:"core_diameter" bench:"required; above=0 um; most=2 mm"`
-	Wall         unit.Metre           `toml:"wall" bench:"above=0 nm; most=100 um"`
-	Length       unit.Metre           `toml:"length" bench:"required; above=0 cm; most=1000 m"`
-	Loss         unit.DecibelPerMetre `toml:"loss" bench:"default=0 dB/m; least=0 dB/m"`
+	Kind         string               `toml:"kind" form:"required; oneof=capillary|kagome|antiresonant"`
+	CoreDiameter unit.Metre           `toml:"core_diameter" form:"required; above=0 um; most=2 mm"`
+	Wall         unit.Metre           `toml:"wall" form:"above=0 nm; most=100 um"`
+	Length       unit.Metre           `toml:"length" form:"required; above=0 cm; most=1000 m"`
+	Loss         unit.DecibelPerMetre `toml:"loss" form:"default=0 dB/m; least=0 dB/m"`
 }
 
 // Gas is what fills the fibre and by which sources it is described. Index and
 // N2 are empty where the file leaves the source to the gas.
 type Gas struct {
-	Species string `toml:"species" bench:"required; oneof=helium|neon|argon|krypton|xenon|nitrogen"`
-	Density string `toml:"density" bench:"default=virial; oneof=reference|virial|ideal"`
+	Species string `toml:"species" form:"required; oneof=helium|neon|argon|krypton|xenon|nitrogen"`
+	Density string `toml:"density" form:"default=virial; oneof=reference|virial|ideal"`
 	Index   string `toml:"index"`
 	N2      string `toml:"n2"`
 }
 
 // Pulse is the light at the fibre input.
 type Pulse struct {
-	Wavelength     unit.Metre         `toml:"wavelength" bench:"required; least=200 nm; most=10 um"`
-	Duration       unit.Second        `toml:"duration" bench:"required; above=0 fs; most=100 ps"`
-	Shape          string             `toml:"shape" bench:"default=sech2; oneof=sech2|gauss"`
-	Energy         unit.Joule         `toml:"energy" bench:"required; above=0 uJ; most=1 J"`
-	GDD            unit.SecondSquared `toml:"gdd" bench:"default=0 fs2"`
-	RepetitionRate unit.Hertz         `toml:"repetition_rate" bench:"required; above=0 Hz"`
+	Wavelength     unit.Metre         `toml:"wavelength" form:"required; least=200 nm; most=10 um"`
+	Duration       unit.Second        `toml:"duration" form:"required; above=0 fs; most=100 ps"`
+	Shape          string             `toml:"shape" form:"default=sech2; oneof=sech2|gauss"`
+	Energy         unit.Joule         `toml:"energy" form:"required; above=0 uJ; most=1 J"`
+	GDD            unit.SecondSquared `toml:"gdd" form:"default=0 fs2"`
+	RepetitionRate unit.Hertz         `toml:"repetition_rate" form:"required; above=0 Hz"`
 }
 
 // Panel is the gas panel.
 type Panel struct {
-	CellVolume unit.CubicMetre `toml:"cell_volume" bench:"required; above=0 cm3"`
-	Supply     unit.Pascal     `toml:"supply" bench:"required; above=0 bar; gauge"`
-	Ambient    unit.Pascal     `toml:"ambient" bench:"default=1 atm; least=0.3 bar; most=1.2 bar"`
+	CellVolume unit.CubicMetre `toml:"cell_volume" form:"required; above=0 cm3"`
+	Supply     unit.Pascal     `toml:"supply" form:"required; above=0 bar; gauge"`
+	Ambient    unit.Pascal     `toml:"ambient" form:"default=1 atm; least=0.3 bar; most=1.2 bar"`
 }
 
 // Limits are the bounds of the bench as the file gives them. All four ratings
 // must be written: a part that is left out would not be protected.
 type Limits struct {
-	FibreSeal    unit.Pascal          `toml:"fibre_seal" bench:"required; above=0 bar; gauge"`
-	Cells        unit.Pascal          `toml:"cells" bench:"required; above=0 bar; gauge"`
-	Windows      unit.Pascal          `toml:"windows" bench:"required; above=0 bar; gauge"`
-	Line         unit.Pascal          `toml:"line" bench:"required; above=0 bar; gauge"`
-	RiseRate     unit.PascalPerSecond `toml:"rise_rate" bench:"required; above=0 bar/s"`
-	FallRate     unit.PascalPerSecond `toml:"fall_rate" bench:"required; above=0 bar/s"`
-	PumpBelow    unit.Pascal          `toml:"pump_below" bench:"default=0 bar; least=0 bar; gauge"` // 0: the pump valve never opens
-	Stale        unit.Second          `toml:"stale" bench:"default=2 s; above=0 s; most=10 min"`
-	Disagreement unit.Pascal          `toml:"disagreement" bench:"default=150 mbar; above=0 bar"`
-	Arming       unit.Second          `toml:"arming" bench:"default=120 s; above=0 s; most=1 h"`
-	Follow       unit.Pascal          `toml:"follow" bench:"default=2 bar; above=0 bar"`
+	FibreSeal    unit.Pascal          `toml:"fibre_seal" form:"required; above=0 bar; gauge"`
+	Cells        unit.Pascal          `toml:"cells" form:"required; above=0 bar; gauge"`
+	Windows      unit.Pascal          `toml:"windows" form:"required; above=0 bar; gauge"`
+	Line         unit.Pascal          `toml:"line" form:"required; above=0 bar; gauge"`
+	RiseRate     unit.PascalPerSecond `toml:"rise_rate" form:"required; above=0 bar/s"`
+	FallRate     unit.PascalPerSecond `toml:"fall_rate" form:"required; above=0 bar/s"`
+	PumpBelow    unit.Pascal          `toml:"pump_below" form:"default=0 bar; least=0 bar; gauge"` // 0: the pump valve never opens
+	Stale        unit.Second          `toml:"stale" form:"default=2 s; above=0 s; most=10 min"`
+	Disagreement unit.Pascal          `toml:"disagreement" form:"default=150 mbar; above=0 bar"`
+	Arming       unit.Second          `toml:"arming" form:"default=120 s; above=0 s; most=1 h"`
+	Follow       unit.Pascal          `toml:"follow" form:"default=2 bar; above=0 bar"`
 }
 
 // Enforced returns the limits that every command is checked against.
@@ -105,19 +105,19 @@ func (l Limits) Enforced() limit.Limits {
 
 // Emission says how prediction and spectrometer are compared.
 type Emission struct {
-	Answer      string `toml:"answer" bench:"default=estimate; oneof=linear|estimate|anchored"`
-	Reports     string `toml:"reports" bench:"default=centroid; oneof=centroid|peak"`
-	Wavelengths string `toml:"wavelengths" bench:"default=vacuum; oneof=vacuum|air"`
+	Answer      string `toml:"answer" form:"default=estimate; oneof=linear|estimate|anchored"`
+	Reports     string `toml:"reports" form:"default=centroid; oneof=centroid|peak"`
+	Wavelengths string `toml:"wavelengths" form:"default=vacuum; oneof=vacuum|air"`
 }
 
 // Logbook says where and how densely to record. A deadband of zero records
 // every reading.
 type Logbook struct {
 	Folder              string                `toml:"folder"`
-	Heartbeat           unit.Second           `toml:"heartbeat" bench:"default=60 s; above=0 s; most=1 d"`
-	DeadbandPressure    unit.Pascal           `toml:"deadband_pressure" bench:"default=2 mbar; least=0 bar"`
-	DeadbandTemperature unit.KelvinDifference `toml:"deadband_temperature" bench:"default=0.1 K; least=0 K"`
-	DeadbandWavelength  unit.Metre            `toml:"deadband_wavelength" bench:"default=0.05 nm; least=0 nm"`
+	Heartbeat           unit.Second           `toml:"heartbeat" form:"default=60 s; above=0 s; most=1 d"`
+	DeadbandPressure    unit.Pascal           `toml:"deadband_pressure" form:"default=2 mbar; least=0 bar"`
+	DeadbandTemperature unit.KelvinDifference `toml:"deadband_temperature" form:"default=0.1 K; least=0 K"`
+	DeadbandWavelength  unit.Metre            `toml:"deadband_wavelength" form:"default=0.05 nm; least=0 nm"`
 }
 
 // Alarms says whom to call.
@@ -127,7 +127,7 @@ type Alarms struct {
 
 // Screen says how to draw.
 type Screen struct {
-	Background string `toml:"background" bench:"default=dark; oneof=dark|light"`
-	TimeZone   string `toml:"time_zone" bench:"default=local"` // local, UTC or a name such as Europe/Lisbon
+	Background string `toml:"background" form:"default=dark; oneof=dark|light"`
+	TimeZone   string `toml:"time_zone" form:"default=local"` // local, UTC or a name such as Europe/Lisbon
 	ASCII      bool   `toml:"ascii"`
 }

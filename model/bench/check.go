@@ -3,6 +3,7 @@ package bench
 import (
 	"strings"
 
+	"barline/model/form"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -10,7 +11,7 @@ import (
 // checker finds what is wrong between keys that are right by themselves. A
 // value that was refused before is zero here and is not complained of again.
 type checker struct {
-	*report
+	*form.Report
 	b *Bench
 }
 
@@ -20,20 +21,20 @@ func (c checker) all() {
 	c.pressures()
 	c.instruments()
 	if zone := c.b.Screen.TimeZone; strings.TrimSpace(zone) != zone || zone == "" {
-		c.wrong("screen.time_zone", `expected "local", "UTC" or a name such as "Europe/Lisbon"`)
+		c.Wrong("screen.time_zone", `expected "local", "UTC" or a name such as "Europe/Lisbon"`)
 	}
 }
 
 func (c checker) fibre() {
 	f := c.b.Fibre
 	switch {
-	case f.Kind == "capillary" && c.has("fibre.wall"):
-		c.wrong("fibre.wall", "a capillary has no thin wall round its core; leave it out")
-	case (f.Kind == "kagome" || f.Kind == "antiresonant") && !c.has("fibre.wall"):
-		c.missing("fibre.wall", "a fibre of kind %q needs the thickness of the glass round its core, such as \"180 nm\"", f.Kind)
+	case f.Kind == "capillary" && c.Has("fibre.wall"):
+		c.Wrong("fibre.wall", "a capillary has no thin wall round its core; leave it out")
+	case (f.Kind == "kagome" || f.Kind == "antiresonant") && !c.Has("fibre.wall"):
+		c.Missing("fibre.wall", "a fibre of kind %q needs the thickness of the glass round its core, such as \"180 nm\"", f.Kind)
 	}
 	if f.Wall > 0 && f.CoreDiameter > 0 && f.Wall > f.CoreDiameter/2 {
-		c.wrong("fibre.wall", "it is more than the core's radius, %v", f.CoreDiameter/2)
+		c.Wrong("fibre.wall", "it is more than the core's radius, %v", f.CoreDiameter/2)
 	}
 }
 
@@ -45,9 +46,9 @@ func (c checker) gas() {
 		return
 	}
 	if v, err := unit.ParseNonlinearIndex(n2); err != nil {
-		c.wrong("gas.n2", "%s", reason(err))
+		c.Wrong("gas.n2", "%s", form.Reason(err))
 	} else if !(v > 0) {
-		c.wrong("gas.n2", "expected more than 0 m2/W")
+		c.Wrong("gas.n2", "expected more than 0 m2/W")
 	}
 }
 
@@ -55,14 +56,14 @@ func (c checker) gas() {
 func (c checker) pressures() {
 	l, p := c.b.Limits, c.b.Panel
 	if l.Line > 0 && p.Supply > l.Line {
-		c.wrong("panel.supply", "it is above limits.line, %v: a valve left open would break the line", l.Line)
+		c.Wrong("panel.supply", "it is above limits.line, %v: a valve left open would break the line", l.Line)
 	}
 	low := l.Enforced().Lowest()
 	if low.Max > 0 && l.PumpBelow > low.Max {
-		c.wrong("limits.pump_below", "it is above the rating of %s, %v", low.Part, low.Max)
+		c.Wrong("limits.pump_below", "it is above the rating of %s, %v", low.Part, low.Max)
 	}
 	if low.Max > 0 && l.Disagreement > low.Max {
-		c.wrong("limits.disagreement", "it is above the rating of %s, %v: two gauges could never disagree", low.Part, low.Max)
+		c.Wrong("limits.disagreement", "it is above the rating of %s, %v: two gauges could never disagree", low.Part, low.Max)
 	}
 }
 
@@ -76,7 +77,7 @@ func (c checker) roles() {
 				continue
 			}
 			if first := taken[ch.Role]; first != "" {
-				c.wrong(path, "channel %q has this role already", first)
+				c.Wrong(path, "channel %q has this role already", first)
 				continue
 			}
 			taken[ch.Role] = ch.Name

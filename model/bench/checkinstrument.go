@@ -6,6 +6,7 @@ import (
 	"strconv"
 	"strings"
 
+	"barline/model/form"
 	"barline/model/reading"
 )
 
@@ -33,7 +34,7 @@ func (c checker) instruments() {
 		inst := &c.b.Instrument[i]
 		path := instrumentPath(i)
 		if first, there := names[inst.Name]; there && inst.Name != "" {
-			c.wrong(path+".name", "instrument %d of the file has this name already", first+1)
+			c.Wrong(path+".name", "instrument %d of the file has this name already", first+1)
 		} else {
 			names[inst.Name] = i
 		}
@@ -43,7 +44,7 @@ func (c checker) instruments() {
 		for j := range inst.Channel {
 			ch, at := &inst.Channel[j], channelPath(i, j)
 			if other, there := channels[ch.Name]; there && ch.Name != "" {
-				c.wrong(at+".name", "instrument %q has a channel of this name already", other)
+				c.Wrong(at+".name", "instrument %q has a channel of this name already", other)
 			} else {
 				channels[ch.Name] = inst.Name
 			}
@@ -58,42 +59,42 @@ func (c checker) instruments() {
 func (c checker) line(path string, inst *Instrument) {
 	var ways []string
 	for _, key := range []string{"port", "address", "command"} {
-		if c.has(path + "." + key) {
+		if c.Has(path + "." + key) {
 			ways = append(ways, key)
 		}
 	}
 	switch {
 	case len(ways) == 0:
-		c.about(path, "%s does not say how it is reached; expected port, address or command", named(inst.Name))
+		c.About(path, "%s does not say how it is reached; expected port, address or command", named(inst.Name))
 	case len(ways) > 1:
-		c.about(path+"."+ways[1], "is one way too many: %s is given as well; expected one of port, address and command", ways[0])
+		c.About(path+"."+ways[1], "is one way too many: %s is given as well; expected one of port, address and command", ways[0])
 	}
-	if c.has(path+".port") && strings.TrimSpace(inst.Port) == "" {
-		c.wrong(path+".port", "it is empty; expected a port such as %q", "/dev/ttyUSB0")
+	if c.Has(path+".port") && strings.TrimSpace(inst.Port) == "" {
+		c.Wrong(path+".port", "it is empty; expected a port such as %q", "/dev/ttyUSB0")
 	}
-	if c.has(path+".port") && inst.Protocol == ModbusTCP {
-		c.about(path+".port", "is a serial port, and modbus-tcp has none; expected address, or the protocol modbus-rtu")
+	if c.Has(path+".port") && inst.Protocol == ModbusTCP {
+		c.About(path+".port", "is a serial port, and modbus-tcp has none; expected address, or the protocol modbus-rtu")
 	}
-	if c.has(path + ".address") {
+	if c.Has(path + ".address") {
 		colon := strings.LastIndexByte(inst.Address, ':')
 		port, err := strconv.Atoi(inst.Address[colon+1:])
 		if colon < 1 || err != nil || port < 1 || port > 65535 {
-			c.wrong(path+".address", "expected a host and a port such as %q", "192.168.0.7:502")
+			c.Wrong(path+".address", "expected a host and a port such as %q", "192.168.0.7:502")
 		}
 	}
-	if c.has(path+".command") && (len(inst.Command) == 0 || inst.Command[0] == "") {
-		c.wrong(path+".command", `it is empty; expected a program and its arguments such as ["reader", "-q"]`)
+	if c.Has(path+".command") && (len(inst.Command) == 0 || inst.Command[0] == "") {
+		c.Wrong(path+".command", `it is empty; expected a program and its arguments such as ["reader", "-q"]`)
 	}
 	for _, key := range serialKeys {
-		if c.has(path+"."+key) && !c.has(path+".port") {
-			c.about(path+"."+key, "means something on a serial port only, and port is not given")
+		if c.Has(path+"."+key) && !c.Has(path+".port") {
+			c.About(path+"."+key, "means something on a serial port only, and port is not given")
 		}
 	}
-	if inst.Protocol == ModbusRTU && c.has(path+".data_bits") && inst.DataBits != 8 && inst.DataBits != 0 {
-		c.wrong(path+".data_bits", "modbus-rtu needs 8")
+	if inst.Protocol == ModbusRTU && c.Has(path+".data_bits") && inst.DataBits != 8 && inst.DataBits != 0 {
+		c.Wrong(path+".data_bits", "modbus-rtu needs 8")
 	}
-	if c.has(path+".every") && inst.Streams {
-		c.about(path+".every", "is for instruments that are asked, and this one has streams = true")
+	if c.Has(path+".every") && inst.Streams {
+		c.About(path+".every", "is for instruments that are asked, and this one has streams = true")
 	}
 }
 
@@ -103,8 +104,8 @@ func (c checker) meaning(path, protocol string, users map[string][]string) {
 		return
 	}
 	for key, protocols := range users {
-		if c.has(path+"."+key) && !slices.Contains(protocols, protocol) {
-			c.about(path+"."+key, "is for %s, and this instrument speaks %s", enumerate(protocols, "and"), protocol)
+		if c.Has(path+"."+key) && !slices.Contains(protocols, protocol) {
+			c.About(path+"."+key, "is for %s, and this instrument speaks %s", form.Enumerate(protocols, "and"), protocol)
 		}
 	}
 }
@@ -113,27 +114,27 @@ func (c checker) meaning(path, protocol string, users map[string][]string) {
 // of its pattern.
 func (c checker) protocol(path string, inst *Instrument) (fields []string) {
 	if inst.Protocol == Lines {
-		if !c.has(path + ".pattern") {
-			c.missing(path+".pattern", "expected the lines of the instrument with its fields in braces, such as %q", "P {pressure} bar")
+		if !c.Has(path + ".pattern") {
+			c.Missing(path+".pattern", "expected the lines of the instrument with its fields in braces, such as %q", "P {pressure} bar")
 			return nil
 		}
 		var err error
 		if fields, err = patternFields(inst.Pattern); err != nil {
-			c.wrong(path+".pattern", "%s", err)
+			c.Wrong(path+".pattern", "%s", err)
 		}
 	}
 	for key, commands := range map[string][]string{"hold": inst.Hold, "resume": inst.Resume} {
 		for k, command := range commands {
 			if strings.TrimSpace(command) == "" || strings.ContainsAny(command, "\r\n") {
-				c.wrong(fmt.Sprintf("%s.%s[%d]", path, key, k), "expected one command without a line break")
+				c.Wrong(fmt.Sprintf("%s.%s[%d]", path, key, k), "expected one command without a line break")
 			}
 		}
 	}
-	if inst.Streams && c.has(path+".ask") {
-		c.about(path+".ask", "is for instruments that are asked, and this one has streams = true")
+	if inst.Streams && c.Has(path+".ask") {
+		c.About(path+".ask", "is for instruments that are asked, and this one has streams = true")
 	}
 	if len(inst.Channel) == 0 {
-		c.about(path, "%s has no channel; expected at least one [[instrument.channel]] below it", named(inst.Name))
+		c.About(path, "%s has no channel; expected at least one [[instrument.channel]] below it", named(inst.Name))
 	}
 	return fields
 }
@@ -142,51 +143,51 @@ func (c checker) protocol(path string, inst *Instrument) (fields []string) {
 func (c checker) channel(path string, inst *Instrument, ch *Channel, fields []string) {
 	switch inst.Protocol {
 	case ModbusRTU, ModbusTCP:
-		if !c.has(path + ".register") {
-			c.missing(path+".register", "expected the register's number, counted from 0")
+		if !c.Has(path + ".register") {
+			c.Missing(path+".register", "expected the register's number, counted from 0")
 		}
 	case SCPI:
-		if !c.has(path+".query") && !c.has(path+".write") {
-			c.missing(path+".query", "expected the query that reads the channel, such as %q", "MEAS:PRES?")
+		if !c.Has(path+".query") && !c.Has(path+".write") {
+			c.Missing(path+".query", "expected the query that reads the channel, such as %q", "MEAS:PRES?")
 		}
 	case Lines:
 		c.patternField(path, ch, fields)
 	}
-	if c.has(path + ".write") {
+	if c.Has(path + ".write") {
 		if strings.Count(ch.Write, "{value}") != 1 {
-			c.wrong(path+".write", "expected {value} in it once, where the number goes, such as %q", "SOUR:PRES:LEV {value}")
+			c.Wrong(path+".write", "expected {value} in it once, where the number goes, such as %q", "SOUR:PRES:LEV {value}")
 		}
 		if !ch.Role.IsCommanded() {
-			c.about(path+".write", "is for channels that are set, and nothing is ever sent to one with the role %s", ch.Role)
+			c.About(path+".write", "is for channels that are set, and nothing is ever sent to one with the role %s", ch.Role)
 		}
 	}
 	for key, text := range map[string]string{"query": ch.Query, "write": ch.Write} {
-		if c.has(path+"."+key) && (strings.TrimSpace(text) == "" || strings.ContainsAny(text, "\r\n")) {
-			c.wrong(path+"."+key, "expected one command without a line break")
+		if c.Has(path+"."+key) && (strings.TrimSpace(text) == "" || strings.ContainsAny(text, "\r\n")) {
+			c.Wrong(path+"."+key, "expected one command without a line break")
 		}
 	}
 	if ch.Gauge && (!ch.Role.IsPressure() || ch.Role == reading.Ambient) {
-		c.about(path+".gauge", "is for pressures, and this channel has the role %s", ch.Role)
+		c.About(path+".gauge", "is for pressures, and this channel has the role %s", ch.Role)
 		return
 	}
-	if ch.Gauge && !c.has("panel.ambient") && !c.measures(reading.Ambient) {
-		c.about(path+".gauge", "needs the air pressure that it counts from; give panel.ambient or a channel with the role ambient-pressure")
+	if ch.Gauge && !c.Has("panel.ambient") && !c.measures(reading.Ambient) {
+		c.About(path+".gauge", "needs the air pressure that it counts from; give panel.ambient or a channel with the role ambient-pressure")
 	}
 	if ch.Scale == "" && isValve(ch.Role) {
 		ch.Scale = "100 %" // the number 1 means open
 	}
-	if c.has(path+".gas_factor") && !(ch.GasFactor >= 0.01 && ch.GasFactor <= 100) {
-		c.wrong(path+".gas_factor", "expected 0.01 to 100")
+	if c.Has(path+".gas_factor") && !(ch.GasFactor >= 0.01 && ch.GasFactor <= 100) {
+		c.Wrong(path+".gas_factor", "expected 0.01 to 100")
 	}
 	c.scale(path, ch)
 }
 
 func (c checker) patternField(path string, ch *Channel, fields []string) {
 	switch {
-	case !c.has(path + ".field"):
-		c.missing(path+".field", "expected one of the pattern's fields: %s", enumerate(fields, "or"))
+	case !c.Has(path + ".field"):
+		c.Missing(path+".field", "expected one of the pattern's fields: %s", form.Enumerate(fields, "or"))
 	case fields != nil && !slices.Contains(fields, ch.Field):
-		c.wrong(path+".field", "the pattern has no such field; %s", expectOne(fields, ch.Field))
+		c.Wrong(path+".field", "the pattern has no such field; %s", form.ExpectOne(fields, ch.Field))
 	}
 }
 

@@ -17,30 +17,30 @@ const (
 // Address (TCP) and Command (a child process) is set. Fields of other lines
 // and other protocols are zero.
 type Instrument struct {
-	Name     string      `toml:"name" bench:"required"`
-	Protocol string      `toml:"protocol" bench:"required; oneof=modbus-rtu|modbus-tcp|scpi|lines"`
+	Name     string      `toml:"name" form:"required"`
+	Protocol string      `toml:"protocol" form:"required; oneof=modbus-rtu|modbus-tcp|scpi|lines"`
 	Port     string      `toml:"port"`
 	Address  string      `toml:"address"` // host:port
 	Command  []string    `toml:"command"`
-	Baud     int         `toml:"baud" bench:"least=50; most=4000000"`
-	DataBits int         `toml:"data_bits" bench:"least=5; most=8"`
-	Parity   string      `toml:"parity" bench:"oneof=none|even|odd"`
-	StopBits int         `toml:"stop_bits" bench:"least=1; most=2"`
-	Every    unit.Second `toml:"every" bench:"least=1 ms; most=1 h"`     // polling interval, bench time; 0 where it streams
-	Timeout  unit.Second `toml:"timeout" bench:"least=1 ms; most=5 min"` // wall time to wait for an answer
-	Streams  bool        `toml:"streams"`                                // talks by itself
-	Pattern  string      `toml:"pattern"`                                // lines: named fields in braces
-	Checksum string      `toml:"checksum" bench:"oneof=none|xor8|crc16"` // lines
-	Identify string      `toml:"identify"`                               // scpi: query that names the instrument
-	Hold     []string    `toml:"hold"`                                   // commands sent on HOLD, in order
-	Resume   []string    `toml:"resume"`                                 // commands sent before the first setpoint after a HOLD
+	Baud     int         `toml:"baud" form:"least=50; most=4000000"`
+	DataBits int         `toml:"data_bits" form:"least=5; most=8"`
+	Parity   string      `toml:"parity" form:"oneof=none|even|odd"`
+	StopBits int         `toml:"stop_bits" form:"least=1; most=2"`
+	Every    unit.Second `toml:"every" form:"least=1 ms; most=1 h"`     // polling interval, bench time; 0 where it streams
+	Timeout  unit.Second `toml:"timeout" form:"least=1 ms; most=5 min"` // wall time to wait for an answer
+	Streams  bool        `toml:"streams"`                               // talks by itself
+	Pattern  string      `toml:"pattern"`                               // lines: named fields in braces
+	Checksum string      `toml:"checksum" form:"oneof=none|xor8|crc16"` // lines
+	Identify string      `toml:"identify"`                              // scpi: query that names the instrument
+	Hold     []string    `toml:"hold"`                                  // commands sent on HOLD, in order
+	Resume   []string    `toml:"resume"`                                // commands sent before the first setpoint after a HOLD
 
-	Terminator string      `toml:"terminator" bench:"oneof=lf|crlf|cr"`     // scpi, lines: what is sent; any is understood. Default lf
-	Ask        string      `toml:"ask"`                                     // lines: text that asks for a line; without it the instrument streams
-	Errors     string      `toml:"errors"`                                  // scpi: query of the error queue, sent after each write
-	Turnaround unit.Second `toml:"turnaround" bench:"least=0 ms; most=1 s"` // RS-485: silence before each message, wall time
-	Echo       bool        `toml:"echo"`                                    // RS-485: the converter sends our own bytes back
-	Traffic    string      `toml:"traffic"`                                 // file that keeps every byte, for diagnosis
+	Terminator string      `toml:"terminator" form:"oneof=lf|crlf|cr"`     // scpi, lines: what is sent; any is understood. Default lf
+	Ask        string      `toml:"ask"`                                    // lines: text that asks for a line; without it the instrument streams
+	Errors     string      `toml:"errors"`                                 // scpi: query of the error queue, sent after each write
+	Turnaround unit.Second `toml:"turnaround" form:"least=0 ms; most=1 s"` // RS-485: silence before each message, wall time
+	Echo       bool        `toml:"echo"`                                   // RS-485: the converter sends our own bytes back
+	Traffic    string      `toml:"traffic"`                                // file that keeps every byte, for diagnosis
 
 	Channel []Channel `toml:"channel"`
 }
@@ -49,25 +49,25 @@ type Instrument struct {
 // quantity by SI; Factor, Zero, Low, High and Symbol are filled in by Parse
 // from the texts of the file.
 type Channel struct {
-	Name     string       `toml:"name" bench:"required"`
-	Role     reading.Role `toml:"role" bench:"default=none"`
-	Unit     int          `toml:"unit" bench:"least=1; most=247"`       // Modbus unit address
-	Function int          `toml:"function" bench:"least=3; most=4"`     // Modbus function 3 or 4
-	Register int          `toml:"register" bench:"least=0; most=65535"` // Modbus, counted from 0
-	Format   string       `toml:"format" bench:"oneof=uint16|int16|uint32|int32|float32"`
-	Order    string       `toml:"order" bench:"oneof=ABCD|CDAB|BADC|DCBA"` // bytes of the number, A the most significant
-	Query    string       `toml:"query"`                                   // scpi
-	Write    string       `toml:"write"`                                   // scpi, {value} stands for the number
-	Field    string       `toml:"field"`                                   // lines: field of the pattern
-	Scale    string       `toml:"scale"`                                   // what the number grows by from 0 to 1, as written
-	Offset   string       `toml:"offset"`                                  // the quantity that the number 0 means, as written
-	Gauge    bool         `toml:"gauge"`                                   // pressure above ambient
-	Range    []string     `toml:"range"`                                   // lowest and highest value in specification, as written
+	Name     string       `toml:"name" form:"required"`
+	Role     reading.Role `toml:"role" form:"default=none"`
+	Unit     int          `toml:"unit" form:"least=1; most=247"`       // Modbus unit address
+	Function int          `toml:"function" form:"least=3; most=4"`     // Modbus function 3 or 4
+	Register int          `toml:"register" form:"least=0; most=65535"` // Modbus, counted from 0
+	Format   string       `toml:"format" form:"oneof=uint16|int16|uint32|int32|float32"`
+	Order    string       `toml:"order" form:"oneof=ABCD|CDAB|BADC|DCBA"` // bytes of the number, A the most significant
+	Query    string       `toml:"query"`                                  // scpi
+	Write    string       `toml:"write"`                                  // scpi, {value} stands for the number
+	Field    string       `toml:"field"`                                  // lines: field of the pattern
+	Scale    string       `toml:"scale"`                                  // what the number grows by from 0 to 1, as written
+	Offset   string       `toml:"offset"`                                 // the quantity that the number 0 means, as written
+	Gauge    bool         `toml:"gauge"`                                  // pressure above ambient
+	Range    []string     `toml:"range"`                                  // lowest and highest value in specification, as written
 
-	Span       []string    `toml:"span"`                               // instead of scale: the number is a current in mA, and these are the quantities at 4 mA and at 20 mA, as written
-	GasFactor  float64     `toml:"gas_factor"`                         // multiplies the reading of a gauge that depends on the gas; 0 is none
-	Resolution string      `toml:"resolution"`                         // a setpoint read back this near to the one sent was taken, as written
-	Stale      unit.Second `toml:"stale" bench:"least=1 ms; most=1 h"` // instead of that of [limits]; 0 is that
+	Span       []string    `toml:"span"`                              // instead of scale: the number is a current in mA, and these are the quantities at 4 mA and at 20 mA, as written
+	GasFactor  float64     `toml:"gas_factor"`                        // multiplies the reading of a gauge that depends on the gas; 0 is none
+	Resolution string      `toml:"resolution"`                        // a setpoint read back this near to the one sent was taken, as written
+	Stale      unit.Second `toml:"stale" form:"least=1 ms; most=1 h"` // instead of that of [limits]; 0 is that
 
 	Factor    float64 // SI per count
 	Zero      float64 // SI at the number 0; above ambient where Gauge

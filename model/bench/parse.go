@@ -1,9 +1,11 @@
 package bench
 
-import (
-	"reflect"
+import "barline/model/form"
 
-	"barline/model/unit"
+// Mistake is one thing wrong with a bench file, Mistakes all of them.
+type (
+	Mistake  = form.Mistake
+	Mistakes = form.Mistakes
 )
 
 // Parse reads a bench file. Name is the file's name for messages. An error is
@@ -11,26 +13,16 @@ import (
 // syntax alone, since nothing behind it can be trusted, or all mistakes of
 // content.
 func Parse(data []byte, name string) (*Bench, error) {
-	r := &report{file: name, nodes: map[string]*node{}}
-	root := r.syntax(data)
-	if root == nil {
-		return nil, r.mistakes
-	}
-	d := &decoder{report: r}
-	if n := root.find("panel", "ambient"); n != nil && n.shape == isText {
-		ambient, err := unit.ParsePressure(n.text)
-		d.ambient, d.ambientGiven = ambient, err == nil
-	}
 	b := new(Bench)
-	d.section(root, reflect.ValueOf(b).Elem(), "")
-	for i := range b.Instrument {
-		b.Instrument[i].fillDefaults()
+	r, sound := form.Form{Noun: "bench file", AmbientKey: [2]string{"panel", "ambient"}}.Read(data, name, b)
+	if sound {
+		for i := range b.Instrument {
+			b.Instrument[i].fillDefaults()
+		}
+		checker{r, b}.all()
 	}
-	c := checker{r, b}
-	c.all()
-	if len(r.mistakes) > 0 {
-		r.mistakes.sort()
-		return nil, r.mistakes
+	if err := r.Err(); err != nil {
+		return nil, err
 	}
 	return b, nil
 }

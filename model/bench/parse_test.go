@@ -8,6 +8,7 @@ import (
 	"testing"
 	"time"
 
+	"barline/model/form"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -294,39 +295,8 @@ fall_rate = "0.1 bar/s"
 }
 
 func TestTagsCanBeRead(t *testing.T) {
-	var walk func(reflect.Type)
-	walk = func(kind reflect.Type) {
-		for i := range kind.NumField() {
-			f := kind.Field(i)
-			if f.Type.Kind() == reflect.Struct {
-				walk(f.Type)
-			} else if f.Type.Kind() == reflect.Slice && f.Type.Elem().Kind() == reflect.Struct {
-				walk(f.Type.Elem())
-			}
-			r, d := parseRules(f.Tag.Get("bench")), decoder{}
-			for _, text := range []string{r.preset, r.above, r.least, r.most} {
-				if v := reflect.New(f.Type).Elem(); text != "" {
-					if err := d.scalar(text, v); err != nil {
-						t.Errorf("%s.%s: %q: %v", kind.Name(), f.Name, text, err)
-					}
-				}
-			}
-			if v := reflect.New(f.Type).Elem(); r.preset != "" {
-				if err := d.scalar(r.preset, v); err != nil || r.check(v) != "" {
-					t.Errorf("%s.%s: default %q breaks its own rule: %v %s", kind.Name(), f.Name, r.preset, err, r.check(v))
-				}
-			}
-		}
-	}
-	walk(reflect.TypeFor[Bench]())
-}
-
-func TestNearest(t *testing.T) {
-	keys := []string{"length", "kind", "core_diameter", "loss", "wall"}
-	for word, want := range map[string]string{"lenght": "length", "lengt": "length", "core-diameter": "core_diameter", "kidn": "kind", "x": "", "pressure": "", "Wall": "wall"} {
-		if got := nearest(word, keys); got != want {
-			t.Errorf("%q: %q, want %q", word, got, want)
-		}
+	if err := form.CheckTags(new(Bench)); err != nil {
+		t.Error(err)
 	}
 }
 

@@ -4,6 +4,8 @@ import (
 	"fmt"
 	"slices"
 	"strings"
+
+	"barline/model/form"
 )
 
 // patternFields returns the names in braces of the pattern of a lines
@@ -29,17 +31,17 @@ func patternFields(pattern string) ([]string, error) {
 		}
 		field, after, closed := strings.Cut(rest[1:], "}")
 		if !closed {
-			return nil, fmt.Errorf("{%s has no }", clip(field))
+			return nil, fmt.Errorf("{%s has no }", form.Clip(field))
 		}
 		name, isList := strings.CutSuffix(field, "...")
 		if !isFieldName(name) || name == "_" && isList {
-			return nil, fmt.Errorf("field {%s}: expected a name of letters, digits, - and _", clip(field))
+			return nil, fmt.Errorf("field {%s}: expected a name of letters, digits, - and _", form.Clip(field))
 		}
 		if isList {
 			lists++
 		}
 		if lists > 1 {
-			return nil, fmt.Errorf("field {%s}: a second list; expected one at most", clip(field))
+			return nil, fmt.Errorf("field {%s}: a second list; expected one at most", form.Clip(field))
 		}
 		if slices.Contains(names, name) {
 			return nil, fmt.Errorf("field {%s} stands there twice", name)

@@ -6,6 +6,7 @@ import (
 	"math"
 	"strings"
 
+	"barline/model/form"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -86,7 +87,7 @@ func anyQuantity(text string) (float64, error) {
 // scale fills in Factor, Zero, Low, High and Symbol of a channel.
 func (c checker) scale(path string, ch *Channel) {
 	if _, name := unit.Cut(ch.Scale); unit.IsGauge(ch.Scale) && !ch.Gauge && ch.Role.IsPressure() {
-		c.wrong(path+".scale", "it is a gauge pressure; write gauge = true beside it")
+		c.Wrong(path+".scale", "it is a gauge pressure; write gauge = true beside it")
 		return
 	} else if ch.Role == reading.NoRole || name == "counts" || name == "count" {
 		ch.Symbol = name
@@ -95,26 +96,26 @@ func (c checker) scale(path string, ch *Channel) {
 	if k.symbol != "" && ch.Symbol == "" {
 		ch.Symbol = k.symbol
 	}
-	if c.has(path + ".resolution") {
+	if c.Has(path + ".resolution") {
 		var err error
 		if ch.Step, err = k.span(ch.Resolution); err != nil || !(ch.Step > 0) {
-			c.wrong(path+".resolution", "expected a step above zero, such as \"1 mbar\"")
+			c.Wrong(path+".resolution", "expected a step above zero, such as \"1 mbar\"")
 		}
 	}
-	if c.has(path + ".span") {
+	if c.Has(path + ".span") {
 		c.current(path, ch, k)
 		return
 	}
 	factor, err := k.span(ch.Scale)
 	switch {
-	case err != nil && c.has(path+".scale"):
-		c.wrong(path+".scale", "%s", reason(err))
+	case err != nil && c.Has(path+".scale"):
+		c.Wrong(path+".scale", "%s", form.Reason(err))
 		return
 	case err != nil:
-		c.missing(path+".scale", "%s", "it says what the number grows by from 0 to 1: "+reason(err))
+		c.Missing(path+".scale", "%s", "it says what the number grows by from 0 to 1: "+form.Reason(err))
 		return
 	case factor == 0 || math.IsInf(factor, 0):
-		c.wrong(path+".scale", "expected another quantity than zero")
+		c.Wrong(path+".scale", "expected another quantity than zero")
 		return
 	}
 	ch.Factor = factor
@@ -125,14 +126,14 @@ func (c checker) scale(path string, ch *Channel) {
 			ch.Zero = zero
 		}
 	}
-	if c.has(path + ".offset") {
+	if c.Has(path + ".offset") {
 		zero, err := k.parse(ch.Offset)
 		if err != nil {
-			c.wrong(path+".offset", "%s", reason(err))
+			c.Wrong(path+".offset", "%s", form.Reason(err))
 		}
 		ch.Zero = zero
 	}
-	if c.has(path + ".range") {
+	if c.Has(path + ".range") {
 		c.limits(path+".range", ch, k)
 	}
 }
@@ -141,30 +142,30 @@ func (c checker) scale(path string, ch *Channel) {
 // 20 mA.
 func (c checker) current(path string, ch *Channel, k kind) {
 	for _, key := range []string{"scale", "offset"} {
-		if c.has(path + "." + key) {
-			c.about(path+"."+key, "is one scale too many: span is given as well")
+		if c.Has(path + "." + key) {
+			c.About(path+"."+key, "is one scale too many: span is given as well")
 			return
 		}
 	}
 	if len(ch.Span) != 2 {
-		c.wrong(path+".span", `expected the quantities at 4 mA and at 20 mA, such as ["0 bar", "16 bar"]`)
+		c.Wrong(path+".span", `expected the quantities at 4 mA and at 20 mA, such as ["0 bar", "16 bar"]`)
 		return
 	}
 	var v [2]float64
 	for i, text := range ch.Span {
 		var err error
 		if v[i], err = k.parse(text); err != nil {
-			c.wrong(fmt.Sprintf("%s.span[%d]", path, i), "%s", reason(err))
+			c.Wrong(fmt.Sprintf("%s.span[%d]", path, i), "%s", form.Reason(err))
 			return
 		}
 	}
 	if v[0] == v[1] {
-		c.wrong(path+".span", "expected two different quantities")
+		c.Wrong(path+".span", "expected two different quantities")
 		return
 	}
 	ch.Factor = (v[1] - v[0]) / 16
 	ch.Zero = v[0] - 4*ch.Factor
-	if c.has(path + ".range") {
+	if c.Has(path + ".range") {
 		c.limits(path+".range", ch, k)
 	}
 }
@@ -172,7 +173,7 @@ func (c checker) current(path string, ch *Channel, k kind) {
 // limits fills in the range in specification.
 func (c checker) limits(path string, ch *Channel, k kind) {
 	if len(ch.Range) != 2 {
-		c.wrong(path, `expected the lowest and the highest value, such as ["0 bar", "20 bar"]`)
+		c.Wrong(path, `expected the lowest and the highest value, such as ["0 bar", "20 bar"]`)
 		return
 	}
 	var v [2]float64
@@ -180,16 +181,16 @@ func (c checker) limits(path string, ch *Channel, k kind) {
 		var err error
 		at := fmt.Sprintf("%s[%d]", path, i)
 		if v[i], err = k.parse(text); err != nil {
-			c.wrong(at, "%s", reason(err))
+			c.Wrong(at, "%s", form.Reason(err))
 			return
 		}
 		if _, name := unit.Cut(text); ch.Role == reading.NoRole && name != ch.Symbol {
-			c.wrong(at, "expected the unit of the scale, %q", ch.Symbol)
+			c.Wrong(at, "expected the unit of the scale, %q", ch.Symbol)
 			return
 		}
 	}
 	if !(v[0] < v[1]) {
-		c.wrong(path, "%s is not below %s; expected the lowest value first", strings.TrimSpace(ch.Range[0]), strings.TrimSpace(ch.Range[1]))
+		c.Wrong(path, "%s is not below %s; expected the lowest value first", strings.TrimSpace(ch.Range[0]), strings.TrimSpace(ch.Range[1]))
 		return
 	}
 	ch.Low, ch.High = v[0], v[1]

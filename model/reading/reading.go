@@ -160,3 +160,6 @@ func (r Role) IsCommanded() bool {
 	}
 	return false
 }
+
+// Words returns every role as a bench file spells it.
+func (Role) Words() []string { return roleText[:] }

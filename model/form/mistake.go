@@ -1,4 +1,4 @@
-package bench
+package form
 
 import (
 	"fmt"
@@ -6,7 +6,7 @@ import (
 	"strings"
 )
 
-// Mistake is one thing wrong with a bench file.
+// Mistake is one thing wrong with a file.
 type Mistake struct {
 	File   string
 	Line   int    // from 1; 0 where it is about the whole file
@@ -23,7 +23,7 @@ func (m Mistake) Error() string {
 	return fmt.Sprintf("%s:%d:%d: %s", m.File, m.Line, m.Column, m.Text)
 }
 
-// Mistakes is all that is wrong with a bench file, in the order of the file.
+// Mistakes is all that is wrong with a file, in the order of the file.
 type Mistakes []Mistake
 
 // Error writes one mistake a line.

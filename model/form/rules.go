@@ -1,4 +1,4 @@
-package bench
+package form
 
 import (
 	"encoding"
@@ -48,7 +48,7 @@ func parseRules(tag string) rules {
 func (r rules) check(v reflect.Value) string {
 	switch {
 	case r.oneof != nil && !slices.Contains(r.oneof, v.String()):
-		return expectOne(r.oneof, v.String())
+		return ExpectOne(r.oneof, v.String())
 	case r.above != "" && !(number(v) > bound(r.above, v)):
 		return "expected more than " + r.above
 	case r.least != "" && !(number(v) >= bound(r.least, v)):
@@ -64,10 +64,10 @@ func (r rules) check(v reflect.Value) string {
 // expected says what a missing value should have been.
 func (r rules) expected(v reflect.Value) string {
 	if r.oneof != nil {
-		return "expected " + enumerate(r.oneof, "or")
+		return "expected " + Enumerate(r.oneof, "or")
 	}
 	if u, ok := v.Addr().Interface().(encoding.TextUnmarshaler); ok {
-		return reason(u.UnmarshalText(nil))
+		return Reason(u.UnmarshalText(nil))
 	}
 	return "it has no default"
 }
@@ -90,9 +90,9 @@ func bound(text string, v reflect.Value) float64 {
 	return f
 }
 
-func expectOne(allowed []string, got string) string {
-	text := "expected " + enumerate(allowed, "or")
-	if near := nearest(got, allowed); near != "" {
+func ExpectOne(allowed []string, got string) string {
+	text := "expected " + Enumerate(allowed, "or")
+	if near := Nearest(got, allowed); near != "" {
 		text += fmt.Sprintf("; did you mean %q?", near)
 	}
 	return text

@@ -1,4 +1,4 @@
-package bench
+package form
 
 import (
 	"encoding"
@@ -9,13 +9,12 @@ import (
 	"strconv"
 	"strings"
 
-	"barline/model/reading"
 	"barline/model/unit"
 )
 
 // decoder fills structs from a tree and collects what does not fit.
 type decoder struct {
-	*report
+	*Report
 	ambient      unit.Pascal
 	ambientGiven bool
 }
@@ -32,7 +31,7 @@ func fieldsOf(t reflect.Type) []field {
 	var fs []field
 	for i := range t.NumField() {
 		if key := t.Field(i).Tag.Get("toml"); key != "" {
-			fs = append(fs, field{i, key, parseRules(t.Field(i).Tag.Get("bench"))})
+			fs = append(fs, field{i, key, parseRules(t.Field(i).Tag.Get("form"))})
 		}
 	}
 	return fs
@@ -73,11 +72,11 @@ func (d *decoder) field(n *node, v reflect.Value, f field, path string, quiet bo
 	switch kind := v.Type(); {
 	case isSection(kind):
 		if n != nil && n.shape != isTable {
-			d.wrong(path, "expected a section, written as [%s]", f.key)
+			d.Wrong(path, "expected a section, written as [%s]", f.key)
 			return
 		}
 		if need := requiredKeys(kind); n == nil && len(need) > 0 && !quiet {
-			d.whole("[%s] is missing; it needs %s", path, enumerate(need, "and"))
+			d.Whole("[%s] is missing; it needs %s", path, Enumerate(need, "and"))
 		}
 		d.section(n, v, path)
 	case kind.Kind() == reflect.Slice && isSection(kind.Elem()):
@@ -86,7 +85,7 @@ func (d *decoder) field(n *node, v reflect.Value, f field, path string, quiet bo
 		// A default that does not parse is caught by a test of this package.
 		_ = d.scalar(f.rules.preset, v)
 	case n == nil && f.rules.required && !quiet:
-		d.missing(path, "%s", f.rules.expected(v))
+		d.Missing(path, "%s", f.rules.expected(v))
 	case n == nil:
 	case kind.Kind() == reflect.Slice:
 		d.texts(n, v, path)
@@ -101,7 +100,7 @@ func (d *decoder) sections(n *node, v reflect.Value, path string) {
 		return
 	}
 	if n.shape != isList {
-		d.wrong(path, "expected sections, each written as [[%s]]", display(path))
+		d.Wrong(path, "expected sections, each written as [[%s]]", display(path))
 		return
 	}
 	for i, item := range n.items {
@@ -109,7 +108,7 @@ func (d *decoder) sections(n *node, v reflect.Value, path string) {
 		d.nodes[at] = item
 		element := reflect.New(v.Type().Elem()).Elem()
 		if item.shape != isTable {
-			d.wrong(at, "expected a section")
+			d.Wrong(at, "expected a section")
 		} else {
 			d.section(item, element, at)
 		}
@@ -120,14 +119,14 @@ func (d *decoder) sections(n *node, v reflect.Value, path string) {
 // texts fills a slice of strings.
 func (d *decoder) texts(n *node, v reflect.Value, path string) {
 	if n.shape != isList {
-		d.wrong(path, `expected a list of texts such as ["first", "second"]`)
+		d.Wrong(path, `expected a list of texts such as ["first", "second"]`)
 		return
 	}
 	for i, item := range n.items {
 		at := fmt.Sprintf("%s[%d]", path, i)
 		d.nodes[at] = item
 		if item.shape != isText {
-			d.wrong(at, "expected text in quotes")
+			d.Wrong(at, "expected text in quotes")
 			continue
 		}
 		v.Set(reflect.Append(v, reflect.ValueOf(item.text)))
@@ -137,30 +136,30 @@ func (d *decoder) texts(n *node, v reflect.Value, path string) {
 // value fills a field that holds a single value and applies its rules.
 func (d *decoder) value(n *node, v reflect.Value, r rules, path string) {
 	if n.shape == isTable || n.shape == isList {
-		d.wrong(path, "expected one value, not %s", shapeText[n.shape])
+		d.Wrong(path, "expected one value, not %s", shapeText[n.shape])
 		return
 	}
 	if reason := d.fits(n, v); reason != "" {
-		d.wrong(path, "%s", reason)
+		d.Wrong(path, "%s", reason)
 		return
 	}
 	if p, ok := v.Addr().Interface().(*unit.Pascal); ok && r.gauge && n.shape == isText && unit.IsGauge(n.text) {
 		g, err := unit.ParseGauge(n.text)
 		switch {
 		case err != nil:
-			d.wrong(path, "%s", reason(err))
+			d.Wrong(path, "%s", Reason(err))
 			return
 		case !d.ambientGiven:
-			d.wrong(path, "it is a gauge pressure; give panel.ambient, the air pressure that it counts from, or write it as absolute")
+			d.Wrong(path, "it is a gauge pressure; give panel.ambient, the air pressure that it counts from, or write it as absolute")
 			return
 		}
 		*p = g.Absolute(d.ambient)
 	} else if err := d.scalar(n.text, v); err != nil {
-		d.wrong(path, "%s", d.advice(err, v, n.text))
+		d.Wrong(path, "%s", d.advice(err, v, n.text))
 		return
 	}
 	if reason := r.check(v); reason != "" {
-		d.wrong(path, "%s", reason)
+		d.Wrong(path, "%s", reason)
 	}
 }
 
@@ -210,18 +209,14 @@ func (d *decoder) scalar(text string, v reflect.Value) error {
 
 // advice words an error of scalar for the user.
 func (d *decoder) advice(err error, v reflect.Value, text string) string {
-	if _, isRole := v.Interface().(reading.Role); isRole {
-		var roles []string
-		for r := range reading.RoleCount {
-			roles = append(roles, reading.Role(r).String())
-		}
-		return expectOne(roles, text)
+	if w, ok := v.Interface().(interface{ Words() []string }); ok {
+		return ExpectOne(w.Words(), text)
 	}
-	return reason(err)
+	return Reason(err)
 }
 
-// reason is the part of an error that does not repeat the value.
-func reason(err error) string {
+// Reason is the part of an error that does not repeat the value.
+func Reason(err error) string {
 	var e *unit.TextError
 	if errors.As(err, &e) {
 		return e.Reason
@@ -250,8 +245,8 @@ func join(path, key string) string {
 	return path + "." + key
 }
 
-// enumerate writes "a, b and c".
-func enumerate(words []string, last string) string {
+// Enumerate writes "a, b and c".
+func Enumerate(words []string, last string) string {
 	if len(words) < 2 {
 		return strings.Join(words, "")
 	}

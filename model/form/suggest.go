@@ -1,8 +1,8 @@
-package bench
+package form
 
-// nearest returns the candidate that a mistyped word most likely meant, or
+// Nearest returns the candidate that a mistyped word most likely meant, or
 // "" where none is near enough.
-func nearest(word string, candidates []string) string {
+func Nearest(word string, candidates []string) string {
 	best, least := "", 1+len(word)/3
 	for _, c := range candidates {
 		if len(c) > len(word)+least || len(word) > len(c)+least {

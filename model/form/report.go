@@ -1,4 +1,4 @@
-package bench
+package form
 
 import (
 	"fmt"
@@ -7,55 +7,66 @@ import (
 	"unicode/utf8"
 )
 
-// report collects mistakes and knows where each key was written. Paths count
+// Report collects mistakes and knows where each key was written. Paths count
 // sections that repeat: instrument[0].channel[2].range.
-type report struct {
+type Report struct {
 	file     string
+	noun     string
+	root     reflect.Type
 	nodes    map[string]*node
 	mistakes Mistakes
 }
 
-// has reports whether the file gives the key.
-func (r *report) has(path string) bool { return r.nodes[path] != nil }
+// Err returns all mistakes found so far in the order of the file, or nil.
+func (r *Report) Err() error {
+	if len(r.mistakes) == 0 {
+		return nil
+	}
+	r.mistakes.sort()
+	return r.mistakes
+}
 
-func (r *report) add(at place, path, text string) {
+// Has reports whether the file gives the key.
+func (r *Report) Has(path string) bool { return r.nodes[path] != nil }
+
+func (r *Report) add(at place, path, text string) {
 	r.mistakes = append(r.mistakes, Mistake{r.file, at.line, at.column, display(path), text})
 }
 
-// wrong says that the value under path does not do.
-func (r *report) wrong(path, format string, args ...any) {
+// Wrong says that the value under path does not do.
+func (r *Report) Wrong(path, format string, args ...any) {
 	n := r.nodes[path]
 	if n == nil {
-		r.about(path, format, args...)
+		r.About(path, format, args...)
 		return
 	}
 	key := display(path)
 	switch n.shape {
 	case isText:
-		key += fmt.Sprintf(" = %q", clip(n.text))
+		key += fmt.Sprintf(" = %q", Clip(n.text))
 	case isNumber, isWhole, isTruth, isDate:
-		key += " = " + clip(n.text)
+		key += " = " + Clip(n.text)
 	}
 	r.add(n.value, path, key+": "+fmt.Sprintf(format, args...))
 }
 
-// missing says that a key which is needed was not given.
-func (r *report) missing(path, format string, args ...any) {
+// Missing says that a key which is needed was not given.
+func (r *Report) Missing(path, format string, args ...any) {
 	r.add(r.near(path), path, display(path)+" is missing; "+fmt.Sprintf(format, args...))
 }
 
-// about says something of a key rather than of its value.
-func (r *report) about(path, format string, args ...any) {
+// About says something of a key rather than of its value.
+func (r *Report) About(path, format string, args ...any) {
 	r.add(r.near(path), path, display(path)+" "+fmt.Sprintf(format, args...))
 }
 
-// whole says something of the file.
-func (r *report) whole(format string, args ...any) {
+// Whole says something of the file.
+func (r *Report) Whole(format string, args ...any) {
 	r.add(place{}, "", fmt.Sprintf(format, args...))
 }
 
 // near is the place of the key, or of the nearest section around it.
-func (r *report) near(path string) place {
+func (r *Report) near(path string) place {
 	for path != "" {
 		if n := r.nodes[path]; n != nil {
 			return n.key
@@ -67,18 +78,18 @@ func (r *report) near(path string) place {
 
 // unknown refuses a key and says which one may have been meant, or where a
 // key of that name belongs. It returns the key that was meant, or "".
-func (r *report) unknown(path, key string, n *node, known []string) (meant string) {
+func (r *Report) unknown(path, key string, n *node, known []string) (meant string) {
 	within := display(strings.TrimSuffix(strings.TrimSuffix(path, key), "."))
-	text := fmt.Sprintf("%s is not a key of [%s]", clip(display(path)), within)
-	if strings.HasPrefix(within, "instrument") {
-		text = fmt.Sprintf("%s is not a key of [[%s]]", clip(display(path)), within)
+	text := fmt.Sprintf("%s is not a key of [%s]", Clip(display(path)), within)
+	if strings.Contains(path, "[") {
+		text = fmt.Sprintf("%s is not a key of [[%s]]", Clip(display(path)), within)
 	}
 	if within == "" {
-		text = fmt.Sprintf("%s is not a section of a bench file", clip(key))
+		text = fmt.Sprintf("%s is not a section of a %s", Clip(key), r.noun)
 	}
-	if meant = nearest(key, known); meant != "" {
+	if meant = Nearest(key, known); meant != "" {
 		text += fmt.Sprintf("; did you mean %q?", meant)
-	} else if home := homeOf(key, reflect.TypeFor[Bench](), ""); home != "" {
+	} else if home := homeOf(key, r.root, ""); home != "" {
 		text += fmt.Sprintf("; %s belongs to %s", key, home)
 	}
 	r.add(n.key, path, text)
@@ -124,7 +135,8 @@ func display(path string) string {
 	return b.String()
 }
 
-func clip(s string) string {
+// Clip cuts a text that is quoted in a message to a readable length.
+func Clip(s string) string {
 	const most = 60
 	if utf8.RuneCountInString(s) <= most {
 		return s

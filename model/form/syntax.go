@@ -1,4 +1,4 @@
-package bench
+package form
 
 import (
 	"errors"
@@ -9,7 +9,7 @@ import (
 )
 
 // syntax proves that data is TOML and returns its tree, or nil where it is not.
-func (r *report) syntax(data []byte) *node {
+func (r *Report) syntax(data []byte) *node {
 	var proof map[string]any
 	if err := toml.Unmarshal(data, &proof); err != nil {
 		var at place
