@@ -1,19 +1,24 @@
 package main
 
 import (
+	"context"
 	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
+	"os"
+	"os/signal"
+	"syscall"
 
 	"github.com/spf13/cobra"
 
 	"barline/model/bench"
+	"barline/model/emission"
 )
 
 func newCheck() *cobra.Command {
 	var file string
-	var sample, asJSON bool
+	var sample, asJSON, live bool
 	cmd := &cobra.Command{
 		Use:   "check -b bench.toml",
 		Short: "Read a bench file, say what was understood and everything that is wrong",
@@ -22,7 +27,10 @@ func newCheck() *cobra.Command {
 Mistakes go to the error output, each with file, line and column; the exit
 code is then 2. A first bench file is written by
 
-    barline check --sample > bench.toml`,
+    barline check --sample > bench.toml
+
+With --live every instrument is read once, and nothing is set; the exit code
+is 1 where one does not answer.`,
 		Args: noArgs,
 		RunE: func(cmd *cobra.Command, args []string) error {
 			out := cmd.OutOrStdout()
@@ -34,8 +42,16 @@ code is then 2. A first bench file is written by
 				return usage("check needs a bench file: -b bench.toml; a first one is written by barline check --sample")
 			}
 			_, b, err := readBench(file)
+			if err == nil {
+				if _, wrong := emission.SetupFromBench(b); wrong != nil {
+					err = usage("%s: the light cannot be predicted: %w", file, wrong)
+				}
+			}
 			var found bench.Mistakes
 			errors.As(err, &found)
+			if live && err == nil {
+				return showLive(cmd, b, asJSON)
+			}
 			switch {
 			case asJSON && (err == nil || found != nil):
 				if err := writeObject(out, checked(file, b, found)); err != nil {
@@ -55,9 +71,31 @@ code is then 2. A first bench file is written by
 	}
 	cmd.Flags().StringVarP(&file, "bench", "b", "", "bench file")
 	cmd.Flags().BoolVar(&sample, "sample", false, "print a commented bench file")
+	cmd.Flags().BoolVar(&live, "live", false, "read every instrument once")
 	cmd.Flags().BoolVar(&asJSON, "json", false, "print the result as one JSON object")
 	cmd.MarkFlagsMutuallyExclusive("bench", "sample")
+	cmd.MarkFlagsMutuallyExclusive("live", "sample")
 	return cmd
+}
+
+// showLive reads the instruments and prints what they said.
+func showLive(cmd *cobra.Command, b *bench.Bench, asJSON bool) error {
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	defer stop()
+	reports := checkLive(ctx, b)
+	if asJSON {
+		if err := writeObject(cmd.OutOrStdout(), struct {
+			Instruments []liveReport `json:"instruments"`
+		}{reports}); err != nil {
+			return err
+		}
+	} else {
+		writeLive(cmd.OutOrStdout(), reports)
+	}
+	if !sound(reports) {
+		return errors.New("not every channel gave a value")
+	}
+	return nil
 }
 
 // checkedFile is what check --json prints.

@@ -1,9 +1,11 @@
 package bench
 
 import (
+	"slices"
 	"strings"
 
 	"barline/model/form"
+	"barline/model/gas"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -38,11 +40,24 @@ func (c checker) fibre() {
 	}
 }
 
-// gas checks a nonlinear index that is written as a value. The names of
-// sources are known to those who hold the data.
+// gas checks the names of sources, and a nonlinear index that is written as a
+// value instead.
 func (c checker) gas() {
+	species, err := gas.Named(c.b.Gas.Species)
+	if err != nil {
+		return // refused before
+	}
+	if names := gas.IndexNames(species); c.b.Gas.Index != "" && !slices.Contains(names, c.b.Gas.Index) {
+		c.Wrong("gas.index", "%s", form.ExpectOne(names, c.b.Gas.Index))
+	}
 	n2 := strings.TrimSpace(c.b.Gas.N2)
-	if n2 == "" || n2[0] != '-' && n2[0] != '.' && (n2[0] < '0' || n2[0] > '9') {
+	if n2 == "" {
+		return
+	}
+	if n2[0] != '-' && n2[0] != '.' && (n2[0] < '0' || n2[0] > '9') {
+		if names := gas.KerrNames(species); !slices.Contains(names, n2) {
+			c.Wrong("gas.n2", "%s, or a value such as \"9.11e-24 m2/W\"", form.ExpectOne(names, n2))
+		}
 		return
 	}
 	if v, err := unit.ParseNonlinearIndex(n2); err != nil {
