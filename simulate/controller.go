@@ -33,7 +33,8 @@ func (v *valve) move() {
 
 // controller is the pressure controller: a sensor on the manifold, a loop, and
 // the valves. It lets gas in through the inlet and out through the vent, and
-// through the pump below 1.2 bar.
+// through the pump below 1.2 bar. A setpoint of 5 mbar or less, where its
+// sensor says little, means pumping: the pump valve stays open.
 //
 // In hold the loop stands still and inlet, vent and pump are shut. A setpoint
 // makes it control again, but for one that comes within three seconds after
@@ -92,6 +93,7 @@ func (c *controller) step(now time.Duration, pressure float64) {
 		near         = 0.1   // bar, where the integral works
 		deadband     = 0.002 // bar, within which every valve stays shut
 		hysteresis   = 0.02  // bar
+		vacuum       = 0.005 // bar
 	)
 	c.pressure = pressure
 	if c.watchdog > 0 && !c.holding && now-c.heard > c.watchdog {
@@ -109,7 +111,10 @@ func (c *controller) step(now time.Duration, pressure float64) {
 		c.integral = 0
 	}
 	rate := perSecond*away + c.integral // bar/s wanted
-	if math.Abs(away) < deadband {
+	switch {
+	case c.setpoint <= vacuum*bar && p < 4*vacuum:
+		rate = -1
+	case math.Abs(away) < deadband:
 		rate = 0
 	}
 	// How fast each valve, wide open, moves the pressure, bar/s: set when the

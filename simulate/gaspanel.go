@@ -3,8 +3,8 @@ package simulate
 import "barline/simulate/panel"
 
 // gasPanel is Heron's gas path: cylinder, regulator, line, needle and inlet
-// valve, manifold with pump and vent, two cells behind valves of their own, and
-// the core between them.
+// valve, manifold with pump, vent and relief valve, two cells behind valves of
+// their own, and the core between them.
 type gasPanel struct {
 	net  *panel.Network
 	core *panel.Core
@@ -51,6 +51,8 @@ func newGasPanel(start panel.State) (gasPanel, error) {
 	g.inlet = net.AddPassage(g.line, g.hub, panel.NewOrifice(needleConductance, argon))
 	g.vent = net.AddPassage(g.hub, g.room, panel.NewOrifice(ventConductance, argon))
 	g.pump = net.AddPassage(g.hub, g.exhaust, panel.Pump{Speed: pumpSpeed, Ultimate: pumpUltimate})
+	relief := panel.Relief{Setting: reliefSetting, Orifice: panel.NewOrifice(reliefConductance, argon)}
+	net.Open(net.AddPassage(g.hub, g.room, relief), 1)
 	for i, c := range g.cells {
 		g.cellValves[i] = net.AddPassage(g.hub, c, panel.NewOrifice(cellValveConductance, argon))
 		g.gassing[i] = net.AddPassage(g.room, c, panel.Source{})

@@ -17,6 +17,9 @@ const (
 	ventConductance      = 4e-10
 	cellValveConductance = 2e-9
 
+	reliefSetting     = 16e5 // Pa, the rating of the cells
+	reliefConductance = 2e-9 // more than the needle valve can bring
+
 	regulatorSlope = 1.2e-7 // mol/(s Pa): half a bar of droop at full flow
 	pumpSpeed      = 1e-4   // m³/s at the manifold, through its hose
 	pumpUltimate   = 0.5    // Pa

@@ -103,6 +103,21 @@ func (r Regulator) Flow(a, b State) float64 {
 	return r.Slope * (r.Setting - b.P)
 }
 
+// Relief is a relief valve from a to b: shut below its setting, wide open a
+// twentieth above.
+type Relief struct {
+	Setting float64 // Pa
+	Orifice Orifice // wide open
+}
+
+// Flow implements Law.
+func (r Relief) Flow(a, b State) float64 {
+	if a.P <= r.Setting {
+		return 0
+	}
+	return min(1, (a.P/r.Setting-1)*20) * r.Orifice.Flow(a, b)
+}
+
 // Source carries a constant flow from a to b, such as outgassing of a wall.
 type Source struct {
 	Rate float64 // mol/s

@@ -1,0 +1,211 @@
+package simulate
+
+import (
+	"errors"
+	"math"
+	"os"
+	"strings"
+	"testing"
+	"time"
+
+	"barline/device/modbus"
+	"barline/model/unit"
+)
+
+// Every scenario can be played, and each of its cues is a fault that exists.
+func TestScenarios(t *testing.T) {
+	seen := map[string]bool{}
+	for _, s := range Scenarios() {
+		if s.Name == "" || s.About == "" || strings.ContainsAny(s.Name, " \n") || strings.Contains(s.About, "\n") || seen[s.Name] {
+			t.Errorf("scenario %q, %q", s.Name, s.About)
+		}
+		seen[s.Name] = true
+		b := newBench(t, Options{Seed: 7, Scenario: s.Name})
+		for _, c := range s.cues {
+			if err := b.Inject(c.fault); err != nil {
+				t.Errorf("%s: %v", s.Name, err)
+			}
+		}
+		to(t, b, 3*time.Second)
+	}
+	_, err := New(Options{Scenario: "holiday"})
+	if err == nil || !strings.Contains(err.Error(), `"holiday"`) || !strings.Contains(err.Error(), "purge") {
+		t.Errorf("an unknown scenario gives %v", err)
+	}
+}
+
+func TestOptionsRefused(t *testing.T) {
+	for _, p := range []float64{-1, 1e9, math.NaN(), math.Inf(1)} {
+		if _, err := New(Options{Pressure: unit.Pascal(p)}); err == nil {
+			t.Errorf("a start at %g Pa was taken", p)
+		}
+	}
+}
+
+// Every kind of fault has a place and an ordinary size, and ends.
+func TestEveryFaultBeginsAndEnds(t *testing.T) {
+	for k := range kindCount {
+		if len(k.Places()) == 0 {
+			t.Errorf("%v has no place", k)
+		}
+		for _, where := range append(k.Places(), "") {
+			b := newBench(t, Options{Seed: 1})
+			for _, f := range []Fault{{Kind: k, Where: where}, {Kind: k, Where: where, Over: true}} {
+				if err := b.Inject(f); err != nil {
+					t.Errorf("%v: %v", k, err)
+				}
+				to(t, b, b.Now()+time.Second)
+			}
+		}
+	}
+	b := newBench(t, Options{})
+	for _, f := range []Fault{{Kind: kindCount}, {Kind: Leak, Where: "moon"}, {Kind: Sag, Size: math.NaN()}, {Kind: Air, Size: math.Inf(1)}} {
+		if err := b.Inject(f); err == nil {
+			t.Errorf("%+v was taken", f)
+		}
+	}
+}
+
+func inject(t *testing.T, b *Bench, f Fault) {
+	t.Helper()
+	if err := b.Inject(f); err != nil {
+		t.Fatal(err)
+	}
+}
+
+func TestDeadTransducer(t *testing.T) {
+	b := newBench(t, Options{Seed: 1})
+	l := b.Lines()["gauges"]
+	frame, err := modbus.AppendRequestRTU(nil, modbus.Request{Unit: 1, Function: modbus.ReadInput, Count: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	inject(t, b, Fault{Kind: Dead})
+	if out := ask(t, l, frame); len(out) != 0 {
+		t.Errorf("a dead transducer says % X", out)
+	}
+	if p := register(t, l, 2, modbus.ReadInput, 0, modbus.ABCD); math.Abs(p-1.1) > 0.05 {
+		t.Errorf("its neighbour says %g bar", p)
+	}
+	inject(t, b, Fault{Kind: Dead, Over: true})
+	if out := ask(t, l, frame); len(out) != 9 {
+		t.Errorf("alive again it says % X", out)
+	}
+}
+
+func TestUnplugged(t *testing.T) {
+	b := newBench(t, Options{Seed: 1})
+	l := b.Lines()
+	inject(t, b, Fault{Kind: Unplugged, Where: "spectrometer"})
+	if _, err := l["spectrometer"].Read(make([]byte, 9), 0); !errors.Is(err, ErrUnplugged) {
+		t.Errorf("a pulled cable reads with %v", err)
+	}
+	if _, err := l["spectrometer"].Write([]byte("x")); !errors.Is(err, ErrUnplugged) {
+		t.Errorf("a pulled cable writes with %v", err)
+	}
+	cellA(t, l)
+	to(t, b, time.Minute)
+	inject(t, b, Fault{Kind: Unplugged, Where: "spectrometer", Over: true})
+	if said := drain(t, l["spectrometer"]); len(said) != 0 {
+		t.Errorf("what was said into the void came back: %q", said)
+	}
+	to(t, b, time.Minute+time.Second)
+	if said := drain(t, l["spectrometer"]); len(said) == 0 {
+		t.Error("plugged in again the spectrometer says nothing")
+	}
+}
+
+func TestClosedLine(t *testing.T) {
+	l := newBench(t, Options{}).Lines()["gauges"]
+	if err := l.Close(); err != nil {
+		t.Fatal(err)
+	}
+	if _, err := l.Read(make([]byte, 9), 0); !errors.Is(err, os.ErrClosed) {
+		t.Errorf("a closed line reads with %v", err)
+	}
+	if _, err := l.Write([]byte{1}); !errors.Is(err, os.ErrClosed) {
+		t.Errorf("a closed line writes with %v", err)
+	}
+}
+
+// About the asked share of replies is damaged, and the codec refuses each.
+func TestGarbage(t *testing.T) {
+	b := newBench(t, Options{Seed: 1})
+	l := b.Lines()["gauges"]
+	inject(t, b, Fault{Kind: Garbage, Size: 0.2})
+	request := modbus.Request{Unit: 1, Function: modbus.ReadInput, Count: 2}
+	frame, err := modbus.AppendRequestRTU(nil, request)
+	if err != nil {
+		t.Fatal(err)
+	}
+	const n = 1000
+	damaged := 0
+	for range n {
+		if _, err := modbus.DecodeReplyRTU(ask(t, l, frame)); err != nil {
+			damaged++
+		}
+	}
+	// Binomial: 200 ± 13 (one standard deviation).
+	if damaged < 150 || damaged > 250 {
+		t.Errorf("%d of %d replies were damaged, want about 200", damaged, n)
+	}
+}
+
+// The zero of a gauge creeps by 100 mbar an hour, and the other one's does not.
+func TestCreepingZero(t *testing.T) {
+	b := newBench(t, Options{Seed: 1, Scenario: "quiet"})
+	inject(t, b, Fault{Kind: Zero, Where: "cell B"})
+	l := b.Lines()
+	second := func() float64 { return register(t, l["gauges"], 2, modbus.ReadInput, 0, modbus.ABCD) }
+	a, bb := cellA(t, l), second()
+	to(t, b, 6*time.Minute)
+	if d := (second() - bb) - (cellA(t, l) - a); math.Abs(d-0.010) > 0.002 {
+		t.Errorf("in six minutes the gauges moved apart by %g bar, want 0.010 bar", d)
+	}
+}
+
+func TestSagAndShutter(t *testing.T) {
+	b := newBench(t, Options{Seed: 1, Scenario: "quiet"})
+	to(t, b, time.Second)
+	before := b.energy
+	inject(t, b, Fault{Kind: Sag, Size: 6})
+	to(t, b, time.Minute)
+	if ratio := b.energy / before; math.Abs(ratio-0.9) > 0.02 {
+		t.Errorf("a sag of 600 %% an hour left %g of the energy after a minute, want 0.90", ratio)
+	}
+	inject(t, b, Fault{Kind: Shutter})
+	l := b.Lines()["spectrometer"]
+	drain(t, l)
+	to(t, b, time.Minute+time.Second)
+	lines := 0
+	for line := range splitLines(drain(t, l)) {
+		if lines++; string(line) != "EM --- nm W --- nm S --- %" {
+			t.Errorf("behind the shutter: %q", line)
+		}
+	}
+	if lines != 5 {
+		t.Errorf("%d lines in a second, want 5", lines)
+	}
+}
+
+func TestWarmRoom(t *testing.T) {
+	b := newBench(t, Options{Seed: 1, Scenario: "quiet"})
+	inject(t, b, Fault{Kind: Warm, Size: 6})
+	to(t, b, 30*time.Minute)
+	fibre := register(t, b.Lines()["gauges"], 3, modbus.ReadHolding, 16, modbus.CDAB)
+	// The fibre lags by 200 s: 3 K less a third of a kelvin.
+	if fibre < 24.1 || fibre > 25.3 {
+		t.Errorf("after half an hour at 6 K an hour the fibre has %g °C", fibre)
+	}
+}
+
+// Below the threshold the spectrometer finds light and no emission.
+func TestThreshold(t *testing.T) {
+	b := newBench(t, Options{Seed: 1, Scenario: "fill"})
+	to(t, b, time.Second)
+	for line := range splitLines(drain(t, b.Lines()["spectrometer"])) {
+		if s := string(line); !strings.HasPrefix(s, "EM --- nm W --- nm S 0.") {
+			t.Errorf("at 1.1 bar: %q", s)
+		}
+	}
+}
