@@ -31,7 +31,7 @@ func FuzzWire(f *testing.F) {
 				}
 			}
 			if name == "gauges" {
-				cellA(t, l)
+				cellA(t, b.Lines())
 			}
 		}
 	})
