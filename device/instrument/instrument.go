@@ -27,6 +27,7 @@ type Instrument struct {
 	channels []channel
 	protocol protocol
 	setpoint int // the channel that takes one, or -1
+	valves   map[limit.Valve]*channel
 	held     bool
 	counts   counters
 }
@@ -58,7 +59,7 @@ func lost(err error) error {
 // New checks the description of an instrument. Ambient is the air pressure
 // that its gauge pressures count from.
 func New(spec bench.Instrument, ambient unit.Pascal) (*Instrument, error) {
-	in := &Instrument{spec: spec, setpoint: -1}
+	in := &Instrument{spec: spec, setpoint: -1, valves: map[limit.Valve]*channel{}}
 	fail := func(format string, args ...any) (*Instrument, error) {
 		return nil, fmt.Errorf("instrument %q: %w", spec.Name, fmt.Errorf(format, args...))
 	}
@@ -71,12 +72,16 @@ func New(spec bench.Instrument, ambient unit.Pascal) (*Instrument, error) {
 	if in.spec.Timeout <= 0 {
 		in.spec.Timeout = unit.Second(defaultTimeout.Seconds())
 	}
+	in.channels = make([]channel, 0, len(spec.Channel)) // valves point into it
 	for i, c := range spec.Channel {
 		ch, err := newChannel(c, ambient)
 		if err != nil {
 			return fail("%w", err)
 		}
 		in.channels = append(in.channels, ch)
+		if v, ok := valveOf[c.Role]; ok && c.Write != "" {
+			in.valves[v] = &in.channels[i]
+		}
 		if c.Role == reading.Setpoint && c.Write != "" {
 			if in.setpoint >= 0 {
 				return fail("two channels take a setpoint, %q and %q", in.channels[in.setpoint].spec.Name, c.Name)
@@ -160,8 +165,9 @@ func (in *Instrument) Set(line link.Line, s limit.Setpoint) error {
 	return in.send(line, p)
 }
 
-// Hold sends the hold commands of the bench file and then the frozen
-// setpoint. It tries all of them, whatever fails.
+// Hold shuts the valves that the instrument drives, sends the hold commands of
+// the bench file and then the frozen setpoint. It tries all of them, whatever
+// fails.
 func (in *Instrument) Hold(line link.Line, s limit.Setpoint) error {
 	p, ok := s.Pressure()
 	var errs []error
@@ -169,6 +175,11 @@ func (in *Instrument) Hold(line link.Line, s limit.Setpoint) error {
 		errs = append(errs, fmt.Errorf("%s: setpoint was not checked against the limits: %w", in.spec.Name, limit.ErrLimit))
 	}
 	in.held = true
+	for _, v := range []limit.Valve{limit.Inlet, limit.Pump, limit.Vent} {
+		if in.Moves(v) {
+			errs = append(errs, in.move(line, v, false))
+		}
+	}
 	for _, text := range in.spec.Hold {
 		if err := in.protocol.command(line, text); err != nil {
 			errs = append(errs, fmt.Errorf("%s: %q: %w", in.spec.Name, text, err))
@@ -178,6 +189,43 @@ func (in *Instrument) Hold(line link.Line, s limit.Setpoint) error {
 		errs = append(errs, in.send(line, p))
 	}
 	return errors.Join(errs...)
+}
+
+// TakesHold reports whether Hold does anything.
+func (in *Instrument) TakesHold() bool {
+	return in.setpoint >= 0 || len(in.valves) > 0 || len(in.spec.Hold) > 0
+}
+
+// Moves reports whether the instrument drives the valve.
+func (in *Instrument) Moves(v limit.Valve) bool { return in.valves[v] != nil }
+
+// Move sends an order to a valve and reads it back. It refuses one that no
+// limit made.
+func (in *Instrument) Move(line link.Line, o limit.ValveOrder) error {
+	v, open, ok := o.Order()
+	if !ok {
+		return fmt.Errorf("%s: order was not checked against the limits: %w", in.spec.Name, limit.ErrLimit)
+	}
+	if !in.Moves(v) {
+		return fmt.Errorf("%s does not drive the %v valve", in.spec.Name, v)
+	}
+	return in.move(line, v, open)
+}
+
+func (in *Instrument) move(line link.Line, v limit.Valve, open bool) error {
+	c, want, doing := in.valves[v], 0.0, "shutting"
+	if open {
+		want, doing = 1, "opening"
+	}
+	back, err := in.protocol.write(line, c, c.spec.Number(want))
+	if err != nil {
+		return fmt.Errorf("%s: %s the %v valve: %w", in.spec.Name, doing, v, err)
+	}
+	// Half open is neither: what is asked for is an end of its way.
+	if got := c.absolute(back); !(got >= want-0.02 && got <= want+0.02) {
+		return fmt.Errorf("%s: %s the %v valve: it reads back %s open", in.spec.Name, doing, v, c.text(got))
+	}
+	return nil
 }
 
 // send writes a setpoint and compares what is read back.
@@ -195,6 +243,10 @@ func (in *Instrument) send(line link.Line, p unit.Pascal) error {
 		return fmt.Errorf("%s did not take setpoint %v: it reads back %v", in.spec.Name, p, unit.Pascal(got))
 	}
 	return nil
+}
+
+var valveOf = map[reading.Role]limit.Valve{
+	reading.InletValve: limit.Inlet, reading.PumpValve: limit.Pump, reading.VentValve: limit.Vent,
 }
 
 // failure appends a failed reading for each channel.

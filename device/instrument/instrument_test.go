@@ -237,6 +237,42 @@ func TestHoldAndResume(t *testing.T) {
 	}
 }
 
+func TestValves(t *testing.T) {
+	registers := map[byte]map[uint16]uint16{4: {0: 0, 1: 1, 2: 0}}
+	answer := units(t, registers)
+	line := &scripted{answer: answer}
+	valve := func(name string, role reading.Role, register int) bench.Channel {
+		return bench.Channel{Name: name, Role: role, Unit: 4, Function: 3, Register: register, Format: "uint16", Order: "ABCD", Write: "{value}", Factor: 1, Symbol: "1"}
+	}
+	in := build(t, bench.Instrument{Name: "panel", Protocol: bench.ModbusRTU, Channel: []bench.Channel{
+		valve("inlet", reading.InletValve, 0), valve("pump", reading.PumpValve, 1), valve("vent", reading.VentValve, 2)}})
+	order, err := limits.Open(limit.Inlet, limit.Panel{}, 0)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := in.Move(line, order); err != nil || registers[4][0] != 1 {
+		t.Errorf("inlet stands at %d, %v", registers[4][0], err)
+	}
+	if err := in.Move(line, limit.ValveOrder{}); !errors.Is(err, limit.ErrLimit) {
+		t.Errorf("an order that no limit made: %v", err)
+	}
+	if err := in.Move(line, limits.Close(limit.CellA)); err == nil || !strings.Contains(err.Error(), "does not drive") {
+		t.Errorf("a valve of another instrument: %v", err)
+	}
+	if err := in.Hold(line, limits.Freeze(0)); err != nil || registers[4][0] != 0 || registers[4][1] != 0 {
+		t.Errorf("after HOLD valves stand at %v, %v", registers[4], err)
+	}
+	line.answer = func(p []byte) []byte { // the valve sticks: the unit echoes the write and keeps the old position
+		registers[4][0] = 1
+		reply := answer(p)
+		registers[4][0] = 1
+		return reply
+	}
+	if err := in.Move(line, limits.Close(limit.Inlet)); err == nil || !strings.Contains(err.Error(), "reads back 100 % open") {
+		t.Errorf("a valve that sticks: %v", err)
+	}
+}
+
 func TestErrorQueueIsReported(t *testing.T) {
 	spec := controller()
 	spec.Hold = []string{"NO:SUCH"}

@@ -206,10 +206,10 @@ func (m *modbusProtocol) ask(line link.Line, now Now, r modbus.Request) (modbus.
 	if m.wire.numbered() {
 		return m.wire.exchange(line, now, r)
 	}
-	for m.order.confusable(r) {
+	for tries := 0; m.order.confusable(r); tries++ {
 		between, ok := m.order.between(r)
-		if !ok {
-			return modbus.Reply{}, reading.Stamp{}, lost(fmt.Errorf("unit %d: replies can no longer be told apart", r.Unit))
+		if !ok || tries == mostPending {
+			return modbus.Reply{}, reading.Stamp{}, fmt.Errorf("unit %d: replies can no longer be told apart", r.Unit)
 		}
 		m.in.counts.resynced.Add(1)
 		if _, _, err := m.send(line, now, between); err != nil && !isException(err) {

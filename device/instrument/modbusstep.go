@@ -10,15 +10,17 @@ import "barline/device/modbus"
 // shifted by one, and look good. The same happens when a converter sends a
 // reply twice.
 //
-// So every read is remembered until the reply to a later one has come, after
+// So every read is remembered until a reply to a later one has come, after
 // which, on a line that keeps the order of bytes, nothing older can arrive.
 // Before a read that looks like a remembered one of other registers, a read is
-// put in between that looks like none: its reply proves the line empty.
+// put in between that looks like none of them: its reply proves the line empty.
 type stepKeeper struct {
 	pending []modbus.Request // oldest first; the last may have been answered, and its reply doubled
 }
 
-const mostPending = 8
+// mostPending bounds what is remembered. Each entry but the last has cost a
+// timeout, so that one which is forgotten is many seconds old.
+const mostPending = 32
 
 func (k *stepKeeper) reset() { k.pending = k.pending[:0] }
 
@@ -26,21 +28,32 @@ func (k *stepKeeper) sent(r modbus.Request) {
 	if n := len(k.pending); n > 0 && same(k.pending[n-1], r) {
 		return
 	}
+	if len(k.pending) == mostPending {
+		k.drop(mostPending / 2)
+	}
 	k.pending = append(k.pending, r)
 }
 
-// answered says that a reply has come that only r can have caused.
+// answered says that a reply to r has come. It may be that to an earlier r, so
+// that only what was sent before the first r is over.
 func (k *stepKeeper) answered(r modbus.Request) {
-	k.pending = append(k.pending[:0], r)
+	for i, p := range k.pending {
+		if same(p, r) {
+			k.drop(i)
+			return
+		}
+	}
 }
 
 // refused says that an exception has come. Exceptions to different reads look
 // alike, so that only the oldest read is sure to be over.
 func (k *stepKeeper) refused() {
 	if len(k.pending) > 1 {
-		k.pending = append(k.pending[:0], k.pending[1:]...)
+		k.drop(1)
 	}
 }
+
+func (k *stepKeeper) drop(n int) { k.pending = append(k.pending[:0], k.pending[n:]...) }
 
 // confusable reports whether a reply to r could be one to an earlier read.
 func (k *stepKeeper) confusable(r modbus.Request) bool {
@@ -49,32 +62,26 @@ func (k *stepKeeper) confusable(r modbus.Request) bool {
 			return true
 		}
 	}
-	return len(k.pending) > mostPending
+	return false
 }
 
-// between returns a read of the same registers, and some behind them, that
-// looks like none remembered. The unit may refuse it; that is a reply as well.
-func (k *stepKeeper) between(r modbus.Request) (modbus.Request, bool) {
-	if len(k.pending) > 2*mostPending {
-		return r, false
+// between returns a read of the unit of r whose reply cannot be confused with
+// that to r or to one remembered: one that was sent before and is of a shape
+// of its own, else the registers of r and some behind them. The unit may
+// refuse it; that is a reply as well.
+func (k *stepKeeper) between(r modbus.Request) (b modbus.Request, ok bool) {
+	for _, p := range k.pending {
+		if p.Unit == r.Unit && p.Function == r.Function && p.Count != r.Count && !k.confusable(p) {
+			return p, true
+		}
 	}
-	for count := 1; count <= modbus.MaxRead && int(r.Address)+count <= 1<<16; count++ {
-		b := r
-		b.Count = count
-		if b.Shape() != r.Shape() && !k.remembers(b.Shape()) {
+	b = r
+	for b.Count = 1; b.Count <= modbus.MaxRead && int(r.Address)+b.Count <= 1<<16; b.Count++ {
+		if b.Count != r.Count && !k.confusable(b) {
 			return b, true
 		}
 	}
 	return r, false
-}
-
-func (k *stepKeeper) remembers(s modbus.Shape) bool {
-	for _, p := range k.pending {
-		if p.Shape() == s {
-			return true
-		}
-	}
-	return false
 }
 
 func same(a, b modbus.Request) bool { return a.Shape() == b.Shape() && a.Address == b.Address }

@@ -7,21 +7,30 @@ import (
 	"barline/model/limit"
 )
 
-// ErrSuperseded answers a setpoint that waited when HOLD came.
+// ErrSuperseded answers a command that waited when HOLD came.
 var ErrSuperseded = errors.New("not sent: HOLD came first")
 
-// errQueueFull answers a setpoint that found no room.
+// errQueueFull answers a command that found no room.
 var errQueueFull = errors.New("not sent: the instrument is slower than the commands")
 
 // command is one thing to send.
 type command struct {
 	number   uint64
 	setpoint limit.Setpoint
-	hold     bool
+	valve    limit.ValveOrder
+	kind     kind
 }
 
+type kind uint8
+
+const (
+	setKind kind = iota
+	holdKind
+	moveKind
+)
+
 // queue holds commands that wait for the line: a HOLD before all else, and a
-// few setpoints. When those are too many the newest is refused, so that
+// few others. When those are too many the newest is refused, so that
 // nothing is sent out of order.
 type queue struct {
 	mu    sync.Mutex
@@ -32,7 +41,7 @@ type queue struct {
 
 const queueLength = 8
 
-func (q *queue) set(c command) error {
+func (q *queue) add(c command) error {
 	q.mu.Lock()
 	defer q.mu.Unlock()
 	if len(q.rest) >= queueLength {
@@ -43,7 +52,7 @@ func (q *queue) set(c command) error {
 	return nil
 }
 
-// hold puts c first and returns the setpoints that it drops. It is never
+// hold puts c first and returns the commands that it drops. It is never
 // refused; of several that wait the newest counts, and the others are dropped
 // as well.
 func (q *queue) hold(c command) []command {

@@ -4,7 +4,6 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"os"
 	"runtime/debug"
 	"time"
 
@@ -70,16 +69,26 @@ func NewRunner(in *Instrument, open Open, c clock.Clock, sink Sink, panicked fun
 // Set queues a setpoint. The answer goes to the sink under the same number.
 // It may be called from any goroutine and does not block.
 func (r *Runner) Set(number uint64, s limit.Setpoint) {
-	if refused := r.commands.set(command{number: number, setpoint: s}); refused != nil {
-		r.sink.Answer(number, refused, r.clock.Now())
+	r.add(command{number: number, setpoint: s, kind: setKind})
+}
+
+// Move queues the movement of a valve. The answer goes to the sink under the
+// same number. It may be called from any goroutine and does not block.
+func (r *Runner) Move(number uint64, o limit.ValveOrder) {
+	r.add(command{number: number, valve: o, kind: moveKind})
+}
+
+func (r *Runner) add(c command) {
+	if refused := r.commands.add(c); refused != nil {
+		r.sink.Answer(c.number, refused, r.clock.Now())
 	}
 }
 
-// Hold queues HOLD before everything else. Setpoints that wait are dropped and
+// Hold queues HOLD before everything else. Commands that wait are dropped and
 // answered with ErrSuperseded. It may be called from any goroutine and does
 // not block.
 func (r *Runner) Hold(number uint64, s limit.Setpoint) {
-	for _, c := range r.commands.hold(command{number: number, setpoint: s, hold: true}) {
+	for _, c := range r.commands.hold(command{number: number, setpoint: s, kind: holdKind}) {
 		r.sink.Answer(c.number, ErrSuperseded, r.clock.Now())
 	}
 }
@@ -271,13 +280,16 @@ func (r *Runner) look(line link.Line) error {
 func (r *Runner) obey(line link.Line) error {
 	for c, ok := r.commands.next(); ok; c, ok = r.commands.next() {
 		var err error
-		if c.hold {
-			err = r.instrument.Hold(line, c.setpoint)
-		} else {
+		switch c.kind {
+		case setKind:
 			err = r.instrument.Set(line, c.setpoint)
+		case moveKind:
+			err = r.instrument.Move(line, c.valve)
+		case holdKind:
+			err = r.instrument.Hold(line, c.setpoint)
 		}
 		r.sink.Answer(c.number, err, r.clock.Now())
-		if errors.Is(err, errLost) && !errors.Is(err, os.ErrDeadlineExceeded) {
+		if errors.Is(err, errLost) {
 			return err
 		}
 	}

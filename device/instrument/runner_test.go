@@ -158,7 +158,7 @@ func TestHoldOvertakesSetpoints(t *testing.T) {
 			t.Errorf("setpoint %d: %v", i, n.answers[i])
 		}
 	}
-	if c, ok := r.commands.next(); !ok || !c.hold || c.number != 100 {
+	if c, ok := r.commands.next(); !ok || c.kind != holdKind || c.number != 100 {
 		t.Errorf("first is %+v", c)
 	}
 	if c, ok := r.commands.next(); ok {

@@ -16,9 +16,10 @@ import (
 //
 // Nothing in an answer says which query it belongs to, so one late or doubled
 // answer would shift all that follow. The identity is the mark: it is learnt
-// when the line is opened, and the queries of a poll end with it. Readings
-// are believed only when the identity then comes where it should; otherwise
-// they are dropped, and the line is read until the identity comes up.
+// when the line is opened, and asked for behind every query. An answer is
+// believed only when the identity then comes where it should, which on a line
+// that keeps the order of bytes proves that nothing is still under way. After
+// anything else the line is read until the identity comes up.
 type scpiProtocol struct {
 	in       *Instrument
 	end      string
@@ -27,18 +28,15 @@ type scpiProtocol struct {
 	identify string
 	identity string // as learnt; empty before
 	inStep   bool
-	owed     int  // answers that may still come although they were given up
 	gaveUp   bool // no way back into step in this poll
-	mute     int  // times that the instrument did not say who it is
 
 	text liner
-	held []reading.Reading
 	buf  [1024]byte
 }
 
-// muteAfter is how often an instrument may fail to say who it is before it is
-// used without a mark: some never heard of *IDN?.
-const muteAfter = 2
+// noMark in the bench file says that the instrument cannot tell who it is. It
+// is then asked without a mark, and the guarantee is gone.
+const noMark = "none"
 
 func newSCPI(in *Instrument) (*scpiProtocol, error) {
 	s := &scpiProtocol{in: in, identify: in.spec.Identify, timeout: in.spec.Timeout.Duration()}
@@ -64,13 +62,11 @@ func newSCPI(in *Instrument) (*scpiProtocol, error) {
 	return s, nil
 }
 
-// steps counts the queries and the identity behind them.
-func (s *scpiProtocol) steps() int { return len(s.queries) + 1 }
+func (s *scpiProtocol) steps() int { return len(s.queries) }
 
 func (s *scpiProtocol) opened() {
 	s.text.forget()
-	s.inStep, s.gaveUp, s.owed = false, false, 0
-	s.identity, s.mute, s.held = "", 0, s.held[:0]
+	s.inStep, s.gaveUp, s.identity = false, false, ""
 }
 
 func (s *scpiProtocol) drain(_ link.Line, _ Now, dst []reading.Reading) ([]reading.Reading, error) {
@@ -78,79 +74,51 @@ func (s *scpiProtocol) drain(_ link.Line, _ Now, dst []reading.Reading) ([]readi
 }
 
 func (s *scpiProtocol) step(i int, line link.Line, now Now, dst []reading.Reading) ([]reading.Reading, error) {
-	if i == len(s.queries) {
-		return s.finish(line, now, dst)
-	}
 	if i == 0 {
-		s.held, s.gaveUp = s.held[:0], false
+		s.gaveUp = false
 	}
-	r, err := s.poll(line, now, s.queries[i])
-	if err != nil {
-		return dst, err
-	}
-	s.held = append(s.held, r)
-	return dst, nil
-}
-
-// poll asks one query. Its error says that the line is gone.
-func (s *scpiProtocol) poll(line link.Line, now Now, c *channel) (reading.Reading, error) {
-	text, err := s.ask(line, c.spec.Query)
-	at := now()
+	c := s.queries[i]
+	number, at, err := s.query(line, now, c)
 	switch {
 	case errors.Is(err, errLost):
-		return reading.Reading{}, err
+		return dst, err
 	case err != nil:
-		return c.fail(at, err.Error()), nil
+		return append(dst, c.fail(at, err.Error())), nil
 	}
-	number, err := scpi.ParseNumber(text)
+	return append(dst, c.read(number, at)), nil
+}
+
+// query returns the number that a channel's query is answered with, proven to
+// be the answer to it.
+func (s *scpiProtocol) query(line link.Line, now Now, c *channel) (number float64, at reading.Stamp, err error) {
+	text, err := s.ask(line, c.spec.Query)
+	at = now()
+	if err != nil {
+		return 0, at, err
+	}
+	number, err = scpi.ParseNumber(text)
 	if err != nil {
 		s.in.counts.refused.Add(1)
-		s.inStep, s.owed = false, 0
-		return c.fail(at, fmt.Sprintf("%s was answered with %v", c.spec.Query, err)), nil
+		s.inStep = false
+		return 0, at, fmt.Errorf("%s was answered with %w", c.spec.Query, err)
 	}
-	return c.read(number, at), nil
+	return number, at, s.prove(line)
 }
 
-// finish gives the readings of a poll out if the line is in step.
-func (s *scpiProtocol) finish(line link.Line, _ Now, dst []reading.Reading) ([]reading.Reading, error) {
-	err := s.proveStep(line)
-	if errors.Is(err, errLost) {
-		return dst, err
-	}
-	if err != nil {
-		s.distrust(err.Error())
-	}
-	dst = append(dst, s.held...)
-	s.held = s.held[:0]
-	return dst, nil
-}
+// marked reports whether there is a mark to tell answers apart by.
+func (s *scpiProtocol) marked() bool { return s.identify != noMark }
 
-// distrust makes failures of the readings of this poll so far.
-func (s *scpiProtocol) distrust(reason string) {
-	for i, r := range s.held {
-		if r.Status != reading.Failure {
-			s.held[i] = s.queries[i].fail(r.Taken, reason)
-		}
-	}
-}
-
-// proveStep asks for the identity where all answers are in, and returns nil
-// if it comes.
-func (s *scpiProtocol) proveStep(line link.Line) error {
-	if s.mute >= muteAfter { // there is no mark
+// prove asks for the identity, and returns nil if that is what comes: the
+// answer before it was then the right one.
+func (s *scpiProtocol) prove(line link.Line) error {
+	if !s.marked() {
 		return nil
-	}
-	if !s.inStep {
-		if s.gaveUp {
-			return errors.New("answers cannot be told apart: " + s.identify + " is not answered")
-		}
-		return s.resync(line)
 	}
 	text, err := s.exchange(line, s.identify)
 	if err == nil && text == s.identity {
 		return nil
 	}
-	s.inStep, s.owed = false, 1
+	s.inStep = false
 	if err != nil {
 		return err
 	}
@@ -162,7 +130,7 @@ func (s *scpiProtocol) proveStep(line link.Line) error {
 func (s *scpiProtocol) ask(line link.Line, query string) (string, error) {
 	if !s.inStep {
 		if s.gaveUp {
-			return "", silence{fmt.Sprintf("no answer to %s within %v", s.identify, s.timeout)}
+			return "", s.noIdentity()
 		}
 		if err := s.resync(line); err != nil {
 			s.gaveUp = true
@@ -171,47 +139,74 @@ func (s *scpiProtocol) ask(line link.Line, query string) (string, error) {
 	}
 	text, err := s.exchange(line, query)
 	if err != nil {
-		s.inStep, s.owed = false, 1
-		if s.mute >= muteAfter { // perhaps it is another instrument by now
-			s.mute = 0
-		}
+		s.inStep = false
 	}
 	return text, err
 }
 
-// resync reads until the identity comes up. At first it is not known: it is
-// then what two questions in a row are answered with.
+// cleanRounds is how often in a row the identity must be what the question
+// for it is answered with. Once would not do: it may be the second copy of an
+// earlier answer, with a late answer to a query still behind it.
+const (
+	cleanRounds = 2
+	mostRounds  = 8
+)
+
+// resync puts the line in step. At first the identity is not known; it is then
+// what two questions in a row are answered with.
 func (s *scpiProtocol) resync(line link.Line) error {
-	if s.mute >= muteAfter {
+	if !s.marked() {
 		// No mark to look for: what is late has the time of one answer to come.
 		return s.wait(line)
 	}
 	s.in.counts.resynced.Add(1)
-	text, err := s.exchange(line, s.identify)
-	if err == nil && s.identity == "" {
-		if s.identity, err = s.learn(line, text); err != nil {
-			return err
-		}
-	}
-	deadline, late := time.Now().Add(s.timeout), 0
-	for ; err == nil && text != s.identity; text, err = s.answer(line, deadline) {
-		late++
-	}
-	if late > s.owed { // then answers before were those to other queries
-		s.distrust("answers were out of step")
-	}
-	s.owed = 0
+	err := s.findStep(line)
 	if errors.Is(err, os.ErrDeadlineExceeded) {
-		if s.identity == "" {
-			s.mute++
-		}
-		return silence{fmt.Sprintf("no answer to %s within %v", s.identify, s.timeout)}
+		return s.noIdentity()
 	}
 	if err != nil {
 		return err
 	}
-	s.inStep, s.mute = true, 0
-	return nil
+	_, err = flush(line, s.buf[:]) // second copies that have come
+	s.text.forget()
+	s.inStep = err == nil
+	return err
+}
+
+func (s *scpiProtocol) noIdentity() error {
+	text := fmt.Sprintf("no answer to %s within %v", s.identify, s.timeout)
+	if s.identity == "" {
+		text += "; where the instrument has none, write identify = \"none\""
+	}
+	return silence{text}
+}
+
+func (s *scpiProtocol) findStep(line link.Line) error {
+	clean := 0
+	for range mostRounds {
+		text, err := s.exchange(line, s.identify)
+		if err != nil {
+			return err
+		}
+		if s.identity == "" {
+			if s.identity, err = s.learn(line, text); err != nil {
+				return err
+			}
+			text = s.identity
+		}
+		if clean++; text != s.identity {
+			clean = 0
+		}
+		for deadline := time.Now().Add(s.timeout); text != s.identity; {
+			if text, err = s.answer(line, deadline); err != nil {
+				return err
+			}
+		}
+		if clean == cleanRounds {
+			return nil
+		}
+	}
+	return fmt.Errorf("answers to %s do not come one by one", s.identify)
 }
 
 // learn returns the identity, given the first answer to the question for it.
@@ -221,7 +216,6 @@ func (s *scpiProtocol) learn(line link.Line, first string) (string, error) {
 		return "", err
 	}
 	if _, err := scpi.ParseNumber(second); first != second || err == nil {
-		s.mute++
 		return "", fmt.Errorf("%s was answered with %q and then with %q: expected the same name twice", s.identify, clip([]byte(first)), clip([]byte(second)))
 	}
 	return second, nil
@@ -246,9 +240,13 @@ func (s *scpiProtocol) wait(line link.Line) error {
 // exchange sends one query and returns the next line.
 func (s *scpiProtocol) exchange(line link.Line, query string) (string, error) {
 	stray, err := flush(line, s.buf[:])
+	stray += len(s.text.buf) - s.text.taken
 	s.in.counts.stray.Add(uint64(stray))
 	if err != nil {
 		return "", err
+	}
+	if stray > 0 && s.inStep { // perhaps the true answer to the query before
+		return "", fmt.Errorf("%d bytes came that nobody had asked for", stray)
 	}
 	s.text.forget()
 	if _, err := line.Write([]byte(query + s.end)); err != nil {
@@ -274,20 +272,17 @@ func (s *scpiProtocol) answer(line link.Line, deadline time.Time) (string, error
 	return strings.TrimSpace(string(text)), err
 }
 
-func (s *scpiProtocol) write(line link.Line, c *channel, number float64) (float64, error) {
+func (s *scpiProtocol) write(line link.Line, c *channel, number float64) (back float64, err error) {
 	text := strings.Replace(c.spec.Write, "{value}", string(scpi.AppendNumber(nil, number)), 1)
 	s.gaveUp = false
 	if err := s.command(line, text); err != nil {
 		return 0, err
 	}
-	answer, err := s.ask(line, c.spec.Query)
-	if err == nil {
-		err = s.proveStep(line)
-	}
+	number, _, err = s.query(line, func() reading.Stamp { return reading.Stamp{} }, c)
 	if err != nil {
 		return 0, fmt.Errorf("sent, but not read back: %w", err)
 	}
-	return scpi.ParseNumber(answer)
+	return number, nil
 }
 
 // command sends text that has no answer, and asks the error queue about it.

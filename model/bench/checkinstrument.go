@@ -20,7 +20,7 @@ var (
 	channelKeys = map[string][]string{
 		"unit": {ModbusRTU, ModbusTCP}, "function": {ModbusRTU, ModbusTCP}, "register": {ModbusRTU, ModbusTCP},
 		"format": {ModbusRTU, ModbusTCP}, "order": {ModbusRTU, ModbusTCP},
-		"query": {SCPI}, "write": {SCPI}, "field": {Lines},
+		"query": {SCPI}, "write": {SCPI, ModbusRTU, ModbusTCP}, "field": {Lines},
 	}
 )
 
@@ -156,6 +156,9 @@ func (c checker) channel(path string, inst *Instrument, ch *Channel, fields []st
 	if c.Has(path + ".write") {
 		if strings.Count(ch.Write, "{value}") != 1 {
 			c.Wrong(path+".write", "expected {value} in it once, where the number goes, such as %q", "SOUR:PRES:LEV {value}")
+		}
+		if ch.Function == 4 {
+			c.About(path+".write", "needs function 3: input registers cannot be written")
 		}
 		if !ch.Role.IsCommanded() {
 			c.About(path+".write", "is for channels that are set, and nothing is ever sent to one with the role %s", ch.Role)

@@ -31,7 +31,7 @@ type Instrument struct {
 	Streams  bool        `toml:"streams"`                               // talks by itself
 	Pattern  string      `toml:"pattern"`                               // lines: named fields in braces
 	Checksum string      `toml:"checksum" form:"oneof=none|xor8|crc16"` // lines
-	Identify string      `toml:"identify"`                              // scpi: query that names the instrument
+	Identify string      `toml:"identify"`                              // scpi: query that names the instrument and tells its answers apart; none where it has none
 	Hold     []string    `toml:"hold"`                                  // commands sent on HOLD, in order
 	Resume   []string    `toml:"resume"`                                // commands sent before the first setpoint after a HOLD
 
@@ -57,7 +57,7 @@ type Channel struct {
 	Format   string       `toml:"format" form:"oneof=uint16|int16|uint32|int32|float32"`
 	Order    string       `toml:"order" form:"oneof=ABCD|CDAB|BADC|DCBA"` // bytes of the number, A the most significant
 	Query    string       `toml:"query"`                                  // scpi
-	Write    string       `toml:"write"`                                  // scpi, {value} stands for the number
+	Write    string       `toml:"write"`                                  // scpi: command; modbus: {value} alone, to the same register. {value} stands for the number
 	Field    string       `toml:"field"`                                  // lines: field of the pattern
 	Scale    string       `toml:"scale"`                                  // what the number grows by from 0 to 1, as written
 	Offset   string       `toml:"offset"`                                 // the quantity that the number 0 means, as written
