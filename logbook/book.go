@@ -1,6 +1,7 @@
 package logbook
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"sync"
@@ -16,6 +17,8 @@ type Options struct {
 	MemoryBytes  int           // for records that wait for the disk; 32 MiB
 	SyncTimeout  time.Duration // longest wait of Sync and Close; 5 s
 	Compress     bool          // compress segments after they are sealed, in the background
+
+	untidy bool // leave indexes and compression alone
 }
 
 func (o Options) withDefaults() Options {
@@ -100,7 +103,26 @@ func open(d disk, o Options) (*Book, error) {
 		stopped: make(chan struct{}),
 	}
 	b.stream.begin(b.options.MemoryBytes, end)
-	go b.keep(&writer{disk: d, lock: lock, options: b.options, end: end})
+	w := &writer{disk: d, lock: lock, options: b.options, end: end}
+	ctx, stopTidying := context.WithCancel(context.Background())
+	var tidying sync.WaitGroup
+	if !o.untidy {
+		sealed := make(chan segmentFile, 16)
+		w.sealed = func(s segmentFile) {
+			select {
+			case sealed <- s:
+			default: // the next program will see to it
+			}
+		}
+		tidying.Go(func() { tidy(ctx, d, o.Compress, sealed) })
+	}
+	go func() {
+		b.keep(w)
+		stopTidying()
+		tidying.Wait()
+		w.lock.Close() // nothing was written through it
+		close(b.stopped)
+	}()
 	return b, nil
 }
 
@@ -195,7 +217,6 @@ func (b *Book) Close() error {
 
 // keep brings records to the disk until the book is closed.
 func (b *Book) keep(w *writer) {
-	defer close(b.stopped)
 	ticker := time.NewTicker(b.options.CommitEvery)
 	defer ticker.Stop()
 	for {

@@ -95,7 +95,8 @@ func records(d disk, f Filter) iter.Seq2[Record, error] {
 			return
 		}
 		t := tour{disk: d, match: f.matcher(), yield: yield, crc: noDigits}
-		files, headings := chapters(d, c.segments)
+		files := once(c.segments)
+		headings := peekHeadings(d, files)
 		for i, s := range files {
 			t.bound = bound(headings[i+1:])
 			if !t.segment(s) {
@@ -105,18 +106,24 @@ func records(d disk, f Filter) iter.Seq2[Record, error] {
 	}
 }
 
-// chapters returns the segments that make up the logbook, and the heading of
-// each, nil where that is not sound. Where a segment is there both plain and
-// packed, the plain one counts.
-func chapters(d disk, all []segmentFile) (files []segmentFile, headings []*heading) {
+// once leaves out the packed copy of a segment whose plain one is still there.
+func once(all []segmentFile) (files []segmentFile) {
 	for i, s := range all {
-		if i > 0 && all[i-1].number == s.number {
-			continue
+		if i == 0 || all[i-1].number != s.number {
+			files = append(files, s)
 		}
-		files = append(files, s)
-		headings = append(headings, peekHeading(d, s))
 	}
-	return files, headings
+	return files
+}
+
+// peekHeadings returns the heading of each segment, nil where that is not
+// sound.
+func peekHeadings(d disk, files []segmentFile) []*heading {
+	headings := make([]*heading, len(files))
+	for i, s := range files {
+		headings[i] = peekHeading(d, s)
+	}
+	return headings
 }
 
 // peekHeading reads the first line of a segment; nil where that is not sound.
@@ -175,7 +182,53 @@ func (t *tour) segment(s segmentFile) bool {
 			return false
 		}
 	}
-	return skip || t.walk(w)
+	if skip {
+		return true
+	}
+	if t.match.narrow() {
+		if x, ok := indexOf(t.disk, s); ok && x.Last <= t.bound {
+			return t.blocks(s, x)
+		}
+	}
+	return t.walk(w)
+}
+
+// narrow reports whether an index can save work.
+func (m *matcher) narrow() bool {
+	return m.from != "" || m.to != "" || m.After > 0 || len(m.Kinds) > 0
+}
+
+// blocks yields what is wanted of the blocks of s that may hold it.
+func (t *tour) blocks(s segmentFile, x index) bool {
+	var r *blockReader
+	for _, b := range x.Blocks {
+		if !b.mayHold(&t.match) {
+			continue
+		}
+		if r == nil {
+			var err error
+			if r, err = openBlocks(t.disk, s); err != nil {
+				return t.yield(Record{}, &Damage{Segment: s.name, After: t.last, Kind: IO, Text: err.Error()})
+			}
+			defer r.Close()
+		}
+		src, err := r.lines(b)
+		if err != nil {
+			if !t.yield(Record{}, &Damage{Segment: s.name, Offset: b.At, Bytes: b.Size, After: t.last, Kind: IO, Text: err.Error()}) {
+				return false
+			}
+			continue
+		}
+		w := newWalker(src, s.name)
+		w.resume(b.At+b.Skip, b.After, digits([]byte(b.AfterCRC)))
+		if !t.walk(w) {
+			return false
+		}
+	}
+	if x.Last > t.last {
+		t.last, t.crc = x.Last, digits([]byte(x.LastCRC))
+	}
+	return true
 }
 
 // walk yields what is wanted of the lines that w has still to come.

@@ -19,6 +19,9 @@ const (
 	spectraDir   = "spectra"
 )
 
+// derived are the suffixes of files that may be deleted.
+var derived = []string{indexSuffix, indexSuffix + partSuffix, packedSuffix + partSuffix}
+
 // segmentName returns the name of segment number with the suffix.
 func segmentName(number int, suffix string) string { return fmt.Sprintf("%06d%s", number, suffix) }
 
@@ -51,7 +54,7 @@ func listContents(d disk) (c contents, err error) {
 			c.segments = append(c.segments, segmentFile{number, name, suffix == packedSuffix})
 		case numbered && (suffix == tornSuffix || strings.HasPrefix(suffix, tornSuffix+".")):
 			c.torn = append(c.torn, name)
-		case numbered && (suffix == indexSuffix || suffix == packedSuffix+".part"):
+		case numbered && slices.Contains(derived, suffix):
 		case name == lockName || name == spectraDir+"/":
 		default:
 			c.foreign = append(c.foreign, name)

@@ -88,7 +88,8 @@ func verify(d disk, deep bool) (Report, error) {
 		report.Notices = append(report.Notices, fmt.Sprintf("%s holds a torn tail that was set aside after a crash", name))
 	}
 
-	files, headings := chapters(d, c.segments)
+	files := once(c.segments)
+	headings := peekHeadings(d, files)
 	report.Segments = make([]SegmentReport, len(files))
 	var wait sync.WaitGroup
 	slots := make(chan struct{}, runtime.GOMAXPROCS(0))

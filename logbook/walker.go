@@ -23,6 +23,7 @@ type walker struct {
 	looked   int  // of these, known to hold no LF
 	hashed   int  // beginning of what is not yet in sum
 	full     bool // the last read filled buf
+	grows    bool // the end of src may only be the end for now
 	eof      bool
 	err      error // from src, other than io.EOF
 
@@ -195,6 +196,10 @@ func (w *walker) readLine() (b []byte, whole, long bool) {
 			return b, true, w.size > maxLine
 		}
 		w.looked = w.to - w.from
+		if w.eof && w.grows {
+			w.eof = false
+			return nil, false, false
+		}
 		if w.eof || w.err != nil {
 			b = w.buf[w.from:w.to]
 			w.advance(len(b))

@@ -222,7 +222,7 @@ func (w *writer) abandon() {
 	o.f.Close()
 }
 
-// finish seals the open segment and gives up the lock.
+// finish seals the open segment.
 func (w *writer) finish() error {
 	var err error
 	if w.open != nil {
@@ -231,7 +231,6 @@ func (w *writer) finish() error {
 			w.abandon()
 		}
 	}
-	w.lock.Close() // nothing was written through it
 	return err
 }
 
