@@ -1,11 +1,15 @@
 package logbook
 
 import (
+	"crypto/sha256"
 	"fmt"
+	"io"
 	"math/rand/v2"
 	"os"
 	"path/filepath"
+	"runtime"
 	"strconv"
+	"sync"
 	"testing"
 	"time"
 
@@ -93,6 +97,32 @@ func BenchmarkRead(b *testing.B) {
 	}
 	b.Logf("%d records, %d bytes, %d segments", n, total, len(names))
 
+	// The floor under verify: the digest alone of the same bytes, as parallel.
+	b.Run("digest-alone", func(b *testing.B) {
+		b.SetBytes(total)
+		for range b.N {
+			var wait sync.WaitGroup
+			next := make(chan string)
+			for range runtime.GOMAXPROCS(0) {
+				wait.Go(func() {
+					for name := range next {
+						f, err := os.Open(name)
+						if err != nil {
+							b.Error(err)
+							continue
+						}
+						io.CopyBuffer(sha256.New(), struct{ io.Reader }{f}, make([]byte, walkMost))
+						f.Close()
+					}
+				})
+			}
+			for _, name := range names {
+				next <- name
+			}
+			close(next)
+			wait.Wait()
+		}
+	})
 	verifying := func(deep bool) func(*testing.B) {
 		return func(b *testing.B) {
 			b.SetBytes(total)

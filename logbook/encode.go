@@ -34,6 +34,22 @@ const (
 // digits is a checksum as the text that the next record chains from.
 type digits [8]byte
 
+// value reads the digits; ok is false where they are not lower-case
+// hexadecimal.
+func (d digits) value() (v uint32, ok bool) {
+	for _, c := range d {
+		switch {
+		case c-'0' <= 9:
+			v = v<<4 | uint32(c-'0')
+		case c-'a' <= 5:
+			v = v<<4 | uint32(c-'a'+10)
+		default:
+			return 0, false
+		}
+	}
+	return v, true
+}
+
 var noDigits = digits{'0', '0', '0', '0', '0', '0', '0', '0'}
 
 var castagnoli = crc32.MakeTable(crc32.Castagnoli)
@@ -43,12 +59,22 @@ const hexDigits = "0123456789abcdef"
 // checksum returns the crc of a line whose checked bytes are body and whose
 // predecessor's crc is prev.
 func checksum(prev digits, body []byte) (d digits) {
-	sum := crc32.Update(crc32.Update(0, castagnoli, prev[:]), castagnoli, body)
+	sum := chained(prev, body)
 	for i := len(d) - 1; i >= 0; i-- {
 		d[i] = hexDigits[sum&15]
 		sum >>= 4
 	}
 	return d
+}
+
+// chained is checksum as a number. The eight digits go through the table one
+// by one, because the library would move them to the heap.
+func chained(prev digits, body []byte) uint32 {
+	crc := ^uint32(0)
+	for _, c := range prev {
+		crc = castagnoli[byte(crc)^c] ^ crc>>8
+	}
+	return crc32.Update(^crc, castagnoli, body)
 }
 
 // appendTail completes the line that begins at start with its crc field.

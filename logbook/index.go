@@ -16,12 +16,16 @@ import (
 // index says what stands where in a sealed and sound segment. It is derived
 // from the segment, kept beside it, and made anew where it is missing or does
 // not fit.
+//
+// Its file is three lines: this, the blocks, and the CRC-32C of both.
 type index struct {
-	Packed   bool    `json:"packed"`
-	FileSize int64   `json:"file_size"` // of the segment as it lies on the disk
-	Blocks   []block `json:"blocks"`
-	Last     uint64  `json:"last_seq"`
-	LastCRC  string  `json:"last_crc"`
+	Packed   bool   `json:"packed"`
+	FileSize int64  `json:"file_size"` // of the segment as it lies on the disk
+	LastCRC  string `json:"last_crc"`
+	All      block  `json:"all"` // the blocks as one
+
+	blocks []block
+	text   []byte // of blocks, where they were not yet parsed
 }
 
 // block is a stretch of whole lines, at most maxLine bytes of them. The
@@ -66,8 +70,10 @@ func makeIndex(d disk, s segmentFile) (x index, ok bool) {
 	if damage != nil || len(h.AfterCRC) != len(digits{}) {
 		return x, false
 	}
-	x = index{Packed: s.packed, Last: h.AfterSeq, LastCRC: h.AfterCRC}
-	b := block{Skip: w.offset, After: h.AfterSeq, AfterCRC: h.AfterCRC}
+	x = index{Packed: s.packed}
+	last := digits([]byte(h.AfterCRC))
+	b := gauge{block: block{Skip: w.offset, After: h.AfterSeq, AfterCRC: h.AfterCRC, Last: h.AfterSeq}}
+	all := b
 	for {
 		l, damage, more := w.next()
 		if !more {
@@ -77,19 +83,21 @@ func makeIndex(d disk, s segmentFile) (x index, ok bool) {
 			return x, false
 		}
 		if w.offset-b.At > blockSize && w.at > b.At {
-			x.Blocks = append(x.Blocks, b)
-			b = block{At: w.at, After: x.Last, AfterCRC: x.LastCRC}
+			x.blocks = append(x.blocks, b.done())
+			b = gauge{block: block{At: w.at, After: all.Last, AfterCRC: string(last[:]), Last: all.Last}}
 		}
 		if b.Size = w.offset - b.At; w.sealed {
 			continue
 		}
 		b.add(&l)
-		x.Last, x.LastCRC = l.seq, string(l.crc[:])
+		all.add(&l)
+		last = l.crc
 	}
 	if !w.sealed {
 		return x, false
 	}
-	x.Blocks = append(x.Blocks, b)
+	x.blocks = append(x.blocks, b.done())
+	x.All, x.LastCRC = all.done(), string(last[:])
 	f, err := d.open(s.name)
 	if err != nil {
 		return x, false
@@ -101,28 +109,46 @@ func makeIndex(d disk, s segmentFile) (x index, ok bool) {
 	return x, !s.packed || x.placeFrames(f) == nil
 }
 
-func (b *block) add(l *line) {
-	b.Last = l.seq
-	if b.From == "" || string(l.t) < b.From {
-		b.From = string(l.t)
+// gauge widens a block line by line, without a string for each.
+type gauge struct {
+	block
+	from, to [stampSize]byte
+	any      bool
+}
+
+func (g *gauge) add(l *line) {
+	if !g.any || bytes.Compare(l.t, g.from[:]) < 0 {
+		copy(g.from[:], l.t)
 	}
-	if string(l.t) > b.To {
-		b.To = string(l.t)
+	if bytes.Compare(l.t, g.to[:]) > 0 {
+		copy(g.to[:], l.t)
 	}
-	if !slices.ContainsFunc(b.Kinds, func(k string) bool { return k == string(l.kind) }) {
-		b.Kinds = append(b.Kinds, string(l.kind))
+	g.Last, g.any = l.seq, true
+	for _, k := range g.Kinds {
+		if k == string(l.kind) {
+			return
+		}
 	}
+	g.Kinds = append(g.Kinds, string(l.kind))
+}
+
+// done returns the block with its times as text.
+func (g *gauge) done() block {
+	if g.any {
+		g.From, g.To = string(g.from[:]), string(g.to[:])
+	}
+	return g.block
 }
 
 // placeFrames notes where in a packed file the frame of each block is.
 func (x *index) placeFrames(f file) error {
 	at := int64(0)
-	for i := range x.Blocks {
+	for i := range x.blocks {
 		size, content, err := frameSize(f, at)
 		if err != nil {
 			return err
 		}
-		b := &x.Blocks[i]
+		b := &x.blocks[i]
 		if content != b.Size {
 			return fmt.Errorf("frame at byte %d holds %d bytes, expected %d", at, content, b.Size)
 		}
@@ -173,10 +199,12 @@ func loadIndex(d disk, s segmentFile) (x index, ok bool) {
 	if err != nil {
 		return x, false
 	}
-	body, sum, found := bytes.Cut(content, []byte{'\n'})
-	if !found || string(sum) != indexSum(body) || json.Unmarshal(body, &x) != nil || x.Packed != s.packed || !x.whole() {
+	lines := bytes.SplitAfter(content, []byte{'\n'})
+	if len(lines) != 4 || string(lines[2]) != indexSum(content[:len(lines[0])+len(lines[1])]) ||
+		json.Unmarshal(lines[0], &x) != nil || x.Packed != s.packed || len(x.LastCRC) != len(digits{}) {
 		return x, false
 	}
+	x.text = lines[1]
 	f, err := d.open(s.name)
 	if err != nil {
 		return x, false
@@ -186,25 +214,37 @@ func loadIndex(d disk, s segmentFile) (x index, ok bool) {
 	return x, err == nil && size == x.FileSize
 }
 
-// whole reports whether what a block is checked against is there.
-func (x *index) whole() bool {
-	short := func(crc string) bool { return len(crc) != len(digits{}) }
-	for _, b := range x.Blocks {
-		if short(b.AfterCRC) || b.Size < 0 || b.Size > maxLine || b.Skip < 0 || b.FrameSize < 0 || b.FrameSize > 2*maxLine {
+// expand parses the blocks; it reports whether what they are checked against
+// is there.
+func (x *index) expand() bool {
+	if x.text == nil {
+		return true
+	}
+	if json.Unmarshal(x.text, &x.blocks) != nil {
+		return false
+	}
+	x.text = nil
+	for _, b := range x.blocks {
+		if len(b.AfterCRC) != len(digits{}) || b.Size < 0 || b.Size > maxLine || b.Skip < 0 || b.FrameSize < 0 || b.FrameSize > 2*maxLine {
 			return false
 		}
 	}
-	return len(x.Blocks) > 0 && !short(x.LastCRC)
+	return true
 }
 
 func indexSum(body []byte) string { return fmt.Sprintf("%08x\n", crc32.Checksum(body, castagnoli)) }
 
 // keepIndex writes x beside its segment. A failure does no harm.
 func keepIndex(d disk, s segmentFile, x index) error {
-	body, err := json.Marshal(x)
+	head, err := json.Marshal(x)
 	if err != nil {
 		return err
 	}
+	blocks, err := json.Marshal(x.blocks)
+	if err != nil {
+		return err
+	}
+	body := slices.Concat(head, []byte{'\n'}, blocks, []byte{'\n'})
 	name := segmentName(s.number, indexSuffix)
 	part := name + partSuffix
 	d.remove(part) // left by one that was cut off
@@ -212,7 +252,7 @@ func keepIndex(d disk, s segmentFile, x index) error {
 	if err != nil {
 		return err
 	}
-	_, err = f.WriteAt(append(append(body, '\n'), indexSum(body)...), 0)
+	_, err = f.WriteAt(append(body, indexSum(body)...), 0)
 	if err = errors.Join(err, f.Close()); err != nil {
 		d.remove(part)
 		return err

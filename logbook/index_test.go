@@ -96,8 +96,8 @@ func TestIndexChangesNothing(t *testing.T) {
 	}
 	for i, s := range c.segments {
 		x, ok := loadIndex(d, s)
-		if !ok || len(x.Blocks) < 2 && i+1 < len(c.segments) {
-			t.Errorf("%s: index %v of %d blocks", s.name, ok, len(x.Blocks))
+		if !ok || !x.expand() || len(x.blocks) < 2 && i+1 < len(c.segments) {
+			t.Errorf("%s: index %v of %d blocks", s.name, ok, len(x.blocks))
 		}
 	}
 	ask("with the index kept")
@@ -125,10 +125,11 @@ func TestIndexChangesNothing(t *testing.T) {
 		}
 		packed += len(d.names[s.name].data)
 		kept, _ := loadIndex(d, s)
+		kept.expand()
 		if anew, ok := makeIndex(d, s); !ok || !reflect.DeepEqual(kept, anew) {
 			t.Errorf("%s: the index made from the file is not that of compressing", s.name)
 		}
-		for _, b := range kept.Blocks {
+		for _, b := range kept.blocks {
 			if b.Size > maxLine {
 				t.Errorf("%s: a frame of %d bytes", s.name, b.Size)
 			}

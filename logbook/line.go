@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"encoding/json"
 	"fmt"
+	"math"
 	"strconv"
 	"time"
 
@@ -61,7 +62,7 @@ func parseLine(b []byte) (l line, ok bool) {
 	}
 	rest, negative := bytes.CutPrefix(rest, []byte{'-'})
 	mono, rest, ok := cutUint(rest)
-	if !ok || mono > 1<<63-1 {
+	if !ok || mono > math.MaxInt64 {
 		return l, false
 	}
 	if l.mono = int64(mono); negative {
@@ -90,9 +91,9 @@ func parseLine(b []byte) (l line, ok bool) {
 // cutUint reads a decimal number without leading zeros.
 func cutUint(b []byte) (n uint64, rest []byte, ok bool) {
 	i := 0
-	for ; i < len(b) && b[i] >= '0' && b[i] <= '9'; i++ {
+	for ; i < len(b) && b[i]-'0' <= 9; i++ {
 		d := uint64(b[i] - '0')
-		if i == 20 || n > (1<<64-1-d)/10 {
+		if i >= 19 && (i > 19 || n > (math.MaxUint64-d)/10) {
 			return 0, b, false
 		}
 		n = n*10 + d
@@ -103,15 +104,11 @@ func cutUint(b []byte) (n uint64, rest []byte, ok bool) {
 	return n, b[i:], true
 }
 
-// stampShape reports whether t has digits and separators where they belong.
+// stampShape reports whether t is divided as a stamp is. That its digits are
+// digits, and a day that exists, is for parseStamp.
 func stampShape(t []byte) bool {
-	const shape = "dddd-dd-ddTdd:dd:dd.ddddddZ"
-	for i, c := range t {
-		if s := shape[i]; s == 'd' && (c < '0' || c > '9') || s != 'd' && c != s {
-			return false
-		}
-	}
-	return true
+	_ = t[stampSize-1]
+	return t[4] == '-' && t[7] == '-' && t[10] == 'T' && t[13] == ':' && t[16] == ':' && t[19] == '.' && t[26] == 'Z'
 }
 
 // parseStamp reads t; it fails on a day or an hour that does not exist.

@@ -63,11 +63,11 @@ func packTo(ctx context.Context, d disk, s segmentFile, name string, x *index) e
 	defer dst.Close()
 	var plain, frame []byte
 	x.Packed, x.FileSize = true, 0
-	for i := range x.Blocks {
+	for i := range x.blocks {
 		if err := ctx.Err(); err != nil {
 			return err
 		}
-		b := &x.Blocks[i]
+		b := &x.blocks[i]
 		if plain = append(plain[:0], make([]byte, b.Size)...); b.Size == 0 {
 			continue
 		}

@@ -186,7 +186,7 @@ func (t *tour) segment(s segmentFile) bool {
 		return true
 	}
 	if t.match.narrow() {
-		if x, ok := indexOf(t.disk, s); ok && x.Last <= t.bound {
+		if x, ok := indexOf(t.disk, s); ok && x.All.Last <= t.bound && (!x.All.mayHold(&t.match) || x.expand()) {
 			return t.blocks(s, x)
 		}
 	}
@@ -201,7 +201,8 @@ func (m *matcher) narrow() bool {
 // blocks yields what is wanted of the blocks of s that may hold it.
 func (t *tour) blocks(s segmentFile, x index) bool {
 	var r *blockReader
-	for _, b := range x.Blocks {
+	// Blocks that were not parsed hold nothing that is wanted.
+	for _, b := range x.blocks {
 		if !b.mayHold(&t.match) {
 			continue
 		}
@@ -225,8 +226,8 @@ func (t *tour) blocks(s segmentFile, x index) bool {
 			return false
 		}
 	}
-	if x.Last > t.last {
-		t.last, t.crc = x.Last, digits([]byte(x.LastCRC))
+	if x.All.Last > t.last {
+		t.last, t.crc = x.All.Last, digits([]byte(x.LastCRC))
 	}
 	return true
 }

@@ -121,8 +121,8 @@ func (w *walker) next() (l line, d *Damage, more bool) {
 		w.skipped++
 		return l, w.damage(Unchecked, "record %d follows a line that is no record", l.seq), true
 	}
-	if got := checksum(prev, l.body); got != l.crc {
-		d := w.mismatch(l, got)
+	if stated, ok := l.crc.value(); !ok || stated != chained(prev, l.body) {
+		d := w.mismatch(l, checksum(prev, l.body))
 		w.skipped++
 		return l, d, true
 	}
