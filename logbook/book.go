@@ -61,6 +61,7 @@ type Health struct {
 // use. None but Open, Sync, Attach and Close ever waits for the disk.
 type Book struct {
 	options Options
+	disk    disk
 	stream  stream
 
 	wake    chan struct{} // commit now
@@ -98,6 +99,7 @@ func open(d disk, o Options) (*Book, error) {
 	}
 	b := &Book{
 		options: o.withDefaults(),
+		disk:    d,
 		wake:    make(chan struct{}, 1),
 		done:    make(chan struct{}),
 		stopped: make(chan struct{}),

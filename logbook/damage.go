@@ -28,8 +28,8 @@ const (
 	Seal Kind = "broken seal"
 	// Twice: two segments claim the same number.
 	Twice Kind = "same number twice"
-	// Attachment: a file beside the record is missing or not as recorded.
-	Attachment Kind = "attachment"
+	// Attached: a file beside the record is missing or not as recorded.
+	Attached Kind = "attachment"
 	// IO: the operating system could not read.
 	IO Kind = "cannot be read"
 )

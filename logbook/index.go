@@ -39,6 +39,7 @@ type block struct {
 	After     uint64   `json:"after_seq"`      // record in front of it
 	AfterCRC  string   `json:"after_crc"`
 	Last      uint64   `json:"last_seq"`
+	Records   uint64   `json:"records"`
 	From      string   `json:"from"` // least and greatest t
 	To        string   `json:"to"`
 	Kinds     []string `json:"kinds"`
@@ -124,6 +125,7 @@ func (g *gauge) add(l *line) {
 		copy(g.to[:], l.t)
 	}
 	g.Last, g.any = l.seq, true
+	g.Records++
 	for _, k := range g.Kinds {
 		if k == string(l.kind) {
 			return

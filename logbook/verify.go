@@ -28,6 +28,7 @@ type SegmentReport struct {
 	sound      bool // the heading is
 	damage     []*Damage
 	notices    []string
+	mentions   []mention
 	lastDigits digits
 	lastCRC    string // of the last sound record, or of the one that the heading continues
 }
@@ -104,7 +105,7 @@ func verify(d disk, deep bool) (Report, error) {
 	report.join(files)
 	report.twins(d, c.segments)
 	if deep {
-		report.verifySpectra(d)
+		report.verifyAttachments(d)
 	}
 	return report, nil
 }
@@ -130,7 +131,7 @@ func verifySegment(d disk, s segmentFile, bound uint64, deep bool) SegmentReport
 	}
 	var (
 		clock [stampSize]byte // t of the record before
-		check = checker{}
+		check = checker{segment: s.name}
 	)
 	for {
 		l, damage, more := w.next()
@@ -166,7 +167,7 @@ func verifySegment(d disk, s segmentFile, bound uint64, deep bool) SegmentReport
 	if r.Records > 0 {
 		r.To, r.lastCRC = string(clock[:]), string(r.lastDigits[:])
 	}
-	r.Bytes, r.Sealed = w.offset, w.sealed
+	r.Bytes, r.Sealed, r.mentions = w.offset, w.sealed, check.mentions
 	return r
 }
 

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"context"
 	"fmt"
 	"os"
 	"text/tabwriter"
@@ -22,7 +23,7 @@ func newLog() *cobra.Command {
 			return cmd.Help()
 		},
 	}
-	log.AddCommand(newLogVerify(), newLogShow())
+	log.AddCommand(newLogList(), newLogShow(), newLogVerify(), newLogNote(), newLogExport())
 	return log
 }
 
@@ -49,7 +50,10 @@ damaged, where, and what is still good. A torn tail, as a crash leaves it, is
 told and is no failure.`,
 		Args: oneFolder,
 		RunE: func(cmd *cobra.Command, args []string) error {
-			report, err := logbook.Verify(args[0], deep)
+			if err := isLogbook(args[0]); err != nil {
+				return err
+			}
+			report, err := verifyUntil(cmd.Context(), args[0], deep)
 			if err != nil {
 				return err
 			}
@@ -70,6 +74,21 @@ told and is no failure.`,
 	cmd.Flags().BoolVar(&deep, "deep", false, "parse every record, and check the spectra beside it")
 	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object")
 	return cmd
+}
+
+// verifyUntil is logbook.Verify that Ctrl-C ends.
+func verifyUntil(ctx context.Context, dir string, deep bool) (report logbook.Report, err error) {
+	done := make(chan struct{})
+	go func() {
+		defer close(done)
+		report, err = logbook.Verify(dir, deep)
+	}()
+	select {
+	case <-done:
+		return report, err
+	case <-ctx.Done():
+		return logbook.Report{}, fmt.Errorf("verify was stopped before it was done: %w", ctx.Err())
+	}
 }
 
 // firstWorse returns the first damage that is more than a torn tail.

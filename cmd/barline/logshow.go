@@ -47,14 +47,17 @@ func instant(text string, now time.Time) (time.Time, error) {
 }
 
 func newLogShow() *cobra.Command {
-	var asJSON bool
+	var asJSON, follow bool
 	cmd := &cobra.Command{
 		Use:   "show DIR",
 		Short: "Print records, one a line",
-		Args:  oneFolder,
+		Long: `Prints records in words, with the local time; --json prints them as JSON Lines
+with UTC, the data as it stands in the logbook.`,
+		Args: oneFolder,
 	}
 	filter := filterFlags(cmd)
 	cmd.Flags().BoolVar(&asJSON, "json", false, "print JSON Lines")
+	cmd.Flags().BoolVarP(&follow, "follow", "f", false, "go on with what is written from now on, until Ctrl-C")
 	cmd.RunE = func(cmd *cobra.Command, args []string) error {
 		f, err := filter()
 		if err != nil {
@@ -66,18 +69,26 @@ func newLogShow() *cobra.Command {
 			write = writeJSON
 		}
 		trouble := damageTold{to: cmd.ErrOrStderr()}
-		for r, err := range logbook.Records(args[0], f) {
+		records := logbook.Records(args[0], f)
+		if follow {
+			records = logbook.Follow(cmd.Context(), args[0], f)
+		} else if err := isLogbook(args[0]); err != nil {
+			return err
+		}
+		for r, err := range sound(cmd.Context(), records, &trouble) {
 			if err != nil {
-				if err := trouble.tell(err); err != nil {
-					return err
-				}
-				continue
+				return err
 			}
 			if err := write(out, r); err != nil {
 				return err
 			}
+			if follow {
+				if err := out.Flush(); err != nil {
+					return err
+				}
+			}
 		}
-		if err := out.Flush(); err != nil {
+		if err := out.Flush(); err != nil || cmd.Context().Err() != nil {
 			return err
 		}
 		return trouble.verdict()
@@ -112,7 +123,7 @@ func (t *damageTold) verdict() error {
 }
 
 func writeText(w io.Writer, r logbook.Record) error {
-	_, err := fmt.Fprintf(w, "%s  %6d  %-13s %s\n", r.UTC.Local().Format("2006-01-02 15:04:05.000"), r.Seq, r.Kind, r.Data)
+	_, err := fmt.Fprintf(w, "%s  %6d  %-13s %s\n", r.UTC.Local().Format("2006-01-02 15:04:05.000"), r.Seq, r.Kind, recordText(r))
 	return err
 }
 
