@@ -57,7 +57,7 @@ that the table names, times are UTC.`,
 		trouble := damageTold{to: cmd.ErrOrStderr()}
 		var n int
 		err = toFile(output, cmd.OutOrStdout(), func(w io.Writer) error {
-			n, err = write(w, sound(cmd.Context(), logbook.Records(args[0], f), &trouble))
+			n, err = write(w, leavingOut(cmd.Context(), logbook.Records(args[0], f), &trouble))
 			if err == nil {
 				err = cmd.Context().Err() // half a table is none
 			}
@@ -74,8 +74,8 @@ that the table names, times are UTC.`,
 	return cmd
 }
 
-// sound tells damage and leaves it out of records, and ends with ctx.
-func sound(ctx context.Context, records export.Records, trouble *damageTold) export.Records {
+// leavingOut tells damage and leaves it out of records, and ends with ctx.
+func leavingOut(ctx context.Context, records export.Records, trouble *damageTold) export.Records {
 	return func(yield func(logbook.Record, error) bool) {
 		for r, err := range records {
 			if ctx.Err() != nil {

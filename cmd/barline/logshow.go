@@ -75,7 +75,7 @@ with UTC, the data as it stands in the logbook.`,
 		} else if err := isLogbook(args[0]); err != nil {
 			return err
 		}
-		for r, err := range sound(cmd.Context(), records, &trouble) {
+		for r, err := range leavingOut(cmd.Context(), records, &trouble) {
 			if err != nil {
 				return err
 			}

@@ -59,7 +59,7 @@ func readingText(d live.ReadingData) string {
 	text := d.Channel
 	// Of an instrument that is not measuring, a value would only mislead.
 	if d.Value != nil && d.Status != reading.FunctionCheck.String() && d.Status != reading.Failure.String() {
-		text += "  " + quantityText(d.Role, *d.Value)
+		text += "  " + roleText(d.Role, *d.Value)
 	}
 	if d.Status != reading.Good.String() {
 		text += "  " + d.Status
@@ -70,18 +70,19 @@ func readingText(d live.ReadingData) string {
 	return text
 }
 
-// quantityText writes the value of a role with its unit.
-func quantityText(role string, v float64) string {
+// roleText writes the value of a role with its unit.
+func roleText(role string, v float64) string {
 	r, err := reading.ParseRole(role)
 	if err != nil {
 		return strconv.FormatFloat(v, 'g', 6, 64) + " (SI)"
 	}
-	switch r {
-	case reading.CellAPressure, reading.CellBPressure, reading.ManifoldPressure, reading.SupplyPressure,
-		reading.Ambient, reading.Setpoint, reading.ControllerSensor:
+	switch {
+	case r.IsPressure():
 		return unit.Pascal(v).String()
-	case reading.FibreTemperature, reading.CellTemperature, reading.RoomTemperature:
+	case r.IsTemperature():
 		return unit.Kelvin(v).String()
+	}
+	switch r {
 	case reading.PulseEnergy:
 		return fmt.Sprintf("%.4g uJ", unit.Joule(v).Microjoules())
 	case reading.Emission, reading.EmissionWidth:

@@ -34,12 +34,13 @@ func unitOf(role string) string {
 	if err != nil {
 		return ""
 	}
-	switch r {
-	case reading.CellAPressure, reading.CellBPressure, reading.ManifoldPressure, reading.SupplyPressure,
-		reading.Ambient, reading.Setpoint, reading.ControllerSensor:
+	switch {
+	case r.IsPressure():
 		return "Pa"
-	case reading.FibreTemperature, reading.CellTemperature, reading.RoomTemperature:
+	case r.IsTemperature():
 		return "K"
+	}
+	switch r {
 	case reading.PulseEnergy:
 		return "J"
 	case reading.Emission, reading.EmissionWidth:
