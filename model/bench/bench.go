@@ -37,13 +37,17 @@ type Identity struct {
 	SpectrometerCalibration string `toml:"spectrometer_calibration"`
 }
 
-// Fibre is the hollow fibre. Wall is zero for a capillary.
+// Fibre is the hollow fibre. Wall is zero for a capillary. CladdingHoles is
+// zero where the cladding is solid, shut, or not to be computed.
 type Fibre struct {
 	Kind         string               `toml:"kind" form:"required; oneof=capillary|kagome|antiresonant"`
 	CoreDiameter unit.Metre           `toml:"core_diameter" form:"required; above=0 um; most=2 mm"`
 	Wall         unit.Metre           `toml:"wall" form:"above=0 nm; most=100 um"`
 	Length       unit.Metre           `toml:"length" form:"required; above=0 cm; most=1000 m"`
 	Loss         unit.DecibelPerMetre `toml:"loss" form:"default=0 dB/m; least=0 dB/m"`
+
+	CladdingHoles        int        `toml:"cladding_holes" form:"least=1; most=1000"`
+	CladdingHoleDiameter unit.Metre `toml:"cladding_hole_diameter" form:"above=0 um; most=1 mm"`
 }
 
 // Gas is what fills the fibre and by which sources it is described. Index and
@@ -65,11 +69,19 @@ type Pulse struct {
 	RepetitionRate unit.Hertz         `toml:"repetition_rate" form:"required; above=0 Hz"`
 }
 
-// Panel is the gas panel.
+// Panel is the gas panel. What is zero is not known: estimates of times then
+// take the allowed rates, and what is seen corrects them.
 type Panel struct {
 	CellVolume unit.CubicMetre `toml:"cell_volume" form:"required; above=0 cm3"`
 	Supply     unit.Pascal     `toml:"supply" form:"required; above=0 bar; gauge"`
 	Ambient    unit.Pascal     `toml:"ambient" form:"default=1 atm; least=0.3 bar; most=1.2 bar"`
+
+	LineVolume   unit.CubicMetre          `toml:"line_volume" form:"least=0 cm3"` // open to the cells
+	Inlet        unit.SonicConductance    `toml:"inlet" form:"above=0 dm3/(s bar)"`
+	Vent         unit.SonicConductance    `toml:"vent" form:"above=0 dm3/(s bar)"`
+	PumpSpeed    unit.CubicMetrePerSecond `toml:"pump_speed" form:"above=0 L/s"`
+	PumpUltimate unit.Pascal              `toml:"pump_ultimate" form:"least=0 Pa"`
+	WallTime     unit.Second              `toml:"wall_time" form:"least=0 s; most=1 h"` // gas to wall temperature
 }
 
 // Limits are the bounds of the bench as the file gives them. All four ratings

@@ -19,6 +19,7 @@ type checker struct {
 
 func (c checker) all() {
 	c.fibre()
+	c.cladding()
 	c.gas()
 	c.pressures()
 	c.instruments()
@@ -37,6 +38,16 @@ func (c checker) fibre() {
 	}
 	if f.Wall > 0 && f.CoreDiameter > 0 && f.Wall > f.CoreDiameter/2 {
 		c.Wrong("fibre.wall", "it is more than the core's radius, %v", f.CoreDiameter/2)
+	}
+}
+
+// cladding wants number and size of the holes, or neither.
+func (c checker) cladding() {
+	switch holes, size := c.Has("fibre.cladding_holes"), c.Has("fibre.cladding_hole_diameter"); {
+	case holes && !size:
+		c.Missing("fibre.cladding_hole_diameter", "cladding_holes is given: the diameter of one hole, such as \"12 um\"")
+	case size && !holes:
+		c.Missing("fibre.cladding_holes", "cladding_hole_diameter is given: how many holes there are")
 	}
 }
 

@@ -39,6 +39,12 @@ type (
 	SquareMetrePerWatt float64
 	// PascalCubicMetrePerSecond is a gas throughput or a leak rate.
 	PascalCubicMetrePerSecond float64
+	// CubicMetrePerSecond is the speed of a pump at its inlet.
+	CubicMetrePerSecond float64
+	// SonicConductance is the conductance C of a valve by ISO 6358-1 in
+	// m³/(s Pa): volume of air at 20 °C and 100 kPa that passes when choked,
+	// per upstream pressure.
+	SonicConductance float64
 	// MolePerCubicMetre is a molar density.
 	MolePerCubicMetre float64
 	// Fraction is a dimensionless share of one.

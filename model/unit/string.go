@@ -94,6 +94,12 @@ func (q PascalCubicMetrePerSecond) String() string {
 	return write(float64(q), 4, step{0, 0.1, "mbar L/s"})
 }
 
+// String writes s in L/s.
+func (s CubicMetrePerSecond) String() string { return write(float64(s), 4, step{0, 1e-3, "L/s"}) }
+
+// String writes c in dm3/(s bar), as data sheets of valves do.
+func (c SonicConductance) String() string { return write(float64(c), 4, step{0, 1e-8, "dm3/(s bar)"}) }
+
 // String writes n in mol/m3.
 func (n MolePerCubicMetre) String() string { return write(float64(n), 6, step{0, 1, "mol/m3"}) }
 

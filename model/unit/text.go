@@ -98,6 +98,13 @@ var (
 	throughputDim = dimension{"leak rate", "1e-6 mbar L/s", []scale{
 		{[]string{"mbar L/s", "mbar·L/s", "mbar*L/s"}, 0.1, 0}, {[]string{"Pa m3/s", "Pa·m3/s", "Pa·m³/s", "Pa*m3/s"}, 1, 0},
 	}}
+	speedDim = dimension{"pump speed", "4 m3/h", []scale{
+		{[]string{"m3/h", "m^3/h", "m³/h"}, 1.0 / 3600, 0}, {[]string{"L/s", "l/s"}, 1e-3, 0}, {[]string{"L/min", "l/min"}, 1e-3 / 60, 0},
+		{[]string{"m3/s", "m^3/s", "m³/s"}, 1, 0},
+	}}
+	conductanceDim = dimension{"sonic conductance", "0.5 dm3/(s bar)", []scale{
+		{[]string{"dm3/(s bar)", "dm3/(s·bar)", "dm³/(s·bar)", "L/(s bar)"}, 1e-8, 0}, {[]string{"m3/(s Pa)", "m3/(s·Pa)", "m³/(s·Pa)"}, 1, 0},
+	}}
 	fractionDim = dimension{"share", "2 %", []scale{
 		{[]string{"%"}, 1e-2, 0}, {[]string{"ppm"}, 1e-6, 0},
 	}}
@@ -294,6 +301,19 @@ func ParseAttenuation(text string) (DecibelPerMetre, error) {
 func ParseNonlinearIndex(text string) (SquareMetrePerWatt, error) {
 	v, err := kerrDim.parse(text)
 	return SquareMetrePerWatt(v), err
+}
+
+// ParsePumpSpeed reads a pump speed such as "4 m3/h".
+func ParsePumpSpeed(text string) (CubicMetrePerSecond, error) {
+	v, err := speedDim.parse(text)
+	return CubicMetrePerSecond(v), err
+}
+
+// ParseSonicConductance reads the conductance of a valve such as
+// "0.5 dm3/(s bar)".
+func ParseSonicConductance(text string) (SonicConductance, error) {
+	v, err := conductanceDim.parse(text)
+	return SonicConductance(v), err
 }
 
 // ParseThroughput reads a leak rate such as "1e-6 mbar L/s".

@@ -122,6 +122,14 @@ func TestTextIsReadBack(t *testing.T) {
 				g, e := ParseThroughput(PascalCubicMetrePerSecond(v).String())
 				return near(float64(g), v, e)
 			}(),
+			"speed": func() bool {
+				g, e := ParsePumpSpeed(CubicMetrePerSecond(v).String())
+				return near(float64(g), v, e)
+			}(),
+			"conductance": func() bool {
+				g, e := ParseSonicConductance(SonicConductance(v).String())
+				return near(float64(g), v, e)
+			}(),
 			"share": func() bool { g, e := ParseFraction(Fraction(v).String()); return near(float64(g), v, e) }(),
 			"celsius": func() bool {
 				g, e := ParseTemperature(Celsius(v).String())

@@ -44,3 +44,11 @@ func (d *KelvinDifference) UnmarshalText(b []byte) (err error) {
 	*d, err = ParseKelvinDifference(string(b))
 	return err
 }
+func (s *CubicMetrePerSecond) UnmarshalText(b []byte) (err error) {
+	*s, err = ParsePumpSpeed(string(b))
+	return err
+}
+func (c *SonicConductance) UnmarshalText(b []byte) (err error) {
+	*c, err = ParseSonicConductance(string(b))
+	return err
+}
