@@ -90,9 +90,9 @@ func (s *Slope) Estimate() (e Estimate, ok bool) {
 // Settled says when the gas counts as settled. Zero fields are not asked for,
 // except in Judge's text.
 type Settled struct {
-	Slope  unit.PascalPerSecond // of the cells, sigma included
-	Lag    unit.Pascal          // of the core behind the cells, either way
-	Excess unit.Kelvin          // of the gas over the walls in a shut cell, either way
+	Slope  unit.PascalPerSecond  // of the cells, sigma included
+	Lag    unit.Pascal           // of the core behind the cells, either way
+	Excess unit.KelvinDifference // of the gas over the walls in a shut cell, either way
 }
 
 // Condition is what is known of the gas at one instant.
@@ -104,7 +104,7 @@ type Condition struct {
 	// Shut says that nothing holds the pressure of the cells: gas that is
 	// warmer than the walls then shows as a pressure to come.
 	Shut   bool
-	Excess unit.Kelvin // where ExcessKnown
+	Excess unit.KelvinDifference // where ExcessKnown
 	// ExcessKnown: the gas itself is measured. Otherwise five time constants
 	// of the wall must have passed since gas last moved: common practice, no
 	// source.
