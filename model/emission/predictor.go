@@ -57,23 +57,22 @@ func (s *Setup) check() (*gas.Medium, *fibre.Fibre, error) {
 }
 
 // NewPredictor checks a setup and makes it ready.
-func NewPredictor(s Setup) (*Predictor, error) {
+func NewPredictor(s Setup) (*Predictor, error) { return newPredictor(s, nil) }
+
+// newPredictor takes the ionisation table where the caller has it already: it
+// is most of the work.
+func newPredictor(s Setup, electron *ionise.Table) (*Predictor, error) {
 	medium, f, err := s.check()
 	if err != nil {
 		return nil, err
 	}
-	p := &Predictor{setup: s, medium: medium, fibre: f, launch: launch(s.Pulse), omega: fibre.Frequency(s.Pulse.Wavelength)}
+	p := &Predictor{setup: s, medium: medium, fibre: f, launch: launch(s.Pulse), omega: fibre.Frequency(s.Pulse.Wavelength), electron: electron}
 	p.slopes = launchSlopesOf(s.Pulse)
-	rate, err := ionise.NewRate(medium.Main().IonisationEnergy, medium.Main().OrbitalMomentum, p.omega)
-	if err != nil {
-		return nil, err
+	if electron == nil {
+		if p.electron, err = electronTable(medium, f, s); err != nil {
+			return nil, err
+		}
 	}
-	averaging := ionise.Electrons
-	if s.Plasma == pulse.Averaged {
-		averaging = ionise.Uniform
-	}
-	order, u := f.Profile()
-	p.electron = ionise.NewTable(rate, ionise.Profile{Order: order, Zero: u}, averaging)
 	for _, name := range gas.IndexNames(medium.Main()) {
 		if name == medium.IndexSource().Name {
 			continue
@@ -92,6 +91,20 @@ func NewPredictor(s Setup) (*Predictor, error) {
 	}
 	p.warm, err = medium.Isotherm(ready)
 	return p, err
+}
+
+// electronTable tabulates the ionisation rate over the mode of the fibre.
+func electronTable(m *gas.Medium, f *fibre.Fibre, s Setup) (*ionise.Table, error) {
+	rate, err := ionise.NewRate(m.Main().IonisationEnergy, m.Main().OrbitalMomentum, fibre.Frequency(s.Pulse.Wavelength))
+	if err != nil {
+		return nil, err
+	}
+	averaging := ionise.Electrons
+	if s.Plasma == pulse.Averaged {
+		averaging = ionise.Uniform
+	}
+	order, u := f.Profile()
+	return ionise.NewTable(rate, ionise.Profile{Order: order, Zero: u}, averaging), nil
 }
 
 // Clone returns a predictor of the same setup for another goroutine. It shares

@@ -2,20 +2,29 @@ package emission
 
 import (
 	"math"
+	"sync"
 	"testing"
 
 	"barline/model/fibre"
 	"barline/model/gas"
+	"barline/model/ionise"
 	"barline/model/pulse"
 	"barline/model/unit"
 )
 
+// tables keeps one ionisation table for each gas and pump of the tests.
+var tables sync.Map
+
 func predictor(t testing.TB, s Setup) *Predictor {
 	t.Helper()
-	p, err := NewPredictor(s)
+	key := [3]any{s.Gas.Composition, s.Pulse.Wavelength, s.Fibre.Mode}
+	kept, _ := tables.Load(key)
+	table, _ := kept.(*ionise.Table)
+	p, err := newPredictor(s, table)
 	if err != nil {
 		t.Fatal(err)
 	}
+	tables.Store(key, p.electron)
 	return p
 }
 

@@ -13,12 +13,12 @@ var (
 // The refusals of an Isotherm are values made once, so that a stream of bad
 // readings allocates nothing.
 var (
-	errTemperature = stateError("the temperature is outside -23 degC to 127 degC, for which densities were checked")
-	errNegative    = stateError("the pressure is below zero or not a number")
-	errPressure    = stateError("the pressure is above the range in which this density was checked")
-	errCondensed   = stateError("the gas is liquid at this pressure and temperature")
-	errAir         = stateError("the share of air is outside 0 to 100 %")
-	errSolve       = stateError("no density fits this pressure and temperature")
+	errTemperature error = stateError("the temperature is outside -23 degC to 127 degC, for which densities were checked")
+	errNegative    error = stateError("the pressure is below zero or not a number")
+	errPressure    error = stateError("the pressure is above the range in which this density was checked")
+	errCondensed   error = stateError("the gas is liquid at this pressure and temperature")
+	errAir         error = stateError("the share of air is outside 0 to 100 %")
+	errSolve       error = stateError("no density fits this pressure and temperature")
 )
 
 type stateError string

@@ -101,7 +101,7 @@ func (r Rate) photons(g float64) float64 {
 	beta := 2 * g / root
 	term := func(x float64) float64 { return math.Exp(-alpha*x) * dawson(math.Sqrt(beta*x)) }
 	x := math.Ceil(nu) - nu
-	const direct = 12 // terms summed one by one before the rest is integrated
+	const direct = 8 // terms summed one by one before the rest is integrated
 	sum := 0.0
 	for range direct {
 		sum += term(x)
@@ -121,7 +121,7 @@ func (r Rate) photons(g float64) float64 {
 
 // head returns ∫₀^y 2t e^{−st²} D(t) dt by Simpson's rule.
 func head(s, y float64) float64 {
-	const steps = 32
+	const steps = 16
 	h := y / steps
 	sum := 0.0
 	for i := 1; i <= steps; i++ {
