@@ -201,6 +201,7 @@ func drawPressure(a frame.Area, s *live.Snapshot, v view) {
 	}
 	t.drawCursor(p)
 	gap := staleAfter(s)
+	t.drawMarks(p, s, y.Hi)
 	p.Dotted(s.Expected.Since(t.start()), times(1e-5), gap, frame.Target)
 	p.HistoryOf(s.PressureA.Since(t.start()), times(1e-5), gap, frame.Measured)
 	p.Done()

@@ -102,6 +102,7 @@ func drawStrip(a frame.Area, s *live.Snapshot, t timeAxis, st strip, last bool) 
 	p := chart.New(body, axes)
 	t.drawCursor(p)
 	gap := 2 * staleAfter(s)
+	t.drawMarks(p, s, axes.Y.Hi)
 	p.HistoryOf(st.view.Since(t.start()), st.to, gap, frame.Measured)
 	p.Done()
 }

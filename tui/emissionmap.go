@@ -59,7 +59,12 @@ func drawMap(a frame.Area, s *live.Snapshot) {
 	p := chart.New(body, chart.Axes{
 		X: x, Y: y, XTicks: chart.Ticks(x, max(2, a.W/8)), YTicks: chart.Ticks(y, max(2, body.H/2)), LabelWidth: 4,
 	})
-	p.Band(low, high, frame.Band)
+	if a.Style().ASCII { // without Braille, shading hides the curve
+		p.Dashes(low, frame.Band)
+		p.Dashes(high, frame.Band)
+	} else {
+		p.Band(low, high, frame.Band)
+	}
 	p.Curve(curve, frame.Predicted)
 	if s.CoreKnown {
 		p.Upright(here.X, frame.Faint)

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"os"
 	"path/filepath"
+	"strings"
 	"testing"
 
 	"barline/tui/frame"
@@ -79,7 +80,11 @@ func golden(t *testing.T, name, got string) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	if got+"\n" != string(want) {
-		t.Errorf("screen differs from %s; with -update the difference can be read\n%s", path, got)
+	is, was := strings.Split(got+"\n", "\n"), strings.Split(string(want), "\n")
+	for i := range max(len(is), len(was)) {
+		if i >= len(is) || i >= len(was) || is[i] != was[i] {
+			t.Errorf("screen differs from %s from line %d on; with -update the difference can be read", path, i+1)
+			return
+		}
 	}
 }

@@ -120,7 +120,7 @@ func show(s *live.Snapshot, role reading.Role) shown {
 		out.value = valueText(role, math.NaN())
 		out.mark = "✕ failure"
 		if never {
-			out.mark, out.ink = "○ no reading yet", frame.Faint
+			out.mark, out.ink = "○ none yet", frame.Faint
 		} else if age > stale {
 			out.mark = "✕ silent " + spanText(age)
 		}

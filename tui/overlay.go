@@ -132,10 +132,12 @@ func drawHelp(a frame.Area) {
 		half.Text(8, y[side], k.what, frame.Plain)
 		y[side]++
 	}
-	note := b.Sub(37, most-2, 39, 2)
+	note := b.Sub(37, most-3, 39, 3)
 	note.Right(7, 0, "HOLD", frame.Hold)
 	note.Text(8, 0, "shuts inlet, pump and vent", frame.Faint)
 	note.Text(8, 1, "and freezes the setpoint", frame.Faint)
+	note.Right(7, 2, "n ! c", frame.Strong)
+	note.Text(8, 2, "on charts: note, alarm, command", frame.Faint)
 	for i, m := range legend {
 		b.Right(7, most+i, m.mark, m.ink)
 		b.Text(8, most+i, m.text, frame.Faint)

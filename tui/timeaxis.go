@@ -54,6 +54,25 @@ func (t timeAxis) drawCursor(p *chart.Plot) {
 	}
 }
 
+// drawMarks puts a sign at the top of a chart for what happened meanwhile.
+// Where several fall together the most urgent is drawn last and stays.
+func (t timeAxis) drawMarks(p *chart.Plot, s *live.Snapshot, top float64) {
+	for _, want := range []struct {
+		kind live.Kind
+		mark rune
+		ink  frame.Ink
+	}{
+		{live.KindStep, '╷', frame.Rule}, {live.KindIntent, 'c', frame.Target},
+		{live.KindNote, 'n', frame.Strong}, {live.KindAlarm, '!', frame.Alarm},
+	} {
+		for _, m := range s.Marks {
+			if m.Kind == want.kind {
+				p.Mark(chart.Point{X: m.At.Seconds(), Y: top}, want.mark, want.ink)
+			}
+		}
+	}
+}
+
 // at returns the mean of a history at the cursor; ok is false in a gap.
 func (t timeAxis) at(view *trend.View) (v float64, ok bool) {
 	l := view.Since(t.start())

@@ -65,6 +65,13 @@ type Point struct {
 	Rising   bool // pressure was rising towards this point
 }
 
+// Mark is a moment worth a sign beside a history: a note, an alarm, a command
+// or a step.
+type Mark struct {
+	At   time.Duration // bench Mono
+	Kind Kind
+}
+
 // Snapshot is all that a screen draws. It is built by the loop, never changed
 // afterwards, and shares no memory with the core.
 type Snapshot struct {
@@ -108,6 +115,7 @@ type Snapshot struct {
 	// a view may be a second older than the rest.
 	Trends [reading.RoleCount]*trend.View
 	Rows   []StepData // of the runs of steps since the start, oldest first
+	Marks  []Mark     // what happened meanwhile, oldest first
 
 	Simulated bool
 	ReadOnly  bool

@@ -126,6 +126,10 @@ func Calm() *live.Snapshot {
 		}
 	}
 	s.PressureA, s.Expected, s.Residuals = a.View(), e.View(), r.View()
+	s.Marks = []live.Mark{
+		{At: Elapsed - 71*time.Second, Kind: live.KindIntent}, {At: Elapsed - 70*time.Second, Kind: live.KindStep},
+		{At: Elapsed - 34*time.Second, Kind: live.KindNote},
+	}
 	s.Trends[reading.CellAPressure] = s.PressureA
 	for role, f := range map[reading.Role]func(i int) float64{
 		reading.FibreTemperature: func(i int) float64 { return 295.5 + 0.3*float64(i)/2525 + 0.01*wobble(i) },
@@ -252,6 +256,7 @@ func Stale() *live.Snapshot {
 	s.Latest[reading.CellBPressure].Status = reading.Failure
 	s.Latest[reading.CellBPressure].Reason = "no reading for 12 s"
 	s.Mode, s.Why = live.Held, "cell B is silent"
+	s.Marks = append(s.Marks, live.Mark{At: Elapsed - 10400*time.Millisecond, Kind: live.KindAlarm})
 	s.Alarms = []live.Alarm{{
 		Name: "cell B silent", Priority: 1, Active: true, Since: at(Elapsed - 10400*time.Millisecond),
 		Cause: "no reading from cell B for 12 s", Consequence: "setpoint frozen at 9.000 bar", Action: "check the cable of the gauges",
@@ -320,6 +325,37 @@ func Fresh() *live.Snapshot {
 	return s
 }
 
+// Panel is a bench on which every valve reports, with gauges on manifold and
+// supply and a meter of pulse energy, while it fills from low pressure.
+func Panel() *live.Snapshot {
+	s := Filling()
+	set(s, reading.SupplyPressure, "supply", 18.04e5, 300*time.Millisecond)
+	set(s, reading.ManifoldPressure, "manifold", 9.81e5, 100*time.Millisecond)
+	set(s, reading.InletValve, "inlet", 0.37, 100*time.Millisecond)
+	set(s, reading.PumpValve, "pump", 0, 100*time.Millisecond)
+	set(s, reading.VentValve, "vent", 0, 100*time.Millisecond)
+	set(s, reading.PulseEnergy, "energy", 1.304e-6, 100*time.Millisecond)
+	set(s, reading.Ambient, "barometer", 1.0132e5, 900*time.Millisecond)
+	s.Latest[reading.VentValve].Status = reading.Failure
+	s.Latest[reading.CellBPressure].Status = reading.MaintenanceRequired
+	return s
+}
+
+// Branches is a bench whose prediction has a gap where its walls resonate, and
+// is extrapolated, with broken limits and notes beside it.
+func Branches() *live.Snapshot {
+	s := Calm()
+	for i := range s.Curve {
+		if bar := s.Curve[i].Pressure.Bar(); bar > 9.6 && bar < 10.4 {
+			s.Curve[i].Emission, s.Curve[i].Sigma = 0, 0
+		}
+	}
+	s.Prediction.Extrapolated = true
+	s.Prediction.Verdicts[0].Value, s.Prediction.Verdicts[0].OK = 16.2, false
+	s.Prediction.Verdicts[1].Value, s.Prediction.Verdicts[1].OK = 31.4, false
+	return s
+}
+
 // Alarms is a bench with more alarms than fit a banner.
 func Alarms() *live.Snapshot {
 	s := FullDisk()
@@ -337,6 +373,6 @@ func Alarms() *live.Snapshot {
 func Situations() map[string]func() *live.Snapshot {
 	return map[string]func() *live.Snapshot{
 		"calm": Calm, "filling": Filling, "stale": Stale, "lost-link": LostLink, "full-disk": FullDisk,
-		"no-emission": NoEmission, "fresh": Fresh, "alarms": Alarms,
+		"no-emission": NoEmission, "panel": Panel, "branches": Branches, "fresh": Fresh, "alarms": Alarms,
 	}
 }

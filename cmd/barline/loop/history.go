@@ -13,6 +13,7 @@ const (
 	maxPoints = 512 // of the emission map
 	maxLines  = 200 // of the record on screen
 	maxRows   = 512 // of runs of steps
+	maxMarks  = 512
 
 	trendsEvery = time.Second
 
@@ -31,6 +32,7 @@ type history struct {
 	views  [reading.RoleCount]*trend.View
 	viewed time.Duration
 	rows   []live.StepData
+	marks  []live.Mark
 
 	points []live.Point
 	lines  []string
@@ -90,6 +92,19 @@ func (h *history) trends(now time.Duration) [reading.RoleCount]*trend.View {
 	return h.views
 }
 
+// mark keeps when something happened that a chart shows a sign for.
+func (h *history) mark(at reading.Stamp, kind live.Kind) {
+	switch kind {
+	case live.KindNote, live.KindAlarm, live.KindIntent, live.KindStep:
+	default:
+		return
+	}
+	if len(h.marks) == maxMarks {
+		h.marks = append(make([]live.Mark, 0, 2*maxMarks), h.marks[maxMarks/4:]...)
+	}
+	h.marks = append(h.marks, live.Mark{At: at.Mono, Kind: kind})
+}
+
 func (h *history) row(r live.StepData) {
 	if len(h.rows) == maxRows {
 		h.rows = append(make([]live.StepData, 0, 2*maxRows), h.rows[maxRows/4:]...)
@@ -104,6 +119,7 @@ func (h *history) tick(s *live.State) {
 }
 
 func (h *history) line(at reading.Stamp, kind live.Kind, data any) {
+	h.mark(at, kind)
 	text := at.UTC.Format("15:04:05.0") + "  " + string(kind)
 	if t, ok := data.(interface{ String() string }); ok {
 		text += "  " + t.String()

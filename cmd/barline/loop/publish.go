@@ -30,7 +30,7 @@ func (l *Loop) publish() {
 		Alarms:        o.Core.Alarms(s),
 		Record:        s.Record, Folder: o.Folder, Recent: slices.Clip(l.history.lines),
 		PressureA: l.history.pressure.View(), Expected: l.history.expected.View(), Residuals: l.history.residual.View(),
-		Trends: l.history.trends(s.Now.Mono), Rows: slices.Clip(l.history.rows),
+		Trends: l.history.trends(s.Now.Mono), Rows: slices.Clip(l.history.rows), Marks: slices.Clip(l.history.marks),
 		Simulated: o.Simulated, ReadOnly: o.ReadOnly, Dropped: l.dropped,
 	}
 	for role := range snap.Latest {
