@@ -11,6 +11,10 @@
 // Allan, AllanOverlapping and AllanModified say over which time averaging
 // still helps, and Individuals draws limits where nothing was learnt yet.
 //
+// Attribute weighs what may have caused a shift: each Cause by how usual the
+// amount is that it would need, and by what else it would have moved. Best
+// ranks what to do next by what it would tell.
+//
 // The package refuses to learn from a stretch that is too short, that runs
 // away, or whose correlation is as long as the stretch itself. Readings that
 // are not usable must not be given to it: a closed shutter is no drift.
