@@ -74,6 +74,7 @@ func newRoot() *cobra.Command {
 	root.AddCommand(
 		newCheck(),
 		newLog(),
+		newPorts(),
 		newPredict(),
 		newSimulate(),
 		newVersion(),

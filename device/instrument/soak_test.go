@@ -1,0 +1,5 @@
+//go:build soak
+
+package instrument
+
+const unplugCycles = 1000
