@@ -61,6 +61,16 @@ func noArgs(cmd *cobra.Command, args []string) error {
 	return nil
 }
 
+// oneArg wants exactly one argument.
+func oneArg(what string) cobra.PositionalArgs {
+	return func(cmd *cobra.Command, args []string) error {
+		if len(args) != 1 {
+			return usage("%s takes %s, got %d arguments; see barline %s -h", cmd.Name(), what, len(args), cmd.Name())
+		}
+		return nil
+	}
+}
+
 func newRoot() *cobra.Command {
 	root := &cobra.Command{
 		Use:           "barline",
@@ -76,6 +86,8 @@ func newRoot() *cobra.Command {
 		newLog(),
 		newPorts(),
 		newPredict(),
+		newRun(),
+		newScan(),
 		newSimulate(),
 		newVersion(),
 		newWatch(),

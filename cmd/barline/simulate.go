@@ -14,6 +14,7 @@ import (
 	"barline/model/clock"
 	"barline/model/live"
 	"barline/model/reading"
+	"barline/model/unit"
 	"barline/simulate"
 )
 
@@ -60,10 +61,61 @@ Scenarios:
 	return cmd
 }
 
+// place is a session that is ready to run, and what it takes to run it.
+type place struct {
+	session *session
+	begin   func(ctx context.Context, s *session) (end func(), err error)
+	moves   []simulate.Move
+}
+
+// run begins the place's bench time and runs the session through f.
+func (p *place) run(ctx context.Context, f front) error {
+	ctx, cancel := context.WithCancel(ctx)
+	defer cancel()
+	end, err := p.begin(ctx, p.session)
+	if err != nil {
+		return err
+	}
+	defer func() { cancel(); end() }()
+	fmt.Fprintf(p.session.stderr, "barline: logbook in %s\n", p.session.folder)
+	return p.session.run(ctx, f)
+}
+
+// place makes the simulated bench.
+func (f simulateFlags) place(stderr io.Writer) (*place, error) {
+	if !(f.speed >= 0.1 && f.speed <= 100) {
+		return nil, usage("--speed %g: expected 0.1 to 100", f.speed)
+	}
+	sim, err := simulate.New(simulate.Options{Seed: f.seed, Scenario: f.scenario})
+	if err != nil {
+		return nil, usage("--scenario: %w", err)
+	}
+	text := bench.Sample()
+	b, err := bench.Parse(text, "heron.toml")
+	if err != nil {
+		return nil, err
+	}
+	// What the machine takes on the wall counts speed times on the bench.
+	hiccup := unit.Second(0.25 * f.speed)
+	b.Limits.Stale, b.Limits.Confirm = max(b.Limits.Stale, hiccup), max(b.Limits.Confirm, hiccup)
+	s, err := newSession(b, text)
+	if err != nil {
+		return nil, err
+	}
+	if s.folder, err = logbookFolder(f.logbook, "", b.Bench.Name, true); err != nil {
+		return nil, err
+	}
+	s.simulated, s.speed, s.stderr = true, f.speed, stderr
+	return &place{session: s, moves: sim.Scenario().Moves, begin: func(ctx context.Context, s *session) (func(), error) {
+		s.clock = clock.NewScaled(f.speed)
+		var wait func()
+		s.opener, wait, err = serveSimulated(ctx, sim, s.clock)
+		return wait, err
+	}}, nil
+}
+
 func (f simulateFlags) run(ctx context.Context, stdout, stderr io.Writer) error {
 	switch {
-	case !(f.speed >= 0.1 && f.speed <= 100):
-		return usage("--speed %g: expected 0.1 to 100", f.speed)
 	case f.lasts < 0:
 		return usage("--for %v: expected a bench time above zero", f.lasts)
 	case f.headless && f.lasts == 0:
@@ -71,47 +123,25 @@ func (f simulateFlags) run(ctx context.Context, stdout, stderr io.Writer) error 
 	case f.json && !f.headless:
 		return usage("--json goes with --headless")
 	}
-	sim, err := simulate.New(simulate.Options{Seed: f.seed, Scenario: f.scenario})
-	if err != nil {
-		return usage("--scenario: %w", err)
-	}
-	text := bench.Sample()
-	b, err := bench.Parse(text, "heron.toml")
+	p, err := f.place(stderr)
 	if err != nil {
 		return err
 	}
-	folder, err := logbookFolder(f.logbook, "", b.Bench.Name, true)
-	if err != nil {
-		return err
-	}
-	s, err := newSession(b, text)
-	if err != nil {
-		return err
-	}
-	clk := clock.NewScaled(f.speed)
-	ctx, cancel := context.WithCancel(ctx)
-	defer cancel()
-	open, wait, err := serveSimulated(ctx, sim, clk)
-	if err != nil {
-		return err
-	}
-	defer func() { cancel(); wait() }()
-	s.folder, s.clock, s.opener, s.simulated, s.speed, s.stderr = folder, clk, open, true, f.speed, stderr
-	fmt.Fprintf(stderr, "barline: logbook in %s\n", folder)
+	s := p.session
 	show := s.face(f.headless, stdout)
-	return s.run(ctx, func(ctx context.Context, l *loop.Loop) error {
+	return p.run(ctx, func(ctx context.Context, l *loop.Loop) error {
 		ctx, cancel := context.WithCancel(ctx)
 		defer cancel()
 		if f.lasts > 0 {
 			go func() {
 				defer cancel()
-				untilBenchTime(ctx, clk, f.lasts)
+				untilBenchTime(ctx, s.clock, f.lasts)
 			}()
 		}
 		moved := make(chan struct{})
 		go func() {
 			defer close(moved)
-			play(ctx, clk, l, sim.Scenario().Moves)
+			play(ctx, s.clock, l, p.moves)
 		}()
 		err := show(ctx, l)
 		cancel()

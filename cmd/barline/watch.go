@@ -2,7 +2,6 @@ package main
 
 import (
 	"context"
-	"fmt"
 	"io"
 
 	"github.com/spf13/cobra"
@@ -39,25 +38,35 @@ interlocks come first.`,
 	return cmd
 }
 
+// place makes the bench of the bench file.
+func (f watchFlags) place(stderr io.Writer) (*place, error) {
+	text, b, err := readBench(f.bench)
+	if err != nil {
+		return nil, err
+	}
+	s, err := newSession(b, text)
+	if err != nil {
+		return nil, err
+	}
+	if s.folder, err = logbookFolder(f.logbook, b.Logbook.Folder, b.Bench.Name, false); err != nil {
+		return nil, err
+	}
+	s.speed, s.opener, s.stderr = 1, openLine, stderr
+	return &place{session: s, begin: func(_ context.Context, s *session) (func(), error) {
+		s.clock = clock.NewScaled(1)
+		return func() {}, nil
+	}}, nil
+}
+
 func (f watchFlags) run(ctx context.Context, stdout, stderr io.Writer) error {
 	if f.bench == "" {
 		return usage("watch needs a bench file: -b bench.toml; barline check --sample prints one to start from")
 	}
-	text, b, err := readBench(f.bench)
+	p, err := f.place(stderr)
 	if err != nil {
 		return err
 	}
-	folder, err := logbookFolder(f.logbook, b.Logbook.Folder, b.Bench.Name, false)
-	if err != nil {
-		return err
-	}
-	s, err := newSession(b, text)
-	if err != nil {
-		return err
-	}
-	s.folder, s.clock, s.opener, s.speed, s.stderr = folder, clock.NewScaled(1), openLine, 1, stderr
-	fmt.Fprintf(stderr, "barline: logbook in %s\n", folder)
-	return s.run(ctx, s.face(false, stdout))
+	return p.run(ctx, p.session.face(false, stdout))
 }
 
 // openLine returns how the line of an instrument is opened.

@@ -95,6 +95,7 @@ type Limits struct {
 	FallRate     unit.PascalPerSecond `toml:"fall_rate" form:"required; above=0 bar/s"`
 	PumpBelow    unit.Pascal          `toml:"pump_below" form:"default=0 bar; least=0 bar; gauge"` // 0: the pump valve never opens
 	Stale        unit.Second          `toml:"stale" form:"default=2 s; above=0 s; most=10 min"`
+	Confirm      unit.Second          `toml:"confirm" form:"default=3 s; above=0 s; most=5 min"`
 	Disagreement unit.Pascal          `toml:"disagreement" form:"default=150 mbar; above=0 bar"`
 	Arming       unit.Second          `toml:"arming" form:"default=120 s; above=0 s; most=1 h"`
 	Follow       unit.Pascal          `toml:"follow" form:"default=2 bar; above=0 bar"`

@@ -119,3 +119,12 @@ func (l Limits) AtMost(rate unit.PascalPerSecond) Limits {
 	}
 	return l
 }
+
+// RampTime returns how long a ramp takes at the allowed rate.
+func (l Limits) RampTime(from, to unit.Pascal) time.Duration {
+	rate := l.RiseRate
+	if to < from {
+		rate = l.FallRate
+	}
+	return time.Duration(math.Abs(float64(to-from)) / float64(rate) * float64(time.Second))
+}

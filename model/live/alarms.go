@@ -103,7 +103,7 @@ func (c *Core) watch(s *State, fx []Effect) []Effect {
 	}
 	evaluate(alarmHeld, alarm.When(s.Mode == Held && s.heldByItself))
 	evaluate(alarmRecord, alarm.When(!s.Record.Writing))
-	evaluate(alarmCommand, alarm.When(s.refused || s.awaiting != 0 && at.Mono-s.awaitFrom > answerWithin))
+	evaluate(alarmCommand, alarm.When(s.refused || s.awaiting != 0 && at.Mono-s.awaitFrom > c.confirm))
 
 	a, b := s.Reading(reading.CellAPressure, c.stale), s.Reading(reading.CellBPressure, c.stale)
 	disagree := alarm.Unknown

@@ -48,8 +48,8 @@ func (c *Core) unsafe(s *State) string {
 	if c.follow > 0 && ramping && unit.Pascal(math.Abs(float64(p-s.Setpoint))) > c.follow {
 		return fmt.Sprintf("pressure %v does not follow the setpoint %v", p, s.Setpoint)
 	}
-	if s.commanding() && s.awaiting != 0 && s.Now.Mono-s.awaitFrom > answerWithin {
-		return fmt.Sprintf("the controller did not confirm the setpoint %v within %v", s.Setpoint, answerWithin)
+	if s.commanding() && s.awaiting != 0 && s.Now.Mono-s.awaitFrom > c.confirm {
+		return fmt.Sprintf("the controller did not confirm the setpoint %v within %v", s.Setpoint, c.confirm)
 	}
 	if !s.Record.Writing {
 		return "nothing is being recorded: " + s.Record.Reason
@@ -91,7 +91,9 @@ func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 	s.command++
 	s.Mode, s.Why, s.heldByItself, s.refused = Held, why, why != heldByPerson, false
 	s.ArmedUntil, s.Target, s.Setpoint = 0, 0, p
-	s.run = progress{}
+	if s.run.active() {
+		s.run, s.outcome = progress{}, EndedByHold
+	}
 	s.awaiting, s.awaitFrom, s.nearSince = s.command, s.Now.Mono, 0
 	return append(fx,
 		SendHold{Command: s.command, Setpoint: sp},

@@ -28,6 +28,7 @@ type Core struct {
 	energy    unit.Joule // used while no meter says otherwise
 
 	stale        time.Duration
+	confirm      time.Duration // how long an instrument may take to confirm a command
 	arming       time.Duration
 	follow       unit.Pascal
 	disagreement unit.Pascal
@@ -42,8 +43,6 @@ const (
 	// rampEvery is the longest reach of one setpoint: a lost link leaves the
 	// bench at most this far along the ramp.
 	rampEvery = time.Second
-	// answerWithin is how long an instrument may take to confirm a command.
-	answerWithin = 3 * time.Second
 	// predictEvery bounds how often the model is asked.
 	predictEvery = 50 * time.Millisecond
 	// settledWithin and settledFor say when the gas has reached a target.
@@ -65,6 +64,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 		predictor:    p,
 		energy:       b.Pulse.Energy,
 		stale:        b.Limits.Stale.Duration(),
+		confirm:      b.Limits.Confirm.Duration(),
 		arming:       b.Limits.Arming.Duration(),
 		follow:       b.Limits.Follow,
 		disagreement: b.Limits.Disagreement,
@@ -74,8 +74,8 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	if err := c.limits.Check(); err != nil {
 		return nil, State{}, err
 	}
-	if c.stale <= 0 || c.arming <= 0 {
-		return nil, State{}, fmt.Errorf("limits.stale is %v and limits.arming %v, expected both above zero", c.stale, c.arming)
+	if c.stale <= 0 || c.arming <= 0 || c.confirm <= 0 {
+		return nil, State{}, fmt.Errorf("limits.stale is %v, limits.confirm %v and limits.arming %v, expected all above zero", c.stale, c.confirm, c.arming)
 	}
 	gas, err := flow.Named(b.Gas.Species)
 	if err != nil {

@@ -20,6 +20,8 @@ const (
 	Reach Action = iota
 	// Isolate shuts inlet, pump and vent and watches what the pressure does.
 	Isolate
+	// Stay leaves everything as it is for the dwell.
+	Stay
 )
 
 // Phase is one leg of a program.
@@ -30,7 +32,7 @@ type Phase struct {
 	Rate     unit.PascalPerSecond // Reach: at most this and the limits' own; 0 is the limits' own
 	Within   unit.Pascal          // Reach: how near to the target the gas counts as settled; 0 is 20 mbar
 	Patience time.Duration        // Reach: longest wait to settle before HOLD; 0 is 10 min
-	Dwell    time.Duration        // after settling; of Isolate the whole phase
+	Dwell    time.Duration        // after settling; of Isolate and Stay the whole phase
 	Row      bool                 // write a row of what was measured during the dwell
 	// MaxRise ends an Isolate in HOLD where the pressure rose faster; 0 is
 	// no bound.
@@ -78,9 +80,9 @@ func (p *Program) Check(l limit.Limits) error {
 			if !(ph.Rate >= 0) || !(ph.Within >= 0) || ph.Patience < 0 {
 				return where(fmt.Errorf("rate %v, tolerance %v, patience %v: expected none below zero", ph.Rate, ph.Within, ph.Patience))
 			}
-		case Isolate:
+		case Isolate, Stay:
 			if ph.Dwell == 0 {
-				return where(fmt.Errorf("isolating for 0 s measures nothing"))
+				return where(fmt.Errorf("lasts 0 s, expected longer"))
 			}
 		default:
 			return where(fmt.Errorf("action %d is not known", ph.Action))
@@ -103,6 +105,17 @@ func (ph *Phase) patience() time.Duration {
 	}
 	return 10 * time.Minute
 }
+
+// Outcome is how the last program ended.
+type Outcome uint8
+
+const (
+	// NoOutcome: none has ended since the last one began.
+	NoOutcome Outcome = iota
+	Completed
+	Stopped
+	EndedByHold
+)
 
 // progress is how far a program has come.
 type progress struct {
@@ -198,9 +211,5 @@ func (c *Core) rampTime(from unit.Pascal, ph *Phase) time.Duration {
 	if ph.Action != Reach {
 		return 0
 	}
-	rate := c.limits.AtMost(ph.Rate)
-	if ph.Target >= from {
-		return time.Duration(float64(ph.Target-from) / float64(rate.RiseRate) * 1e9)
-	}
-	return time.Duration(float64(from-ph.Target) / float64(rate.FallRate) * 1e9)
+	return c.limits.AtMost(ph.Rate).RampTime(from, ph.Target)
 }

@@ -8,9 +8,12 @@ import (
 	"barline/model/unit"
 )
 
+// Outcome returns how the last program ended.
+func (s *State) Outcome() Outcome { return s.outcome }
+
 // start begins a program at its first phase.
 func (c *Core) start(s *State, p *Program, fx []Effect) []Effect {
-	s.run = progress{program: p}
+	s.run, s.outcome = progress{program: p}, NoOutcome
 	return c.beginPhase(s, fx)
 }
 
@@ -23,16 +26,27 @@ func (c *Core) beginPhase(s *State, fx []Effect) []Effect {
 	if !ok {
 		return c.hold(s, "no usable pressure reading", fx)
 	}
-	if ph.Action == Isolate {
+	target := ph.Target
+	underCommand := s.commanding() && !isolated || s.Mode == Steady
+	switch {
+	case ph.Action == Isolate:
 		s.run.from, s.run.settledAt = p, s.Now.Mono
 		return c.isolate(s, fx)
+	case ph.Action == Stay && isolated: // the valves stay shut
+		s.run.settledAt, s.Why = s.Now.Mono, ph.Label
+		return fx
+	case ph.Action == Stay && underCommand:
+		s.run.settledAt, s.Mode, s.Why = s.Now.Mono, Settling, ph.Label
+		return fx
+	case ph.Action == Stay:
+		target = p // take over where the gas is
 	}
 	from := p
-	if s.commanding() && !isolated || s.Mode == Steady {
-		from = s.Setpoint // under way: no leap back to a gas that lags
+	if underCommand {
+		from = s.Setpoint // no leap back to a gas that lags
 	}
 	s.Setpoint = min(max(from, 0), c.limits.Lowest().Max)
-	s.Target, s.Mode, s.Why, s.nearSince = ph.Target, Ramping, ph.Label, 0
+	s.Target, s.Mode, s.Why, s.nearSince = min(target, c.limits.Lowest().Max), Ramping, ph.Label, 0
 	return c.rampOn(s, fx)
 }
 
@@ -127,7 +141,7 @@ func (c *Core) next(s *State, fx []Effect) []Effect {
 		return c.beginPhase(s, fx)
 	}
 	name := s.run.program.Name
-	s.run = progress{}
+	s.run, s.outcome = progress{}, Completed
 	s.Notice = name + ": complete"
 	if s.Mode == Isolated {
 		s.Mode, s.Why = Held, "valves shut at the end of "+name
@@ -187,7 +201,7 @@ func (c *Core) change(s *State, in Intent, fx []Effect) ([]Effect, error) {
 		return c.next(s, fx), nil
 	case Stop:
 		name := r.program.Name
-		*r = progress{}
+		*r, s.outcome = progress{}, Stopped
 		if s.Mode == Isolated {
 			s.Mode, s.Why = Held, "valves shut; "+name+" stopped"
 		} else {

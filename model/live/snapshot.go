@@ -90,6 +90,7 @@ type Snapshot struct {
 	Lag        unit.Pascal   // of the core behind the cells, positive where it has yet to rise
 	SettleIn   time.Duration // until the core has caught up, if the cells stay as they are
 	Program    Progress
+	Outcome    Outcome // of the last program
 
 	Latest     [reading.RoleCount]reading.Reading
 	Prediction emission.Prediction

@@ -46,7 +46,7 @@ func testBench() *bench.Bench {
 		Limits: bench.Limits{
 			FibreSeal: 16 * unit.Bar, Cells: 16 * unit.Bar, Windows: 16 * unit.Bar, Line: 20 * unit.Bar,
 			RiseRate: 0.2e5, FallRate: 0.2e5, PumpBelow: 1.2 * unit.Bar,
-			Stale: 2, Disagreement: 0.15 * unit.Bar, Arming: 120, Follow: 2 * unit.Bar,
+			Stale: 2, Confirm: 3, Disagreement: 0.15 * unit.Bar, Arming: 120, Follow: 2 * unit.Bar,
 		},
 		Logbook: bench.Logbook{Heartbeat: 60, DeadbandWavelength: 0.05 * unit.Nanometre},
 		Instrument: []bench.Instrument{{Name: "gauges"}, {Name: "controller", Channel: []bench.Channel{
@@ -209,6 +209,9 @@ func (st *story) event(words string) ([]string, error) {
 			}
 			p.Phases = append(p.Phases, Phase{Label: "step to " + w, Target: target, Dwell: 2 * time.Second, Row: true})
 		}
+		return ask(Run{Program: p}), nil
+	case words == "stay":
+		p := &Program{Name: "stay", Phases: []Phase{{Label: "staying", Action: Stay, Dwell: 8 * time.Second}}}
 		return ask(Run{Program: p}), nil
 	case words == "isolate":
 		p := &Program{Name: "leak test", Phases: []Phase{{Label: "valves shut", Action: Isolate, Dwell: 10 * time.Second, Row: true, MaxRise: 10}}}

@@ -40,7 +40,7 @@ func Heron() *bench.Bench {
 		Panel: bench.Panel{CellVolume: 60e-6, Supply: 18 * unit.Bar, Ambient: 1.013 * unit.Bar},
 		Limits: bench.Limits{
 			FibreSeal: 16 * unit.Bar, Cells: 16 * unit.Bar, Windows: 16 * unit.Bar, Line: 20 * unit.Bar,
-			RiseRate: 0.2e5, FallRate: 0.2e5, PumpBelow: 1.2 * unit.Bar, Stale: 2,
+			RiseRate: 0.2e5, FallRate: 0.2e5, PumpBelow: 1.2 * unit.Bar, Stale: 2, Confirm: 3,
 			Disagreement: 0.15 * unit.Bar, Arming: 120, Follow: 2 * unit.Bar,
 		},
 		Instrument: []bench.Instrument{

@@ -86,6 +86,7 @@ func New(opt Options) *Loop {
 		opt: opt, queue: newQueue(), state: opt.State,
 		history: newHistory(), records: newDeadbands(opt.Bench), changed: make(chan struct{}, 1),
 	}
+	l.state.Now, l.state.Record = opt.Clock.Now(), opt.Book.Health()
 	l.gate = &gate{book: opt.Book, wire: opt.Wire, answer: l.Answer, now: opt.Clock.Now}
 	l.publish()
 	return l

@@ -102,7 +102,7 @@ func testBench() *bench.Bench {
 		Gas:   bench.Gas{Species: "argon"},
 		Limits: bench.Limits{
 			FibreSeal: 16 * unit.Bar, Cells: 16 * unit.Bar, Windows: 16 * unit.Bar, Line: 16 * unit.Bar,
-			RiseRate: 0.2e5, FallRate: 0.2e5, Stale: 2, Arming: 60, Follow: 2 * unit.Bar,
+			RiseRate: 0.2e5, FallRate: 0.2e5, Stale: 2, Confirm: 3, Arming: 60, Follow: 2 * unit.Bar,
 		},
 		Logbook:    bench.Logbook{Heartbeat: 60},
 		Instrument: []bench.Instrument{{Name: "controller", Channel: []bench.Channel{{Role: reading.Setpoint, Write: "P {value}"}}}},

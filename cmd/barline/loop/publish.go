@@ -20,7 +20,7 @@ func (l *Loop) publish() {
 	snap := &live.Snapshot{
 		Now: s.Now, Bench: o.Bench,
 		Mode: s.Mode, Why: s.Why, Notice: s.Notice, ArmedUntil: s.ArmedUntil,
-		Target: s.Target, Setpoint: s.Setpoint, Program: o.Core.Progress(s),
+		Target: s.Target, Setpoint: s.Setpoint, Program: o.Core.Progress(s), Outcome: s.Outcome(),
 		Core: s.Core, CoreKnown: s.CoreKnown, Lag: s.Lag, SettleIn: s.SettleIn,
 		Profile:    o.Core.Profile(s, make([]unit.Pascal, profilePoints)),
 		Prediction: s.Prediction, Residual: s.Residual,
