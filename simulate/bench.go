@@ -173,5 +173,6 @@ func (b *Bench) surroundings() {
 
 func (b *Bench) time() time.Duration { return time.Duration(b.frame) * Frame }
 
-// core returns the gas where the light is made.
-func (b *Bench) core() panel.State { return b.gas.core.At(compressionAt) }
+// core returns the gas where the light is made: where the pulse was shortest
+// when the spectrometer last looked.
+func (b *Bench) core() panel.State { return b.gas.core.At(b.spectro.compression) }

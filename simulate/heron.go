@@ -37,9 +37,6 @@ const (
 	pumpWavelength = 1030e-9 // m, stated
 	pulseDuration  = 35e-15  // s, stated
 	pulseEnergy    = 1.3e-6  // J, stated
-
-	// Where along the core the pulse is shortest and the light is made.
-	compressionAt = 0.35
 )
 
 const (

@@ -12,32 +12,40 @@ import (
 // light is what the fibre emits, by the truth.
 //
 // The emission stands where the phase mismatch between the mode and the
-// soliton that the pulse has become equals κ:
+// compressed pulse equals κ:
 //
-//	β(ω) − β(ω₀) − β₁(ω₀)(ω − ω₀) = κ(ω)
-//	κ = 0.496 γP₀ (ωT₀)^(2/3) · (1 + mismatch)
+//	β(ω) − β(ω₀) − β₁(ω₀)(ω − ω₀) = κ
 //
-// in which the mismatch is a smooth function of density and energy that only
-// the seed knows. Strength grows from a threshold in soliton order, and fades
-// where the fibre ends before the pulse has compressed.
+// Stored full-field runs of the stated bench say what κ must have been at
+// their densities and energies. The truth bends it by a smooth mismatch that
+// only the seed knows, and solves for ω with the fibre and gas as they truly
+// are. A nonlinear index or a core other than stated acts as another pulse
+// energy: γ goes with n₂/a².
 type light struct {
 	truth  Truth
-	medium *gas.Medium
 	iso    *gas.Isotherm
 	fibre  fibre.Fibre
-	beta   []float64
-	omega  []float64
+	middle [2]float64 // density and energy round which the mismatch bends
+
+	kappa, share, width, compressed surface // share as its logarithm
+
+	beta, omega []float64
 }
 
 // emission is what leaves the fibre besides the pump.
 type emission struct {
-	wavelength float64 // m, centroid, vacuum; 0: none
-	width      float64 // m
-	strength   float64 // share of the light
+	wavelength  float64 // m, centroid, vacuum; 0: none
+	width       float64 // m
+	strength    float64 // share of the light
+	compression float64 // share of the fibre's length after which it is made
 }
 
+// Runs say nothing of shares of the light below the first, and that a share is
+// below the second where they find no emission.
+const faintest, unseen = 1e-5, 7e-4
+
 func newLight(t Truth) (*light, error) {
-	medium, err := gas.New(gas.Spec{Composition: "argon", Density: "reference", Index: "peck-fisher-1964", N2: "lehmeier-1985"})
+	medium, err := gas.New(gas.Spec{Composition: "argon", Density: "reference", Index: "peck-fisher-1964"})
 	if err != nil {
 		return nil, err
 	}
@@ -49,12 +57,51 @@ func newLight(t Truth) (*light, error) {
 	if err != nil {
 		return nil, err
 	}
+	runs, err := readRuns()
+	if err != nil {
+		return nil, err
+	}
 	const points = 96
-	return &light{
-		truth: t, medium: medium, iso: iso,
+	l := &light{
+		truth: t, iso: iso,
 		fibre: stated.WithSizes(fibreRadius*(1+float64(t.CoreRadius)), fibreWall*(1+float64(t.Wall))),
 		beta:  make([]float64, points), omega: make([]float64, points),
-	}, nil
+	}
+	for _, f := range []struct {
+		into  *surface
+		emits bool
+		bound [2]float64
+		of    func(run) float64
+	}{
+		{&l.kappa, true, [2]float64{math.Inf(-1), math.Inf(1)}, func(r run) float64 { return needed(stated, iso, r) }},
+		{&l.share, true, [2]float64{math.Log(faintest), math.Log(unseen)}, func(r run) float64 { return math.Log(r.conversion) }},
+		{&l.width, true, [2]float64{10e-9, 30e-9}, func(r run) float64 { return r.width }},
+		{&l.compressed, false, [2]float64{}, func(r run) float64 { return r.compression / fibreLength }},
+	} {
+		if *f.into, err = newSurface(runs, f.emits, f.bound, f.of); err != nil {
+			return nil, err
+		}
+	}
+	state, err := iso.State(9e5, 0)
+	if err != nil {
+		return nil, err
+	}
+	l.middle = [2]float64{float64(state.Density), pulseEnergy}
+	return l, nil
+}
+
+// needed returns the κ of a run: the mismatch at its emission, with the fibre
+// and the gas as stated.
+func needed(f *fibre.Fibre, iso *gas.Isotherm, r run) float64 {
+	state, err := iso.State(unit.Pascal(r.pressure), 0)
+	if err != nil {
+		return math.NaN() // refused by the surface
+	}
+	g := fibre.Guide{Fibre: f, Gas: state}
+	pump := fibre.Frequency(pumpWavelength)
+	at := g.At(pump)
+	omega := fibre.Frequency(unit.Metre(r.centroid))
+	return g.At(omega).Beta - at.Beta - at.Beta1*(omega-pump)
 }
 
 // emit returns the emission from gas at s and pulses of energy in J. Where the
@@ -67,50 +114,52 @@ func (l *light) emit(s panel.State, energy float64) emission {
 	if err != nil {
 		return emission{}
 	}
-	state = state.WithDensity(state.Density * unit.MolePerCubicMetre(1+l.truth.Index))
-	g := fibre.Guide{Fibre: &l.fibre, Gas: state}
-	pump := fibre.Frequency(pumpWavelength)
-	at := g.At(pump)
-	if at.Region != fibre.Guided || !(energy > 0) || !(at.Beta2 < 0) {
-		return emission{}
+	density := float64(state.Density)
+	narrow := 1 + float64(l.truth.CoreRadius)
+	strong := energy * (1 + float64(l.truth.N2)) / (narrow * narrow)
+	e := emission{
+		strength:    math.Exp(l.share.at(density, strong)) * fade(density/l.share.density[0]) * fade(strong/l.share.energy[0]),
+		width:       l.width.at(density, strong),
+		compression: l.compressed.at(density, strong),
 	}
-	t0 := pulseDuration / 1.763 // sech²
-	power := 0.8814 * energy / pulseDuration
-	gamma := g.Gamma(pump) * (1 + float64(l.truth.N2))
-	order := math.Sqrt(gamma * power * t0 * t0 / -at.Beta2)
-	fission := t0 * t0 / -at.Beta2 / order
-	e := emission{strength: conversion(order, fission)}
-	kappa := 0.496 * gamma * power * math.Pow(t0, 2.0/3) * (1 + l.mismatch(float64(state.Density), energy))
-	omega, ok := l.match(&g, pump, at, kappa)
-	if !ok {
-		return emission{}
+	kappa := l.kappa.at(density, strong) + l.mismatch(density, strong)
+	g := fibre.Guide{Fibre: &l.fibre, Gas: state.WithDensity(state.Density * unit.MolePerCubicMetre(1+l.truth.Index))}
+	if omega, ok := l.match(&g, kappa); ok {
+		e.wavelength = float64(fibre.Wavelength(omega))
+	} else {
+		e.strength = 0
 	}
-	e.wavelength = float64(fibre.Wavelength(omega))
-	e.width = 20e-9 * e.wavelength * e.wavelength / (265e-9 * 265e-9)
 	return e
 }
 
-// conversion is the share of the light in the emission. Its slope is that of
-// full-field calculations of this kind of source, 5 % from soliton order 3.7
-// to 10 % at 4.8; threshold and roundness are ours.
-func conversion(order, fission float64) float64 {
-	const threshold, round, slope = 2.9, 0.12, 0.0535
-	s := slope * round * math.Log1p(math.Exp((order-threshold)/round))
-	return s / (1 + math.Exp((fission-0.9*fibreLength)/0.02))
+// fade takes the emission away below the lowest density and energy of the runs,
+// at a slope such as they have near the threshold.
+func fade(ratio float64) float64 {
+	if ratio >= 1 {
+		return 1
+	}
+	return math.Pow(max(ratio, 0), 12)
 }
 
-// mismatch is the part of κ that no formula has.
+// mismatch is the part of κ that no model of the bench has, 1/m.
 func (l *light) mismatch(density, energy float64) float64 {
-	const middle = 3690.0 // mol/m³, argon at 9 bar and room temperature
-	x := (density/middle - 1) / 0.3
-	y := (energy/pulseEnergy - 1) / 0.2
+	x := (density/l.middle[0] - 1) / 0.3
+	y := (energy/l.middle[1] - 1) / 0.2
 	m := l.truth.Mismatch
 	return m[0]*math.Tanh(x) + m[1]*math.Cos(1.7*x) + m[2]*math.Tanh(y) + m[3]*math.Sin(x+y)
 }
 
-// match finds the highest frequency in the band between the wall's first and
-// second resonance at which the mismatch rises through κ(ω) = kappa·ω^(2/3).
-func (l *light) match(g *fibre.Guide, pump float64, at fibre.Propagation, kappa float64) (float64, bool) {
+// match finds the highest frequency in the band short of the wall's longest
+// resonance at which the mismatch rises through kappa.
+func (l *light) match(g *fibre.Guide, kappa float64) (float64, bool) {
+	pump := fibre.Frequency(pumpWavelength)
+	at := g.At(pump)
+	if at.Region != fibre.Guided {
+		return 0, false
+	}
+	excess := func(omega, beta float64) float64 {
+		return beta - at.Beta - at.Beta1*(omega-pump) - kappa
+	}
 	var bands [fibre.MaxBands]fibre.Band
 	for _, b := range bands[:g.Bands(&bands)] {
 		if float64(b.To) > pumpWavelength/1.6 {
@@ -122,14 +171,11 @@ func (l *light) match(g *fibre.Guide, pump float64, at fibre.Propagation, kappa 
 			l.omega[i] = low + (high-low)*float64(i)/float64(last)
 		}
 		g.Beta(l.beta, l.omega)
-		excess := func(omega, beta float64) float64 {
-			return beta - at.Beta - at.Beta1*(omega-pump) - kappa*math.Pow(omega, 2.0/3)
-		}
 		above := excess(l.omega[last], l.beta[last])
 		for i := last - 1; i >= 0; i-- {
 			below := excess(l.omega[i], l.beta[i])
 			if below < 0 && above >= 0 {
-				return l.polish(g, excess, l.omega[i], below, l.omega[i+1], above), true
+				return polish(g, excess, l.omega[i], below, l.omega[i+1], above), true
 			}
 			above = below
 		}
@@ -139,8 +185,8 @@ func (l *light) match(g *fibre.Guide, pump float64, at fibre.Propagation, kappa 
 }
 
 // polish closes in on the root between a and b by false position (Illinois
-// variant), to a few parts in 1e9.
-func (l *light) polish(g *fibre.Guide, f func(omega, beta float64) float64, a, fa, b, fb float64) float64 {
+// variant: Dowell & Jarratt, BIT 11, 168 (1971)), to a few parts in 1e9.
+func polish(g *fibre.Guide, f func(omega, beta float64) float64, a, fa, b, fb float64) float64 {
 	for range 60 {
 		if b-a < 1e-9*b {
 			break

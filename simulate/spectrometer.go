@@ -20,6 +20,8 @@ type spectrometer struct {
 	gas    panel.State // sums
 	energy float64     // sum, J
 	lines  int64
+
+	compression float64 // where along the core the light is made, as last known
 }
 
 const (
@@ -43,7 +45,7 @@ func (s *spectrometer) expose(b *Bench) {
 	}
 	s.lines++
 	if b.faults.dead["spectrometer"] || b.faults.unplugged[spectrometerLine] {
-		*s = spectrometer{lines: s.lines}
+		s.begin()
 		return
 	}
 	line := []byte("EM --- nm W --- nm S --- %\r\n")
@@ -51,10 +53,16 @@ func (s *spectrometer) expose(b *Bench) {
 		n := float64(s.lit)
 		e := b.light.emit(panel.State{P: s.gas.P / n, T: s.gas.T / n, Air: s.gas.Air / n}, s.energy/n)
 		e.strength *= n / integration
+		s.compression = e.compression
 		line = s.line(b, e)
 	}
 	b.ports[spectrometerLine].say(b, line)
-	*s = spectrometer{lines: s.lines}
+	s.begin()
+}
+
+// begin begins the next integration.
+func (s *spectrometer) begin() {
+	*s = spectrometer{lines: s.lines, compression: s.compression}
 }
 
 // line writes what the detector makes of an emission.
