@@ -108,6 +108,27 @@ func TestTrackedIsCold(t *testing.T) {
 	})
 }
 
+// A search with sixteen times the samples finds nothing more.
+func TestSearchMissesNothing(t *testing.T) {
+	fine := grid(16 * samples)
+	for _, p := range setups(t) {
+		for bar := 0.3; bar < 25; bar *= 1.07 {
+			out := Prediction{}
+			m, ok := p.prepare(at(bar, 295.2, 1), &out)
+			if !ok {
+				continue
+			}
+			var bands [fibre.MaxBands]fibre.Band
+			n := m.guide.Bands(&bands)
+			coarse, dense := m.search(bands[:n], places), m.search(bands[:n], fine)
+			if coarse.count != dense.count || math.Abs(coarse.root-dense.root) > 1e-9*dense.root {
+				t.Errorf("%s, %v, %v at %.3g bar: %d zeros and root %v, searched closely %d and %v", p.medium.Name(), p.fibre.Spec().Kind, p.fibre.Spec().Wall, bar,
+					coarse.count, wavelength(coarse.root), dense.count, wavelength(dense.root))
+			}
+		}
+	}
+}
+
 // The root solves its own equation, on the short-wave side of the zero, and
 // zeros are zeros of β₂ in ascending order.
 func TestRootsAreRoots(t *testing.T) {

@@ -133,7 +133,7 @@ const (
 	whyPump    = "the fibre does not guide the pump: a wall resonance or the edge of its range is too near"
 	whyNormal  = "the pump meets normal dispersion: no soliton forms, and nothing is emitted"
 	whyNoZero  = "no zero-dispersion wavelength on the short-wave side of the pump"
-	whyNoMatch = "no phase matching inside the transmission bands and the range of the index"
+	whyNoMatch = "no phase matching above 1.6 times the pump frequency, inside the transmission bands and the range of the index"
 	whyVacuum  = "the fibre is empty"
 )
 
@@ -159,7 +159,7 @@ func (p *Predictor) Predict(in Input, before *Prediction) Prediction {
 	if !tracked {
 		var bands [fibre.MaxBands]fibre.Band
 		n := m.guide.Bands(&bands)
-		f = m.search(bands[:n])
+		f = m.search(bands[:n], places)
 	}
 	out.ZeroDispersionCount = f.count
 	for i := range f.count {

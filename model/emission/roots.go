@@ -16,20 +16,24 @@ type found struct {
 
 // samples per band of a cold search. They crowd towards the ends of a band,
 // where the wall bends the dispersion.
-const samples = 56
+const samples = 32
 
-// abscissa holds the places of the samples in a band, 0 to 1.
-var abscissa = func() (x [samples]float64) {
+// grid holds the places of n samples in a band, 0 to 1.
+func grid(n int) []float64 {
+	x := make([]float64, n)
 	for i := range x {
-		x[i] = 0.5 * (1 - math.Cos(math.Pi*float64(i)/(samples-1)))
+		x[i] = 0.5 * (1 - math.Cos(math.Pi*float64(i)/float64(n-1)))
 	}
 	return x
-}()
+}
+
+// places are those of every cold search; never written to.
+var places = grid(samples)
 
 // search looks through all bands. It reports every zero of β₂, and the highest
 // root of Δβ − κ that passes from negative to positive on the short-wave side
-// of the first zero above the pump.
-func (m *mismatch) search(bands []fibre.Band) (f found) {
+// of the first zero above the pump, far enough from the pump to be emission.
+func (m *mismatch) search(bands []fibre.Band, places []float64) (f found) {
 	var zeros [2 * MaxZeroDispersion]float64 // ascending in ω
 	count := 0
 	first := math.Inf(1)
@@ -39,8 +43,8 @@ func (m *mismatch) search(bands []fibre.Band) (f found) {
 		from, to = from*(1+1e-9), to*(1-1e-9)
 		var before point
 		var at float64
-		for i := range samples {
-			omega := from + (to-from)*abscissa[i]
+		for i, x := range places {
+			omega := from + (to-from)*x
 			now := m.at(omega)
 			if now.region != fibre.Guided {
 				before = point{region: fibre.Dark}
@@ -55,8 +59,8 @@ func (m *mismatch) search(bands []fibre.Band) (f found) {
 						first = zero
 					}
 				}
-				if before.excess() < 0 && now.excess() >= 0 && omega > first && omega > m.omega {
-					if root := m.polish(at, omega, phaseMatch); root > first {
+				if before.excess() < 0 && now.excess() >= 0 && omega > first && omega > nearest*m.omega {
+					if root := m.polish(at, omega, phaseMatch); root > max(first, nearest*m.omega) {
 						f.root = root // bands and samples rise in ω: the last is the highest
 					}
 				}
@@ -64,12 +68,17 @@ func (m *mismatch) search(bands []fibre.Band) (f found) {
 			before, at = now, omega
 		}
 	}
-	for i := count - 1; i >= 0 && f.count < MaxZeroDispersion; i-- {
-		f.zeros[f.count] = zeros[i]
-		f.count++
+	// Where there are more than fit, those beyond the pump's own come last.
+	f.count = min(count, MaxZeroDispersion)
+	for i := range f.count {
+		f.zeros[i] = zeros[f.count-1-i]
 	}
 	return f
 }
+
+// nearest is the lowest frequency, over that of the pump, at which light counts
+// as emission: package spectrum looks for none below.
+const nearest = 1.6
 
 // goal names the function that polish and follow bring to zero.
 type goal uint8
@@ -152,8 +161,11 @@ func (m *mismatch) track(before *Prediction) (f found, ok bool) {
 }
 
 // beyondZero reports whether the root lies above the first zero of β₂ above
-// the pump.
+// the pump, and far enough from the pump.
 func (m *mismatch) beyondZero(f *found) bool {
+	if f.root < nearest*m.omega {
+		return false
+	}
 	for i := f.count - 1; i >= 0; i-- {
 		if f.zeros[i] > m.omega {
 			return f.root > f.zeros[i]

@@ -10,7 +10,7 @@ import (
 // Bounds of the limits. Marked (practice): common practice, no source.
 const (
 	solitonBound     = 15.0            // incoherent above (practice)
-	ionisedBound     = 2e-4            // above it the estimate was off by up to 25 nm
+	ionisedBound     = 2e-4            // above it the estimate was 10 to 24 nm off in full-field runs
 	attenuationBound = 3.0             // dB over the fibre (practice)
 	heatingBound     = 1.0             // K (practice)
 	resonanceBound   = 0.05            // relative distance in wavelength
@@ -154,7 +154,9 @@ func field(power, area float64) float64 { return math.Sqrt(2 * power / (permitti
 
 // ionised returns a rough ionised fraction at the compressed pulse, averaged
 // over the mode: a sech² pulse of 7 P₀ that holds half the energy, its rate
-// integrated over the cycles. Before full-field runs there is nothing better.
+// integrated over the cycles. In ten full-field runs of this project (argon,
+// 34 µm, 7 to 12 bar, 0.8 to 1.6 µJ) it was within a factor of three of the
+// largest share along the fibre.
 func (p *Predictor) ionised(out *Prediction) unit.Fraction {
 	peak := compression * float64(out.PeakPower)
 	if !(peak > 0) || out.Density == 0 {

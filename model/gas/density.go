@@ -49,6 +49,10 @@ const (
 	highestVirial         = 50e5  // Pa: 0.1 % of the equation of state there
 	highestVirialOfXenon  = 30e5  // Pa: 0.2 %
 	densityRelativeTarget = 1e-12
+	// lastStep is the relative step of Newton's method after which another
+	// would change the density by 1e-12 at most, but in the last percent
+	// before the critical point.
+	lastStep = 3e-7
 )
 
 // pure is one species at one temperature with the density chosen.
@@ -131,8 +135,8 @@ func (u *pure) reference(p float64) (density, stiffness float64, err error) {
 	for range 100 {
 		have, slope := u.fluid.pressure(rho)
 		miss := have - p
-		if slope > 0 && math.Abs(miss) <= densityRelativeTarget*rho*slope {
-			return rho - miss/slope, slope, nil
+		if slope > 0 && math.Abs(miss) <= lastStep*rho*slope {
+			return rho - miss/slope, slope, nil // its square is what is left
 		}
 		if miss > 0 {
 			hi = rho

@@ -78,15 +78,16 @@ func (f *fluid) residual(rho float64) (a, da, dda float64) {
 		if top < 0 {
 			continue
 		}
+		// Horner's scheme with its derivatives: Σ c δ^d, and what δ∂/∂δ and
+		// δ²∂²/∂δ² make of it.
 		row := &f.poly[l]
-		var p, dp, ddp float64 // Σ c δ^d, Σ d c δ^d, Σ d(d−1) c δ^d
-		for d := top; d >= 1; d-- {
-			k := float64(d)
+		var p, dp, ddp float64
+		for d := top; d >= 0; d-- {
+			ddp = ddp*delta + dp
+			dp = dp*delta + p
 			p = p*delta + row[d]
-			dp = dp*delta + k*row[d]
-			ddp = ddp*delta + k*(k-1)*row[d]
 		}
-		p, dp, ddp = p*delta, dp*delta, ddp*delta
+		dp, ddp = dp*delta, 2*ddp*delta*delta
 		if l > 0 {
 			e := math.Exp(-power)
 			lp := float64(l) * power // l δ^l
