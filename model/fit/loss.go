@@ -31,6 +31,19 @@ func (l Loss) weight(r float64) float64 {
 	return 1
 }
 
+// influence returns ψ(r)², scaled to be 1 on average where r is normal
+// (Huber's proposal 2, Ann. Math. Stat. 35, 73 (1964), section 11).
+func (l Loss) influence(r float64) float64 {
+	if l.c == 0 {
+		return r * r
+	}
+	inside := math.Erf(l.c / math.Sqrt2) // share of a normal scatter within the corner
+	density := math.Exp(-l.c*l.c/2) / math.Sqrt(2*math.Pi)
+	mean := inside - 2*l.c*density + l.c*l.c*(1-inside)
+	psi := r * l.weight(r)
+	return psi * psi / mean
+}
+
 // spread returns the scale of residuals that a few outliers do not move: the
 // median of their sizes, which is 0.6745 σ of a normal scatter, corrected for
 // the parameters already taken from n points.

@@ -21,12 +21,15 @@ type Result struct {
 	// cautious where all points are normal.
 	Covariance *mat.SymDense
 
-	SumOfSquares float64   // of the weighted residuals of points, each in units of its Sigma
-	Freedom      int       // degrees of freedom: points and priors less free parameters
-	Scatter      float64   // standard deviation of residuals in units of Sigma, as found
-	Scattered    bool      // the uncertainties lean on Scatter
-	Residuals    []float64 // measured − model, in units of Sigma
-	Weights      []float64 // robust weight of each point, 1 where it counts in full
+	SumOfSquares float64 // of the weighted residuals of points, each in units of its Sigma
+	Freedom      int     // degrees of freedom: points and priors less free parameters
+	// Scatter is the standard deviation of residuals in units of Sigma, as
+	// found. With a robust loss an outlier adds to it no more than the loss
+	// lets it pull.
+	Scatter   float64
+	Scattered bool      // the uncertainties lean on Scatter
+	Residuals []float64 // measured − model, in units of Sigma
+	Weights   []float64 // robust weight of each point, 1 where it counts in full
 
 	Seen        []Combination // the best known first
 	Steps       int
@@ -78,10 +81,12 @@ func (w *work) result(x []float64, steps int) (*Result, error) {
 	}
 	var squares float64 // with priors, in units of the scale
 	for i, res := range w.residual {
-		squares += res * res * root[i] * root[i] / (w.scale * w.scale)
 		if i < n {
 			r.Weights[i] = root[i] * root[i]
 			r.SumOfSquares += res * res
+			squares += w.loss.influence(res / w.scale)
+		} else {
+			squares += res * res / (w.scale * w.scale)
 		}
 	}
 	unit := w.scale // of the residuals, for the covariance
