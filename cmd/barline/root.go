@@ -86,6 +86,7 @@ func newRoot() *cobra.Command {
 		newLog(),
 		newPorts(),
 		newPredict(),
+		newPropagate(),
 		newRun(),
 		newScan(),
 		newSimulate(),

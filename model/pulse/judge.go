@@ -58,8 +58,8 @@ func (r *Result) judge() {
 	case fibre.OffRange:
 		r.Notes = append(r.Notes, "in part of the band the fibre's formula is beyond its range and the propagation constant that of a plain capillary")
 	}
-	if bare := guide.Decibel(omega0); !r.Setup.lossy() && bare > 0 {
-		r.Notes = append(r.Notes, fmt.Sprintf("propagated without loss; a bare bore of this size loses %.3g dB/m at the pump", bare))
+	if f := r.Setup.Fibre.Spec(); f.Kind == fibre.Capillary && !r.Setup.lossy() {
+		r.Notes = append(r.Notes, fmt.Sprintf("propagated without loss; a bare bore of this size loses %.3g dB/m at the pump", guide.Bore(omega0)*10/math.Ln10))
 	}
 	r.Reliable = len(r.Reasons) == 0
 }

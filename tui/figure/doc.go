@@ -1,6 +1,6 @@
-// Package figure turns a screen into a picture.
+// Package figure draws pictures: of a screen, and of the light along a fibre.
 //
-// Braille dots and line drawing become shapes, so that the picture looks the
+// In a screen's picture Braille dots and line drawing become shapes, so that the picture looks the
 // same whatever fonts its viewer has; words stay text that can be searched and
 // read aloud.
 package figure

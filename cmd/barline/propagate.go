@@ -1,0 +1,187 @@
+package main
+
+import (
+	"bufio"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"slices"
+	"strings"
+	"time"
+
+	"github.com/spf13/cobra"
+
+	"barline/model/emission"
+	"barline/model/fibre"
+	"barline/model/gas"
+	"barline/model/pulse"
+	"barline/tui/figure"
+)
+
+// propagateFlags are the flags of propagate beside those it shares.
+type propagateFlags struct {
+	inputs
+	json, csv    bool
+	plot, resume string
+	sweep        string
+	tolerance    float64
+}
+
+func newPropagate() *cobra.Command {
+	var f propagateFlags
+	cmd := &cobra.Command{
+		Use:   "propagate",
+		Short: "Propagate the pulse through the fibre and say what it emits",
+		Long: `Propagate the full field of the pulse through the filled fibre and say what
+it emits. One run takes about a second.
+
+    barline propagate --gas argon --pressure "9 bar" --core-diameter "34 um" --length "30 cm" \
+        --wavelength "1030 nm" --duration "35 fs" --energy "1.5 uJ" --plot light.svg
+    barline propagate -b bench.toml --pressure "9 bar" --csv > spectrum.csv
+    barline propagate -b bench.toml --sweep pressure=7bar:12bar:0.25bar --resume scan.jsonl
+
+--csv prints the spectrum at the end of the fibre; in a sweep one row for each
+step. A sweep uses all cores. With --resume its steps are kept in a file, and
+those that the file already holds are not run again.`,
+		Args: noArgs,
+		RunE: func(cmd *cobra.Command, args []string) error {
+			err := f.run(cmd.Context(), cmd.OutOrStdout(), cmd.ErrOrStderr())
+			if errors.Is(err, context.Canceled) {
+				fmt.Fprintln(cmd.ErrOrStderr(), "barline: stopped")
+				return nil
+			}
+			return err
+		},
+	}
+	f.bind(cmd)
+	cmd.Flags().BoolVar(&f.json, "json", false, "print one JSON object; in a sweep one on each line")
+	cmd.Flags().BoolVar(&f.csv, "csv", false, "print comma-separated values")
+	cmd.Flags().StringVar(&f.plot, "plot", "", "draw spectrum and evolution to a file that ends in .svg or .png")
+	cmd.Flags().StringVar(&f.sweep, "sweep", "", "one run per step: pressure=7bar:12bar:0.25bar; also temperature, energy, air")
+	cmd.Flags().StringVar(&f.resume, "resume", "", "file that keeps the steps of a sweep")
+	cmd.Flags().Float64Var(&f.tolerance, "tolerance", pulse.DefaultTolerance, "relative error of one step, 1e-9 to 1e-2")
+	return cmd
+}
+
+// run carries out the command.
+func (f *propagateFlags) run(ctx context.Context, stdout, stderr io.Writer) error {
+	steps, err := parseSweep(f.sweep)
+	if err != nil {
+		return err
+	}
+	name := ""
+	if steps != nil {
+		name = steps.name
+	}
+	setup, input, err := f.setup("propagate", name)
+	if err != nil {
+		return err
+	}
+	switch {
+	case !(f.tolerance >= 1e-9 && f.tolerance <= 1e-2):
+		return usage("--tolerance %g: expected 1e-9 to 1e-2", f.tolerance)
+	case f.json && f.csv:
+		return usage("--json and --csv: expected one of them")
+	case steps != nil && f.plot != "":
+		return usage("--plot draws one run: leave out --sweep")
+	case steps == nil && f.resume != "":
+		return usage("--resume goes with --sweep")
+	case f.plot != "" && !slices.Contains(figure.Formats, strings.TrimPrefix(filepath.Ext(f.plot), ".")):
+		return usage("--plot %q: expected a file that ends in .svg or .png", f.plot)
+	}
+	p, err := newPropagation(setup, f.tolerance)
+	if err != nil {
+		return usage("%w", err)
+	}
+	out := bufio.NewWriter(stdout)
+	if steps != nil {
+		return errors.Join(f.runSweep(ctx, out, stderr, p, input, steps), out.Flush())
+	}
+	bar := newBar(stderr)
+	defer bar.clear()
+	done, err := p.run(ctx, input, evolutionSamples, bar.share)
+	bar.clear()
+	if err != nil {
+		return err
+	}
+	if f.plot != "" {
+		if err := drawTo(f.plot, done.result); err != nil {
+			return err
+		}
+	}
+	switch {
+	case f.json:
+		err = writeObject(out, done.object())
+	case f.csv:
+		err = writeSpectrum(out, done.result)
+	default:
+		done.write(out)
+	}
+	return errors.Join(err, out.Flush())
+}
+
+// evolutionSamples is the number of places along the fibre that a picture shows.
+const evolutionSamples = 160
+
+func drawTo(path string, r *pulse.Result) error {
+	file, err := os.Create(path)
+	if err != nil {
+		return fmt.Errorf("--plot: %w", err)
+	}
+	err = figure.Propagation(file, strings.TrimPrefix(filepath.Ext(path), "."), r)
+	return errors.Join(err, file.Close())
+}
+
+// propagation is a bench made ready for full-field runs.
+type propagation struct {
+	setup     emission.Setup
+	predictor *emission.Predictor // for the numbers beside the run
+	medium    *gas.Medium
+	fibre     *fibre.Fibre
+	tolerance float64
+}
+
+func newPropagation(s emission.Setup, tolerance float64) (*propagation, error) {
+	if s.Answer == emission.Anchored {
+		s.Answer = emission.Estimate // a run needs no anchor
+	}
+	predictor, err := emission.NewPredictor(s)
+	if err != nil {
+		return nil, err
+	}
+	return &propagation{s, predictor, predictor.Medium(), predictor.Fibre(), tolerance}, nil
+}
+
+// clone returns a propagation for another goroutine.
+func (p *propagation) clone() *propagation {
+	q := *p
+	q.predictor = p.predictor.Clone()
+	return &q
+}
+
+// propagated is one run and what led to it.
+type propagated struct {
+	from       *propagation
+	prediction emission.Prediction
+	result     *pulse.Result
+	seconds    float64
+}
+
+// run propagates one input.
+func (p *propagation) run(ctx context.Context, in emission.Input, samples int, progress func(float64)) (*propagated, error) {
+	state, err := p.medium.At(in.Pressure, in.Temperature, in.Air)
+	if err != nil {
+		return nil, err
+	}
+	s := pulse.Setup{Fibre: p.fibre, Gas: state, Pulse: p.setup.Pulse, Plasma: p.setup.Plasma}
+	s.Pulse.Energy = in.Energy
+	start := time.Now()
+	r, err := s.Run(ctx, pulse.Options{Tolerance: p.tolerance, Samples: samples, Progress: progress})
+	if err != nil {
+		return nil, err
+	}
+	return &propagated{p, p.predictor.Predict(in, nil), r, time.Since(start).Seconds()}, nil
+}
