@@ -77,7 +77,7 @@ func TestWholeBenchConserves(t *testing.T) {
 			return gas, airMoles
 		}
 		gas0, air0 := sum()
-		operate(t, b, 130, nil)
+		operate(t, b, 70, nil)
 		gas, airMoles := sum()
 		const rounding = 1e-15 // mol, of a panel that holds some 0.05 mol
 		if d := gas - gas0; math.Abs(d) > rounding {
