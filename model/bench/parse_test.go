@@ -35,7 +35,7 @@ func TestSampleIsRead(t *testing.T) {
 		t.Errorf("line of the gauges: %+v", g)
 	}
 	for name, want := range map[string]struct{ number, si, low, high float64 }{
-		"cell A":   {2.385, 238500, 0, 20e5},
+		"cell A":   {2.385, 238500, -2000, 20e5},
 		"fibre":    {22.5, 295.65, 253.15, 353.15},
 		"emission": {265, 265e-9, 190e-9, 400e-9},
 		"strength": {2.5, 0.025, 0, 1},
@@ -225,7 +225,7 @@ b.toml: [pulse] is missing; it needs wavelength, duration, energy and repetition
 }
 
 func TestGaugePressuresCountFromAmbient(t *testing.T) {
-	b, err := Parse([]byte(edit(t, "cells = \"16 bar\"", "cells = \"15 bar(g)\"", "scale = \"1 bar\"\nrange = [\"0 bar\", \"20 bar\"]", "scale = \"1 bar(g)\"\ngauge = true\nrange = [\"-1 bar(g)\", \"20 bar\"]")), "b.toml")
+	b, err := Parse([]byte(edit(t, "cells = \"16 bar\"", "cells = \"15 bar(g)\"", "scale = \"1 bar\"\nrange = [\"-20 mbar\", \"20 bar\"]", "scale = \"1 bar(g)\"\ngauge = true\nrange = [\"-1 bar(g)\", \"20 bar\"]")), "b.toml")
 	if err != nil {
 		t.Fatal(err)
 	}
