@@ -2,6 +2,7 @@ package live
 
 import (
 	"fmt"
+	"math"
 	"strings"
 )
 
@@ -48,7 +49,10 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 			s.Mode, s.Why = Watching, ""
 		}
 	case GoTo:
-		data.Intent, data.TargetPa = "go to", []float64{float64(in.Target)}
+		data.Intent = "go to"
+		if p := float64(in.Target); !math.IsNaN(p) && !math.IsInf(p, 0) { // what is refused below is no number of a record
+			data.TargetPa = &p
+		}
 		if err := c.movable(s); err != nil {
 			return data, err
 		}

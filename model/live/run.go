@@ -47,6 +47,9 @@ func (c *Core) beginPhase(s *State, fx []Effect) []Effect {
 	}
 	s.Setpoint = min(max(from, 0), c.limits.Lowest().Max)
 	s.Target, s.Mode, s.Why, s.nearSince = min(target, c.limits.Lowest().Max), Ramping, ph.Label, 0
+	if s.rampedAt != 0 && s.Now.Mono-s.rampedAt < rampEvery {
+		return fx // somebody asks faster than the rate allows: the ramp goes on in its time
+	}
 	return c.rampOn(s, fx)
 }
 

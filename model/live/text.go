@@ -13,8 +13,8 @@ import (
 func (d IntentData) String() string {
 	var b strings.Builder
 	b.WriteString(d.Intent)
-	for _, p := range d.TargetPa {
-		fmt.Fprintf(&b, " %v", unit.Pascal(p))
+	if d.TargetPa != nil {
+		fmt.Fprintf(&b, " %v", unit.Pascal(*d.TargetPa))
 	}
 	if d.Program != "" {
 		fmt.Fprintf(&b, " %q", d.Program)

@@ -54,7 +54,8 @@ type Options struct {
 	Simulated bool
 	ReadOnly  bool
 	Bell      func()
-	Call      func(live.Call) // must not block
+	Seen      func(live.Event) // every event before it is folded, for a capture of all
+	Call      func(live.Call)  // must not block
 }
 
 const (
@@ -70,6 +71,7 @@ type Loop struct {
 	history history
 	records *deadbands
 	fx      []live.Effect
+	taken   []live.Event
 	gate    *gate
 	curve   atomic.Pointer[[]emission.CurvePoint]
 	curveIn emission.Input
@@ -128,15 +130,8 @@ func (l *Loop) Run(ctx context.Context) {
 	redraw := time.NewTicker(redrawEvery)
 	defer redraw.Stop()
 
-	var events []live.Event
 	dirty := true
-	drain := func() {
-		events, l.dropped = l.queue.take(events)
-		for _, e := range events {
-			l.handle(e)
-		}
-		dirty = dirty || len(events) > 0
-	}
+	drain := func() { dirty = l.drain() || dirty }
 	for ctx.Err() == nil {
 		select {
 		case <-ctx.Done():
@@ -144,7 +139,7 @@ func (l *Loop) Run(ctx context.Context) {
 			drain()
 		case <-tick.C:
 			drain()
-			l.Tick()
+			l.tick()
 			dirty = true
 		case <-redraw.C:
 			if dirty {
@@ -154,6 +149,23 @@ func (l *Loop) Run(ctx context.Context) {
 		}
 	}
 	l.rest(drain)
+	l.publish()
+}
+
+// drain folds all events that wait and reports whether there were any.
+func (l *Loop) drain() bool {
+	l.taken, l.dropped = l.queue.take(l.taken)
+	for _, e := range l.taken {
+		l.handle(e)
+	}
+	return len(l.taken) > 0
+}
+
+// Turn folds all events that wait, one tick of bench time, and publishes. It
+// is for those who drive the loop on a clock of their own instead of Run.
+func (l *Loop) Turn() {
+	l.drain()
+	l.tick()
 	l.publish()
 }
 
@@ -176,9 +188,8 @@ func (l *Loop) rest(drain func()) {
 	}
 }
 
-// Tick folds one tick of bench time. Run calls it; a harness on a fake clock
-// may call it instead of Run.
-func (l *Loop) Tick() {
+// tick folds one tick of bench time.
+func (l *Loop) tick() {
 	if h := l.opt.Book.Health(); h.Writing != l.state.Record.Writing || h.Reason != l.state.Record.Reason {
 		l.handle(live.RecordChanged{At: l.opt.Clock.Now(), Health: h})
 	} else {
@@ -190,6 +201,9 @@ func (l *Loop) Tick() {
 
 // handle folds one event and carries out what follows, in order.
 func (l *Loop) handle(e live.Event) {
+	if l.opt.Seen != nil {
+		l.opt.Seen(e)
+	}
 	l.fx = l.opt.Core.Step(&l.state, e, l.fx[:0])
 	if r, ok := e.(live.Read); ok {
 		l.history.reading(&l.state, r.Reading)
@@ -231,3 +245,7 @@ func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) {
 		l.history.line(at, kind, data)
 	}
 }
+
+// State returns a copy of the experiment. It is for those who drive the loop
+// by Turn.
+func (l *Loop) State() live.State { return l.state }

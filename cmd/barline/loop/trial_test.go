@@ -1,0 +1,531 @@
+package loop_test
+
+import (
+	"encoding/json"
+	"errors"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"os"
+	"reflect"
+	"runtime"
+	"strconv"
+	"sync"
+	"testing"
+	"time"
+
+	"barline/cmd/barline/loop"
+	"barline/device/instrument"
+	"barline/model/bench"
+	"barline/model/clock"
+	"barline/model/emission"
+	"barline/model/limit"
+	"barline/model/live"
+	"barline/model/reading"
+	"barline/model/unit"
+	"barline/simulate"
+)
+
+// A trial is the real core and loop, the real drivers and the simulated bench
+// in memory, all on one fake clock and one goroutine: a minute of bench time
+// takes some milliseconds, and a seed gives the same minute again.
+type trial struct {
+	t    testing.TB
+	seed uint64
+	rng  *rand.Rand
+
+	clk   *clock.Fake
+	sim   *simulate.Bench
+	loop  *loop.Loop
+	core  *live.Core
+	start live.State
+	seats []*seat
+	disk  memory
+
+	seen    []live.Event
+	last    live.State // replayed alongside, see replay
+	faulty  bool       // wire faults of this trial
+	alarmed map[string]time.Duration
+	sent    struct {
+		any      bool
+		setpoint unit.Pascal
+		at       time.Duration
+	}
+	heldAt  time.Duration // when HOLD last reached the wire; 0 before the first
+	askedAt time.Duration // when somebody last asked for gas to move
+}
+
+// seat is one instrument and its line.
+type seat struct {
+	in    *instrument.Instrument
+	name  string
+	every time.Duration
+	next  time.Duration
+	line  *simulate.Line
+	down  bool
+	buf   []reading.Reading
+}
+
+// memory is a logbook that keeps records as JSON and can lose its disk.
+type memory struct {
+	lost    bool
+	records []string
+	bad     error
+}
+
+func (m *memory) Append(at reading.Stamp, kind string, data any) (uint64, error) {
+	b, err := json.Marshal(data)
+	if err != nil { // NaN and infinity end here
+		m.bad = fmt.Errorf("record of kind %s: %w", kind, err)
+		return 0, err
+	}
+	m.records = append(m.records, kind+" "+string(b))
+	return uint64(len(m.records)), nil
+}
+
+func (m *memory) Sync() error {
+	if m.lost {
+		return errors.New("no space left on device")
+	}
+	return nil
+}
+
+func (m *memory) Health() live.RecordHealth {
+	return live.RecordHealth{Writing: !m.lost, Reason: map[bool]string{true: "no space left on device"}[m.lost]}
+}
+
+func newTrial(t testing.TB, seed uint64, pressure unit.Pascal) *trial {
+	t.Helper()
+	tr := &trial{t: t, seed: seed, rng: rand.New(rand.NewPCG(seed, 1)), alarmed: map[string]time.Duration{}}
+	b, err := bench.Parse(bench.Sample(), "heron.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	if tr.sim, err = simulate.New(simulate.Options{Seed: seed, Scenario: "quiet", Pressure: pressure}); err != nil {
+		t.Fatal(err)
+	}
+	tr.clk = clock.NewFake(time.Date(2026, 12, 1, 11, 0, 0, 0, time.UTC))
+	tr.clk.Advance(time.Second) // an instant of zero means never
+	tr.sim.Follow(tr.clk)
+	if tr.core, tr.start, err = live.New(b, predictor(t)); err != nil {
+		t.Fatal(err)
+	}
+	for i := range b.Instrument {
+		in, err := instrument.New(b.Instrument[i], b.Panel.Ambient)
+		if err != nil {
+			t.Fatal(err)
+		}
+		tr.seats = append(tr.seats, &seat{in: in, name: b.Instrument[i].Name, every: b.Instrument[i].Every.Duration(), down: true})
+	}
+	tr.loop = loop.New(loop.Options{
+		Bench: b, Core: tr.core, State: tr.start, Clock: tr.clk, Book: &tr.disk, Wire: tr,
+		Seen: func(e live.Event) { tr.seen = append(tr.seen, e) },
+		Call: func(c live.Call) {
+			if _, known := tr.alarmed[c.Alarm]; !known {
+				tr.alarmed[c.Alarm] = tr.clk.Now().Mono
+			}
+		},
+	})
+	return tr
+}
+
+// shared is built once; each trial takes a copy.
+var shared = sync.OnceValues(func() (*emission.Predictor, error) {
+	b, err := bench.Parse(bench.Sample(), "heron.toml")
+	if err != nil {
+		return nil, err
+	}
+	setup, err := emission.SetupFromBench(b)
+	if err != nil {
+		return nil, err
+	}
+	return emission.NewPredictor(setup)
+})
+
+func predictor(t testing.TB) *emission.Predictor {
+	t.Helper()
+	p, err := shared()
+	if err != nil {
+		t.Fatal(err)
+	}
+	return p.Clone()
+}
+
+func (tr *trial) fail(format string, args ...any) {
+	tr.t.Helper()
+	tr.t.Fatalf("seed %d at %v: %s", tr.seed, tr.clk.Now().Mono, fmt.Sprintf(format, args...))
+}
+
+// Setpoint implements loop.Wire and holds the laws of what reaches the wire.
+func (tr *trial) Setpoint(command uint64, sp limit.Setpoint) {
+	now := tr.clk.Now()
+	p, ok := sp.Pressure()
+	low := tr.core.Limits().Lowest().Max
+	if !ok || !(p >= 0 && p <= low) {
+		tr.fail("setpoint %v (valid %v) reached the wire", p, ok)
+	}
+	if tr.heldAt != 0 && tr.askedAt <= tr.heldAt {
+		tr.fail("a setpoint reached the wire after HOLD, and nobody asked")
+	}
+	if tr.disk.lost {
+		tr.fail("setpoint %v reached the wire with the disk lost", p)
+	}
+	const rate, slack = 0.2e5, 0.05e5 // Pa/s; a gauge and the core may differ from the wire by this
+	jump := math.Abs(float64(p - tr.sent.setpoint))
+	fromGas := math.Inf(1)
+	for _, r := range []reading.Role{reading.CellAPressure, reading.CellBPressure} {
+		if x := tr.loop.Snapshot().Latest[r]; x.Channel != "" {
+			fromGas = min(fromGas, math.Abs(float64(p)-x.Value))
+		}
+	}
+	// An intent is stamped when it was asked, up to one turn before it is folded.
+	if tr.sent.any && now.Mono-tr.sent.at < time.Second-turnEvery && p != tr.sent.setpoint {
+		tr.fail("setpoint %v came %v after %v", p, now.Mono-tr.sent.at, tr.sent.setpoint)
+	}
+	if (!tr.sent.any || jump > rate+1e-6) && fromGas > rate+slack {
+		tr.fail("setpoint %v is %.0f Pa from the last and %.0f Pa from the gas", p, jump, fromGas)
+	}
+	tr.sent.any, tr.sent.setpoint, tr.sent.at = true, p, now.Mono
+	tr.obey(command, func(s *seat) error { return s.in.Set(s.line, sp) })
+}
+
+// Hold implements loop.Wire.
+func (tr *trial) Hold(command uint64, sp limit.Setpoint) {
+	tr.heldAt = tr.clk.Now().Mono
+	tr.obey(command, func(s *seat) error { return s.in.Hold(s.line, sp) })
+}
+
+// obey lets the controller carry out a command; a faulty wire loses some.
+func (tr *trial) obey(command uint64, do func(*seat) error) {
+	if tr.faulty && tr.rng.IntN(12) == 0 {
+		return // lost on the way, and so is its answer
+	}
+	for _, s := range tr.seats {
+		if !s.in.TakesSetpoint() {
+			continue
+		}
+		err := errors.New("no line to " + s.name)
+		if !s.down {
+			err = do(s)
+		}
+		tr.loop.Answer(command, err, tr.clk.Now())
+	}
+}
+
+func (tr *trial) ask(in live.Intent) {
+	switch in.(type) {
+	case live.GoTo, live.Run, live.Resume, live.Skip:
+		tr.askedAt = tr.clk.Now().Mono
+		tr.heldAt = min(tr.heldAt, tr.askedAt-1)
+	}
+	tr.loop.Do(in)
+}
+
+const turnEvery = 50 * time.Millisecond
+
+// turn carries everything on by one tick of the loop.
+func (tr *trial) turn() {
+	tr.clk.Advance(turnEvery)
+	now := tr.clk.Now()
+	if err := tr.sim.Advance(now.Mono); err != nil {
+		tr.fail("%v", err)
+	}
+	for _, s := range tr.seats {
+		tr.poll(s, now)
+	}
+	tr.loop.Turn()
+	tr.laws()
+}
+
+func (tr *trial) poll(s *seat, now reading.Stamp) {
+	if s.down {
+		line := tr.sim.Lines()[s.name]
+		if _, err := line.Write(nil); err != nil {
+			return
+		}
+		s.line, s.down = line, false
+		s.in.Opened()
+		tr.loop.Link(s.name, true, "", now)
+	}
+	var err error
+	switch {
+	case s.in.Streams():
+		s.buf, err = s.in.Drain(s.line, tr.clk.Now, s.buf[:0])
+	case now.Mono >= s.next:
+		s.next = now.Mono + s.every
+		s.buf, err = s.in.Poll(s.line, tr.clk.Now, s.buf[:0])
+	default:
+		return
+	}
+	for _, r := range s.buf {
+		tr.loop.Reading(r)
+	}
+	if err != nil {
+		s.down = true
+		tr.loop.Link(s.name, false, err.Error(), now)
+	}
+}
+
+// laws hold at every instant of every trial.
+func (tr *trial) laws() {
+	s := tr.loop.Snapshot()
+	if tr.disk.bad != nil {
+		tr.fail("%v", tr.disk.bad)
+	}
+	moving := s.Mode == live.Ramping || s.Mode == live.Settling || s.Mode == live.Isolated
+	if moving {
+		a := s.Latest[reading.CellAPressure]
+		if a.Channel != "" && s.Now.Mono-a.Taken.Mono > tr.core.Stale()+time.Second {
+			tr.fail("cell A was last read %v ago and the bench is %v", s.Now.Mono-a.Taken.Mono, s.Mode)
+		}
+		if tr.disk.lost {
+			tr.fail("the disk is lost and the bench is %v", s.Mode)
+		}
+	}
+	for _, v := range []float64{float64(s.Core), float64(s.Lag), float64(s.Prediction.Emission), float64(s.Prediction.Sigma), float64(s.Residual)} {
+		if math.IsNaN(v) || math.IsInf(v, 0) {
+			tr.fail("a number on the screen is %v", v)
+		}
+	}
+}
+
+// operator asks for anything at any time.
+func (tr *trial) operator() {
+	switch tr.rng.IntN(40) {
+	case 0:
+		tr.ask(live.Arm{})
+	case 1, 2:
+		tr.ask(live.GoTo{Target: unit.Pascal(tr.rng.Float64()*20-2) * unit.Bar})
+	case 3:
+		tr.ask(live.Hold{})
+	case 4:
+		tr.ask(live.Pause{})
+	case 5:
+		tr.ask(live.Resume{})
+	case 6:
+		tr.ask(live.Skip{})
+	case 7:
+		tr.ask(live.Stop{})
+	case 8:
+		tr.ask(live.Disarm{})
+	case 9:
+		p := &live.Program{Name: "storm"}
+		for range 1 + tr.rng.IntN(4) {
+			p.Phases = append(p.Phases, live.Phase{
+				Label: "leg", Action: live.Action(tr.rng.IntN(3)), Target: unit.Pascal(tr.rng.Float64()*17) * unit.Bar,
+				Dwell: time.Duration(tr.rng.IntN(8)) * time.Second, Row: true,
+			})
+		}
+		tr.ask(live.Run{Program: p})
+	case 10:
+		for name := range tr.alarmed {
+			tr.ask(live.Acknowledge{Alarm: name})
+			break
+		}
+	case 11:
+		tr.ask(live.GoTo{Target: unit.Pascal(math.NaN())})
+	case 12:
+		tr.ask(live.Arm{})
+		tr.ask(live.GoTo{Target: unit.Pascal(1+10*tr.rng.Float64()) * unit.Bar})
+	}
+}
+
+// misfortune lets something go wrong, or right again.
+func (tr *trial) misfortune() {
+	switch tr.rng.IntN(120) {
+	case 0:
+		tr.disk.lost = !tr.disk.lost
+	case 1:
+		tr.clk.Step(time.Duration(tr.rng.IntN(7200)-3600) * time.Second)
+	case 2, 3, 4:
+		kinds := []simulate.Kind{
+			simulate.Leak, simulate.Stuck, simulate.Zero, simulate.Sag, simulate.Warm,
+			simulate.Dead, simulate.Garbage, simulate.Unplugged, simulate.Shutter,
+		}
+		k := kinds[tr.rng.IntN(len(kinds))]
+		where := k.Places()
+		if err := tr.sim.Inject(simulate.Fault{Kind: k, Where: where[tr.rng.IntN(len(where))], Over: tr.rng.IntN(2) == 0}); err != nil {
+			tr.fail("%v", err)
+		}
+	}
+}
+
+// replay folds what the core was given once more and wants the same end.
+func (tr *trial) replay() {
+	state := tr.start
+	state.Now, state.Record = reading.Stamp{UTC: time.Date(2026, 12, 1, 11, 0, 1, 0, time.UTC), Mono: time.Second}, live.RecordHealth{Writing: true}
+	var fx []live.Effect
+	for _, e := range tr.seen {
+		fx = tr.core.Step(&state, e, fx[:0])
+	}
+	if got := tr.loop.State(); !reflect.DeepEqual(got, state) {
+		tr.fail("replayed, the state is not the same: mode %v for %v, setpoint %v for %v", state.Mode, got.Mode, state.Setpoint, got.Setpoint)
+	}
+}
+
+// runs is how many seeds a test tries; the environment variable sets it for
+// longer runs.
+func runs(variable string, short int) uint64 {
+	if n, err := strconv.Atoi(os.Getenv(variable)); err == nil {
+		return uint64(n)
+	}
+	return uint64(short)
+}
+
+// each runs f for every seed, on as many goroutines as there are processors.
+func each(t *testing.T, seeds uint64, f func(t *testing.T, seed uint64)) {
+	workers := uint64(runtime.GOMAXPROCS(0))
+	for w := range workers {
+		t.Run(fmt.Sprintf("part %d", w+1), func(t *testing.T) {
+			t.Parallel()
+			for seed := w; seed < seeds; seed += workers {
+				f(t, seed)
+			}
+		})
+	}
+}
+
+// Anything may go wrong while anybody presses anything: the laws hold, and the
+// same events give the same state.
+func TestStorms(t *testing.T) {
+	each(t, runs("BARLINE_STORMS", 8), func(t *testing.T, seed uint64) {
+		tr := newTrial(t, seed, unit.Pascal(1.1+float64(seed%10))*unit.Bar)
+		tr.faulty = seed%3 == 0
+		for tr.clk.Now().Mono < 120*time.Second {
+			tr.operator()
+			tr.misfortune()
+			tr.turn()
+		}
+		tr.replay()
+	})
+}
+
+// A quiet bench that fills and steps raises no alarm, does not overshoot, and
+// arrives.
+func TestQuietFills(t *testing.T) {
+	worst := 0.0
+	for seed := range runs("BARLINE_FILLS", 8) {
+		tr := newTrial(t, seed, 5*unit.Bar)
+		target := unit.Pascal(6.5+0.1*float64(seed%20)) * unit.Bar
+		for tr.clk.Now().Mono < 4*time.Second {
+			tr.turn()
+		}
+		tr.ask(live.Arm{})
+		tr.ask(live.GoTo{Target: target})
+		for tr.clk.Now().Mono < 60*time.Second && tr.loop.Snapshot().Outcome != live.Completed {
+			tr.turn()
+			for _, r := range []reading.Role{reading.CellAPressure, reading.CellBPressure} {
+				worst = max(worst, tr.loop.Snapshot().Latest[r].Value/float64(target)-1)
+			}
+		}
+		if s := tr.loop.Snapshot(); s.Outcome != live.Completed || s.Mode != live.Steady {
+			tr.fail("the fill to %v ended in %v: %s", target, s.Mode, s.Why)
+		}
+		if len(tr.alarmed) != 0 {
+			tr.fail("a quiet fill raised %v", tr.alarmed)
+		}
+	}
+	t.Logf("largest overshoot %.3f %% of the setpoint", 100*worst)
+	if worst > 0.005 {
+		t.Errorf("overshoot %.3f %% of the setpoint, allowed 0.5 %%", 100*worst)
+	}
+}
+
+// Every fault that matters raises its alarm within its time, and a ramp that
+// leans on what was lost is held.
+func TestFaultsRaiseTheirAlarms(t *testing.T) {
+	for _, c := range []struct {
+		name   string
+		fault  simulate.Fault
+		disk   bool
+		alarm  string
+		within time.Duration
+		holds  bool
+	}{
+		{"dead gauge", simulate.Fault{Kind: simulate.Dead, Where: "cell A"}, false, "cell A: no valid reading", 5 * time.Second, true},
+		{"gauges unplugged", simulate.Fault{Kind: simulate.Unplugged, Where: "gauges"}, false, "line to gauges lost", 5 * time.Second, true},
+		{"controller unplugged", simulate.Fault{Kind: simulate.Unplugged, Where: "controller"}, false, "line to controller lost", 5 * time.Second, true},
+		{"spectrometer dead", simulate.Fault{Kind: simulate.Dead, Where: "spectrometer"}, false, "emission: no valid reading", 5 * time.Second, false},
+		{"inlet stuck", simulate.Fault{Kind: simulate.Stuck, Where: "inlet"}, false, "held by itself", 30 * time.Second, true},
+		{"disk lost", simulate.Fault{}, true, "nothing is being recorded", time.Second, true},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			var slowest time.Duration
+			for seed := range runs("BARLINE_FAULTS", 1) {
+				tr := newTrial(t, seed, 5*unit.Bar)
+				for tr.clk.Now().Mono < 4*time.Second {
+					tr.turn()
+				}
+				tr.ask(live.Arm{})
+				tr.ask(live.GoTo{Target: 12 * unit.Bar})
+				for tr.clk.Now().Mono < 10*time.Second {
+					tr.turn()
+				}
+				began := tr.clk.Now().Mono
+				if c.disk {
+					tr.disk.lost = true
+				} else if err := tr.sim.Inject(c.fault); err != nil {
+					t.Fatal(err)
+				}
+				for tr.clk.Now().Mono < began+c.within {
+					tr.turn()
+				}
+				at, raised := tr.alarmed[c.alarm]
+				if !raised {
+					tr.fail("no alarm %q within %v; raised: %v", c.alarm, c.within, tr.alarmed)
+				}
+				slowest = max(slowest, at-began)
+				if held := tr.loop.Snapshot().Mode == live.Held; held != c.holds {
+					tr.fail("held: %v, want %v (%s)", held, c.holds, tr.loop.Snapshot().Why)
+				}
+			}
+			t.Logf("alarm after at most %v", slowest)
+		})
+	}
+}
+
+// A scan up and down with everything in order completes by itself and writes a
+// row a step.
+func TestScanCompletes(t *testing.T) {
+	for seed := range runs("BARLINE_SCANS", 1) {
+		tr := newTrial(t, seed, 7*unit.Bar)
+		p := &live.Program{Name: "scan"}
+		for i := range 41 {
+			k := min(i, 40-i)
+			p.Phases = append(p.Phases, live.Phase{
+				Label: fmt.Sprintf("scan %d of 41", i+1), Target: 7*unit.Bar + unit.Pascal(k)*0.2*unit.Bar,
+				Dwell: 3 * time.Second, Row: true,
+			})
+		}
+		for tr.clk.Now().Mono < 4*time.Second {
+			tr.turn()
+		}
+		tr.ask(live.Arm{})
+		tr.ask(live.Run{Program: p})
+		for tr.clk.Now().Mono < 15*time.Minute && tr.loop.Snapshot().Outcome == live.NoOutcome {
+			tr.turn()
+		}
+		rows := 0
+		for _, r := range tr.disk.records {
+			if len(r) > 5 && r[:5] == "step " {
+				rows++
+			}
+		}
+		if s := tr.loop.Snapshot(); s.Outcome != live.Completed || rows != 41 {
+			tr.fail("the scan ended in %v (%s) with %d rows, want 41", s.Mode, s.Why, rows)
+		}
+		tr.replay()
+	}
+}
+
+// BenchmarkTrial is a minute of bench time with three instruments in memory.
+func BenchmarkTrial(b *testing.B) {
+	b.ReportAllocs()
+	for range b.N {
+		tr := newTrial(b, 1, 9*unit.Bar)
+		for tr.clk.Now().Mono < time.Minute {
+			tr.turn()
+		}
+	}
+	b.ReportMetric(60*float64(b.N)/b.Elapsed().Seconds(), "x_life")
+}
