@@ -23,7 +23,7 @@ func newLog() *cobra.Command {
 			return cmd.Help()
 		},
 	}
-	log.AddCommand(newLogList(), newLogShow(), newLogVerify(), newLogNote(), newLogExport())
+	log.AddCommand(newLogList(), newLogShow(), newLogVerify(), newLogNote(), newLogExport(), newLogReport())
 	return log
 }
 

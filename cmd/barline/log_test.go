@@ -205,3 +205,14 @@ func TestLogList(t *testing.T) {
 		t.Error(code, errs)
 	}
 }
+
+func TestLogReport(t *testing.T) {
+	dir := logbookForTest(t)
+	code, out, errs := runLine("log", "report", dir, "--zone", "Europe/Zurich")
+	if code != 0 || !strings.Contains(out, "2026-12-01 12:42:05") || !strings.HasSuffix(out, "</html>\n") {
+		t.Error(code, errs)
+	}
+	if code, _, errs := runLine("log", "report", dir, "--zone", "Atlantis"); code != 2 || !strings.Contains(errs, "Atlantis") {
+		t.Error(code, errs)
+	}
+}
