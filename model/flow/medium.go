@@ -69,13 +69,19 @@ func (m Medium) Density(p unit.Pascal, t unit.Kelvin) (unit.MolePerCubicMetre, e
 	return unit.MolePerCubicMetre(rho), nil
 }
 
-// virialDensity solves p = rt·ρ(1 + bρ + cρ²) on the gas branch, where p
-// rises with ρ.
+// virialDensity solves p = rt·ρ(1 + bρ + cρ²) on the gas branch: the one that
+// starts at ρ = 0 and ends where p no longer rises with ρ. On it Newton from
+// the ideal gas comes to the root from below where b < 0. What it finds beyond
+// the end, at densities of a liquid, is none.
 func virialDensity(p, rt, b, c float64) (float64, bool) {
+	end := math.Inf(1)
+	if d := b*b - 3*c; b < 0 && d > 0 {
+		end = 1 / (math.Sqrt(d) - b) // the smaller root of 1 + 2bρ + 3cρ²
+	}
 	rho := p / rt
 	for range 50 {
 		slope := rt * (1 + rho*(2*b+3*c*rho))
-		if !(slope > 0) {
+		if !(slope > 0) || rho > end {
 			return 0, false
 		}
 		step := (rt*rho*(1+rho*(b+c*rho)) - p) / slope
@@ -84,7 +90,7 @@ func virialDensity(p, rt, b, c float64) (float64, bool) {
 			break
 		}
 	}
-	ok := rho >= 0 && 1+rho*(2*b+3*c*rho) > 0.05 && math.Abs(rt*rho*(1+rho*(b+c*rho))-p) <= 1e-9*p
+	ok := rho >= 0 && rho < end && 1+rho*(2*b+3*c*rho) > 0.05 && math.Abs(rt*rho*(1+rho*(b+c*rho))-p) <= 1e-9*p
 	return rho, ok
 }
 

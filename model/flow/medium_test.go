@@ -46,8 +46,12 @@ func TestDensity(t *testing.T) {
 		}
 		near(t, "argon", float64(rho)*m.MolarMass, want, 5e-5)
 	}
-	if _, err := gasNamed(t, "xenon").Density(60e5, 280); err == nil {
-		t.Error("liquid xenon has a density of gas")
+	// Xenon boils near 48 bar at 280 K (Lemmon & Span 2006); its virial equation has roots of
+	// liquid density there that are none of the gas.
+	for p := unit.Pascal(50e5); p < 400e5; p += 0.7e5 {
+		if rho, err := gasNamed(t, "xenon").Density(p, 280); err == nil {
+			t.Errorf("xenon at %v and 280 K is a gas of %v", p, rho)
+		}
 	}
 	if rho, err := m.Density(0, 300); rho != 0 || err != nil {
 		t.Errorf("vacuum: %v, %v", rho, err)

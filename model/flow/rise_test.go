@@ -128,6 +128,32 @@ func TestRiseUndecided(t *testing.T) {
 	}
 }
 
+// A tight cell of xenon in a room that warms by 2 K: as an ideal gas it seems
+// to leak, as what it is it does not.
+func TestRiseKnowsTheGas(t *testing.T) {
+	xenon := gasNamed(t, "xenon")
+	c := Cell{Gas: xenon, Volume: 140e-6, Wall: 294}
+	full := at(t, c, 20e5, 294)
+	random := rand.New(rand.NewPCG(9, 9))
+	var points []RisePoint
+	for i := range 120 {
+		s := full
+		s.Temperature = 294 + unit.Kelvin(2*float64(i)/120)
+		points = append(points, RisePoint{time.Duration(i) * 20 * time.Second, c.Pressure(s) + unit.Pascal(60*random.NormFloat64()), s.Temperature})
+	}
+	r, err := FitRise(RiseSpec{Volume: 140e-6, Gas: xenon}, points)
+	if err != nil || r.Verdict != Tight {
+		t.Errorf("as xenon: %v, %v", r, err)
+	}
+	r, err = FitRise(RiseSpec{Volume: 140e-6}, points)
+	if err != nil || r.Verdict != Leaking {
+		t.Errorf("as an ideal gas: %v, %v", r, err)
+	}
+	if _, err := FitRise(RiseSpec{Volume: 140e-6, Gas: xenon}, append(points, RisePoint{time.Hour, 90e5, 280})); err == nil {
+		t.Error("liquid xenon: accepted")
+	}
+}
+
 func TestRiseRefuses(t *testing.T) {
 	spec := RiseSpec{Volume: 140e-6}
 	good := rising(spec, 1, 9e5, 0, 0, 0, 60, 5*time.Minute)
