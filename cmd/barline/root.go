@@ -83,6 +83,7 @@ func newRoot() *cobra.Command {
 	})
 	root.AddCommand(
 		newCheck(),
+		newFit(),
 		newLog(),
 		newPorts(),
 		newPredict(),
