@@ -60,6 +60,9 @@ func drawEmission(a frame.Area, s *live.Snapshot) {
 		x = a.Text(x, 0, "● "+m.value, m.ink)
 	} else {
 		x = a.Text(x, 0, m.mark, m.ink)
+		if why := s.Latest[reading.Emission].Reason; why != "" && a.W >= 110 {
+			x = a.Sub(0, 0, min(x+30, a.W), 1).Text(x, 0, ", "+why, frame.Plain)
+		}
 	}
 	x = a.Text(x+3, 0, "predicted ", frame.Faint)
 	p := &s.Prediction
@@ -145,7 +148,7 @@ func drawCharts(a frame.Area, s *live.Snapshot, v view) {
 	upper := (a.H + 3) * 3 / 5
 	drawPressure(a.Sub(0, 0, left, upper), s, v)
 	drawResidual(a.Sub(0, upper, left, a.H-upper), s, v)
-	drawMap(a.Sub(left+2, 0, a.W-left-2, a.H), s)
+	drawMap(a.Sub(left+2, 0, a.W-left-2, a.H), s, v.near)
 }
 
 // heading draws the title of a chart with a rule behind it and returns the

@@ -66,12 +66,12 @@ func drawDrift(a frame.Area, s *live.Snapshot, v view) {
 		if last {
 			h++ // the labels of the time axis
 		}
-		drawStrip(a.Sub(0, y, a.W, h), s, t, st, last)
+		drawStrip(a.Sub(0, y, a.W, h), s, t, st, i == 0, last)
 		y += h
 	}
 }
 
-func drawStrip(a frame.Area, s *live.Snapshot, t timeAxis, st strip, last bool) {
+func drawStrip(a frame.Area, s *live.Snapshot, t timeAxis, st strip, first, last bool) {
 	heading(a, st.title, st.unit)
 	text := ""
 	if mean, change, ok := t.change(st.view); ok {
@@ -102,7 +102,9 @@ func drawStrip(a frame.Area, s *live.Snapshot, t timeAxis, st strip, last bool) 
 	p := chart.New(body, axes)
 	t.drawCursor(p)
 	gap := 2 * staleAfter(s)
-	t.drawMarks(p, s, axes.Y.Hi)
+	if first {
+		t.drawMarks(p, s, axes.Y.Hi)
+	}
 	p.HistoryOf(st.view.Since(t.start()), st.to, gap, frame.Measured)
 	p.Done()
 }

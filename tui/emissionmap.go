@@ -5,41 +5,93 @@ import (
 
 	"barline/model/live"
 	"barline/model/reading"
+	"barline/model/unit"
 	"barline/tui/chart"
 	"barline/tui/frame"
 )
 
-// drawMap draws the predicted emission over pressure with its band, the
-// emissions measured on the way up and down, and where the bench is now.
-func drawMap(a frame.Area, s *live.Snapshot) {
-	nan := math.NaN()
-	var x, y chart.Range
-	curve := make([]chart.Point, len(s.Curve))
-	low, high := make([]chart.Point, len(s.Curve)), make([]chart.Point, len(s.Curve))
-	for i, c := range s.Curve {
-		bar, nm, sigma := c.Pressure.Bar(), c.Emission.Nanometres(), c.Sigma.Nanometres()
-		x.Include(bar)
-		if !(c.Emission > 0) {
-			nm = nan
+// mapRange is what the emission map shows: the predicted curve as far as the
+// spectrometer can see it, and every measured point.
+func mapRange(s *live.Snapshot) (x, y chart.Range) {
+	low, high := spectrometerRange(s)
+	for _, c := range s.Curve {
+		if nm := c.Emission.Nanometres(); nm >= low && nm <= high {
+			x.Include(c.Pressure.Bar())
+			y.Include(max(nm-c.Sigma.Nanometres(), low))
+			y.Include(min(nm+c.Sigma.Nanometres(), high))
 		}
-		curve[i], low[i], high[i] = chart.Point{X: bar, Y: nm}, chart.Point{X: bar, Y: nm - sigma}, chart.Point{X: bar, Y: nm + sigma}
-		y.Include(nm - sigma)
-		y.Include(nm + sigma)
 	}
 	for _, p := range s.Points {
 		x.Include(p.Pressure.Bar())
 		y.Include(p.Emission.Nanometres())
 	}
-	measured := show(s, reading.Emission)
-	here := chart.Point{X: s.Core.Bar(), Y: nan}
-	if measured.known {
-		here.Y = s.Latest[reading.Emission].Value * 1e9
-		if s.CoreKnown {
-			y.Include(here.Y)
+	return x, y
+}
+
+// spectrometerRange returns the range in nm that the emission's channel is
+// specified for, without bounds where the bench file gives none.
+func spectrometerRange(s *live.Snapshot) (low, high float64) {
+	low, high = 0, math.Inf(1)
+	if s.Bench == nil {
+		return low, high
+	}
+	for i := range s.Bench.Instrument {
+		for _, ch := range s.Bench.Instrument[i].Channel {
+			if ch.Role != reading.Emission || len(ch.Range) != 2 {
+				continue
+			}
+			a, errA := unit.ParseLength(ch.Range[0])
+			b, errB := unit.ParseLength(ch.Range[1])
+			if errA == nil && errB == nil && a < b {
+				return a.Nanometres(), b.Nanometres()
+			}
 		}
 	}
-	if s.CoreKnown {
+	return low, high
+}
+
+// nearRange is a window of four bar round the present pressure. It moves in
+// whole bars, so that the map does not slide with every reading.
+func nearRange(s *live.Snapshot) (x, y chart.Range) {
+	middle := math.Round(s.Core.Bar())
+	x = chart.Between(middle-2, middle+2)
+	for _, c := range s.Curve {
+		if bar := c.Pressure.Bar(); bar >= x.Lo && bar <= x.Hi && c.Emission > 0 {
+			y.Include(c.Emission.Nanometres())
+		}
+	}
+	for _, p := range s.Points {
+		if bar := p.Pressure.Bar(); bar >= x.Lo && bar <= x.Hi {
+			y.Include(p.Emission.Nanometres())
+		}
+	}
+	return x, y
+}
+
+// drawMap draws the predicted emission over pressure with its band, the
+// emissions measured on the way up and down, and where the bench is now.
+func drawMap(a frame.Area, s *live.Snapshot, near bool) {
+	curve := make([]chart.Point, len(s.Curve))
+	low, high := make([]chart.Point, len(s.Curve)), make([]chart.Point, len(s.Curve))
+	for i, c := range s.Curve {
+		bar, nm, sigma := c.Pressure.Bar(), c.Emission.Nanometres(), c.Sigma.Nanometres()
+		if !(c.Emission > 0) {
+			nm = math.NaN()
+		}
+		curve[i], low[i], high[i] = chart.Point{X: bar, Y: nm}, chart.Point{X: bar, Y: nm - sigma}, chart.Point{X: bar, Y: nm + sigma}
+	}
+	x, y := mapRange(s)
+	if near && s.CoreKnown {
+		x, y = nearRange(s)
+	}
+	measured := show(s, reading.Emission)
+	here := chart.Point{X: s.Core.Bar(), Y: math.NaN()}
+	if measured.known {
+		here.Y = s.Latest[reading.Emission].Value * 1e9
+	}
+	if s.CoreKnown && measured.known {
 		x.Include(here.X)
+		y.Include(here.Y)
 	}
 
 	at := heading(a, "emission", "nm over bar")
@@ -83,6 +135,11 @@ func drawMap(a frame.Area, s *live.Snapshot) {
 		p.Mark(here, '●', frame.Measured)
 	}
 	p.Done()
+	if pane := p.Pane(); s.CoreKnown && here.X < x.Lo {
+		pane.Text(1, 0, "← now at "+pressureText(s.Core), frame.Predicted)
+	} else if s.CoreKnown && here.X > x.Hi {
+		pane.Right(pane.W-1, 0, "now at "+pressureText(s.Core)+" →", frame.Predicted)
+	}
 	drawMapKey(p.Pane(), s)
 }
 

@@ -50,6 +50,9 @@ func drawTitle(a frame.Area, s *live.Snapshot, v view) {
 	right := a.Right(a.W-1, 0, clock, frame.Plain)
 	text, ink := recordText(s)
 	if a.Width(text) > right-3-x {
+		text = strings.Replace(text, " recording ·", "", 1)
+	}
+	if a.Width(text) > right-3-x {
 		text = shortRecord(s)
 	}
 	a.Sub(x, 0, right-2-x, 1).Right(right-2-x, 0, text, ink)
@@ -116,11 +119,15 @@ func drawMode(a frame.Area, s *live.Snapshot) {
 		right = a.Right(right, 0, set, frame.Target) - 2
 	}
 	why := s.Why
+	if s.Mode == live.Ramping {
+		if why == modeText(s.Mode) {
+			why = ""
+		}
+		why = join(why, rampLeft(s))
+	}
 	if why == "" || why == modeText(s.Mode) {
 		why = ""
 		switch {
-		case s.Mode == live.Ramping:
-			why = rampLeft(s)
 		case s.Mode == live.Watching && s.ReadOnly:
 			why = "a second screen: nothing can be commanded from here"
 		case s.Mode == live.Watching:
@@ -134,7 +141,7 @@ func drawMode(a frame.Area, s *live.Snapshot) {
 	if s.SettleIn > 0 && s.Mode != live.Ramping && lagText(s) != "" {
 		why = join(why, "core even in "+spanText(s.SettleIn))
 	}
-	if s.Program.Count > 0 {
+	if s.Program.Count > 1 || s.Program.Paused { // a single phase is told by why
 		why = join(programText(s), why)
 	}
 	a.Sub(0, 0, right, 1).Text(max(x+2, 12), 0, why, frame.Plain)

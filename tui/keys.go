@@ -43,6 +43,7 @@ var bindings = []binding{
 	{key: "c", label: "c", what: "read values at a time", screen: true, press: pressCursor},
 	{key: "f", label: "f", what: "freeze charts, let them go", screen: true, press: pressFreeze},
 	{key: "0", label: "0", what: "charts as at the start", screen: true, press: pressPresent},
+	{key: "z", label: "z", what: "emission map near, whole", screen: true, press: pressNear},
 	{key: "g", label: "g", what: "no charts, for a slow line", screen: true, press: pressPlain},
 	{key: "up", also: []string{"down"}, label: "↑ ↓", what: "a line up, down in a list", screen: true, press: pressLine},
 	{key: "pgup", also: []string{"pgdown"}, label: "PgUp/Dn", what: "a page up, down in a list", screen: true, press: pressLine},

@@ -80,6 +80,11 @@ func pressPlain(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 	return v, nil
 }
 
+func pressNear(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
+	v.near = !v.near
+	return v, nil
+}
+
 // aPage is how many lines a page key moves a list.
 const aPage = 15
 

@@ -8,15 +8,16 @@ import (
 	"barline/tui/frame"
 )
 
-// found returns the lines that hold text, whatever their case.
+// found returns the lines that hold text, whatever their case, or with a minus
+// before it those that do not.
 func found(lines []string, text string) []string {
 	if text == "" {
 		return lines
 	}
-	text = strings.ToLower(text)
+	text, without := strings.CutPrefix(strings.ToLower(text), "-")
 	var kept []string
 	for _, l := range lines {
-		if strings.Contains(strings.ToLower(l), text) {
+		if strings.Contains(strings.ToLower(l), text) != without {
 			kept = append(kept, l)
 		}
 	}
@@ -40,7 +41,7 @@ func drawLog(a frame.Area, s *live.Snapshot, v view) {
 	}
 	lines := found(s.Recent, v.find)
 	if v.find != "" {
-		a.Text(x, 1, fmt.Sprintf("with %q: %d of %d lines, 0 shows all", v.find, len(lines), len(s.Recent)), frame.Caution)
+		a.Text(x, 1, fmt.Sprintf("find %q: %d of %d lines, 0 shows all", v.find, len(lines), len(s.Recent)), frame.Caution)
 	}
 	rows := a.H - 2
 	newest := len(lines) - min(v.scroll, max(0, len(lines)-1))

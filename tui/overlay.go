@@ -82,7 +82,8 @@ func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 		drawScanForm(a, s, v)
 	case findOverlay:
 		b := box(a, "find in the record", 64, 3, frame.Rule)
-		input(b.Sub(0, 1, b.W, 1), v.text)
+		b.Text(0, 0, "a word; with a minus before it, lines without the word", frame.Faint)
+		input(b.Sub(0, 2, b.W, 1), v.text)
 	case greetOverlay:
 		drawGreeting(a, s)
 	case leaveOverlay:
@@ -132,12 +133,11 @@ func drawHelp(a frame.Area) {
 		half.Text(8, y[side], k.what, frame.Plain)
 		y[side]++
 	}
-	note := b.Sub(37, most-3, 39, 3)
+	note := b.Sub(37, most-2, 39, 2)
 	note.Right(7, 0, "HOLD", frame.Hold)
-	note.Text(8, 0, "shuts inlet, pump and vent", frame.Faint)
-	note.Text(8, 1, "and freezes the setpoint", frame.Faint)
-	note.Right(7, 2, "n ! c", frame.Strong)
-	note.Text(8, 2, "on charts: note, alarm, command", frame.Faint)
+	note.Text(8, 0, "shuts valves, freezes setpoint", frame.Faint)
+	note.Right(7, 1, "n ! c", frame.Strong)
+	note.Text(8, 1, "on charts: note, alarm, command", frame.Faint)
 	for i, m := range legend {
 		b.Right(7, most+i, m.mark, m.ink)
 		b.Text(8, most+i, m.text, frame.Faint)

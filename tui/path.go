@@ -33,9 +33,9 @@ func drawPath(a frame.Area, s *live.Snapshot) {
 	}
 	out := show(s, reading.Emission)
 
-	left := 12 // columns before cell A
-	right := w - 14
-	cell := 18 // from bracket to bracket
+	left := 11 // columns before cell A
+	right := w - 12
+	cell := 19 // from bracket to bracket: "cell A 10.422 bar"
 	ax, bx := left, right-cell
 
 	// The light.
@@ -46,7 +46,7 @@ func drawPath(a frame.Area, s *live.Snapshot) {
 
 	drawCell(a.Sub(ax, 0, cell, 2), "A", show(s, reading.CellAPressure))
 	drawCell(a.Sub(bx, 0, cell, 2), "B", show(s, reading.CellBPressure))
-	a.Sub(right+3, 1, w-right-3, 1).Text(0, 0, strings.Replace(out.mark, "silent ", "", 1), statusInk(out))
+	a.Sub(right+3, 1, w-right-3, 1).Text(0, 0, out.brief(), statusInk(out))
 
 	// The fibre between them.
 	fibre := a.Sub(ax+cell, 0, bx-ax-cell, 2)

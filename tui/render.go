@@ -70,7 +70,7 @@ func draw(s *live.Snapshot, v view, w, h int, style Style) *frame.Frame {
 	body := a.Sub(0, headHeight, w, h-headHeight-1)
 	switch v.page {
 	case Scan:
-		drawScan(body, s)
+		drawScan(body, s, v)
 	case Drift:
 		drawDrift(body, s, v)
 	case Log:

@@ -165,7 +165,7 @@ func start(t *testing.T, src Source) (terminal *os.File, out *screenful, done ch
 func TestRunFromArmingToLeaving(t *testing.T) {
 	src := newFake(tuitest.Calm())
 	terminal, out, done := start(t, src)
-	out.wait(t, "cell A 9.003 bar")
+	out.wait(t, "9.003 bar")
 
 	type_ := func(s string) {
 		if _, err := terminal.WriteString(s); err != nil {
@@ -228,7 +228,7 @@ func (e *explosive) Snapshot() *live.Snapshot {
 func TestPanicGivesTheTerminalBackAndHolds(t *testing.T) {
 	src := &explosive{fake: newFake(tuitest.Calm())}
 	_, out, done := start(t, src)
-	out.wait(t, "cell A 9.003 bar")
+	out.wait(t, "9.003 bar")
 	src.now.Store(true)
 	src.set(tuitest.Calm())
 	select {

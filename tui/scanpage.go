@@ -13,12 +13,12 @@ import (
 
 // drawScan shows how far a program is, the emission map, how far each point is
 // from the prediction, and the rows that the record keeps.
-func drawScan(a frame.Area, s *live.Snapshot) {
+func drawScan(a frame.Area, s *live.Snapshot, v view) {
 	drawProgress(a.Sub(0, 0, a.W, 1), s)
 	table := max(5, a.H*2/5)
 	charts := a.Sub(0, 2, a.W, a.H-table-2)
 	left := charts.W / 2
-	drawMap(charts.Sub(0, 0, left, charts.H), s)
+	drawMap(charts.Sub(0, 0, left, charts.H), s, v.near)
 	drawApart(charts.Sub(left+2, 0, charts.W-left-2, charts.H), s)
 	drawRows(a.Sub(0, a.H-table, a.W, table), s)
 }

@@ -15,6 +15,7 @@ type view struct {
 	frozen  *frozen
 	cursor  time.Duration // bench Mono that is read out; 0: none
 	plain   bool          // no charts, for slow lines
+	near    bool          // the emission map shows what is near
 	scroll  int           // lines of the record back from the newest
 	find    string        // only lines of the record with this
 	pick    int           // alarm chosen in the list

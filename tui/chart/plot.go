@@ -298,12 +298,12 @@ func (p *Plot) Done() {
 		return
 	}
 	p.dots.flush()
-	for _, l := range p.labels {
-		p.pane.Text(1, l.row, " "+l.text+" ", l.ink)
-	}
 	for _, m := range p.marks {
 		if p.On(m.at) {
 			p.pane.Set(p.col(m.at.X), p.row(m.at.Y), m.r, m.ink)
 		}
+	}
+	for _, l := range p.labels {
+		p.pane.Text(1, l.row, " "+l.text+" ", l.ink)
 	}
 }

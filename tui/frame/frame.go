@@ -1,7 +1,7 @@
 package frame
 
 import (
-	"github.com/mattn/go-runewidth"
+	"github.com/charmbracelet/x/ansi"
 )
 
 // Cell is one character position. A Rune of 0 is the right half of a wide
@@ -152,10 +152,8 @@ func runeWidth(r rune) int {
 	if r < 0x20 || r == 0x7f {
 		return 1 // drawn as a dot
 	}
-	return widths.RuneWidth(r)
+	return ansi.StringWidth(string(r)) // as the terminal library counts
 }
-
-var widths = &runewidth.Condition{EastAsianWidth: false, StrictEmojiNeutral: true}
 
 func width(s string) int {
 	n := 0

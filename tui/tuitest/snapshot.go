@@ -51,7 +51,7 @@ func Heron() *bench.Bench {
 				{Name: "setpoint", Role: reading.Setpoint, Write: "SOUR:PRES:LEV {value}"}, {Name: "controller", Role: reading.ControllerSensor},
 			}},
 			{Name: "spectrometer", Channel: []bench.Channel{
-				{Name: "emission", Role: reading.Emission}, {Name: "width", Role: reading.EmissionWidth}, {Name: "strength", Role: reading.EmissionStrength},
+				{Name: "emission", Role: reading.Emission, Range: []string{"190 nm", "400 nm"}}, {Name: "width", Role: reading.EmissionWidth}, {Name: "strength", Role: reading.EmissionStrength},
 			}},
 		},
 		Emission: bench.Emission{Answer: "estimate", Reports: "centroid", Wavelengths: "vacuum"},

@@ -241,7 +241,7 @@ func (l *Loop) handle(e live.Event) {
 
 func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) {
 	// A refused record shows in Health, which the next tick brings to the core.
-	if _, err := l.opt.Book.Append(at, string(kind), data); err == nil && kind != live.KindReading {
+	if _, err := l.opt.Book.Append(at, string(kind), data); err == nil && kind != live.KindReading && kind != live.KindPrediction {
 		l.history.line(at, kind, data)
 	}
 }
