@@ -12,8 +12,8 @@ type Contribution struct {
 	Name   string     // such as "pressure" or "index source"
 	Input  string     // standard uncertainty of the input, with its unit; empty for the spread between models
 	Effect unit.Metre // on the emission, one standard uncertainty, never negative
-	// Rough says that the slope behind it is the estimate's, which is not to be
-	// leaned on.
+	// Rough says that the slope behind it is the estimate's, or that no
+	// full-field run has measured a part of it yet: not to be leaned on.
 	Rough bool
 }
 
@@ -29,15 +29,19 @@ func (p *Predictor) Breakdown(pr Prediction) []Contribution {
 		q := Quantity(i)
 		list = append(list, Contribution{
 			Name: q.String(), Input: q.text(e.known[i]),
-			Effect: unit.Metre(math.Abs(e.slope[i] * e.known[i])), Rough: q.throughPulse(),
+			Effect: unit.Metre(math.Abs(e.slope[i] * e.known[i])), Rough: e.rough(q, p),
 		})
 	}
 	list = append(list, Contribution{Name: "index source", Effect: unit.Metre(e.index)})
 	name := "nonlinear term of the estimate"
-	if p.setup.Answer == Linear {
+	switch p.setup.Answer {
+	case Linear:
 		name = "nonlinear term left out"
+	case Anchored:
+		name = "interpolation between full-field runs"
 	}
-	list = append(list, Contribution{Name: name, Effect: unit.Metre(e.rest)})
+	list = append(list, Contribution{Name: name, Effect: unit.Metre(e.rest)},
+		Contribution{Name: "ionisation model", Effect: unit.Metre(e.plasma)})
 	kept := list[:0]
 	for _, c := range list {
 		if c.Effect > 0 {
@@ -48,8 +52,13 @@ func (p *Predictor) Breakdown(pr Prediction) []Contribution {
 	return kept
 }
 
-// throughPulse reports whether the quantity acts through the nonlinear term.
-func (q Quantity) throughPulse() bool { return q >= PulseEnergy }
+// rough reports whether the slope over q is not to be leaned on.
+func (e *effects) rough(q Quantity, p *Predictor) bool {
+	if p.nodes != nil {
+		return e.unknown[q]
+	}
+	return q >= PulseEnergy // acts through the nonlinear term
+}
 
 // Steady is how steady one quantity must be held.
 type Steady struct {
@@ -60,9 +69,9 @@ type Steady struct {
 }
 
 // Steadiness answers how steady each quantity must be, alone, for the emission
-// to stay within plus or minus tolerance. Quantities that act through the
-// nonlinear term are left out: the slopes of a linear or estimated answer over
-// them are not to be leaned on.
+// to stay within plus or minus tolerance. Quantities whose slope is rough are
+// left out: those that act through the nonlinear term of a linear or estimated
+// answer, and those that no full-field run has moved yet.
 func (p *Predictor) Steadiness(pr Prediction, tolerance unit.Metre) []Steady {
 	e, ok := p.effectsOf(pr)
 	if !ok {
@@ -71,7 +80,7 @@ func (p *Predictor) Steadiness(pr Prediction, tolerance unit.Metre) []Steady {
 	var list []Steady
 	for i := range QuantityCount {
 		q := Quantity(i)
-		if q.throughPulse() || e.slope[i] == 0 {
+		if e.rough(q, p) || e.slope[i] == 0 {
 			continue
 		}
 		within := math.Abs(float64(tolerance) / e.slope[i])
@@ -91,11 +100,18 @@ func (p *Predictor) effectsOf(pr Prediction) (e effects, ok bool) {
 		return e, false
 	}
 	out.Emission = pr.Emission
-	omega := 2 * math.Pi * c / float64(pr.Emission)
-	at := m.at(omega)
+	f := found{root: 2 * math.Pi * c / float64(pr.Emission)}
+	if p.nodes != nil {
+		p.answerAnchored(&m, &f, &out)
+		if f.root == 0 {
+			return e, false
+		}
+		out.Emission = wavelength(f.root)
+	}
+	at := m.at(f.root)
 	if !(at.slope > 0) {
 		return e, false
 	}
-	p.weigh(&m, omega, at, &out, &e)
+	p.weigh(&m, &f, at, &out, &e)
 	return e, true
 }

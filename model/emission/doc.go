@@ -19,5 +19,7 @@
 // such root: it says why.
 //
 // A linear or estimated answer is a start value. Its slopes over energy and
-// pulse are not to be leaned on, and Steadiness leaves them out.
+// pulse are not to be leaned on, and Steadiness leaves them out. The anchored
+// answer takes κ from full-field runs of the same bench, which package anchor
+// interpolates: Predictor.Anchored makes the predictor for it.
 package emission

@@ -14,8 +14,9 @@ type mismatch struct {
 	guide fibre.Guide
 	omega float64       // pump, rad/s
 	pump  taylor.Number // n_eff−1 at the pump
-	// κ = strength·(ω t0)^(2/3); strength in 1/m. Zero: linear.
-	strength, t0 float64
+	// κ = fixed + strength·(ωt₀)^(2/3), in 1/m: fixed for the anchored answer,
+	// strength for the estimate, both zero for the linear one.
+	fixed, strength, t0 float64
 }
 
 // at returns Δβ and its derivative with respect to ω, β₂ and β₃ at omega in
@@ -41,9 +42,11 @@ func (m *mismatch) at(omega float64) point {
 	// Taylor coefficients.
 	p.beta2 = 2 * (n.C1 + n.C2) / (c * omega)
 	p.beta3 = 6 * (n.C2 + n.C3) / (c * omega * omega)
+	p.kappa = m.fixed
 	if m.strength != 0 {
-		p.kappa = m.strength * math.Cbrt(omega*m.t0*omega*m.t0)
-		p.kappaRise = 2.0 / 3 * p.kappa / omega
+		k := m.strength * math.Cbrt(omega*m.t0*omega*m.t0)
+		p.kappa += k
+		p.kappaRise = 2.0 / 3 * k / omega
 	}
 	return p
 }

@@ -219,6 +219,7 @@ func TestVerdicts(t *testing.T) {
 	}{
 		{"dispersion at the pump", bare("argon", "", 150e-6), at(3, 293, 1)},
 		{"soliton order", heron(Estimate), at(30, 293, 12)},
+		{"least soliton order", heron(Estimate), at(9, 293, 0.01)},
 		{"length to compression", with(func(s *Setup) { s.Fibre.Length = 0.02 }), at(9, 293, 1.3)},
 		{"ionised fraction (rough)", heron(Estimate), at(9, 293, 2)},
 		{"peak power", bare("xenon", "", 50e-6), at(20, 293, 30)},

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"barline/model/anchor"
 	"barline/model/fibre"
 	"barline/model/gas"
 	"barline/model/ionise"
@@ -22,6 +23,8 @@ type Predictor struct {
 	electron *ionise.Table
 	spread   []*gas.Medium // the other index sources of the same gas
 	slopes   launchSlopes
+
+	nodes *anchor.Map // full-field runs of this bench; nil but for Anchored
 
 	iso  *gas.Isotherm
 	warm *gas.Isotherm // a few kelvin off, for the slope over temperature
@@ -49,7 +52,7 @@ func (s *Setup) check() (*gas.Medium, *fibre.Fibre, error) {
 	switch s.Answer {
 	case Linear, Estimate:
 	case Anchored:
-		return nil, nil, fmt.Errorf("emission %q needs full-field nodes of this bench: expected linear or estimate until they stand", s.Answer)
+		return nil, nil, fmt.Errorf("emission %q needs full-field nodes of this bench: expected linear or estimate until they stand, then Predictor.Anchored", s.Answer)
 	default:
 		return nil, nil, fmt.Errorf("emission answer %d is not known", s.Answer)
 	}
@@ -134,6 +137,7 @@ const (
 	whyNormal  = "the pump meets normal dispersion: no soliton forms, and nothing is emitted"
 	whyNoZero  = "no zero-dispersion wavelength on the short-wave side of the pump"
 	whyNoMatch = "no phase matching above 1.6 times the pump frequency, inside the transmission bands and the range of the index"
+	whyNoNode  = "no full-field run near this density and pulse energy emits"
 	whyVacuum  = "the fibre is empty"
 )
 
@@ -150,16 +154,17 @@ func (p *Predictor) Predict(in Input, before *Prediction) Prediction {
 	if !ok {
 		return out
 	}
+	near := before != nil && before.Valid && before.Answer == out.Answer &&
+		math.Abs(float64(before.Density-out.Density)) <= sweep*float64(out.Density)
 	var f found
-	tracked := false
-	if before != nil && before.Valid && before.Answer == out.Answer && before.Emission > 0 &&
-		math.Abs(float64(before.Density-out.Density)) <= sweep*float64(out.Density) {
-		f, tracked = m.track(before)
-	}
-	if !tracked {
+	if tracked, ok := p.track(&m, before, near); ok {
+		f = tracked
+	} else {
 		var bands [fibre.MaxBands]fibre.Band
-		n := m.guide.Bands(&bands)
-		f = m.search(bands[:n], places)
+		f = m.search(bands[:m.guide.Bands(&bands)], places)
+	}
+	if p.nodes != nil {
+		p.answerAnchored(&m, &f, &out)
 	}
 	out.ZeroDispersionCount = f.count
 	for i := range f.count {
@@ -168,6 +173,20 @@ func (p *Predictor) Predict(in Input, before *Prediction) Prediction {
 	p.emit(&m, &f, &out)
 	p.judge(&m, &out)
 	return out
+}
+
+// track follows what the prediction before had found, if it was near.
+func (p *Predictor) track(m *mismatch, before *Prediction, near bool) (f found, ok bool) {
+	switch {
+	case !near:
+		return f, false
+	case p.nodes != nil: // the nodes say where the emission is
+		ok = m.trackZeros(before, &f)
+		return f, ok && f.count > 0
+	case before.Emission == 0:
+		return f, false
+	}
+	return m.track(before)
 }
 
 // emit writes down the root that was found, or why there is none.
@@ -179,6 +198,8 @@ func (p *Predictor) emit(m *mismatch, f *found, out *Prediction) {
 		out.Why = whyNormal
 	case p.setup.Answer != Linear && out.Input.Energy == 0:
 		out.Why = whyNoLight
+	case f.root == 0 && p.nodes != nil:
+		out.Why = whyNoNode
 	case f.root == 0 && !m.hasZeroAbovePump(f):
 		out.Why = whyNoZero
 	case f.root == 0:
@@ -187,12 +208,14 @@ func (p *Predictor) emit(m *mismatch, f *found, out *Prediction) {
 		at := m.at(f.root)
 		out.Emission = wavelength(f.root)
 		out.Kappa = at.kappa
-		out.Branches[0] = Branch{Emission: out.Emission}
-		out.BranchCount = 1
+		if p.nodes == nil {
+			out.Branches[0] = Branch{Emission: out.Emission}
+			out.BranchCount = 1
+		}
 		checked := p.medium.Checked()
 		out.Extrapolated = !checked.Holds(out.Emission) || !checked.Holds(p.setup.Pulse.Wavelength)
 		var e effects
-		p.weigh(m, f.root, at, out, &e)
+		p.weigh(m, f, at, out, &e)
 		out.Sigma = unit.Metre(e.sigma(&p.setup.Uncertainty))
 	}
 }
@@ -244,7 +267,7 @@ func (p *Predictor) prepare(in Input, out *Prediction) (m mismatch, ok bool) {
 	out.DispersionLength = unit.Metre(t0 * t0 / math.Abs(out.Beta2))
 	nonlinear := out.Gamma * float64(out.PeakPower) // 1/L_NL
 	out.SolitonOrder = math.Sqrt(nonlinear * float64(out.DispersionLength))
-	if nonlinear > 0 {
+	if out.SolitonOrder > 0.01 { // below it there is nothing to speak of
 		out.FissionLength = out.DispersionLength / unit.Metre(out.SolitonOrder)
 	}
 	out.IonisedFraction = p.ionised(out)

@@ -3,6 +3,7 @@ package emission
 import (
 	"math"
 
+	"barline/model/anchor"
 	"barline/model/fibre"
 	"barline/model/unit"
 )
@@ -12,6 +13,8 @@ type found struct {
 	zeros [MaxZeroDispersion]float64 // of β₂, descending in ω
 	count int
 	root  float64 // phase matching; 0 where there is none
+	// branch is where the root was taken from, for the anchored answer.
+	branch anchor.Point
 }
 
 // samples per band of a cold search. They crowd towards the ends of a band,
@@ -142,18 +145,25 @@ func (m *mismatch) follow(from float64, g goal, reach float64) (float64, bool) {
 	return 0, false
 }
 
-// track follows everything that the prediction before had found. It gives up,
-// for a cold search, where anything was lost.
-func (m *mismatch) track(before *Prediction) (f found, ok bool) {
-	const reach = 0.03
+// reach is how far, relative, a root may move between two predictions.
+const reach = 0.03
+
+// trackZeros follows the zeros of β₂ of the prediction before.
+func (m *mismatch) trackZeros(before *Prediction, f *found) (ok bool) {
 	f.count = before.ZeroDispersionCount
 	for i := range f.count {
 		f.zeros[i], ok = m.follow(fibre.Frequency(before.ZeroDispersion[i]), zeroOfBeta2, reach)
 		if !ok || i > 0 && !(f.zeros[i] < f.zeros[i-1]) {
-			return found{}, false
+			return false
 		}
 	}
-	if before.Emission == 0 {
+	return true
+}
+
+// track follows everything that the prediction before had found. It gives up,
+// for a cold search, where anything was lost.
+func (m *mismatch) track(before *Prediction) (f found, ok bool) {
+	if !m.trackZeros(before, &f) {
 		return found{}, false
 	}
 	f.root, ok = m.follow(fibre.Frequency(before.Emission), phaseMatch, reach)

@@ -17,8 +17,11 @@ type effects struct {
 	slope  [QuantityCount]float64 // m per unit of the quantity
 	known  [QuantityCount]float64 // standard uncertainty of each quantity
 	index  float64                // spread between index sources, m
-	rest   float64                // the nonlinear term, m
+	rest   float64                // the nonlinear term, or the interpolation between nodes, m
+	plasma float64                // the ionisation model of the nodes, m
 	agreed int                    // index sources compared
+	// unknown are quantities whose part in κ no run has measured yet.
+	unknown [QuantityCount]bool
 }
 
 // launchSlopes says how κ of the estimate follows the pulse.
@@ -50,7 +53,8 @@ func launchSlopesOf(p pulse.Pulse) launchSlopes {
 // with κ held: a slope that the estimate's κ would add is known to be wrong.
 // What moves κ is weighed by the estimate all the same, as the best guess there
 // is, but Steadiness does not offer it.
-func (p *Predictor) weigh(m *mismatch, omega float64, at point, out *Prediction, e *effects) {
+func (p *Predictor) weigh(m *mismatch, f *found, at point, out *Prediction, e *effects) {
+	omega := f.root
 	// At Δβ(ω, x) = κ: dω = −(∂Δβ/∂x)/(∂Δβ/∂ω) dx and dλ = −(λ/ω) dω.
 	turn := float64(wavelength(omega)) / omega / at.slope
 	base := m.delta(omega)
@@ -84,7 +88,12 @@ func (p *Predictor) weigh(m *mismatch, omega float64, at point, out *Prediction,
 	pump := float64(p.setup.Pulse.Wavelength)
 	e.slope[PumpWavelength] = turn * out.Beta2 * (omega - m.omega) * m.omega / pump
 
-	p.weighPulse(at, turn, e)
+	if p.nodes != nil {
+		p.weighNodes(m, f, turn, out, e)
+	} else {
+		p.weighPulse(at, turn, e)
+		p.weighTerm(omega, turn, out, e)
+	}
 	p.weighIndex(m, omega, base, turn, out, e)
 }
 
@@ -107,8 +116,8 @@ const (
 	ionisedSpread  = 25e-9
 )
 
-// weighIndex fills in the spreads between models: the index sources that were
-// checked at both wavelengths, and the nonlinear term.
+// weighIndex fills in the spread between the index sources that were checked at
+// both wavelengths.
 func (p *Predictor) weighIndex(m *mismatch, omega, base, turn float64, out *Prediction, e *effects) {
 	sum := 0.0
 	for _, medium := range p.spread {
@@ -125,6 +134,10 @@ func (p *Predictor) weighIndex(m *mismatch, omega, base, turn float64, out *Pred
 	if e.agreed > 0 {
 		e.index = math.Sqrt(sum / float64(e.agreed))
 	}
+}
+
+// weighTerm fills in how far the nonlinear term itself is to be trusted.
+func (p *Predictor) weighTerm(omega, turn float64, out *Prediction, e *effects) {
 	e.rest = estimateSpread
 	if out.IonisedFraction > ionisedBound {
 		e.rest = ionisedSpread
@@ -138,7 +151,7 @@ func (p *Predictor) weighIndex(m *mismatch, omega, base, turn float64, out *Pred
 
 // sigma combines all effects, covariance included.
 func (e *effects) sigma(u *Uncertainty) float64 {
-	sum := e.index*e.index + e.rest*e.rest
+	sum := e.index*e.index + e.rest*e.rest + e.plasma*e.plasma
 	for i := range QuantityCount {
 		a := e.slope[i] * e.known[i]
 		sum += a * a

@@ -39,13 +39,20 @@ func (p *Predictor) judge(m *mismatch, out *Prediction) {
 		Name: "soliton order", Value: out.SolitonOrder, Bound: solitonBound, OK: out.SolitonOrder <= solitonBound,
 		Consequence: "the pulse breaks up from noise: an unstable spectrum",
 	})
-	if out.SolitonOrder > 0 && out.Beta2 < 0 {
+	switch {
+	case !(out.Beta2 < 0):
+	case out.SolitonOrder > 1:
 		// Compression near L_fiss(0.58 + 1.55/N), this project's own fit to
 		// full-field runs.
 		at := float64(out.FissionLength) * (0.58 + 1.55/out.SolitonOrder)
 		add(Verdict{
-			Name: "length to compression", Value: at, Bound: length, Unit: "m", OK: at <= length && out.SolitonOrder > 1,
+			Name: "length to compression", Value: at, Bound: length, Unit: "m", OK: at <= length,
 			Consequence: "the pulse leaves the fibre before it is compressed: little or no emission",
+		})
+	default:
+		add(Verdict{
+			Name: "least soliton order", Value: out.SolitonOrder, Bound: 1, OK: false,
+			Consequence: "too weak a pulse: it spreads instead of compressing, and nothing is emitted",
 		})
 	}
 	add(Verdict{
@@ -127,11 +134,12 @@ func (p *Predictor) judgeEmission(out *Prediction, add func(Verdict)) {
 //
 // Source: G. Fibich, A. L. Gaeta, Opt. Lett. 25, 335 (2000) (from memory).
 func criticalPower(lambda unit.Metre, out *Prediction) float64 {
+	const never = 1e15
 	if out.N2 == 0 {
-		return 1e15 // an empty fibre: never
+		return never // an empty fibre
 	}
 	l := float64(lambda)
-	return 1.86225 * l * l / (4 * math.Pi * (1 + out.IndexMinusOne) * float64(out.N2))
+	return math.Min(never, 1.86225*l*l/(4*math.Pi*(1+out.IndexMinusOne)*float64(out.N2)))
 }
 
 // resonanceDistance returns the relative distance in wavelength of pump and
