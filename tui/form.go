@@ -24,11 +24,29 @@ func (v view) typed(key string, s *live.Snapshot) (view, []live.Intent) {
 		return v, nil
 	case "enter":
 		return v.enter(s)
+	case "up", "down":
+		return v.recalled(key), nil
 	}
 	if r := []rune(key); len(r) == 1 && unicode.IsPrint(r[0]) && len([]rune(v.text)) < maxNote {
 		v.text += key
 	}
 	return v, nil
+}
+
+// recalled puts an earlier entry of the same form into it.
+func (v view) recalled(key string) view {
+	n := v.recall + 1
+	if key == "down" {
+		n = v.recall - 1
+	}
+	if n <= 0 {
+		v.recall, v.text = 0, ""
+		return v
+	}
+	if text, ok := v.past.of(v.overlay, n); ok {
+		v.recall, v.text = n, text
+	}
+	return v
 }
 
 // enter finishes a form.
@@ -40,7 +58,7 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 			v.message = "type " + armWord + ", or Esc"
 			return v, nil
 		}
-		v.overlay, v.text = noOverlay, ""
+		v = v.open(noOverlay)
 		return v, []live.Intent{live.Arm{}}
 	case setpointOverlay:
 		target, err := parseTarget(s, text)
@@ -49,11 +67,12 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 			return v, nil
 		}
 		if !armed(s) { // it may have lapsed while typing
-			v.overlay, v.text = noOverlay, ""
+			v = v.open(noOverlay)
 			v.message = "no longer armed: press a, then s"
 			return v, nil
 		}
-		v.overlay, v.text = noOverlay, ""
+		v.past = v.past.with(entry{setpointOverlay, text})
+		v = v.open(noOverlay)
 		return v, []live.Intent{live.GoTo{Target: target}}
 	case scanOverlay:
 		program, err := parseScan(s, text)
@@ -61,18 +80,19 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 			v.message = err.Error()
 			return v, nil
 		}
-		v.overlay, v.text = noOverlay, ""
+		v = v.open(noOverlay)
 		if !armed(s) {
 			v.message = "no longer armed: press a, then r"
 			return v, nil
 		}
+		v.past = v.past.with(entry{scanOverlay, text})
 		v.page = Scan
 		return v, []live.Intent{live.Run{Program: program}}
 	case findOverlay:
 		v.overlay, v.text, v.find, v.scroll = noOverlay, "", text, 0
 		return v, nil
 	}
-	v.overlay, v.text = noOverlay, ""
+	v = v.open(noOverlay)
 	if text == "" {
 		return v, nil
 	}

@@ -327,7 +327,11 @@ func drawSmall(a frame.Area, s *live.Snapshot, v view) {
 	}
 	p, mark, ink := mainPressure(s)
 	line(p+" "+mark, ink)
-	line(strings.ToUpper(modeText(s.Mode))+" · Tab: HOLD", modeInk(s))
+	key := " · Tab: HOLD"
+	if s.ReadOnly {
+		key = " · HOLD at the first screen"
+	}
+	line(strings.ToUpper(modeText(s.Mode))+key, modeInk(s))
 	if v.late > 0 {
 		line("✕ OLD: silent "+spanText(v.late), frame.Banner)
 	}

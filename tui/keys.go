@@ -45,7 +45,7 @@ var bindings = []binding{
 	{key: "0", label: "0", what: "charts as at the start", screen: true, press: pressPresent},
 	{key: "z", label: "z", what: "emission map near, whole", screen: true, press: pressNear},
 	{key: "g", label: "g", what: "no charts, for a slow line", screen: true, press: pressPlain},
-	{key: "up", also: []string{"down"}, label: "↑ ↓", what: "a line up, down in a list", screen: true, press: pressLine},
+	{key: "up", also: []string{"down"}, label: "↑ ↓", what: "a line up, down; earlier input", screen: true, press: pressLine},
 	{key: "pgup", also: []string{"pgdown"}, label: "PgUp/Dn", what: "a page up, down in a list", screen: true, press: pressLine},
 	{key: "/", label: "/", what: "find in the record", screen: true, press: pressFind},
 	{key: "?", label: "?", what: "this list", screen: true, press: pressHelp},
@@ -109,7 +109,7 @@ func contains(list []string, s string) bool {
 }
 
 func pressHold(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
-	v.overlay, v.text = noOverlay, ""
+	v = v.open(noOverlay)
 	if s.ReadOnly {
 		v.message = "this is a second screen: HOLD must be pressed at the first"
 		return v, nil
@@ -127,7 +127,7 @@ func pressArm(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 		v.message = "armed already; d disarms"
 		return v, nil
 	}
-	v.overlay, v.text = armOverlay, ""
+	v = v.open(armOverlay)
 	return v, nil
 }
 
@@ -144,7 +144,7 @@ func pressSetpoint(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 		v.message = "not armed: press a first"
 		return v, nil
 	}
-	v.overlay, v.text = setpointOverlay, ""
+	v = v.open(setpointOverlay)
 	return v, nil
 }
 
@@ -162,7 +162,7 @@ func pressNote(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 		v.message = "this is a second screen: notes are written at the first"
 		return v, nil
 	}
-	v.overlay, v.text = noteOverlay, ""
+	v = v.open(noteOverlay)
 	return v, nil
 }
 
@@ -179,7 +179,7 @@ func (v view) toggle(o overlay) view {
 }
 
 func pressClose(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
-	v.overlay, v.text = noOverlay, ""
+	v = v.open(noOverlay)
 	return v, nil
 }
 

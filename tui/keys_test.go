@@ -141,6 +141,32 @@ func TestSetpointPrompt(t *testing.T) {
 	}
 }
 
+func TestFormsRecallWhatWasTyped(t *testing.T) {
+	s := tuitest.Filling()
+	v := view{}
+	for _, text := range []string{"9 bar", "10 bar", "9 bar"} {
+		v, _ = v.press("s", s)
+		for _, r := range text {
+			v, _ = v.press(string(r), s)
+		}
+		v, _ = v.press("enter", s)
+	}
+	v, _ = v.press("s", s)
+	for _, c := range []struct{ key, want string }{
+		{"up", "9 bar"}, {"up", "10 bar"}, {"up", "10 bar"}, {"down", "9 bar"}, {"down", ""}, {"down", ""},
+	} {
+		if v, _ = v.press(c.key, s); v.text != c.want {
+			t.Errorf("after %s the form holds %q, want %q", c.key, v.text, c.want)
+		}
+	}
+	if v, _ = (view{past: v.past}).press("r", s); v.text != "" {
+		t.Errorf("the form of scans begins with %q", v.text)
+	}
+	if v, _ = v.press("up", s); v.text != "" {
+		t.Errorf("the form of scans recalls %q, which was typed into another", v.text)
+	}
+}
+
 func TestScanForm(t *testing.T) {
 	s := tuitest.Filling()
 	for _, c := range []struct {

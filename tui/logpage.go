@@ -35,7 +35,7 @@ func drawLog(a frame.Area, s *live.Snapshot, v view) {
 		}
 		x = a.Text(x, 0, text, ink) + 3
 	}
-	x = heading(a.Sub(0, 1, a.W, 1), "record", "")
+	x = heading(a.Sub(0, 1, a.W, 1), "record", "times in UTC")
 	if s.Folder != "" {
 		x = a.Text(x, 1, s.Folder, frame.Faint) + 2
 	}

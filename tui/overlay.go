@@ -18,7 +18,12 @@ import (
 const armWord = "arm"
 
 func drawFoot(a frame.Area, s *live.Snapshot, v view) {
-	x := a.Text(0, 0, " Tab HOLD ", frame.Hold) + 2
+	x := 1
+	if s.ReadOnly {
+		x = a.Text(x, 0, "second screen: HOLD at the first", frame.Caution) + 2
+	} else {
+		x = a.Text(0, 0, " Tab HOLD ", frame.Hold) + 2
+	}
 	if armed(s) {
 		at := a.Right(a.W-1, 0, "armed "+spanText(s.ArmedUntil-s.Now.Mono), frame.Caution)
 		a = a.Sub(0, 0, at-2, 1)

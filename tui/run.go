@@ -42,6 +42,9 @@ type Options struct {
 const (
 	// redrawEvery is the shortest time between two frames.
 	redrawEvery = 33 * time.Millisecond
+	// flushesPerSecond is how often bubbletea looks for a new frame to send: a
+	// frame must not wait for it as long as it waited to be drawn.
+	flushesPerSecond = 120
 	// plainEvery is that without charts, which is for slow lines.
 	plainEvery = 2 * time.Second
 	// lateAfter is how long the bench may say nothing before the screen says
@@ -64,7 +67,7 @@ func Run(ctx context.Context, src Source, o Options) error {
 		m.v.overlay = greetOverlay
 	}
 	options := []tea.ProgramOption{
-		tea.WithContext(inner), tea.WithAltScreen(), tea.WithoutSignalHandler(), tea.WithFPS(30), tea.WithOutput(o.Out),
+		tea.WithContext(inner), tea.WithAltScreen(), tea.WithoutSignalHandler(), tea.WithFPS(flushesPerSecond), tea.WithOutput(o.Out),
 	}
 	if o.In != nil {
 		options = append(options, tea.WithInput(o.In))

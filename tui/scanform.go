@@ -16,7 +16,7 @@ func pressScan(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 		v.message = "not armed: press a first"
 		return v, nil
 	}
-	v.overlay, v.text = scanOverlay, ""
+	v = v.open(scanOverlay)
 	return v, nil
 }
 

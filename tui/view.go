@@ -21,6 +21,8 @@ type view struct {
 	pick    int           // alarm chosen in the list
 	overlay overlay
 	text    string // what has been typed into the form
+	past    past   // what was typed into forms before
+	recall  int    // how far back in past the form is; 0: what is typed
 	message string // why the last key did nothing, or what it did
 	late    time.Duration
 }
@@ -63,6 +65,45 @@ const usualSpan = 2
 
 // span is the stretch that the time axes show.
 func (v view) span() time.Duration { return spans[min(max(usualSpan+v.zoom, 0), len(spans)-1)] }
+
+// open shows an overlay, its form empty; noOverlay closes what is open.
+func (v view) open(o overlay) view {
+	v.overlay, v.text, v.recall = o, "", 0
+	return v
+}
+
+// past are the newest entries of the forms that move gas, newest first.
+type past [8]entry
+
+type entry struct {
+	form overlay
+	text string
+}
+
+// with returns p with one more entry; the same one is not kept twice.
+func (p past) with(e entry) past {
+	kept := past{e}
+	n := 1
+	for _, old := range p {
+		if old != e && old.text != "" && n < len(kept) {
+			kept[n] = old
+			n++
+		}
+	}
+	return kept
+}
+
+// of returns the n-th newest entry of a form, counted from 1.
+func (p past) of(form overlay, n int) (string, bool) {
+	for _, e := range p {
+		if e.form == form && e.text != "" {
+			if n--; n == 0 {
+				return e.text, true
+			}
+		}
+	}
+	return "", false
+}
 
 // freeze keeps the charts of s.
 func freeze(s *live.Snapshot) *frozen { return &frozen{snapshot: s, at: s.Now.Mono} }
