@@ -27,9 +27,9 @@ type Aim struct {
 
 const (
 	forecastNodes = 97
-	// setpointPause is how long a setpoint may stand between two steps of a
-	// ramp: controllers are read a few times a second.
-	setpointPause = 500 * time.Millisecond
+	// blockSpan is how long readings are taken together, in s: a gauge's noise
+	// drowns the rate of single ones.
+	blockSpan = 0.45
 )
 
 // Forecast says how long a move still takes: the model gives the shape of the
@@ -47,26 +47,35 @@ type Forecast struct {
 	rate   [forecastNodes]float64 // Pa/s of the model there
 	core   float64                // s, time constant of the core at the target
 
-	seen, start  time.Duration
-	changed      time.Duration // when the setpoint last moved
-	started      bool
-	p, setpoint  float64
-	k, lambda    float64
-	follow       float64 // s, λ that counts where the valve decides
-	moved, model float64 // Pa, over the slow window: seen, and by the model
-	quick, ramp  float64 // Pa over the quick window: pressure, setpoint
-	span         float64 // s, of the quick window
-	closed, gap  float64 // Pa moved while following, Pa s behind the setpoint
-	kept         float64 // s for which the pressure has kept up with a ramp
-	limited      bool    // the setpoint has run away from what the valve gives
+	seen, start time.Duration
+	started     bool
+	p, setpoint float64
+	level       float64 // Pa: p without its noise
+	rateNow     float64 // Pa/s, of the last block
+	block       stretch // of readings that have not taught anything yet
+
+	k, lambda float64
+	// Sums over blocks, which fade: of pressure moved, Pa, and of what the
+	// model would have moved; of squares and products of rate x, model rate m
+	// and distance behind the setpoint y.
+	moved, model       float64
+	xx, xm, mm, xy, yy float64
+	blocks             int     // in the sums
+	followed, limited  float64 // s for which one or the other has held
+}
+
+// stretch is some readings taken together.
+type stretch struct {
+	moved, model float64 // Pa
+	behind       float64 // Pa s
+	span         float64 // s
 }
 
 // NewForecast works out the shape of the way. It refuses a target that the
 // panel never reaches, with ErrNever.
 func NewForecast(a Aim) (Forecast, error) {
 	f := Forecast{aim: a, rising: a.Target > a.From, k: 1}
-	f.follow = f.aimFollow()
-	f.lambda = f.follow
+	f.lambda = f.aimFollow()
 	if !(a.Tolerance > 0) {
 		return f, fmt.Errorf("tolerance %v Pa: %w: wanted above zero", float64(a.Tolerance), ErrRange)
 	}
@@ -131,7 +140,7 @@ func (f *Forecast) See(at time.Duration, p, setpoint unit.Pascal) error {
 	}
 	if !f.started {
 		f.started, f.seen, f.start = true, at, at
-		f.p, f.setpoint = float64(p), float64(setpoint)
+		f.p, f.setpoint, f.level = float64(p), float64(setpoint), float64(p)
 		return nil
 	}
 	if at <= f.seen {
@@ -142,72 +151,71 @@ func (f *Forecast) See(at time.Duration, p, setpoint unit.Pascal) error {
 	if !f.rising {
 		sign = -1
 	}
-	step := sign * (float64(p) - f.p)
 	mid := 0.5 * (float64(p) + f.p)
-	elapsed := (at - f.start).Seconds()
-	slow := math.Exp(-dt / min(60, max(3, 0.3*elapsed)))
-	const quickWindow = 2.0 // s: shorter drowns in the gauge's noise
-	quick := math.Exp(-dt / quickWindow)
-	f.moved, f.model = slow*f.moved+step, slow*f.model+f.modelRate(mid)*dt
-	f.quick, f.span, f.ramp = quick*f.quick+step, quick*f.span+dt, quick*f.ramp
 	behind := sign * (float64(f.aim.Target) - mid)
 	if setpoint > 0 && f.setpoint > 0 {
-		f.ramp += sign * (float64(setpoint) - f.setpoint)
-		if float64(setpoint) != f.setpoint {
-			f.changed = at
-		}
 		behind = sign * (0.5*(float64(setpoint)+f.setpoint) - mid)
 	}
+	// Noise is smoothed over a second, along the rate of the last block.
+	const smooth = 1.0 // s
+	f.level += sign * f.rateNow * dt
+	f.level += (1 - math.Exp(-dt/smooth)) * (float64(p) - f.level)
+	f.block.moved += sign * (float64(p) - f.p)
+	f.block.model += f.modelRate(mid) * dt
+	f.block.behind += behind * dt
+	f.block.span += dt
 	f.seen, f.p, f.setpoint = at, float64(p), float64(setpoint)
-	f.learn(elapsed, mid, behind, step, dt)
+	if f.block.span >= blockSpan {
+		f.rateNow = f.block.moved / f.block.span
+		f.learn((at - f.start).Seconds())
+		f.block = stretch{}
+	}
 	return nil
 }
 
-// learn updates k and λ. Of late the pressure moved f.quick and the setpoint
-// f.ramp. Where the pressure keeps up with its setpoint, or where it is slow at
-// the start and near the target, it shows how closely the controller follows;
-// where the setpoint runs away, what the valve lets through.
-func (f *Forecast) learn(elapsed, mid, behind, step, dt float64) {
-	tolerance := float64(f.aim.Tolerance)
-	limit := f.k * f.modelRate(mid)
-	slow := f.quick < 0.8*limit*f.span
-	if !f.aim.Controlled || !slow {
-		if f.model > 0 && f.moved > tolerance && elapsed > 2 {
+// learn updates k and λ from one block of readings. Where the pressure follows
+// its setpoint, its rate is proportional to how far it is behind; where a valve
+// decides, to what the model lets through. Both lines are fitted to the blocks
+// of late, and the better one learns.
+func (f *Forecast) learn(elapsed float64) {
+	b, w := f.block, f.block.span
+	slow := math.Exp(-w / min(60, max(3, 0.3*elapsed)))
+	f.moved, f.model = slow*f.moved+b.moved, slow*f.model+b.model
+	if !f.aim.Controlled {
+		if elapsed > 2 && f.moved > float64(f.aim.Tolerance) {
 			f.k = min(50, max(0.02, f.moved/f.model))
 		}
-	} else {
-		f.moved, f.model = 0, 0
-	}
-	if !f.aim.Controlled {
 		return
 	}
-	ramping := f.ramp > 2*tolerance && f.seen-f.changed <= setpointPause
-	if keeps := math.Abs(f.quick-f.ramp) < 0.05*f.ramp; ramping && keeps {
-		f.kept += dt
-	} else {
-		f.kept = 0
+	const window = 3.0 // s
+	forget := math.Exp(-w / window)
+	x, m, y := b.moved/w, b.model/w, b.behind/w
+	if f.limited > 1 && x < 0.8*f.k*m {
+		// It begins to close in: what was before would blur that.
+		f.xx, f.xm, f.mm, f.xy, f.yy, f.blocks = 0, 0, 0, 0, 0, 0
+		f.limited = 0
 	}
+	f.blocks++
+	f.xx, f.xm, f.mm = forget*f.xx+x*x, forget*f.xm+x*m, forget*f.mm+m*m
+	f.xy, f.yy = forget*f.xy+x*y, forget*f.yy+y*y
+	// Only a pressure that moves well beyond the noise tells anything.
+	told := f.xx*w*w > 4*float64(f.aim.Tolerance)*float64(f.aim.Tolerance)
+	if !told || f.blocks < 4 || !(f.xm > 0) || !(f.xy > 0) {
+		return
+	}
+	follows, limited := f.xx-f.xy*f.xy/f.yy, f.xx-f.xm*f.xm/f.mm
 	switch {
-	case ramping && f.quick < 0.95*f.ramp && elapsed > 2+2.5*f.follow:
-		f.limited = true
-	case slow || f.kept > 1:
-		f.limited = false
-	}
-	if f.limited {
-		if slow { // by the model's limit, which is too high
-			f.k = max(0.02, f.k*math.Exp(-dt))
+	case follows < 0.1*limited:
+		f.followed, f.limited = f.followed+w, 0
+		f.lambda = min(4*f.aimFollow(), max(0.25*f.aimFollow(), f.yy/f.xy))
+		f.k = max(f.k, f.xm/f.mm) // what is seen, the valve lets through
+	case limited < 0.5*follows:
+		if f.limited == 0 { // what was before does not count
+			f.moved, f.model = b.moved, b.model
 		}
-		f.closed, f.gap, f.lambda = 0, 0, f.follow
-		return
-	}
-	const window = 2.0 // s
-	forget := math.Exp(-dt / window)
-	f.closed, f.gap = forget*f.closed+step, forget*f.gap+behind*dt
-	if f.closed > 2*tolerance && f.gap > 0 {
-		// dp/dt = (setpoint − p)/λ, summed.
-		f.lambda = min(4*f.aimFollow(), max(0.25*f.aimFollow(), f.gap/f.closed))
-		if f.kept > 1 {
-			f.follow = f.lambda
+		f.followed, f.limited = 0, f.limited+w
+		if f.limited > 1 {
+			f.k = min(50, max(0.02, f.moved/f.model))
 		}
 	}
 }
@@ -233,7 +241,7 @@ func (f *Forecast) Left(coreWait time.Duration) (wait time.Duration, ok bool) {
 		sign = -1
 	}
 	target, tolerance := float64(f.aim.Target), float64(f.aim.Tolerance)
-	left := sign * (target - f.p)
+	left := sign * (target - f.level)
 	if left <= 0 || f.aim.Controlled && left <= tolerance {
 		return coreWait, true
 	}
