@@ -62,11 +62,9 @@ func writePrediction(w io.Writer, p *emission.Predictor, pr emission.Prediction,
 	}
 }
 
-func flush(t *tabwriter.Writer) {
-	if err := t.Flush(); err != nil {
-		return // the writer below keeps the error and reports it at its own flush
-	}
-}
+// flush empties a table into its writer, which keeps an error until its own
+// flush reports it.
+func flush(t *tabwriter.Writer) { _ = t.Flush() }
 
 func shapeName(s emission.Setup) string {
 	if s.Pulse.Shape == 0 {

@@ -16,3 +16,13 @@ func (p *Predictor) Curve(dst []CurvePoint, from, to unit.Pascal, in Input) {
 		dst[i] = CurvePoint{Pressure: in.Pressure, Emission: before.Emission, Sigma: before.Sigma}
 	}
 }
+
+// Map fills one curve for each pulse energy: dst[i] holds predictions at
+// energies[i], at pressures evenly spaced from from to to. dst and energies
+// have equal length.
+func (p *Predictor) Map(dst [][]CurvePoint, energies []unit.Joule, from, to unit.Pascal, in Input) {
+	for i, e := range energies {
+		in.Energy = e
+		p.Curve(dst[i], from, to, in)
+	}
+}

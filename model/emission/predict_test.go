@@ -108,6 +108,21 @@ func TestTrackedIsCold(t *testing.T) {
 	})
 }
 
+// A slow walk over the whole range, each step following the one before, ends
+// where a search from nothing ends.
+func TestSlowWalk(t *testing.T) {
+	for _, p := range setups(t) {
+		var before Prediction
+		for bar := 0.5; bar < 24; bar *= 1.004 {
+			before = p.Predict(at(bar, 295.2, 1), &before)
+		}
+		cold := p.Predict(before.Input, nil)
+		if math.Abs(float64(cold.Emission-before.Emission)) > 1e-15 || cold.ZeroDispersionCount != before.ZeroDispersionCount {
+			t.Errorf("%s: walked to %v with %d zeros, cold %v with %d", p.medium.Name(), before.Emission, before.ZeroDispersionCount, cold.Emission, cold.ZeroDispersionCount)
+		}
+	}
+}
+
 // A search with sixteen times the samples finds nothing more.
 func TestSearchMissesNothing(t *testing.T) {
 	fine := grid(16 * samples)
@@ -290,6 +305,13 @@ func TestCurve(t *testing.T) {
 		}
 	}
 	p.Curve(nil, 1, 2, Input{})
+	rows := [][]CurvePoint{make([]CurvePoint, 3), make([]CurvePoint, 3)}
+	p.Map(rows, []unit.Joule{1e-6, 1.3e-6}, 8e5, 10e5, at(0, 293.15, 0))
+	for i, e := range []float64{1, 1.3} {
+		if single := p.Predict(at(9, 293.15, e), nil); math.Abs(float64(single.Emission-rows[i][1].Emission)) > 1e-15 {
+			t.Errorf("map at %g µJ: %v, alone %v", e, rows[i][1].Emission, single.Emission)
+		}
+	}
 	one := dst[:1]
 	p.Curve(one, 7e5, 8e5, at(0, 293.15, 1.3))
 	if one[0].Pressure != 7e5 || one[0].Emission == 0 {

@@ -141,25 +141,32 @@ const (
 	whyVacuum  = "the fibre is empty"
 )
 
-// sweep bounds how far density may move for the roots to be followed.
-const sweep = 0.03
+// cell is the width, in ln ρ, of the stretches of density within which roots
+// are followed. At each border there is a cold search, so that a root which
+// has come up since is not missed for long.
+const cell = 0.02
+
+// near reports whether two densities lie in the same stretch.
+func near(a, b unit.MolePerCubicMetre) bool {
+	return a > 0 && b > 0 && math.Floor(math.Log(float64(a))/cell) == math.Floor(math.Log(float64(b))/cell)
+}
 
 // Predict answers for one input. before is the prediction of the reading
-// before, whose roots are followed; nil means a search from nothing. The same
-// input gives the same answer either way, but for a branch that one of them
-// follows and the other leaves. It allocates nothing.
+// before, whose roots are followed while density stays near; nil means a search
+// from nothing. The same input gives the same answer either way, but for a root
+// that has come up or gone since. It allocates nothing.
 func (p *Predictor) Predict(in Input, before *Prediction) Prediction {
 	out := Prediction{Input: in, Answer: p.setup.Answer}
 	m, ok := p.prepare(in, &out)
 	if !ok {
 		return out
 	}
-	near := before != nil && before.Valid && before.Answer == out.Answer &&
-		math.Abs(float64(before.Density-out.Density)) <= sweep*float64(out.Density)
 	var f found
-	if tracked, ok := p.track(&m, before, near); ok {
-		f = tracked
-	} else {
+	tracked := false
+	if before != nil && before.Valid && before.Answer == out.Answer && near(before.Density, out.Density) {
+		f, tracked = p.track(&m, before)
+	}
+	if !tracked {
 		var bands [fibre.MaxBands]fibre.Band
 		f = m.search(bands[:m.guide.Bands(&bands)], places)
 	}
@@ -175,11 +182,9 @@ func (p *Predictor) Predict(in Input, before *Prediction) Prediction {
 	return out
 }
 
-// track follows what the prediction before had found, if it was near.
-func (p *Predictor) track(m *mismatch, before *Prediction, near bool) (f found, ok bool) {
+// track follows what the prediction before had found.
+func (p *Predictor) track(m *mismatch, before *Prediction) (f found, ok bool) {
 	switch {
-	case !near:
-		return f, false
 	case p.nodes != nil: // the nodes say where the emission is
 		ok = m.trackZeros(before, &f)
 		return f, ok && f.count > 0

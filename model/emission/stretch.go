@@ -56,10 +56,11 @@ func stretch(s pulse.Shape, d float64) (drop, wider float64) {
 	}
 	power := func(t float64) float64 {
 		// Field at time t (in T₀), both halves of the symmetric spectrum.
-		const top, steps = 14.0, 1500 // sech(22) is 1e-10
+		const top = 14.0                    // sech(22) is 1e-10
+		steps := 400 + int(math.Ceil(24*d)) // a few for each turn of the phase
 		var re, im float64
 		for i := range steps + 1 {
-			w := top * float64(i) / steps
+			w := top * float64(i) / float64(steps)
 			a := math.Cos(w*t) / math.Cosh(math.Pi*w/2)
 			if i == 0 || i == steps {
 				a /= 2
@@ -67,13 +68,13 @@ func stretch(s pulse.Shape, d float64) (drop, wider float64) {
 			sin, cos := math.Sincos(d * w * w / 2)
 			re, im = re+a*cos, im+a*sin
 		}
-		const whole = steps / top // ∫ sech(πω/2) dω from 0 on is 1
+		whole := float64(steps) / top // ∫ sech(πω/2) dω from 0 on is 1
 		return (re*re + im*im) / (whole * whole)
 	}
 	drop = power(0)
 	half := math.Log(1 + math.Sqrt2) // of the unstretched pulse, T₀
 	lo, hi := 0.3*half, half*(2+4*d)
-	for range 50 {
+	for range 32 {
 		mid := 0.5 * (lo + hi)
 		if power(mid) > drop/2 {
 			lo = mid

@@ -138,7 +138,7 @@ func TestBore(t *testing.T) {
 // One thin wall of a 34 µm core leaks 18.7 dB/m at 1030 nm (independent
 // evaluation of the antiresonant form); TE leaks less than TM, HE between.
 func TestLeakOfOneWall(t *testing.T) {
-	var leak []float64
+	var leak, index []float64
 	for _, name := range []string{"TE01", "HE21", "TM01"} {
 		s := thin
 		var err error
@@ -147,9 +147,15 @@ func TestLeakOfOneWall(t *testing.T) {
 		}
 		g := guide(t, s, gas.Spec{Composition: "argon"}, 9e5, 293.15)
 		leak = append(leak, g.Leakage(Frequency(1030e-9)))
+		n, _ := g.IndexMinusOne(Frequency(300e-9))
+		index = append(index, n.C0)
 	}
 	if !(leak[0] < leak[1] && leak[1] < leak[2]) || math.Abs(leak[1]-0.5*(leak[0]+leak[2])) > 1e-9*leak[1] {
 		t.Errorf("TE, HE, TM leak %g", leak)
+	}
+	// One zero serves all three, so that HE stands halfway in the index too.
+	if math.Abs(index[1]-0.5*(index[0]+index[2])) > 1e-13 || index[0] == index[2] {
+		t.Errorf("TE, HE, TM have n−1 = %.9g", index)
 	}
 	g := guide(t, thin, gas.Spec{Composition: "argon"}, 9e5, 293.15)
 	if got := g.Leakage(Frequency(1030e-9)) / neperPerDecibel; math.Abs(got-18.7) > 0.1 {

@@ -252,3 +252,17 @@ func BenchmarkDensity(b *testing.B) {
 		}
 	})
 }
+
+// First ionisation energies as the NIST Atomic Spectra Database lists them in
+// wave numbers (from memory), at 1.239841984e-4 eV cm.
+func TestIonisationEnergies(t *testing.T) {
+	for name, wave := range map[string]float64{"helium": 198310.66637, "neon": 173929.75, "argon": 127109.842, "krypton": 112914.433, "xenon": 97833.787} {
+		s, err := Named(name)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if want := wave * 1.239841984e-4; math.Abs(s.IonisationEnergy/want-1) > 3e-7 {
+			t.Errorf("%s: %.7f eV, want %.7f eV", name, s.IonisationEnergy, want)
+		}
+	}
+}
