@@ -128,3 +128,37 @@ func BenchmarkCoreFrame(b *testing.B) {
 		}
 	}
 }
+
+// A step from half to full pressure, dead end at 0.75, 0.95 and 0.99 after
+// τ = 0.4746, 1.1520 and 1.8095: converged solution of the viscous equation.
+// The molecular part, here 4e-4 of the whole, makes ours that much faster.
+func TestStepTime(t *testing.T) {
+	const p = 50e5
+	half := coreLength / 2
+	unit := 8 * viscosity(294.7, argon.MolarMass) * half * half / (coreRadius * coreRadius * p)
+	times := func(cells int) (at [3]float64) {
+		c := newCore(t, cells, p/2)
+		dt := unit / 1000
+		before, now := c.At(0.5).P/p, 0.0
+		for i := 0; i < 3; {
+			if _, err := c.Advance(dt, 294.7, ends(p, p), ends(p, p)); err != nil {
+				t.Fatal(err)
+			}
+			now += dt
+			level := c.At(0.5).P / p
+			for ; i < 3 && level >= [3]float64{0.75, 0.95, 0.99}[i]; i++ {
+				at[i] = (now - dt*(level-[3]float64{0.75, 0.95, 0.99}[i])/(level-before)) / unit
+			}
+			before = level
+		}
+		return at
+	}
+	want := [3]float64{0.4746, 1.1520, 1.8095}
+	coarse, fine := times(coreCells), times(4*coreCells)
+	for i := range want {
+		near(t, "time on 96 finite volumes", fine[i], want[i], 2e-3)
+		near(t, "time on 24 finite volumes", coarse[i], want[i], 1e-2)
+	}
+}
+
+const coreCells = 24 // as the bench has

@@ -166,3 +166,34 @@ func BenchmarkQuietFrame(b *testing.B) {
 		}
 	}
 }
+
+// A vessel without heat exchange that empties through a choked nozzle:
+//
+//	p/p₀ = (1 + (γ−1)/2 · t/τ)^(−2γ/(γ−1)),  τ = V n₀⁻¹ p₀/(R T₀) / (C k p₀ √(T_ref/T₀))
+//
+// textbook gas dynamics (for example Thompson, Compressible-Fluid Dynamics
+// (1972), section 6.4). With steps of equal length the error of RODAS3 falls
+// with their third power.
+func TestBlowDownIsOfOrderThree(t *testing.T) {
+	const v, c, p0, t0 = 60e-6, 1e-9, 10e5, 294.7
+	run := func(steps int) float64 {
+		n := NewNetwork(argon)
+		cell := n.AddVolume(v, State{P: p0, T: t0})
+		n.Open(n.AddPassage(cell, n.AddReservoir(State{P: 1, T: t0}), NewOrifice(c, argon)), 1)
+		n.build()
+		h := 0.5 / float64(steps)
+		for range steps {
+			n.jacobian(n.y)
+			n.rates(n.y, n.ws.f)
+			n.step(h)
+			copy(n.y, n.ws.yn)
+		}
+		return n.State(cell).P
+	}
+	tau := v / (R * t0) / (c * argon.FlowFactor() * ReferencePressure / (R * ReferenceTemperature) * math.Sqrt(ReferenceTemperature/t0))
+	want := p0 * math.Pow(1+0.5/tau/3, -5)
+	coarse, fine := math.Abs(run(8)-want), math.Abs(run(16)-want)
+	if fine > 1e-4*want || coarse/fine < 6 || coarse/fine > 10 {
+		t.Errorf("errors of %g Pa and, at half the step, %g Pa of %g Pa: ratio %.2f, want 8", coarse, fine, want, coarse/fine)
+	}
+}
