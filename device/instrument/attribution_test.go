@@ -127,7 +127,7 @@ func (f *faulty) Close() error { return nil }
 func TestModbusRepliesAreNeverAttributedToAnotherQuery(t *testing.T) {
 	var good, all int
 	var kinds [faultKinds]int
-	for seed := range uint64(300) {
+	for seed := range uint64(100) {
 		var channels []bench.Channel
 		// Four reads of one unit that look alike on the wire, one of one
 		// register, and two of another unit.
@@ -187,7 +187,7 @@ func TestModbusRepliesAreNeverAttributedToAnotherQuery(t *testing.T) {
 
 func TestSCPIAnswersAreNeverAttributedToAnotherQuery(t *testing.T) {
 	var good, all int
-	for seed := range uint64(300) {
+	for seed := range uint64(100) {
 		var channels []bench.Channel
 		for i := range 4 {
 			channels = append(channels, bench.Channel{Name: fmt.Sprint(i), Query: fmt.Sprintf("MEAS:V%d?", i), Factor: 1, Symbol: "V"})

@@ -47,6 +47,8 @@ type modbusWire interface {
 	exchange(line link.Line, now Now, r modbus.Request) (modbus.Reply, reading.Stamp, error)
 	// numbered reports whether a reply names its request.
 	numbered() bool
+	// opened forgets what came over the line before.
+	opened()
 }
 
 func newModbus(in *Instrument) (*modbusProtocol, error) {
@@ -151,7 +153,10 @@ func takeTurns(groups []*group) []*group {
 
 func (m *modbusProtocol) steps() int { return len(m.groups) }
 
-func (m *modbusProtocol) opened() { m.order.reset() }
+func (m *modbusProtocol) opened() {
+	m.order.reset()
+	m.wire.opened()
+}
 
 func (m *modbusProtocol) drain(_ link.Line, _ Now, dst []reading.Reading) ([]reading.Reading, error) {
 	return dst, nil

@@ -26,6 +26,8 @@ type rtuWire struct {
 
 func (w *rtuWire) numbered() bool { return false }
 
+func (w *rtuWire) opened() {}
+
 // mostReply bounds what is read while waiting for one reply.
 const mostReply = 4096
 
@@ -147,6 +149,8 @@ type tcpWire struct {
 }
 
 func (w *tcpWire) numbered() bool { return true }
+
+func (w *tcpWire) opened() { w.buf = w.buf[:0] }
 
 func (w *tcpWire) exchange(line link.Line, now Now, r modbus.Request) (modbus.Reply, reading.Stamp, error) {
 	fail := func(err error) (modbus.Reply, reading.Stamp, error) {

@@ -8,16 +8,12 @@ import (
 	"testing"
 	"time"
 
-	"go.uber.org/goleak"
-
 	"barline/device/link"
 	"barline/model/bench"
 	"barline/model/clock"
 	"barline/model/reading"
 	"barline/model/unit"
 )
-
-func TestMain(m *testing.M) { goleak.VerifyTestMain(m) }
 
 // notes is a Sink that keeps everything and tells whoever waits.
 type notes struct {
