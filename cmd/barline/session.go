@@ -173,6 +173,12 @@ func (s *session) open(book *logbook.Book) error {
 // setpoints to w.
 func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []byte)) ([]*instrument.Runner, error) {
 	var lines []*instrument.Runner
+	var channels []bench.Channel
+	for _, spec := range s.bench.Instrument {
+		channels = append(channels, spec.Channel...)
+	}
+	air := instrument.NewAmbient(s.bench.Panel.Ambient)
+	sink := instrument.NewHandover(channels, s.bench.Panel.Ambient, s.bench.Limits.Stale.Duration(), instrument.Barometer{Sink: l, Air: air})
 	for _, spec := range s.bench.Instrument {
 		in, err := instrument.New(spec, s.bench.Panel.Ambient)
 		if err != nil {
@@ -181,11 +187,12 @@ func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []b
 		if s.bench.Emission.Wavelengths == "air" {
 			in.WavelengthsInAir()
 		}
+		in.CountFrom(air)
 		open, err := s.opener(spec)
 		if err != nil {
 			return nil, coded{exitUsage, err}
 		}
-		r := instrument.NewRunner(in, open, s.clock, l, broken("instrument "+spec.Name))
+		r := instrument.NewRunner(in, open, s.clock, sink, broken("instrument "+spec.Name))
 		if in.TakesSetpoint() {
 			w.controllers = append(w.controllers, r)
 		}

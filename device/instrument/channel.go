@@ -14,14 +14,14 @@ import (
 // channel turns the numbers of one channel into readings.
 type channel struct {
 	spec    bench.Channel
-	ambient float64 // Pa, added to a gauge pressure
-	air     bool    // wavelengths are those in air
-	low     string  // the range in specification, as a person reads it
+	ambient *Ambient // added to a gauge pressure
+	air     bool     // wavelengths are those in air
+	low     string   // the range in specification, as a person reads it
 	high    string
 }
 
 func newChannel(spec bench.Channel, ambient unit.Pascal) (channel, error) {
-	c := channel{spec: spec, ambient: float64(ambient)}
+	c := channel{spec: spec, ambient: NewAmbient(ambient)}
 	if spec.Factor == 0 || math.IsNaN(spec.Factor) || math.IsInf(spec.Factor, 0) {
 		return c, fmt.Errorf("channel %q: no scale is known; a bench file is read by bench.Parse", spec.Name)
 	}
@@ -96,7 +96,7 @@ func (c *channel) absolute(number float64) float64 {
 	}
 	switch {
 	case c.spec.Gauge:
-		v += c.ambient
+		v += float64(c.ambient.Pressure())
 	case c.air && c.spec.Role == reading.Emission && v > 0:
 		v = float64(air.Vacuum(unit.Metre(v)))
 	}
@@ -106,7 +106,7 @@ func (c *channel) absolute(number float64) float64 {
 // number returns what to send for an absolute quantity in SI.
 func (c *channel) number(v float64) (float64, error) {
 	if c.spec.Gauge {
-		v -= c.ambient
+		v -= float64(c.ambient.Pressure())
 	}
 	if c.spec.HasRange() && !(v >= c.spec.Low && v <= c.spec.High) {
 		return 0, fmt.Errorf("setpoint %s is outside the range of the instrument, %s to %s", c.text(v), c.low, c.high)

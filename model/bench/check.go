@@ -94,19 +94,22 @@ func (c checker) pressures() {
 }
 
 // roles refuses two channels of one role; those without a role may repeat.
+// Gauges of different range may share one: the finest that can tell has it.
 func (c checker) roles() {
-	var taken [reading.RoleCount]string
+	var taken [reading.RoleCount]*Channel
 	for i, inst := range c.b.Instrument {
-		for j, ch := range inst.Channel {
-			path := channelPath(i, j) + ".role"
+		for j := range inst.Channel {
+			ch := &c.b.Instrument[i].Channel[j]
 			if ch.Role == reading.NoRole {
 				continue
 			}
-			if first := taken[ch.Role]; first != "" {
-				c.Wrong(path, "channel %q has this role already", first)
+			first := taken[ch.Role]
+			gauges := ch.Role.IsPressure() && ch.Role != reading.Setpoint
+			if first != nil && !(gauges && ch.HasRange() && first.HasRange() && ch.High != first.High) {
+				c.Wrong(channelPath(i, j)+".role", "channel %q has this role already", first.Name)
 				continue
 			}
-			taken[ch.Role] = ch.Name
+			taken[ch.Role] = ch
 		}
 	}
 }
