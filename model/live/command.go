@@ -90,7 +90,7 @@ func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 	p, _ := sp.Pressure()
 	s.command++
 	s.Mode, s.Why, s.heldByItself, s.refused = Held, why, why != heldByPerson, false
-	s.ArmedUntil, s.Target, s.Setpoint = 0, 0, p
+	s.ArmedUntil, s.Target, s.Setpoint, s.tuning = 0, 0, p, tuning{}
 	if s.run.active() {
 		s.run, s.outcome = progress{}, EndedByHold
 	}

@@ -197,6 +197,7 @@ func (c *Core) act(s *State, fx []Effect) []Effect {
 				return c.hold(s, why, fx)
 			}
 		}
+		return c.keepWavelength(s, fx)
 	}
 	return fx
 }

@@ -17,12 +17,13 @@ type (
 	}
 	// IntentData is an intent, and why it was refused where it was.
 	IntentData struct {
-		Intent   string   `json:"intent"`
-		TargetPa *float64 `json:"target_Pa,omitempty"`
-		Program  string   `json:"program,omitempty"`
-		Phases   int      `json:"phases,omitempty"`
-		Alarm    string   `json:"alarm,omitempty"`
-		Refused  string   `json:"refused,omitempty"`
+		Intent    string   `json:"intent"`
+		TargetPa  *float64 `json:"target_Pa,omitempty"`
+		EmissionM *float64 `json:"emission_m,omitempty"`
+		Program   string   `json:"program,omitempty"`
+		Phases    int      `json:"phases,omitempty"`
+		Alarm     string   `json:"alarm,omitempty"`
+		Refused   string   `json:"refused,omitempty"`
 	}
 	// CommandData is a command to the controller.
 	CommandData struct {

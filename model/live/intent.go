@@ -77,9 +77,25 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		record()
 		s.ArmedUntil = s.Now.Mono + c.arming
 		*fx = c.start(s, in.Program, *fx)
+	case Tune:
+		data.Intent = "tune"
+		if in.Hold {
+			data.Intent = "tune and hold"
+		}
+		if nm := float64(in.Emission); !math.IsNaN(nm) && !math.IsInf(nm, 0) {
+			data.EmissionM = &nm
+		}
+		if err := c.movable(s); err != nil {
+			return data, err
+		}
+		record()
+		s.ArmedUntil = s.Now.Mono + c.arming
+		var err error
+		*fx, err = c.tune(s, in, *fx)
+		return data, err
 	case Pause, Resume, Skip, Stop:
 		data.Intent = strings.ToLower(strings.TrimPrefix(fmt.Sprintf("%T", in), "live."))
-		if !s.run.active() {
+		if !s.run.active() && s.tuning.base == 0 {
 			return data, fmt.Errorf("no program is under way")
 		}
 		record()

@@ -13,7 +13,7 @@ func (s *State) Outcome() Outcome { return s.outcome }
 
 // start begins a program at its first phase.
 func (c *Core) start(s *State, p *Program, fx []Effect) []Effect {
-	s.run, s.outcome = progress{program: p}, NoOutcome
+	s.run, s.outcome, s.tuning = progress{program: p}, NoOutcome, tuning{}
 	return c.beginPhase(s, fx)
 }
 
@@ -143,7 +143,7 @@ func (c *Core) next(s *State, fx []Effect) []Effect {
 		s.run.index++
 		return c.beginPhase(s, fx)
 	}
-	name := s.run.program.Name
+	name, measured := s.run.program.Name, s.run.emission
 	s.run, s.outcome = progress{}, Completed
 	s.Notice = name + ": complete"
 	if s.Mode == Isolated {
@@ -151,7 +151,11 @@ func (c *Core) next(s *State, fx []Effect) []Effect {
 	} else {
 		s.Mode, s.Why = Steady, "settled"
 	}
-	return append(fx, Record{At: s.Now, Kind: KindIntent, Data: IntentData{Intent: "complete", Program: name}})
+	fx = append(fx, Record{At: s.Now, Kind: KindIntent, Data: IntentData{Intent: "complete", Program: name}})
+	if s.tuning.wanted != 0 {
+		return c.tuned(s, measured, fx)
+	}
+	return fx
 }
 
 // row writes what was measured during the dwell of a phase that asks for it.
@@ -164,6 +168,9 @@ func (c *Core) row(s *State, fx []Effect) []Effect {
 
 // sample adds a reading to the row that is being measured.
 func (c *Core) sample(s *State, r reading.Reading) {
+	if s.tuning.base != 0 && r.Role == reading.Emission && r.Status.Usable() {
+		s.tuning.seen.add(r.Value)
+	}
 	if !s.run.active() || s.run.settledAt == 0 || s.run.paused || !r.Status.Usable() {
 		return
 	}
@@ -181,6 +188,10 @@ func (c *Core) sample(s *State, r reading.Reading) {
 // change carries out Pause, Resume, Skip and Stop.
 func (c *Core) change(s *State, in Intent, fx []Effect) ([]Effect, error) {
 	r := &s.run
+	if _, stop := in.(Stop); stop && !r.active() && s.tuning.base != 0 {
+		s.tuning, s.Why = tuning{}, "settled"
+		return fx, nil
+	}
 	if !r.active() {
 		return fx, fmt.Errorf("no program is under way")
 	}
@@ -204,7 +215,7 @@ func (c *Core) change(s *State, in Intent, fx []Effect) ([]Effect, error) {
 		return c.next(s, fx), nil
 	case Stop:
 		name := r.program.Name
-		*r, s.outcome = progress{}, Stopped
+		*r, s.outcome, s.tuning = progress{}, Stopped, tuning{}
 		if s.Mode == Isolated {
 			s.Mode, s.Why = Held, "valves shut; "+name+" stopped"
 		} else {

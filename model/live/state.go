@@ -48,6 +48,7 @@ type State struct {
 	refused      bool // an instrument did not take the last command
 
 	run       progress
+	tuning    tuning
 	outcome   Outcome
 	flow      flow.State
 	flowAt    time.Duration

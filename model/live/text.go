@@ -16,6 +16,9 @@ func (d IntentData) String() string {
 	if d.TargetPa != nil {
 		fmt.Fprintf(&b, " %v", unit.Pascal(*d.TargetPa))
 	}
+	if d.EmissionM != nil {
+		fmt.Fprintf(&b, " %.2f nm", *d.EmissionM*1e9)
+	}
 	if d.Program != "" {
 		fmt.Fprintf(&b, " %q", d.Program)
 	}

@@ -214,7 +214,7 @@ func (tr *trial) obey(command uint64, do func(*seat) error) {
 
 func (tr *trial) ask(in live.Intent) {
 	switch in.(type) {
-	case live.GoTo, live.Run, live.Resume, live.Skip:
+	case live.GoTo, live.Run, live.Resume, live.Skip, live.Tune:
 		tr.askedAt = tr.clk.Now().Mono
 		tr.heldAt = min(tr.heldAt, tr.askedAt-1)
 	}
@@ -324,6 +324,9 @@ func (tr *trial) operator() {
 		}
 	case 11:
 		tr.ask(live.GoTo{Target: unit.Pascal(math.NaN())})
+		tr.ask(live.Tune{Emission: unit.Metre(math.NaN())})
+	case 13:
+		tr.ask(live.Tune{Emission: unit.Metre(200+100*tr.rng.Float64()) * unit.Nanometre, Hold: tr.rng.IntN(2) == 0})
 	case 12:
 		tr.ask(live.Arm{})
 		tr.ask(live.GoTo{Target: unit.Pascal(1+10*tr.rng.Float64()) * unit.Bar})
@@ -481,6 +484,50 @@ func TestFaultsRaiseTheirAlarms(t *testing.T) {
 			}
 			t.Logf("alarm after at most %v", slowest)
 		})
+	}
+}
+
+// Tuning arrives at the wanted wavelength although the model is off, and
+// holding keeps it there while the pulse energy sags.
+func TestTuneAndHold(t *testing.T) {
+	for seed := range runs("BARLINE_FAULTS", 1) {
+		tr := newTrial(t, seed, 8*unit.Bar)
+		for tr.clk.Now().Mono < 4*time.Second {
+			tr.turn()
+		}
+		tr.ask(live.Arm{})
+		tr.ask(live.Tune{Emission: 252 * unit.Nanometre, Hold: true})
+		for tr.clk.Now().Mono < 90*time.Second {
+			tr.turn()
+		}
+		s := tr.loop.Snapshot()
+		before := s.Latest[reading.Emission].Value*1e9 - 252
+		if s.Mode != live.Steady || math.Abs(before) > 0.5 {
+			tr.fail("ninety seconds after it was asked for 252 nm it is %+.2f nm away, %v: %s %s", before, s.Mode, s.Why, s.Notice)
+		}
+		begun := s.Setpoint
+		if err := tr.sim.Inject(simulate.Fault{Kind: simulate.Sag, Size: 0.4}); err != nil {
+			t.Fatal(err)
+		}
+		for tr.clk.Now().Mono < 8*time.Minute {
+			tr.turn()
+		}
+		s = tr.loop.Snapshot()
+		after := s.Latest[reading.Emission].Value*1e9 - 252
+		t.Logf("seed %d: %+.2f nm away at %v, after a sag of energy %+.2f nm at %v (%s)", seed, before, begun, after, s.Setpoint, s.Why)
+		if math.Abs(after) > 0.5 || math.Abs(float64(s.Setpoint-begun)) > 0.3e5+1 {
+			tr.fail("held at %+.2f nm with %v: %s", after, s.Setpoint, s.Why)
+		}
+		if err := tr.sim.Inject(simulate.Fault{Kind: simulate.Shutter}); err != nil {
+			t.Fatal(err)
+		}
+		stands := s.Setpoint
+		for tr.clk.Now().Mono < 9*time.Minute {
+			tr.turn()
+		}
+		if s = tr.loop.Snapshot(); s.Setpoint != stands {
+			tr.fail("the shutter is closed and the setpoint moved from %v to %v", stands, s.Setpoint)
+		}
 	}
 }
 
