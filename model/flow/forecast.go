@@ -41,11 +41,10 @@ const (
 // turns out to be, and λ how closely the controller follows; k and λ are
 // learnt from the readings. A Forecast is a value.
 type Forecast struct {
-	aim    Aim
-	rising bool
-	place  [forecastNodes]float64 // Pa from From to Target
-	rate   [forecastNodes]float64 // Pa/s of the model there
-	core   float64                // s, time constant of the core at the target
+	aim   Aim
+	place [forecastNodes]float64 // Pa from From to Target
+	rate  [forecastNodes]float64 // Pa/s of the model there
+	core  float64                // s, time constant of the core at the target
 
 	seen, start time.Duration
 	started     bool
@@ -61,7 +60,7 @@ type Forecast struct {
 	moved, model       float64
 	xx, xm, mm, xy, yy float64
 	blocks             int     // in the sums
-	followed, limited  float64 // s for which one or the other has held
+	limited            float64 // s for which a valve has decided
 }
 
 // stretch is some readings taken together.
@@ -74,7 +73,7 @@ type stretch struct {
 // NewForecast works out the shape of the way. It refuses a target that the
 // panel never reaches, with ErrNever.
 func NewForecast(a Aim) (Forecast, error) {
-	f := Forecast{aim: a, rising: a.Target > a.From, k: 1}
+	f := Forecast{aim: a, k: 1}
 	f.lambda = f.aimFollow()
 	if !(a.Tolerance > 0) {
 		return f, fmt.Errorf("tolerance %v Pa: %w: wanted above zero", float64(a.Tolerance), ErrRange)
@@ -90,7 +89,7 @@ func NewForecast(a Aim) (Forecast, error) {
 		x := float64(i) / (forecastNodes - 1)
 		f.place[i] = scale * math.Sinh(from+(to-from)*x)
 		p := unit.Pascal(f.place[i])
-		r, err := a.Handling.rate(p, f.rising)
+		r, err := a.Handling.rate(p, f.sign() > 0)
 		if err != nil {
 			return f, err
 		}
@@ -106,12 +105,17 @@ func NewForecast(a Aim) (Forecast, error) {
 	return f, nil
 }
 
+// sign is 1 where the pressure is to rise and -1 where it is to fall.
+func (f *Forecast) sign() float64 {
+	if f.aim.Target > f.aim.From {
+		return 1
+	}
+	return -1
+}
+
 // modelRate returns r(p), that of the nearer end beyond the ends.
 func (f *Forecast) modelRate(p float64) float64 {
-	sign := 1.0
-	if !f.rising {
-		sign = -1
-	}
+	sign := f.sign()
 	low, high := 0, forecastNodes-1
 	if sign*(p-f.place[low]) <= 0 {
 		return f.rate[low]
@@ -147,10 +151,7 @@ func (f *Forecast) See(at time.Duration, p, setpoint unit.Pascal) error {
 		return fmt.Errorf("reading at %v: %w: not after the one before, at %v", at, ErrRange, f.seen)
 	}
 	dt := (at - f.seen).Seconds()
-	sign := 1.0
-	if !f.rising {
-		sign = -1
-	}
+	sign := f.sign()
 	mid := 0.5 * (float64(p) + f.p)
 	behind := sign * (float64(f.aim.Target) - mid)
 	if setpoint > 0 && f.setpoint > 0 {
@@ -206,14 +207,14 @@ func (f *Forecast) learn(elapsed float64) {
 	follows, limited := f.xx-f.xy*f.xy/f.yy, f.xx-f.xm*f.xm/f.mm
 	switch {
 	case follows < 0.1*limited:
-		f.followed, f.limited = f.followed+w, 0
+		f.limited = 0
 		f.lambda = min(4*f.aimFollow(), max(0.25*f.aimFollow(), f.yy/f.xy))
 		f.k = max(f.k, f.xm/f.mm) // what is seen, the valve lets through
 	case limited < 0.5*follows:
 		if f.limited == 0 { // what was before does not count
 			f.moved, f.model = b.moved, b.model
 		}
-		f.followed, f.limited = 0, f.limited+w
+		f.limited += w
 		if f.limited > 1 {
 			f.k = min(50, max(0.02, f.moved/f.model))
 		}
@@ -236,10 +237,7 @@ func (f *Forecast) Left(coreWait time.Duration) (wait time.Duration, ok bool) {
 	if !f.started {
 		return 0, false
 	}
-	sign := 1.0
-	if !f.rising {
-		sign = -1
-	}
+	sign := f.sign()
 	target, tolerance := float64(f.aim.Target), float64(f.aim.Tolerance)
 	left := sign * (target - f.level)
 	if left <= 0 || f.aim.Controlled && left <= tolerance {
@@ -271,10 +269,7 @@ func (f *Forecast) Left(coreWait time.Duration) (wait time.Duration, ok bool) {
 // before the target, and the rate at near: ∫dp/rate by the midpoint rule in
 // stretches equal in the logarithm of what is left.
 func (f *Forecast) between(far, near float64) (seconds, rate float64, ok bool) {
-	sign := 1.0
-	if !f.rising {
-		sign = -1
-	}
+	sign := f.sign()
 	const stretches = 150
 	shrink := math.Pow(near/far, 1.0/stretches)
 	for range stretches {
