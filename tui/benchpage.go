@@ -82,6 +82,13 @@ func drawEmission(a frame.Area, s *live.Snapshot) {
 		if p.Extrapolated {
 			x = a.Text(x+1, 0, "extrapolated", frame.Caution)
 		}
+		if others := otherBranches(s); len(others) > 0 && a.W >= 100 {
+			text := "or " + fixed(others[0].Emission.Nanometres(), 0) + " nm"
+			if others[0].Conversion > 0 {
+				text += ", " + fixed(float64(others[0].Conversion)*100, 1) + " %"
+			}
+			x = a.Text(x+2, 0, text, frame.Band)
+		}
 		if s.ResidualKnown {
 			x = a.Text(x+3, 0, "residual ", frame.Faint)
 			a.Text(x, 0, signed(s.Residual.Nanometres(), 1)+" nm", frame.Measured)
@@ -191,7 +198,7 @@ func drawPressure(a frame.Area, s *live.Snapshot, v view) {
 		return
 	}
 	y = y.Padded(0.08, 0.05)
-	p := chart.New(body, chart.Axes{X: t.x(), Y: y, YTicks: chart.Ticks(y, max(2, body.H/2)), LabelWidth: yLabel})
+	p := chart.New(body, chart.Axes{X: t.x(), Y: y, YTicks: chart.Ticks(y, rowTicks(body.H)), LabelWidth: yLabel})
 	if s.Target != 0 {
 		p.Level(s.Target.Bar(), frame.Target)
 		p.Label(s.Target.Bar(), "target "+pressureText(s.Target), frame.Target)
@@ -234,7 +241,7 @@ func drawResidual(a frame.Area, s *live.Snapshot, v view) {
 	}
 	y.Include(0)
 	y = y.Padded(0.1, 2)
-	p := chart.New(body, chart.Axes{X: t.x(), Y: y, XTicks: t.ticks, YTicks: chart.Ticks(y, max(2, body.H/2)), LabelWidth: yLabel})
+	p := chart.New(body, chart.Axes{X: t.x(), Y: y, XTicks: t.ticks, YTicks: chart.Ticks(y, rowTicks(body.H)), LabelWidth: yLabel})
 	p.Level(0, frame.Predicted)
 	t.drawCursor(p)
 	p.HistoryOf(s.Residuals.Since(t.start()), times(1e9), 2*staleAfter(s), frame.Measured)

@@ -98,7 +98,7 @@ func drawStrip(a frame.Area, s *live.Snapshot, t timeAxis, st strip, first, last
 		return
 	}
 	axes.Y = y.Padded(0.1, st.least)
-	axes.YTicks = chart.Ticks(axes.Y, max(2, body.H/2))
+	axes.YTicks = chart.Ticks(axes.Y, rowTicks(body.H))
 	p := chart.New(body, axes)
 	t.drawCursor(p)
 	gap := 2 * staleAfter(s)

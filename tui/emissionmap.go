@@ -3,6 +3,7 @@ package tui
 import (
 	"math"
 
+	"barline/model/emission"
 	"barline/model/live"
 	"barline/model/reading"
 	"barline/model/unit"
@@ -109,7 +110,7 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 		return
 	}
 	p := chart.New(body, chart.Axes{
-		X: x, Y: y, XTicks: chart.Ticks(x, max(2, a.W/8)), YTicks: chart.Ticks(y, max(2, body.H/2)), LabelWidth: 4,
+		X: x, Y: y, XTicks: chart.Ticks(x, max(2, a.W/8)), YTicks: chart.Ticks(y, rowTicks(body.H)), LabelWidth: 4,
 	})
 	if a.Style().ASCII { // without Braille, shading hides the curve
 		p.Dashes(low, frame.Band)
@@ -131,6 +132,9 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 	if s.CoreKnown && s.Prediction.Valid && s.Prediction.Emission != 0 {
 		p.Mark(chart.Point{X: here.X, Y: s.Prediction.Emission.Nanometres()}, '◇', frame.Predicted)
 	}
+	for _, b := range otherBranches(s) {
+		p.Mark(chart.Point{X: here.X, Y: b.Emission.Nanometres()}, '◇', frame.Band)
+	}
 	if s.CoreKnown {
 		p.Mark(here, '●', frame.Measured)
 	}
@@ -141,6 +145,15 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 		pane.Right(pane.W-1, 0, "now at "+pressureText(s.Core)+" →", frame.Predicted)
 	}
 	drawMapKey(p.Pane(), s)
+}
+
+// otherBranches are the lobes beside the strongest that the source may emit.
+func otherBranches(s *live.Snapshot) []emission.Branch {
+	p := &s.Prediction
+	if !p.Valid || !s.CoreKnown || p.BranchCount < 2 {
+		return nil
+	}
+	return p.Branches[1:min(p.BranchCount, len(p.Branches))]
 }
 
 // drawMapKey explains the marks where the chart is empty by nature: emission

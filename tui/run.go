@@ -44,7 +44,7 @@ const (
 	redrawEvery = 33 * time.Millisecond
 	// flushesPerSecond is how often bubbletea looks for a new frame to send: a
 	// frame must not wait for it as long as it waited to be drawn.
-	flushesPerSecond = 120
+	flushesPerSecond = 60
 	// plainEvery is that without charts, which is for slow lines.
 	plainEvery = 2 * time.Second
 	// lateAfter is how long the bench may say nothing before the screen says

@@ -102,7 +102,7 @@ func drawApart(a frame.Area, s *live.Snapshot) {
 	ry.Include(0)
 	rx, ry = rx.Padded(0.03, 0.1), ry.Padded(0.1, 2)
 	p := chart.New(body, chart.Axes{
-		X: rx, Y: ry, XTicks: chart.Ticks(rx, max(2, a.W/8)), YTicks: chart.Ticks(ry, max(2, body.H/2)), LabelWidth: yLabel,
+		X: rx, Y: ry, XTicks: chart.Ticks(rx, max(2, a.W/8)), YTicks: chart.Ticks(ry, rowTicks(body.H)), LabelWidth: yLabel,
 	})
 	p.Level(0, frame.Predicted)
 	for _, m := range points {

@@ -115,3 +115,7 @@ func (t timeAxis) change(view *trend.View) (mean, change float64, ok bool) {
 	}
 	return sum / float64(n), tail/float64(tails) - head/float64(heads), true
 }
+
+// rowTicks is how many labelled places suit an upright axis of h rows: close
+// in a small chart, and not a ladder in a large one.
+func rowTicks(h int) int { return max(2, min(h/2, 4+h/8)) }

@@ -351,6 +351,11 @@ func Branches() *live.Snapshot {
 		}
 	}
 	s.Prediction.Extrapolated = true
+	s.Prediction.Answer = emission.Anchored
+	s.Prediction.Sigma = 0.6 * unit.Nanometre
+	s.Prediction.BranchCount = 2
+	s.Prediction.Branches[0] = emission.Branch{Emission: s.Prediction.Emission, Conversion: 0.051}
+	s.Prediction.Branches[1] = emission.Branch{Emission: 241 * unit.Nanometre, Conversion: 0.038}
 	s.Prediction.Verdicts[0].Value, s.Prediction.Verdicts[0].OK = 16.2, false
 	s.Prediction.Verdicts[1].Value, s.Prediction.Verdicts[1].OK = 31.4, false
 	return s
