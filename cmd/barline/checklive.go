@@ -68,6 +68,7 @@ func readOnce(ctx context.Context, b *bench.Bench, spec bench.Instrument) liveRe
 	if b.Emission.Wavelengths == "air" {
 		in.WavelengthsInAir()
 	}
+	in.MadeBy(b.Pulse.Wavelength, b.Emission.Reports == "peak")
 	opener, err := link.NewOpener(spec)
 	if err != nil {
 		r.Problem = err.Error()

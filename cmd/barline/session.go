@@ -188,6 +188,7 @@ func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []b
 			in.WavelengthsInAir()
 		}
 		in.CountFrom(air)
+		in.MadeBy(s.bench.Pulse.Wavelength, s.bench.Emission.Reports == "peak")
 		open, err := s.opener(spec)
 		if err != nil {
 			return nil, coded{exitUsage, err}

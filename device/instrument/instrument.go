@@ -109,8 +109,22 @@ func New(spec bench.Instrument, ambient unit.Pascal) (*Instrument, error) {
 // WavelengthsInAir says that the instrument reports wavelengths in air, which
 // become those in vacuum from now on.
 func (in *Instrument) WavelengthsInAir() {
+	p, _ := in.protocol.(*linesProtocol)
 	for i := range in.channels {
-		in.channels[i].air = true
+		// The wavelengths of a whole spectrum are converted pixel by pixel.
+		in.channels[i].air = p == nil || p.fields[i] != wholeSpectrum
+	}
+	if p != nil && p.pixels != nil {
+		p.pixels.air = true
+	}
+}
+
+// MadeBy says by which pump the light is made, and whether the emission is to
+// be told by its peak instead of its centroid. Instruments that send whole
+// spectra need it; for others it means nothing.
+func (in *Instrument) MadeBy(pump unit.Metre, peak bool) {
+	if p, ok := in.protocol.(*linesProtocol); ok && p.pixels != nil {
+		p.pixels.pump, p.pixels.peak = pump, peak
 	}
 }
 

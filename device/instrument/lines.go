@@ -20,7 +20,8 @@ type linesProtocol struct {
 	end      string
 	timeout  time.Duration
 	channels []*channel
-	fields   []int // of each channel, its place among the values
+	fields   []int   // of each channel, its place among the values; wholeSpectrum
+	pixels   *pixels // finds the emission in the list of the pattern; nil where none is used
 
 	text   liner
 	values []float64
@@ -47,12 +48,47 @@ func newLines(in *Instrument) (*linesProtocol, error) {
 	for i := range in.channels {
 		c := &in.channels[i]
 		at, ok := p.pattern.Field(c.spec.Field)
-		if !ok {
+		if c.spec.Field != "" && c.spec.Field == p.pattern.List() {
+			if at, err = wholeSpectrum, p.useList(c); err != nil {
+				return nil, err
+			}
+		} else if !ok {
 			return nil, fmt.Errorf("channel %q: field is %q: expected one of %q", c.spec.Name, c.spec.Field, p.pattern.Names())
 		}
 		p.channels, p.fields = append(p.channels, c), append(p.fields, at)
 	}
 	return p, nil
+}
+
+// wholeSpectrum stands for a channel that is found in the list of the pattern.
+const wholeSpectrum = -1
+
+func (p *linesProtocol) useList(c *channel) (err error) {
+	switch c.spec.Role {
+	case reading.Emission, reading.EmissionWidth, reading.EmissionStrength:
+	default:
+		return fmt.Errorf("channel %q: {%s...} is a whole spectrum: expected the role emission, emission-width or emission-strength", c.spec.Name, c.spec.Field)
+	}
+	if p.pixels == nil {
+		p.pixels, err = newPixels(p.in.spec)
+	}
+	return err
+}
+
+// take appends the readings of the line that was parsed last.
+func (p *linesProtocol) take(dst []reading.Reading, at reading.Stamp) []reading.Reading {
+	var f found
+	if p.pixels != nil {
+		f = p.pixels.find(p.values[len(p.pattern.Names()):])
+	}
+	for i, c := range p.channels {
+		if p.fields[i] == wholeSpectrum {
+			dst = append(dst, p.pixels.read(c, f, at))
+			continue
+		}
+		dst = append(dst, c.read(p.values[p.fields[i]], at))
+	}
+	return dst
 }
 
 func (p *linesProtocol) steps() int {
@@ -106,10 +142,10 @@ func (p *linesProtocol) drain(line link.Line, now Now, dst []reading.Reading) ([
 		}
 		p.joined = true
 		p.in.counts.answered.Add(1)
-		for i, c := range p.channels {
-			r := c.read(p.values[p.fields[i]], at)
-			r.Taken.Mono = time.Duration(whole) // its place, until the number of lines is known
-			dst = append(dst, r)
+		first := len(dst)
+		dst = p.take(dst, at)
+		for i := range dst[first:] {
+			dst[first+i].Taken.Mono = time.Duration(whole) // its place, until the number of lines is known
 		}
 	}
 	if whole == 0 {
@@ -161,10 +197,7 @@ func (p *linesProtocol) step(_ int, line link.Line, now Now, dst []reading.Readi
 	case err != nil:
 		return failure(dst, p.channels, at, err.Error()), nil
 	}
-	for i, c := range p.channels {
-		dst = append(dst, c.read(p.values[p.fields[i]], at))
-	}
-	return dst, nil
+	return p.take(dst, at), nil
 }
 
 // askOnce asks for a line and reads until one fits. Refused is why the last

@@ -8,6 +8,7 @@ import (
 
 	"barline/model/form"
 	"barline/model/reading"
+	"barline/model/unit"
 )
 
 // Where keys mean something: on which lines, and for which protocols.
@@ -15,6 +16,7 @@ var (
 	serialKeys   = []string{"baud", "data_bits", "parity", "stop_bits"}
 	protocolKeys = map[string][]string{
 		"pattern": {Lines}, "checksum": {Lines}, "streams": {Lines}, "identify": {SCPI}, "hold": {SCPI, Lines},
+		"calibration": {Lines}, "dark": {Lines}, "threshold": {Lines}, "saturation": {Lines},
 		"resume": {SCPI, Lines}, "terminator": {SCPI, Lines}, "ask": {Lines}, "errors": {SCPI}, "echo": {ModbusRTU, SCPI, Lines},
 	}
 	channelKeys = map[string][]string{
@@ -129,6 +131,14 @@ func (c checker) protocol(path string, inst *Instrument) (fields []string) {
 				c.Wrong(fmt.Sprintf("%s.%s[%d]", path, key, k), "expected one command without a line break")
 			}
 		}
+	}
+	for k, text := range inst.Calibration {
+		if _, err := unit.ParseLength(text); err != nil {
+			c.Wrong(fmt.Sprintf("%s.calibration[%d]", path, k), "%s", form.Reason(err))
+		}
+	}
+	if c.Has(path+".calibration") && len(inst.Calibration) < 2 {
+		c.Wrong(path+".calibration", "expected the wavelength of pixel 0 and the step to the next at least, such as [\"190 nm\", \"0.4 nm\"]")
 	}
 	if inst.Streams && c.Has(path+".ask") {
 		c.About(path+".ask", "is for instruments that are asked, and this one has streams = true")

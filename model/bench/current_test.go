@@ -43,3 +43,63 @@ func TestCurrentLoopScale(t *testing.T) {
 		t.Errorf("resolution %v Pa, gas factor %v; want 200, 1.5", ch.Step, ch.GasFactor)
 	}
 }
+
+const whole = `
+[[instrument]]
+name = "spectrometer"
+protocol = "lines"
+address = "192.168.0.8:4000"
+pattern = "SP {counts...}"
+calibration = ["190 nm", "0.4 nm", "-1e-5 nm"]
+dark = 120
+threshold = 50.5
+saturation = 65535
+
+[[instrument.channel]]
+name = "emission"
+role = "emission"
+field = "counts"
+scale = "1 nm"
+`
+
+func TestWholeSpectrum(t *testing.T) {
+	sample := string(Sample())
+	head, _, _ := strings.Cut(sample, "[[instrument]]")
+	_, tail, _ := strings.Cut(sample, "[emission]")
+	b, err := Parse([]byte(head+whole+"\n[emission]"+tail), "whole.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	if in := b.Instrument[0]; in.Threshold != 50.5 || in.Dark != 120 || len(in.Calibration) != 3 {
+		t.Errorf("%+v", in)
+	}
+	for _, wrong := range []string{`["190 nm"]`, `["190 nm", "0.4"]`, `["190 nm", "0.4 bar"]`} {
+		text := strings.Replace(whole, `["190 nm", "0.4 nm", "-1e-5 nm"]`, wrong, 1)
+		if _, err := Parse([]byte(head+text+"\n[emission]"+tail), "whole.toml"); err == nil || !strings.Contains(err.Error(), "calibration") {
+			t.Errorf("calibration = %s: %v", wrong, err)
+		}
+	}
+}
+
+// Gauges of different range may share a role; twins may not.
+func TestGaugesThatShareARole(t *testing.T) {
+	sample := string(Sample())
+	head, _, _ := strings.Cut(sample, "[[instrument]]")
+	_, tail, _ := strings.Cut(sample, "[emission]")
+	second := `
+[[instrument.channel]]
+name = "fine"
+role = "cell-a-pressure"
+unit = 2
+register = 0
+scale = "1 mbar"
+range = ["0 bar", "1 bar"]
+`
+	if _, err := Parse([]byte(head+loop+second+"\n[emission]"+tail), "two.toml"); err != nil {
+		t.Error(err)
+	}
+	twin := strings.Replace(second, `"1 bar"]`, `"16 bar"]`, 1)
+	if _, err := Parse([]byte(head+loop+twin+"\n[emission]"+tail), "two.toml"); err == nil || !strings.Contains(err.Error(), "has this role already") {
+		t.Errorf("twins: %v", err)
+	}
+}

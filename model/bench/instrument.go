@@ -35,6 +35,12 @@ type Instrument struct {
 	Hold     []string    `toml:"hold"`                                  // commands sent on HOLD, in order
 	Resume   []string    `toml:"resume"`                                // commands sent before the first setpoint after a HOLD
 
+	// Of an instrument that sends whole spectra, as a list in its pattern.
+	Calibration []string `toml:"calibration"` // wavelength of pixel i is c0 + c1 i + c2 i² + …, as written
+	Dark        float64  `toml:"dark"`        // counts of a pixel without light
+	Threshold   float64  `toml:"threshold"`   // counts above dark that the highest pixel must reach
+	Saturation  float64  `toml:"saturation"`  // counts at which a pixel is full; 0 where not known
+
 	Terminator string      `toml:"terminator" form:"oneof=lf|crlf|cr"`     // scpi, lines: what is sent; any is understood. Default lf
 	Ask        string      `toml:"ask"`                                    // lines: text that asks for a line; without it the instrument streams
 	Errors     string      `toml:"errors"`                                 // scpi: query of the error queue, sent after each write
