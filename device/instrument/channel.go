@@ -63,12 +63,13 @@ func (c *channel) read(number float64, at reading.Stamp) reading.Reading {
 		return c.fail(at, "the instrument says that it is over its range")
 	}
 	r := reading.Reading{Channel: c.spec.Name, Role: c.spec.Role, Taken: at, Status: reading.Good}
-	if len(c.spec.Span) > 0 {
-		if number <= failedLow || number >= failedHigh {
-			return c.fail(at, fmt.Sprintf("the loop carries %s mA: the transmitter reports a failure or the wire is broken", short(number)))
+	if c.spec.Milliamp > 0 {
+		current := number * c.spec.Milliamp
+		if current <= failedLow || current >= failedHigh {
+			return c.fail(at, fmt.Sprintf("the loop carries %s mA: the transmitter reports a failure or the wire is broken", short(current)))
 		}
-		if number < lowestCurrent || number > highestCurrent {
-			r.Status, r.Reason = reading.OutOfSpecification, fmt.Sprintf("the loop carries %s mA, outside 3.8 mA to 20.5 mA", short(number))
+		if current < lowestCurrent || current > highestCurrent {
+			r.Status, r.Reason = reading.OutOfSpecification, fmt.Sprintf("the loop carries %s mA, outside 3.8 mA to 20.5 mA", short(current))
 		}
 	}
 	v := c.spec.SI(number)

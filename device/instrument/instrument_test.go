@@ -365,7 +365,7 @@ func TestPolledLines(t *testing.T) {
 // NAMUR NE 43 (2003): 3.8 to 20.5 mA are measured values, 3.6 mA or less and
 // 21 mA or more are failures.
 func TestCurrentLoop(t *testing.T) {
-	c, err := newChannel(bench.Channel{Name: "p", Role: reading.SupplyPressure, Span: []string{"0 bar", "16 bar"}, Factor: 1e5, Zero: -4e5, Low: 0, High: 16e5, Symbol: "Pa"}, 0)
+	c, err := newChannel(bench.Channel{Name: "p", Role: reading.SupplyPressure, Milliamp: 1, Factor: 1e5, Zero: -4e5, Low: 0, High: 16e5, Symbol: "Pa"}, 0)
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -81,6 +81,25 @@ func TestWholeSpectrum(t *testing.T) {
 	}
 }
 
+func TestCurrentInMicroamps(t *testing.T) {
+	sample := string(Sample())
+	head, _, _ := strings.Cut(sample, "[[instrument]]")
+	_, tail, _ := strings.Cut(sample, "[emission]")
+	text := strings.Replace(loop, "span =", "current = \"1 uA\"\nspan =", 1)
+	b, err := Parse([]byte(head+text+"\n[emission]"+tail), "loop.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	ch := b.Instrument[0].Channel[0]
+	if got := ch.SI(12000); math.Abs(got-8e5) > 1e-6 || ch.Milliamp != 1e-3 {
+		t.Errorf("12000 uA is %v Pa, %v mA a count; want 8 bar", got, ch.Milliamp)
+	}
+	text = strings.Replace(loop, "span =", "current = \"1 V\"\nspan =", 1)
+	if _, err := Parse([]byte(head+text+"\n[emission]"+tail), "loop.toml"); err == nil || !strings.Contains(err.Error(), "expected a current") {
+		t.Errorf("a voltage: %v", err)
+	}
+}
+
 // Gauges of different range may share a role; twins may not.
 func TestGaugesThatShareARole(t *testing.T) {
 	sample := string(Sample())

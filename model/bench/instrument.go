@@ -70,7 +70,8 @@ type Channel struct {
 	Gauge    bool         `toml:"gauge"`                                  // pressure above ambient
 	Range    []string     `toml:"range"`                                  // lowest and highest value in specification, as written
 
-	Span       []string    `toml:"span"`                              // instead of scale: the number is a current in mA, and these are the quantities at 4 mA and at 20 mA, as written
+	Span       []string    `toml:"span"`                              // instead of scale: the number is a current, and these are the quantities at 4 mA and at 20 mA, as written
+	Current    string      `toml:"current"`                           // with span: the current that the number 1 means, as written; default 1 mA
 	GasFactor  float64     `toml:"gas_factor"`                        // multiplies the reading of a gauge that depends on the gas; 0 is none
 	Resolution string      `toml:"resolution"`                        // a setpoint read back this near to the one sent was taken, as written
 	Stale      unit.Second `toml:"stale" form:"least=1 ms; most=1 h"` // instead of that of [limits]; 0 is that
@@ -78,6 +79,7 @@ type Channel struct {
 	Factor    float64 // SI per count
 	Zero      float64 // SI at the number 0; above ambient where Gauge
 	Low, High float64 // SI, the range in specification; above ambient where Gauge. Equal where no range is given
+	Milliamp  float64 // mA per count; 0 where no span is given
 	Step      float64 // SI, the resolution; 0 where none is given
 	Symbol    string  // unit that SI returns, such as "Pa"
 }

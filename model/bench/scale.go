@@ -106,6 +106,9 @@ func (c checker) scale(path string, ch *Channel) {
 		c.current(path, ch, k)
 		return
 	}
+	if c.Has(path + ".current") {
+		c.About(path+".current", "goes with span, the quantities at 4 mA and at 20 mA")
+	}
 	factor, err := k.span(ch.Scale)
 	switch {
 	case err != nil && c.Has(path+".scale"):
@@ -163,11 +166,38 @@ func (c checker) current(path string, ch *Channel, k kind) {
 		c.Wrong(path+".span", "expected two different quantities")
 		return
 	}
-	ch.Factor = (v[1] - v[0]) / 16
-	ch.Zero = v[0] - 4*ch.Factor
+	ch.Milliamp = 1
+	if c.Has(path + ".current") {
+		if ch.Milliamp = milliamps(ch.Current); !(ch.Milliamp > 0) {
+			c.Wrong(path+".current", "expected a current such as \"1 uA\"")
+			return
+		}
+	}
+	slope := (v[1] - v[0]) / 16 // SI per mA
+	ch.Factor = slope * ch.Milliamp
+	ch.Zero = v[0] - 4*slope
 	if c.Has(path + ".range") {
 		c.limits(path+".range", ch, k)
 	}
+}
+
+// milliamps reads a current in mA, or returns 0 where text is none.
+func milliamps(text string) float64 {
+	number, name := unit.Cut(text)
+	share, err := unit.ParseFraction(number + " %")
+	if err != nil {
+		return 0
+	}
+	v := float64(share) * 100
+	switch name {
+	case "A":
+		return v * 1e3
+	case "mA":
+		return v
+	case "uA", "µA":
+		return v * 1e-3
+	}
+	return 0
 }
 
 // limits fills in the range in specification.
