@@ -33,8 +33,7 @@ var bindings = []binding{
 	{key: "n", label: "n", short: "note", what: "note for the record", press: pressNote},
 	{key: "k", label: "k", short: "seen", what: "the alarm on top is seen", press: pressSeen},
 	{key: "l", label: "l", short: "alarms", what: "list of alarms", press: pressAlarms},
-	{key: "w", label: "w", what: "put the listed alarm aside", press: pressAside},
-	{key: "e", label: "e", what: "reset the listed alarm", press: pressReset},
+	{key: "w", also: []string{"e"}, label: "w e", what: "listed alarm: aside, reset", press: pressListed},
 	{key: "q", label: "q", short: "leave", what: "HOLD and leave, asks once", press: pressLeave},
 	{key: "ctrl+c", label: "Ctrl-C", what: "HOLD and leave at once", press: pressLeaveNow},
 	{key: "1", also: []string{"2", "3", "4"}, label: "1–4", what: "bench, scan, drift, log", screen: true, press: pressPage},
@@ -49,6 +48,7 @@ var bindings = []binding{
 	{key: "pgup", also: []string{"pgdown"}, label: "PgUp/Dn", what: "a page up, down in a list", screen: true, press: pressLine},
 	{key: "/", label: "/", what: "find in the record", screen: true, press: pressFind},
 	{key: "?", label: "?", what: "this list", screen: true, press: pressHelp},
+	{key: "h", label: "h", what: "how to begin", screen: true, press: pressGreet},
 	{key: "esc", label: "Esc", what: "close what is open", screen: true, press: pressClose},
 }
 

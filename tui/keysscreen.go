@@ -100,6 +100,10 @@ func pressLine(v view, s *live.Snapshot, key string) (view, []live.Intent) {
 	return v, nil
 }
 
+func pressGreet(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
+	return v.open(greetOverlay), nil
+}
+
 func pressFind(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 	v.page, v.overlay, v.text = Log, findOverlay, v.find
 	return v, nil
@@ -140,35 +144,26 @@ func pressSeen(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 // person who puts one aside means to be back long before.
 const asideFor = time.Hour
 
-func pressAside(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+// pressListed puts the alarm chosen in the list aside (w), brings it back, or
+// resets it (e).
+func pressListed(v view, s *live.Snapshot, key string) (view, []live.Intent) {
 	al, some := v.chosen(s)
 	switch {
 	case v.overlay != alarmOverlay || !some:
 		v.message = "open the list of alarms (l) and choose one first"
 	case s.ReadOnly:
 		v.message = secondScreen
+	case key == "e" && al.Active:
+		v.message = al.Name + " still holds: mend the cause first"
+	case key == "e":
+		v.message = "reset: " + al.Name
+		return v, []live.Intent{live.Reset{Alarm: al.Name}}
 	case al.Hidden:
 		v.message = "brought back: " + al.Name
 		return v, []live.Intent{live.Unshelve{Alarm: al.Name}}
 	default:
 		v.message = "put aside for an hour: " + al.Name
 		return v, []live.Intent{live.Shelve{Alarm: al.Name, For: asideFor}}
-	}
-	return v, nil
-}
-
-func pressReset(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
-	al, some := v.chosen(s)
-	switch {
-	case v.overlay != alarmOverlay || !some:
-		v.message = "open the list of alarms (l) and choose one first"
-	case s.ReadOnly:
-		v.message = secondScreen
-	case al.Active:
-		v.message = al.Name + " still holds: mend the cause first"
-	default:
-		v.message = "reset: " + al.Name
-		return v, []live.Intent{live.Reset{Alarm: al.Name}}
 	}
 	return v, nil
 }

@@ -116,7 +116,8 @@ func drawHelp(a frame.Area) {
 		mark, text string
 		ink        frame.Ink
 	}{
-		{"● ▲ ▼", "measured: now, with pressure rising, with pressure falling", frame.Measured},
+		{"HOLD", "shuts inlet, pump and vent, and freezes the setpoint", frame.Hold},
+		{"● ▲ ▼", "measured: now, pressure rising, falling; n ! c: note, alarm, command", frame.Measured},
 		{"◇ ╌", "predicted, by the answer beside it; band: one standard uncertainty", frame.Predicted},
 		{"✕ ○ △ ◆", "failure, function check, out of specification, maintenance", frame.Alarm},
 	}
@@ -138,11 +139,6 @@ func drawHelp(a frame.Area) {
 		half.Text(8, y[side], k.what, frame.Plain)
 		y[side]++
 	}
-	note := b.Sub(37, most-2, 39, 2)
-	note.Right(7, 0, "HOLD", frame.Hold)
-	note.Text(8, 0, "shuts valves, freezes setpoint", frame.Faint)
-	note.Right(7, 1, "n ! c", frame.Strong)
-	note.Text(8, 1, "on charts: note, alarm, command", frame.Faint)
 	for i, m := range legend {
 		b.Right(7, most+i, m.mark, m.ink)
 		b.Text(8, most+i, m.text, frame.Faint)

@@ -35,7 +35,6 @@ type Options struct {
 	Style Style
 	In    io.Reader // nil is the standard input
 	Out   io.Writer // nil is the standard output
-	Greet bool      // begin with how to begin
 	Plain bool      // begin without charts, for slow lines
 }
 
@@ -63,8 +62,8 @@ func Run(ctx context.Context, src Source, o Options) error {
 	defer end()
 	m := &model{ctx: inner, src: src, style: o.Style, s: src.Snapshot(), moved: time.Now()}
 	m.v.plain = o.Plain
-	if o.Greet {
-		m.v.overlay = greetOverlay
+	if m.s != nil && m.s.Simulated {
+		m.v.message = "new here? h shows how to begin"
 	}
 	options := []tea.ProgramOption{
 		tea.WithContext(inner), tea.WithAltScreen(), tea.WithoutSignalHandler(), tea.WithFPS(flushesPerSecond), tea.WithOutput(o.Out),
