@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"io"
+	"math"
 	"os"
 	"os/signal"
 	"strings"
@@ -25,6 +26,7 @@ import (
 // fitFlags are the flags of fit.
 type fitFlags struct {
 	bench, csv, name string
+	discrepancy      string
 	scan             int
 	free             []string
 	dry, asJSON      bool
@@ -65,7 +67,8 @@ those that are not in the cache yet are computed first, which takes minutes.`,
 	flags.StringVarP(&f.bench, "bench", "b", "", "bench file; default: the one in the logbook")
 	flags.StringVar(&f.csv, "csv", "", "points from this file instead of a logbook")
 	flags.IntVar(&f.scan, "scan", 0, "which scan of the logbook, from 1; 0 is the last")
-	flags.StringSliceVar(&f.free, "free", []string{"index-scale", "energy", "gauge-zero"}, "corrections to fit")
+	flags.StringSliceVar(&f.free, "free", allCorrections(), "corrections to fit")
+	flags.StringVar(&f.discrepancy, "discrepancy", calibration.DefaultDiscrepancy.String(), "how far the model itself may be off, whatever its corrections")
 	flags.StringVar(&f.name, "name", "", "name of the calibration; default: the scan and the date")
 	flags.BoolVar(&f.dry, "dry-run", false, "print the calibration, write nothing")
 	flags.BoolVar(&f.asJSON, "json", false, "print the result as one JSON object")
@@ -80,6 +83,9 @@ func (f *fitFlags) run(ctx context.Context, folder string, out, progress io.Writ
 			return usage("--free: %w", err)
 		}
 		request.Free = append(request.Free, p)
+	}
+	if err := request.Discrepancy.UnmarshalText([]byte(f.discrepancy)); err != nil || !(request.Discrepancy > 0) {
+		return usage("--discrepancy %q: expected a length above zero such as %q", f.discrepancy, "0.5 nm")
 	}
 	points, err := f.points(folder)
 	if err != nil {
@@ -114,6 +120,15 @@ func (f *fitFlags) run(ctx context.Context, folder string, out, progress io.Writ
 	}
 	printCalibration(out, c)
 	return nil
+}
+
+// allCorrections lists what can be fitted; what is known of each before keeps
+// apart what the points cannot.
+func allCorrections() (names []string) {
+	for p := range calibration.Parameter(calibration.ParameterCount) {
+		names = append(names, p.String())
+	}
+	return names
 }
 
 // priorOf is what is known of each correction before the fit.
@@ -164,6 +179,12 @@ func printCalibration(w io.Writer, c *calibration.Calibration) {
 		unit.Pascal(c.PressurePa[0]), unit.Pascal(c.PressurePa[1]), unit.Joule(c.EnergyJ[0]), unit.Joule(c.EnergyJ[1]))
 	fmt.Fprintf(w, "measured minus predicted: %.2f nm rms before, %.2f nm after; chi² %.2f per degree of freedom, %d degrees\n",
 		1e9*c.Before, 1e9*c.After, c.Reduced, c.Freedom)
+	fmt.Fprintf(w, "beyond all corrections the answer is bent by up to %.2f nm between these pressures\n", c.MostBent().Nanometres())
+	for _, v := range c.Values {
+		if v.Prior > 0 && math.Abs(v.Value) > 3*v.Prior {
+			fmt.Fprintf(w, "%s is %.1f times what was thought of it: something else may be wrong\n", v.Parameter, math.Abs(v.Value)/v.Prior)
+		}
+	}
 	for _, a := range c.Alike {
 		fmt.Fprintf(w, "%s and %s are hardly told apart: correlation %+.3f\n", a.One, a.Other, a.Correlation)
 	}

@@ -48,17 +48,23 @@ func (f *fitFlags) model(ctx context.Context, s emission.Setup, points []calibra
 	return calibration.NewModel(b.Build(append(nodes, fresh...)))
 }
 
+// Ranges are widened to these marks, so that another scan of the same bench
+// finds its nodes in the cache.
+const (
+	nodeTemperature = 22 // degC
+	nodePressure    = 0.5 * unit.Bar
+)
+
 // specOf is the bench over the range of the usable points and a little more,
 // so that corrections have room.
 func specOf(s emission.Setup, points []calibration.Point) (anchor.Spec, error) {
-	low, high, warm, n := math.Inf(1), math.Inf(-1), 0.0, 0.0
+	low, high, n := math.Inf(1), math.Inf(-1), 0.0
 	least, most := float64(s.Pulse.Energy)*0.8, float64(s.Pulse.Energy)*1.2
 	for _, p := range points {
 		if !p.Status.Usable() || !(p.Input.Pressure > 0) || !(p.Input.Temperature > 0) {
 			continue
 		}
-		low, high = math.Min(low, float64(p.Input.Pressure)), math.Max(high, float64(p.Input.Pressure))
-		warm, n = warm+float64(p.Input.Temperature), n+1
+		low, high, n = math.Min(low, float64(p.Input.Pressure)), math.Max(high, float64(p.Input.Pressure)), n+1
 		if e := float64(p.Input.Energy); e > 0 {
 			least, most = math.Min(least, e*0.9), math.Max(most, e*1.1)
 		}
@@ -66,10 +72,11 @@ func specOf(s emission.Setup, points []calibration.Point) (anchor.Spec, error) {
 	if n < 2 || !(high > low) {
 		return anchor.Spec{}, fmt.Errorf("%.0f usable points between %v and %v: expected at least two pressures: %w", n, unit.Pascal(low), unit.Pascal(high), calibration.ErrPoints)
 	}
-	room := math.Max((high-low)/10, 0.02*high)
+	step := float64(nodePressure)
+	from, to := math.Floor(0.98*low/step)*step, math.Ceil(1.02*high/step)*step
 	return anchor.Spec{
-		Gas: s.Gas, Fibre: s.Fibre, Pulse: s.Pulse, Plasma: s.Plasma, Temperature: unit.Kelvin(warm / n),
-		Pressure: [2]unit.Pascal{unit.Pascal(math.Max(low-room, low/2)), unit.Pascal(high + room)},
+		Gas: s.Gas, Fibre: s.Fibre, Pulse: s.Pulse, Plasma: s.Plasma, Temperature: unit.Celsius(nodeTemperature),
+		Pressure: [2]unit.Pascal{unit.Pascal(math.Max(from, low/2)), unit.Pascal(to)},
 		Energy:   [2]unit.Joule{unit.Joule(least), unit.Joule(most)},
 	}, nil
 }

@@ -17,7 +17,10 @@ type Calibration struct {
 	Digest      string      `json:"digest"`   // of the bench that the nodes belong to
 	Corrections Corrections `json:"corrections"`
 	Values      []Value     `json:"values"` // of what was fitted
-	Covariance  [][]float64 `json:"covariance"`
+	// BendM is what the answer is off by, smoothly over pressure, beyond all
+	// corrections: coefficients of Legendre polynomials over the range.
+	BendM      [bendTerms]float64 `json:"bend_m"`
+	Covariance [][]float64        `json:"covariance"` // of Values, then BendM
 
 	From       time.Time  `json:"from"`
 	To         time.Time  `json:"to"`
@@ -67,14 +70,14 @@ func (c *Calibration) Covers(in emission.Input) bool {
 }
 
 // Predict returns the emission at a measured input nearest to near, with the
-// uncertainty that the corrections leave, by numerical derivatives over each
-// of those that were fitted.
+// uncertainty that corrections and bend leave, by numerical derivatives.
 func (c *Calibration) Predict(m *Model, in emission.Input, near unit.Metre) (w, sigma unit.Metre, err error) {
-	e, err := m.nearest(in, &c.Corrections, near)
+	bent := unit.Metre(bend(c.BendM[:], in.Pressure, c.PressurePa))
+	e, err := m.nearest(in, &c.Corrections, near-bent)
 	if err != nil {
 		return 0, 0, err
 	}
-	slopes := make([]float64, len(c.Values))
+	slopes := make([]float64, len(c.Values), len(c.Values)+bendTerms)
 	for i, v := range c.Values {
 		q, err := ParseParameter(v.Parameter)
 		if err != nil {
@@ -98,11 +101,14 @@ func (c *Calibration) Predict(m *Model, in emission.Input, near unit.Metre) (w, 
 			slopes[i] = float64(e.Wavelength-b) / h
 		}
 	}
+	for k := range bendTerms {
+		slopes = append(slopes, legendre(k, in.Pressure, c.PressurePa))
+	}
 	variance := 0.0
-	for i := range slopes {
-		for j := range slopes {
-			variance += slopes[i] * slopes[j] * c.Covariance[i][j]
+	for i, row := range c.Covariance {
+		for j, v := range row {
+			variance += slopes[i] * slopes[j] * v
 		}
 	}
-	return e.Wavelength, unit.Metre(sqrt(variance)), nil
+	return e.Wavelength + bent, unit.Metre(sqrt(variance)), nil
 }

@@ -34,6 +34,9 @@ type Request struct {
 	// Prior is the standard uncertainty of each correction before; zero
 	// fields of free parameters mean that nothing is known.
 	Prior [ParameterCount]float64
+	// Discrepancy is how far the model itself may be off, smoothly over
+	// pressure, whatever its corrections; zero takes DefaultDiscrepancy.
+	Discrepancy unit.Metre
 	// Start is where the fit starts and what stays for what is not free,
 	// such as the calibration in use.
 	Start Corrections
@@ -46,7 +49,16 @@ const (
 	unknownSigma = 0.1 * unit.Nanometre
 )
 
-// Fit finds corrections from measured points. Uncertainties of points are
+// DefaultDiscrepancy is the standard uncertainty of the anchored answer that
+// no correction takes up: what a real fibre does beyond the propagation's
+// idea of it (from experience with full-field runs, no source).
+const DefaultDiscrepancy = 0.5 * unit.Nanometre
+
+// Fit finds corrections from measured points. That the model is off by itself
+// is part of the fit: a bend of the answer, smooth over pressure, is found
+// together with the corrections, so that these are not pulled to make up for
+// what they cannot, and their uncertainty is honest (Kennedy & O'Hagan, J. R.
+// Stat. Soc. B 63, 425 (2001), doi:10.1111/1467-9868.00294). Uncertainties of points are
 // joined with the error of the nodes' interpolation; where the points scatter
 // more than one in twenty times by chance, all uncertainties of the result are
 // raised by the square root of χ² per degree of freedom (Birge, Phys. Rev. 40,
@@ -79,6 +91,16 @@ func Fit(m *Model, r Request) (*Calibration, error) {
 			Name: q.String(), Start: r.Start[q], PriorSigma: r.Prior[q], Typical: typical[q],
 		})
 	}
+	discrepancy := r.Discrepancy
+	if discrepancy == 0 {
+		discrepancy = DefaultDiscrepancy
+	}
+	for k := range bendTerms {
+		problem.Parameters = append(problem.Parameters, fit.Parameter{
+			Name: fmt.Sprintf("bend %d", k), PriorSigma: bendShare * float64(discrepancy),
+		})
+	}
+	c.rangeOf(used)
 	at := r.Start
 	problem.Model = func(dst, free []float64) error {
 		for i, q := range r.Free {
@@ -89,12 +111,12 @@ func Fit(m *Model, r Request) (*Calibration, error) {
 			if err != nil {
 				return err
 			}
-			dst[i] = float64(w)
+			dst[i] = float64(w) + bend(free[len(r.Free):], p.Input.Pressure, c.PressurePa)
 		}
 		return nil
 	}
 	before := make([]float64, len(used))
-	start := make([]float64, len(r.Free))
+	start := make([]float64, len(problem.Parameters))
 	for i, q := range r.Free {
 		start[i] = r.Start[q]
 	}
@@ -157,26 +179,39 @@ func (c *Calibration) fill(r Request, used []Point, f *fit.Result, before []floa
 			v.Told = 1
 		}
 		c.Values = append(c.Values, v)
-		row := make([]float64, len(r.Free))
-		for j := range row {
-			row[j] = raise * raise * f.Covariance.At(i, j)
-		}
-		c.Covariance = append(c.Covariance, row)
 		for j := range i {
 			if k := f.Correlation(i, j); math.Abs(k) > 0.95 {
 				c.Alike = append(c.Alike, Pair{r.Free[j].String(), q.String(), k})
 			}
 		}
 	}
+	for i := range f.Parameters {
+		row := make([]float64, len(f.Parameters))
+		for j := range row {
+			row[j] = raise * raise * f.Covariance.At(i, j)
+		}
+		c.Covariance = append(c.Covariance, row)
+	}
+	copy(c.BendM[:], f.Parameters[len(r.Free):])
 	for i, p := range used {
 		was := float64(p.Value) - before[i]
 		now := f.Residuals[i] * problem.Sigma[i]
 		c.Before += was * was / float64(len(used))
 		c.After += now * now / float64(len(used))
+		if f.Weights[i] < 0.5 {
+			c.Doubtful = append(c.Doubtful, fmt.Sprintf("%v: %+.2f nm off", p.Input.Pressure, 1e9*now))
+		}
+	}
+	c.Before, c.After = math.Sqrt(c.Before), math.Sqrt(c.After)
+}
+
+// rangeOf notes what the points span.
+func (c *Calibration) rangeOf(used []Point) {
+	for i, p := range used {
+		pressure, energy := float64(p.Input.Pressure), float64(p.Input.Energy)
 		if i == 0 {
 			c.From, c.To = p.At, p.At
-			c.PressurePa = [2]float64{float64(p.Input.Pressure), float64(p.Input.Pressure)}
-			c.EnergyJ = [2]float64{float64(p.Input.Energy), float64(p.Input.Energy)}
+			c.PressurePa, c.EnergyJ = [2]float64{pressure, pressure}, [2]float64{energy, energy}
 		}
 		if p.At.Before(c.From) {
 			c.From = p.At
@@ -184,11 +219,7 @@ func (c *Calibration) fill(r Request, used []Point, f *fit.Result, before []floa
 		if p.At.After(c.To) {
 			c.To = p.At
 		}
-		c.PressurePa = [2]float64{min(c.PressurePa[0], float64(p.Input.Pressure)), max(c.PressurePa[1], float64(p.Input.Pressure))}
-		c.EnergyJ = [2]float64{min(c.EnergyJ[0], float64(p.Input.Energy)), max(c.EnergyJ[1], float64(p.Input.Energy))}
-		if f.Weights[i] < 0.5 {
-			c.Doubtful = append(c.Doubtful, fmt.Sprintf("%v: %+.2f nm off", p.Input.Pressure, 1e9*now))
-		}
+		c.PressurePa = [2]float64{min(c.PressurePa[0], pressure), max(c.PressurePa[1], pressure)}
+		c.EnergyJ = [2]float64{min(c.EnergyJ[0], energy), max(c.EnergyJ[1], energy)}
 	}
-	c.Before, c.After = math.Sqrt(c.Before), math.Sqrt(c.After)
 }
