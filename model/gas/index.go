@@ -50,10 +50,9 @@ type indexSource struct {
 }
 
 const (
-	boltzmannAvogadro  = 4 * math.Pi / 3 * 6.02214076e23 * 1.481847e-31 // 4π/3·N_A·a₀³, m³/mol
+	polarisedMole      = 4 * math.Pi / 3 * 6.02214076e23 * 1.481847e-31 // 4π/3·N_A·a₀³, m³/mol
 	hartreeMicrometre  = 0.0455633525                                   // photon energy in hartree times λ in µm
-	micrometreSquared  = 1e-12
-	longestWavelength  = 6e-6 // m
+	longestWavelength  = 6e-6                                           // m
 	shortestWavelength = 100e-9
 	// No answer closer to a resonance than this factor in wavelength.
 	resonanceClearance = 1.08
@@ -97,7 +96,7 @@ func (s *indexSource) molar(q, rho float64) taylor.Number {
 		w := nu.Times(hartreeMicrometre * hartreeMicrometre)
 		p := s.poles[0]
 		tail := w.Mul(w).Times(p.c).Over(w.Times(-s.tail).Plus(1))
-		return sum.Add(w.Times(p.b)).Add(tail).Times(boltzmannAvogadro)
+		return sum.Add(w.Times(p.b)).Add(tail).Times(polarisedMole)
 	}
 	return sum.Over(sum.Plus(3)).Times(1 / rho)
 }
