@@ -88,6 +88,19 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 		v.past = v.past.with(entry{scanOverlay, text})
 		v.page = Scan
 		return v, []live.Intent{live.Run{Program: program}}
+	case tuneOverlay:
+		in, _, err := parseTune(s, text)
+		if err != nil {
+			v.message = err.Error()
+			return v, nil
+		}
+		v = v.open(noOverlay)
+		if !armed(s) {
+			v.message = "no longer armed: press a, then t"
+			return v, nil
+		}
+		v.past = v.past.with(entry{tuneOverlay, text})
+		return v, []live.Intent{in}
 	case findOverlay:
 		v.overlay, v.text, v.find, v.scroll = noOverlay, "", text, 0
 		return v, nil

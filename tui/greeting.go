@@ -21,7 +21,7 @@ func drawGreeting(a frame.Area, s *live.Snapshot) {
 		{"", "measured, open marks and curves are predicted."},
 		{"", ""},
 		{"Tab", "HOLD, at any time, without asking"},
-		{"a", "arm; then s goes to a pressure and r runs a scan"},
+		{"a", "arm; then s sets a pressure, t tunes, r runs a scan"},
 		{"1–4", "pages: bench, scan, drift, log"},
 		{"?", "every key"},
 		{"", ""},

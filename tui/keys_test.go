@@ -209,6 +209,35 @@ func TestScanForm(t *testing.T) {
 	}
 }
 
+func TestTuneForm(t *testing.T) {
+	s := tuitest.Filling()
+	for _, c := range []struct {
+		text    string
+		bar     float64 // where the stand-in curve has it, within its steps
+		hold    bool
+		refusal string
+	}{
+		{"262 nm", 9, false, ""},
+		{"0.262 um hold", 9, true, ""},
+		{"262", 0, false, "no unit"},
+		{"170 nm", 0, false, "the spectrometer sees 190 to 400 nm"},
+		{"390 nm", 0, false, "not on the predicted curve"},
+		{"262 bar", 0, false, "not one of a length"},
+	} {
+		in, at, err := parseTune(s, c.text)
+		switch {
+		case c.refusal != "":
+			if err == nil || !strings.Contains(err.Error(), c.refusal) {
+				t.Errorf("%q: error %v, want one with %q", c.text, err, c.refusal)
+			}
+		case err != nil:
+			t.Errorf("%q: %v", c.text, err)
+		case math.Abs(at.Bar()-c.bar) > 0.005 || in.Hold != c.hold || math.Abs(in.Emission.Nanometres()-262) > 1e-9:
+			t.Errorf("%q: %v at %v, want 262 nm at %g bar, hold %v", c.text, in, at, c.bar, c.hold)
+		}
+	}
+}
+
 func TestSecondScreenCommandsNothing(t *testing.T) {
 	s := tuitest.Filling()
 	s.ReadOnly = true
@@ -230,7 +259,7 @@ func TestStormOfKeysAndSizes(t *testing.T) {
 		"enter", "esc", "backspace", "tab", "left", "right", "arm", "9.2 bar", "7 bar:9 bar:1 bar:2 s:back",
 		"ctrl+u", "ctrl+c", "up", "down", "pgup", "pgdown", "\x00", "é", "界",
 	}
-	likely := []string{"a", "arm", "s", "9.2 bar", "r", "7 bar:9 bar:1 bar:2 s:back", "p", "x", "enter", "enter", "ctrl+u", "esc"}
+	likely := []string{"a", "arm", "s", "9.2 bar", "t", "265nm", "r", "7 bar:9 bar:1 bar:2 s:back", "p", "x", "enter", "enter", "ctrl+u", "esc"}
 	for c := rune(' '); c <= '~'; c++ {
 		keys = append(keys, string(c))
 	}
@@ -252,7 +281,7 @@ func TestStormOfKeysAndSizes(t *testing.T) {
 				key = likely[r.IntN(len(likely))]
 			}
 			typed := []string{key}
-			if strings.Contains(key, " bar") || key == "arm" {
+			if strings.Contains(key, " bar") || key == "265nm" || key == "arm" {
 				typed = strings.Split(key, "")
 			}
 			for _, k := range typed {
@@ -268,7 +297,7 @@ func TestStormOfKeysAndSizes(t *testing.T) {
 						now := *s
 						now.ArmedUntil = 0
 						s = &now
-					case live.GoTo, live.Run, live.Resume:
+					case live.GoTo, live.Run, live.Resume, live.Tune:
 						asked++
 						if !armed(s) {
 							t.Fatalf("event %d: %T asked for while not armed", i, in)

@@ -42,7 +42,7 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 	}
 	put("?", "keys")
 	for _, b := range bindings[1:] {
-		if b.short == "" || b.gas && s.ReadOnly || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || b.key == "s" && !armed(s) || (b.key == "p" || b.key == "x") && s.Program.Count == 0 {
+		if b.short == "" || b.gas && s.ReadOnly || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
 			continue
 		}
 		put(b.label, b.short)
@@ -85,6 +85,8 @@ func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 		drawAlarms(a, s, min(v.pick, len(s.Alarms)-1))
 	case scanOverlay:
 		drawScanForm(a, s, v)
+	case tuneOverlay:
+		drawTune(a, s, v)
 	case findOverlay:
 		b := box(a, "find in the record", 64, 3, frame.Rule)
 		b.Text(0, 0, "a word; with a minus before it, lines without the word", frame.Faint)

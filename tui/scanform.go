@@ -20,10 +20,14 @@ func pressScan(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	return v, nil
 }
 
-func pressPause(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+// pressProgram pauses the program that is under way or goes on with it (p), or
+// ends it (x).
+func pressProgram(v view, s *live.Snapshot, key string) (view, []live.Intent) {
 	switch {
 	case s.Program.Count == 0:
 		v.message = "no program is under way"
+	case key == "x":
+		return v, []live.Intent{live.Stop{}}
 	case !s.Program.Paused:
 		return v, []live.Intent{live.Pause{}}
 	case !armed(s):
@@ -32,14 +36,6 @@ func pressPause(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 		return v, []live.Intent{live.Resume{}}
 	}
 	return v, nil
-}
-
-func pressEnd(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
-	if s.Program.Count == 0 {
-		v.message = "no program is under way"
-		return v, nil
-	}
-	return v, []live.Intent{live.Stop{}}
 }
 
 // scanExample is how a scan is written: from, to, step, dwell; "back" comes

@@ -41,13 +41,14 @@ const (
 	scanOverlay     // a scan is being typed
 	findOverlay     // what to find in the record is being typed
 	greetOverlay    // how to begin
+	tuneOverlay     // a wavelength is being typed
 	overlayCount
 )
 
 // typing reports whether keys are text.
 func (v view) typing() bool {
 	switch v.overlay {
-	case armOverlay, setpointOverlay, noteOverlay, scanOverlay, findOverlay:
+	case armOverlay, setpointOverlay, noteOverlay, scanOverlay, findOverlay, tuneOverlay:
 		return true
 	}
 	return false
