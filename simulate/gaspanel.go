@@ -59,7 +59,8 @@ func newGasPanel(start panel.State) (gasPanel, error) {
 		net.Open(g.gassing[i], 1)
 	}
 	g.leaks = map[string]panel.Passage{}
-	for where, v := range map[string]panel.Node{"manifold": g.hub, "cell A": g.cells[0], "cell B": g.cells[1]} {
+	for i, v := range []panel.Node{g.cells[0], g.cells[1], g.hub} { // in one order: sums round by it
+		where := [...]string{"cell A", "cell B", "manifold"}[i]
 		g.leaks[where] = net.AddPassage(v, g.room, panel.NewOrifice(0, argon))
 	}
 	core, err := panel.NewCore(argon, fibreRadius, fibreLength, coreCells, start)

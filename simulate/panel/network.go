@@ -47,6 +47,7 @@ type passage struct {
 	from, to Node
 	law      Law
 	opening  float64 // 0 … 1, a factor on the flow
+	backward bool    // the upstream side of the present step is to
 }
 
 // contact is heat exchange between the gas in a volume and a wall.
@@ -165,8 +166,8 @@ func (n *Network) Energy() float64 {
 }
 
 // Deposit adds moles to a volume from outside the network, such as from the
-// fibre core, at temperature t. Negative moles are taken out at the volume's
-// own temperature and composition is the caller's.
+// fibre core, at temperature t in K. Negative moles are taken out, at the
+// volume's own temperature.
 func (n *Network) Deposit(v Node, gas, airMoles, t float64) {
 	n.build()
 	i := n.at(v)

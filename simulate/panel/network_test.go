@@ -110,8 +110,13 @@ func TestConservation(t *testing.T) {
 		}
 	}
 	gas, airMoles, energy := totals(n)
-	near(t, "moles of gas", gas, gas0, 1e-13)
-	near(t, "moles of air", airMoles, air0, 1e-12)
+	const rounding = 1e-15 // mol, of some 0.01 mol that moved through 500 solves
+	if d := gas - gas0; math.Abs(d) > rounding {
+		t.Errorf("%g mol of gas appeared", d)
+	}
+	if d := airMoles - air0; math.Abs(d) > rounding {
+		t.Errorf("%g mol of air appeared", d)
+	}
 	near(t, "energy", energy, energy0, 1e-12)
 }
 
@@ -183,6 +188,7 @@ func TestBlowDownIsOfOrderThree(t *testing.T) {
 		n.build()
 		h := 0.5 / float64(steps)
 		for range steps {
+			n.upwind()
 			n.jacobian(n.y)
 			n.rates(n.y, n.ws.f)
 			n.step(h)

@@ -22,7 +22,7 @@ func (n *Network) flow(p *passage, a, b State) flux {
 	}
 	f := p.opening * p.law.Flow(a, b)
 	up := a
-	if f < 0 {
+	if p.backward {
 		up = b
 	}
 	g := f * (1 - up.Air)
@@ -38,6 +38,21 @@ func (c *contact) conductance(p float64) float64 {
 
 // heat is the power from the gas at s into the wall at t.
 func (c *contact) heat(s State, t float64) float64 { return c.conductance(s.P) * (s.T - t) }
+
+// upwind settles, for one step, from which side each passage takes composition
+// and temperature. Were that to change within a step, the linearised method
+// would take from a volume a species that it does not hold.
+func (n *Network) upwind() {
+	for i := range n.passages {
+		p := &n.passages[i]
+		if p.opening == 0 {
+			continue
+		}
+		if f := p.law.Flow(n.end(n.y, p.from), n.end(n.y, p.to)); f != 0 {
+			p.backward = f < 0
+		}
+	}
+}
 
 // rates writes dy/dt.
 func (n *Network) rates(y, dydt []float64) {

@@ -15,8 +15,7 @@ const (
 	// volume of 10 cm³.
 	absoluteMoles = 4e-12
 	absoluteJoule = 1e-8
-	// Mole fractions below this count as nothing, and may be negative by as
-	// much: where flow turns round, the linearised upwind side is the wrong one.
+	// Mole fractions below this count as nothing.
 	trace = 1e-7
 )
 
@@ -46,6 +45,7 @@ func (n *Network) integrate(dt float64) error {
 		n.h = 1e-4
 	}
 	for left > 0 {
+		n.upwind()
 		n.jacobian(n.y)
 		n.rates(n.y, n.ws.f)
 		for {
@@ -138,12 +138,14 @@ func (n *Network) floor(i int) float64 {
 	return absoluteMoles + trace*(n.y[v]+n.y[v+1])
 }
 
-// sound reports whether every volume holds some gas and some energy.
+// sound reports whether every volume holds gas and energy, and no species less
+// than nothing by more than errors within the tolerance add up to.
 func (n *Network) sound(y []float64) bool {
+	const below = -10 * trace
 	for v := range n.volumes {
 		i := v * perNode
 		total := y[i] + y[i+1]
-		least := -10 * (absoluteMoles + trace*total)
+		least := below*total - absoluteMoles
 		if !(total > 0 && y[i+2] > 0 && y[i] > least && y[i+1] > least) {
 			return false
 		}
