@@ -88,6 +88,7 @@ func newRoot() *cobra.Command {
 		newPorts(),
 		newPredict(),
 		newPropagate(),
+		newReplay(),
 		newRun(),
 		newScan(),
 		newSimulate(),

@@ -13,8 +13,9 @@ import (
 )
 
 type watchFlags struct {
-	bench   string
-	logbook string
+	bench      string
+	logbook    string
+	followOnly bool
 }
 
 func newWatch() *cobra.Command {
@@ -24,7 +25,8 @@ func newWatch() *cobra.Command {
 		Short: "The dashboard on real instruments",
 		Long: `The dashboard on the instruments of a bench file. Ctrl-C or q holds the bench,
 closes the logbook and leaves. Where the shell goes away the bench is held and
-recording goes on.
+recording goes on; --follow-only attaches to it again, for you or for a second
+person.
 
 barline is no safety device: pressure ratings, relief valve and hardware
 interlocks come first.`,
@@ -35,6 +37,7 @@ interlocks come first.`,
 	}
 	cmd.Flags().StringVarP(&f.bench, "bench", "b", "", "the bench file; barline check --sample prints one")
 	cmd.Flags().StringVar(&f.logbook, "logbook", "", "folder of the logbook; without it that of the bench file, else one in your data folder")
+	cmd.Flags().BoolVar(&f.followOnly, "follow-only", false, "a second screen on the record that another barline is writing: nothing can be commanded")
 	return cmd
 }
 
@@ -61,6 +64,17 @@ func (f watchFlags) place(stderr io.Writer) (*place, error) {
 func (f watchFlags) run(ctx context.Context, stdout, stderr io.Writer) error {
 	if f.bench == "" {
 		return usage("watch needs a bench file: -b bench.toml; barline check --sample prints one to start from")
+	}
+	if f.followOnly {
+		_, b, err := readBench(f.bench)
+		if err != nil {
+			return err
+		}
+		folder, err := logbookFolder(f.logbook, b.Logbook.Folder, b.Bench.Name, false)
+		if err != nil {
+			return err
+		}
+		return follow(ctx, folder, stdout, stderr)
 	}
 	p, err := f.place(stderr)
 	if err != nil {

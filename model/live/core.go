@@ -137,6 +137,8 @@ func (c *Core) Step(s *State, e Event, fx []Effect) []Effect {
 		fx = c.answered(s, e, fx)
 	case RecordChanged:
 		fx = c.record(s, e.Health, fx)
+	case Told:
+		c.told(s, e)
 	default:
 		panic(fmt.Sprintf("live: unknown event %T", e))
 	}
@@ -184,6 +186,8 @@ func (c *Core) tick(s *State, fx []Effect) []Effect {
 // act moves gas, or stops moving it.
 func (c *Core) act(s *State, fx []Effect) []Effect {
 	switch {
+	case s.following:
+		return fx
 	case s.commanding():
 		if why := c.unsafe(s); why != "" {
 			return c.hold(s, why, fx)

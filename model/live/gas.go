@@ -100,6 +100,9 @@ func (c *Core) predict(s *State, fx []Effect) []Effect {
 	}
 	moved := math.Abs(float64(s.Prediction.Emission-s.recorded.emission)) > float64(c.wavelength)
 	if moved || s.recorded.at == 0 || s.Now.Mono-s.recorded.at >= c.heartbeat {
+		// What goes into the record is found without the one before it, so
+		// that a replay, which has not seen that, finds it again to the bit.
+		s.Prediction = c.predictor.Predict(in, nil)
 		s.recorded.at, s.recorded.emission = s.Now.Mono, s.Prediction.Emission
 		fx = append(fx, Record{At: s.Now, Kind: KindPrediction, Data: c.predictionData(s)})
 	}

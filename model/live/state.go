@@ -46,6 +46,7 @@ type State struct {
 	alarms       alarm.List
 	heldByItself bool // HOLD came without being asked for
 	refused      bool // an instrument did not take the last command
+	following    bool // another core decides, see Told
 
 	run       progress
 	tuning    tuning

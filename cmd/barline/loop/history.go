@@ -1,6 +1,7 @@
 package loop
 
 import (
+	"fmt"
 	"time"
 
 	"barline/model/live"
@@ -119,13 +120,21 @@ func (h *history) tick(s *live.State) {
 }
 
 func (h *history) line(at reading.Stamp, kind live.Kind, data any) {
-	h.mark(at, kind)
-	text := at.UTC.Format("15:04:05.0") + "  " + string(kind)
-	if t, ok := data.(interface{ String() string }); ok {
-		text += "  " + t.String()
+	text := ""
+	if t, ok := data.(fmt.Stringer); ok {
+		text = t.String()
+	}
+	h.text(at, string(kind), text)
+}
+
+func (h *history) text(at reading.Stamp, kind, text string) {
+	h.mark(at, live.Kind(kind))
+	line := at.UTC.Format("15:04:05.0") + "  " + kind
+	if text != "" {
+		line += "  " + text
 	}
 	if len(h.lines) == maxLines {
 		h.lines = append(make([]string, 0, 2*maxLines), h.lines[maxLines/4:]...)
 	}
-	h.lines = append(h.lines, text)
+	h.lines = append(h.lines, line)
 }

@@ -246,6 +246,13 @@ func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) {
 	}
 }
 
+// Tell hands in what a record says that another core did.
+func (l *Loop) Tell(e live.Told) { l.queue.push(e) }
+
+// Line shows a line of a record that was written elsewhere. It is for those
+// who drive the loop by Turn.
+func (l *Loop) Line(at reading.Stamp, kind, text string) { l.history.text(at, kind, text) }
+
 // State returns a copy of the experiment. It is for those who drive the loop
 // by Turn.
 func (l *Loop) State() live.State { return l.state }

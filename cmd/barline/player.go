@@ -1,0 +1,189 @@
+package main
+
+import (
+	"errors"
+	"time"
+
+	"barline/cmd/barline/loop"
+	"barline/logbook"
+	"barline/model/bench"
+	"barline/model/clock"
+	"barline/model/emission"
+	"barline/model/live"
+	"barline/model/reading"
+)
+
+// player brings the records of a logbook back through the core and the
+// screens: readings are what drives it, and what another core decided is taken
+// as it was. It commands nothing and writes nothing.
+type player struct {
+	folder string
+	clk    *clock.Fake
+	last   time.Time // UTC of the last record
+	loop   *loop.Loop
+	latest map[string]reading.Reading
+}
+
+// shutBook is a logbook that takes nothing: what is played is written already.
+type shutBook struct{}
+
+func (shutBook) Append(reading.Stamp, string, any) (uint64, error) { return 0, errPlayed }
+func (shutBook) Sync() error                                       { return errPlayed }
+func (shutBook) Health() live.RecordHealth                         { return live.RecordHealth{Writing: true} }
+
+var errPlayed = errors.New("a played record is not written again")
+
+// playerTick is the bench time between two turns of the core while playing.
+const playerTick = 50 * time.Millisecond
+
+func newPlayer(folder string) *player {
+	return &player{folder: folder, latest: map[string]reading.Reading{}}
+}
+
+// configure builds the core from the configuration that the record holds.
+func (p *player) configure(text []byte, at time.Time) error {
+	b, err := bench.Parse(text, "configuration in the record")
+	if err != nil {
+		return err
+	}
+	s, err := newSession(b, text)
+	if err != nil {
+		return err
+	}
+	if p.loop == nil {
+		p.clk = clock.NewFake(at)
+		p.clk.Advance(time.Second) // an instant of zero means never
+	}
+	curve := s.predictor.Clone()
+	p.latest = map[string]reading.Reading{}
+	p.loop = loop.New(loop.Options{
+		Bench: b, Core: s.core, State: s.state, Clock: p.clk, Book: shutBook{}, Wire: &wire{now: p.clk.Now, answer: func(uint64, error, reading.Stamp) {}},
+		Curve: func(in emission.Input, dst []emission.CurvePoint) {
+			curve.Curve(dst, 0, s.core.Limits().Lowest().Max, in)
+		},
+		Folder: p.folder, ReadOnly: true,
+	})
+	return nil
+}
+
+// take folds one record in. Records of time that went back are taken at once.
+func (p *player) take(r logbook.Record) error {
+	if r.Kind == string(live.KindConfiguration) {
+		var d configurationData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.last = r.UTC
+		return p.configure([]byte(d.Text), r.UTC)
+	}
+	if p.loop == nil {
+		return nil // nothing is known of the bench yet
+	}
+	at := p.clk.Now()
+	at.UTC = r.UTC
+	switch live.Kind(r.Kind) {
+	case live.KindReading:
+		var d live.ReadingData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		return p.reading(d, at)
+	case live.KindReadback:
+		var d live.LinkData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		if d.Instrument != "" {
+			p.loop.Link(d.Instrument, d.Link == "up", d.Reason, at)
+		}
+	case live.KindCommand:
+		var d live.CommandData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.tell(at, d)
+	case live.KindIntent:
+		var d live.IntentData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.tell(at, d)
+	}
+	if r.Kind != string(live.KindPrediction) {
+		p.loop.Line(at, r.Kind, recordText(r))
+	}
+	return nil
+}
+
+func (p *player) tell(at reading.Stamp, data any) {
+	if e, ok := live.ToldBy(at, data); ok {
+		p.loop.Tell(e)
+	}
+}
+
+func (p *player) reading(d live.ReadingData, at reading.Stamp) error {
+	role, err := reading.ParseRole(d.Role)
+	if err != nil {
+		return err
+	}
+	status, err := reading.ParseStatus(d.Status)
+	if err != nil {
+		return err
+	}
+	x := reading.Reading{Channel: d.Channel, Role: role, Taken: at, Status: status, Reason: d.Reason}
+	if d.Value != nil {
+		x.Value = *d.Value
+	}
+	p.latest[d.Channel] = x
+	p.loop.Reading(x)
+	return nil
+}
+
+// advance carries bench time on by d, in turns of the core. Between two
+// records a channel stays within its deadband of the last one, so that is what
+// the core is given again.
+func (p *player) advance(d time.Duration) {
+	if p.loop == nil {
+		return
+	}
+	for ; d > 0; d -= playerTick {
+		p.clk.Advance(min(d, playerTick))
+		now := p.clk.Now()
+		for name, r := range p.latest {
+			if now.Mono-r.Taken.Mono >= time.Second {
+				r.Taken = now
+				p.latest[name] = r
+				p.loop.Reading(r)
+			}
+		}
+		p.loop.Turn()
+	}
+}
+
+// skip carries bench time on by d in one stride, for seeking and for gaps.
+func (p *player) skip(d time.Duration) {
+	if p.loop == nil || d <= 0 {
+		return
+	}
+	p.clk.Advance(d)
+	now := p.clk.Now()
+	for name, r := range p.latest {
+		r.Taken = now
+		p.latest[name] = r
+		p.loop.Reading(r)
+	}
+	p.loop.Turn()
+}
+
+// gap returns the bench time from the last record to r, which is none where
+// the clock went back or a new session began.
+func (p *player) gap(r logbook.Record) time.Duration {
+	defer func() { p.last = r.UTC }()
+	if p.last.IsZero() || !r.UTC.After(p.last) {
+		return 0
+	}
+	return r.UTC.Sub(p.last)
+}
+
+// longestGap is the longest silence of a record that is played as it was.
+const longestGap = 2 * time.Minute
