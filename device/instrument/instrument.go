@@ -42,6 +42,8 @@ type protocol interface {
 	// write sends the number of a channel and returns the number read back.
 	write(line link.Line, c *channel, number float64) (float64, error)
 	command(line link.Line, text string) error
+	// idle takes what comes between polls, and notices that a line is gone.
+	idle(line link.Line) error
 	// opened forgets what was known of the line before.
 	opened()
 }

@@ -88,6 +88,37 @@ func TestGarbageAndEchoBeforeTheReplyArePassedOver(t *testing.T) {
 	}
 }
 
+// A converter that gives back what is sent. The reply to a single write equals
+// its request, so that without its own echo known apart a write that nobody
+// took would look confirmed.
+func TestEcho(t *testing.T) {
+	registers := map[byte]map[uint16]uint16{4: {0: 1}}
+	answer := units(t, registers)
+	spec := bench.Instrument{Name: "panel", Protocol: bench.ModbusRTU, Echo: true, Channel: []bench.Channel{
+		{Name: "inlet", Role: reading.InletValve, Unit: 4, Function: 3, Register: 0, Format: "uint16", Order: "ABCD", Write: "{value}", Factor: 1, Symbol: "1"}}}
+	line := &scripted{answer: func(p []byte) []byte { return append(append([]byte(nil), p...), answer(p)...) }}
+	if err := build(t, spec).Move(line, limits.Close(limit.Inlet)); err != nil || registers[4][0] != 0 {
+		t.Errorf("%v, register %d", err, registers[4][0])
+	}
+	line.answer = func(p []byte) []byte { return append([]byte(nil), p...) } // nobody else is there
+	if err := build(t, spec).Move(line, limits.Close(limit.Inlet)); err == nil || !strings.Contains(err.Error(), "no reply") {
+		t.Errorf("an echo was taken for a confirmation: %v", err)
+	}
+
+	d := &device{level: 2, measured: 2}
+	echoing := controller()
+	echoing.Echo = true
+	line = &scripted{answer: func(p []byte) []byte { return append(append([]byte(nil), p...), d.answer(p)...) }}
+	in := build(t, echoing)
+	got, err := in.Poll(line, clockOf(time.Millisecond), nil)
+	if err != nil || byChannel(t, got)["inside"].Status != reading.Good {
+		t.Errorf("%+v, %v", got, err)
+	}
+	if err := in.Set(line, setpoint(t, 3*unit.Bar)); err != nil {
+		t.Error(err)
+	}
+}
+
 func TestLostLineIsAnError(t *testing.T) {
 	pulled := errors.New("input/output error")
 	for _, spec := range []bench.Instrument{

@@ -241,3 +241,9 @@ func (p *linesProtocol) command(line link.Line, text string) error {
 	_, err := line.Write([]byte(text + p.end))
 	return lost(err)
 }
+
+func (p *linesProtocol) idle(line link.Line) error {
+	stray, err := flush(line, p.buf[:])
+	p.in.counts.stray.Add(uint64(stray))
+	return err
+}

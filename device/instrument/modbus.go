@@ -49,6 +49,7 @@ type modbusWire interface {
 	numbered() bool
 	// opened forgets what came over the line before.
 	opened()
+	idle(line link.Line) error
 }
 
 func newModbus(in *Instrument) (*modbusProtocol, error) {
@@ -161,6 +162,8 @@ func (m *modbusProtocol) opened() {
 func (m *modbusProtocol) drain(_ link.Line, _ Now, dst []reading.Reading) ([]reading.Reading, error) {
 	return dst, nil
 }
+
+func (m *modbusProtocol) idle(line link.Line) error { return m.wire.idle(line) }
 
 const (
 	patientFor = 3  // times without an answer before a unit is asked less often

@@ -28,6 +28,12 @@ func (w *rtuWire) numbered() bool { return false }
 
 func (w *rtuWire) opened() {}
 
+func (w *rtuWire) idle(line link.Line) error {
+	stray, err := flush(line, w.scratch[:])
+	w.counts.stray.Add(uint64(stray))
+	return err
+}
+
 // mostReply bounds what is read while waiting for one reply.
 const mostReply = 4096
 
@@ -167,18 +173,11 @@ func (w *tcpWire) exchange(line link.Line, now Now, r modbus.Request) (modbus.Re
 	w.counts.asked.Add(1)
 	deadline := time.Now().Add(w.timeout)
 	for {
-		for size := modbus.SizeTCP(w.buf); size != 0 && size <= len(w.buf); size = modbus.SizeTCP(w.buf) {
-			if size < 0 { // nothing marks the start of the next frame
-				w.counts.refused.Add(1)
-				bad := clip(w.buf)
-				return fail(lost(fmt.Errorf("bytes that are no modbus over TCP (% X)", bad)))
-			}
-			number, reply, err := modbus.DecodeReplyTCP(w.buf[:size])
-			w.buf = append(w.buf[:0], w.buf[size:]...)
-			if number != w.number {
-				w.counts.stray.Add(uint64(size))
-				continue
-			}
+		reply, found, err := w.take(w.number)
+		if err != nil && !found {
+			return fail(err)
+		}
+		if found {
 			at := now()
 			if err == nil {
 				err = reply.Answers(r)
@@ -200,4 +199,41 @@ func (w *tcpWire) exchange(line link.Line, now Now, r modbus.Request) (modbus.Re
 		}
 		w.buf = append(w.buf, w.scratch[:n]...)
 	}
+}
+
+// take looks for the reply with this number among the whole frames that have
+// come, and drops those before it. Where it is found, err says what is wrong
+// with it; else err says that the line is lost.
+func (w *tcpWire) take(number uint16) (reply modbus.Reply, found bool, err error) {
+	for size := modbus.SizeTCP(w.buf); size != 0 && size <= len(w.buf); size = modbus.SizeTCP(w.buf) {
+		if size < 0 { // nothing marks the start of the next frame
+			w.counts.refused.Add(1)
+			return reply, false, lost(fmt.Errorf("bytes that are no modbus over TCP (% X)", clip(w.buf)))
+		}
+		got, reply, err := modbus.DecodeReplyTCP(w.buf[:size])
+		w.buf = append(w.buf[:0], w.buf[size:]...)
+		if got == number {
+			return reply, true, err
+		}
+		w.counts.stray.Add(uint64(size))
+	}
+	return reply, false, nil
+}
+
+// idle keeps the start of a frame whose rest is still to come.
+func (w *tcpWire) idle(line link.Line) error {
+	for range mostStray / len(w.scratch) {
+		n, err := line.Read(w.scratch[:], 0)
+		if errors.Is(err, os.ErrDeadlineExceeded) {
+			return nil
+		}
+		if err != nil {
+			return lost(err)
+		}
+		w.buf = append(w.buf, w.scratch[:n]...)
+		if _, _, err := w.take(w.number + 1); err != nil { // which has not been asked yet
+			return err
+		}
+	}
+	return errTalks
 }

@@ -51,7 +51,6 @@ type Runner struct {
 	panicked   func(value any, stack []byte)
 
 	readings []reading.Reading
-	idle     [256]byte
 }
 
 // NewRunner returns a Runner for in. Where a broken assumption panics,
@@ -258,21 +257,11 @@ func (r *Runner) rest(ctx context.Context, line link.Line, d time.Duration) erro
 			if time.Until(end) <= 0 {
 				return nil
 			}
-			if err := r.look(line); err != nil {
+			if err := r.instrument.protocol.idle(line); errors.Is(err, errLost) {
 				return err
 			}
 		}
 	}
-}
-
-// look notices that an idle line is gone, and drops bytes nobody asked for.
-func (r *Runner) look(line link.Line) error {
-	stray, err := flush(line, r.idle[:])
-	r.instrument.counts.stray.Add(uint64(stray))
-	if errors.Is(err, errLost) {
-		return err
-	}
-	return nil
 }
 
 // obey carries out the commands that wait. Its error says that the line is

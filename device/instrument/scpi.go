@@ -290,6 +290,13 @@ func (s *scpiProtocol) command(line link.Line, text string) error {
 	if _, err := line.Write([]byte(text + s.end)); err != nil {
 		return lost(err)
 	}
+	if s.in.spec.Echo {
+		if back, err := s.answer(line, time.Now().Add(s.timeout)); errors.Is(err, errLost) {
+			return err
+		} else if err != nil || back != text {
+			s.inStep = false
+		}
+	}
 	if s.in.spec.Errors == "" {
 		return nil
 	}
@@ -319,4 +326,10 @@ func (s *scpiProtocol) readErrors(line link.Line) error {
 		}
 	}
 	return oldest
+}
+
+func (s *scpiProtocol) idle(line link.Line) error {
+	stray, err := flush(line, s.buf[:])
+	s.in.counts.stray.Add(uint64(stray))
+	return err
 }

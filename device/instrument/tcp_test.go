@@ -79,6 +79,30 @@ func TestModbusTCPOpenedAnewForgetsHalfAFrame(t *testing.T) {
 	}
 }
 
+// A late reply that comes in two pieces, one of them between two polls.
+func TestModbusTCPKeepsItsFramesBetweenPolls(t *testing.T) {
+	in, answer := tcpGauge(t)
+	var late []byte
+	line := &scripted{answer: func(p []byte) []byte {
+		if late == nil {
+			late = answer(p)
+			return late[:4]
+		}
+		return answer(p)
+	}}
+	if got, err := in.Poll(line, clockOf(time.Millisecond), nil); err != nil || got[0].Status != reading.Failure {
+		t.Fatalf("%+v, %v", got, err)
+	}
+	line.say(late[4:9])
+	if err := in.protocol.idle(line); err != nil {
+		t.Fatal(err)
+	}
+	line.say(late[9:])
+	if got, err := in.Poll(line, clockOf(time.Millisecond), nil); err != nil || got[0].Status != reading.Good {
+		t.Errorf("%+v, %v", got, err)
+	}
+}
+
 // Whatever bytes come in place of a reply, nothing panics, and a reading is
 // good only if a frame that answers the request is among them.
 
