@@ -37,27 +37,27 @@ func lawfulCache(t *testing.T, points []calibration.Point) *calibration.Model {
 	if err != nil {
 		t.Fatal(err)
 	}
-	spec, err := specOf(setup, points)
+	r, err := rangeOf(setup, points)
 	if err != nil {
 		t.Fatal(err)
 	}
-	ab, err := anchor.New(spec)
+	ab, err := setup.AnchorBench()
 	if err != nil {
 		t.Fatal(err)
 	}
-	cache, err := os.UserCacheDir()
+	folder, err := cacheFolder()
 	if err != nil {
 		t.Skip("no cache folder on this system")
 	}
-	store, err := fullfield.OpenStore(filepath.Join(cache, "barline"), spec.Digest())
+	store, err := fullfield.OpenStore(folder, ab.Spec().Digest())
 	if err != nil {
 		t.Fatal(err)
 	}
 	var nodes []anchor.Node
-	for _, k := range ab.Plan(nil) {
+	for _, k := range ab.Plan(nil, r) {
 		n := anchor.Node{Density: k.Density, Energy: k.Energy, Moved: k.Moved}
 		y := float64(k.Energy)/1.3e-6 - 1
-		omega, ok := anchor.Solve(ab.Guide(k.Density), fibre.Frequency(spec.Pulse.Wavelength), 2*k.Density-400-300*y, fibre.Frequency(255*unit.Nanometre))
+		omega, ok := anchor.Solve(ab.Guide(k.Density), fibre.Frequency(setup.Pulse.Wavelength), 2*k.Density-400-300*y, fibre.Frequency(255*unit.Nanometre))
 		if !ok {
 			t.Fatalf("no root at %v mol/m³", k.Density)
 		}

@@ -196,22 +196,34 @@ func parseSweep(text string) (*sweep, error) {
 
 // each calls do with the input at every step.
 func (s *sweep) each(in emission.Input, do func(emission.Input) error) error {
-	n := int((s.to-s.from)/s.step + 1e-9)
-	for i := 0; i <= n; i++ {
-		v := s.from + float64(i)*s.step
-		switch s.name {
-		case "pressure":
-			in.Pressure = unit.Pascal(v)
-		case "temperature":
-			in.Temperature = unit.Kelvin(v)
-		case "energy":
-			in.Energy = unit.Joule(v)
-		case "air":
-			in.Air = unit.Fraction(v)
-		}
+	for _, in := range s.inputs(in) {
 		if err := do(in); err != nil {
 			return fmt.Errorf("sweep of %s: %w", s.name, err)
 		}
 	}
 	return nil
+}
+
+// at returns the input of step i.
+func (s *sweep) at(in emission.Input, i int) emission.Input {
+	v := s.from + float64(i)*s.step
+	switch s.name {
+	case "pressure":
+		in.Pressure = unit.Pascal(v)
+	case "temperature":
+		in.Temperature = unit.Kelvin(v)
+	case "energy":
+		in.Energy = unit.Joule(v)
+	case "air":
+		in.Air = unit.Fraction(v)
+	}
+	return in
+}
+
+// inputs returns the input of every step.
+func (s *sweep) inputs(in emission.Input) (list []emission.Input) {
+	for i := range int((s.to-s.from)/s.step+1e-9) + 1 {
+		list = append(list, s.at(in, i))
+	}
+	return list
 }

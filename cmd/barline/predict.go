@@ -2,8 +2,10 @@ package main
 
 import (
 	"bufio"
+	"context"
 	"errors"
 	"fmt"
+	"io"
 
 	"github.com/spf13/cobra"
 
@@ -40,9 +42,13 @@ object on each line.`,
 			if err != nil {
 				return err
 			}
-			p, err := emission.NewPredictor(setup)
+			inputs := []emission.Input{input}
+			if run != nil {
+				inputs = run.inputs(input)
+			}
+			p, err := predictor(cmd.Context(), cmd.ErrOrStderr(), setup, inputs)
 			if err != nil {
-				return usage("%w", err)
+				return err
 			}
 			out := bufio.NewWriter(cmd.OutOrStdout())
 			switch {
@@ -71,4 +77,24 @@ object on each line.`,
 	cmd.Flags().BoolVar(&explain, "explain", false, "also print where each number comes from and what makes up the uncertainty")
 	cmd.MarkFlagsMutuallyExclusive("json", "csv")
 	return cmd
+}
+
+// predictor returns the predictor of a setup. Where it asks for the anchored
+// answer that is made first.
+func predictor(ctx context.Context, stderr io.Writer, s emission.Setup, inputs []emission.Input) (*emission.Predictor, error) {
+	wanted := s.Answer
+	if wanted == emission.Anchored {
+		s.Answer = emission.Estimate // until the nodes stand
+		if s.Pulse.Energy == 0 {     // a sweep sets it: its middle is the one used most
+			s.Pulse.Energy = inputs[len(inputs)/2].Energy
+		}
+	}
+	p, err := emission.NewPredictor(s)
+	if err != nil {
+		return nil, usage("%w", err)
+	}
+	if wanted == emission.Anchored {
+		return anchored(ctx, stderr, p, inputs)
+	}
+	return p, nil
 }

@@ -117,7 +117,6 @@ func TestPredictRefuses(t *testing.T) {
 		{bore("--pressure", "9 bar", "--fibre", "antiresonant"), exitUsage, "wall is 0 m"},
 		{bore("--pressure", "9 bar", "--duration", "-3 fs"), exitUsage, "duration is -3 fs"},
 		{bore("--pressure", "9 bar", "--gas", "argon 80 % + neon 10 %"), exitUsage, "add up to 90 %"},
-		{bore("--pressure", "9 bar", "--emission", "anchored"), exitUsage, "full-field nodes"},
 		{bore("--pressure", "9 bar", "--mode", "HE00"), exitUsage, "HE00"},
 		{bore("--sweep", "colour=1bar:2bar:1bar"), exitUsage, "pressure=1bar:10bar:0.25bar"},
 		{bore("--sweep", "pressure=1bar:2bar:0bar"), exitUsage, "step above zero"},

@@ -52,6 +52,7 @@ type predictedObject struct {
 	DispersionLength  number            `json:"dispersion_length_m"`
 	FissionLength     *number           `json:"fission_length_m"`
 	Emission          *number           `json:"emission_nm"`
+	EmissionPeak      *number           `json:"emission_peak_nm,omitempty"` // anchored only
 	Sigma             *number           `json:"emission_sigma_nm"`
 	Why               string            `json:"why,omitempty"`
 	Branches          []predictedBranch `json:"branches"`
@@ -111,7 +112,7 @@ func predicted(p *emission.Predictor, pr emission.Prediction, explain bool) pred
 		Beta1: number(pr.Beta1), Beta2: number(pr.Beta2 * 1e30), Beta3: number(pr.Beta3 * 1e45),
 		ZeroDispersion: []number{}, Area: number(pr.EffectiveArea * 1e12), N2: number(pr.N2), Gamma: number(pr.Gamma),
 		PeakPower: number(pr.PeakPower), SolitonOrder: number(pr.SolitonOrder), DispersionLength: number(pr.DispersionLength),
-		Emission: wavelengthNM(pr.Emission), Sigma: wavelengthNM(pr.Sigma), Why: pr.Why,
+		Emission: wavelengthNM(pr.Emission), EmissionPeak: wavelengthNM(pr.Peak), Sigma: wavelengthNM(pr.Sigma), Why: pr.Why,
 		Branches: []predictedBranch{}, Limits: []predictedLimit{},
 		Sources: predictedSources{m.DensitySource().Name, m.IndexSource().Name, m.KerrSource().Name, s.Plasma.String(), pr.Answer.String()},
 	}

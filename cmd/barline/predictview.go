@@ -21,6 +21,12 @@ func writePrediction(w io.Writer, p *emission.Predictor, pr emission.Prediction,
 	} else {
 		fmt.Fprintf(w, "No emission: %s (%s).\n\n", pr.Why, pr.Answer)
 	}
+	if pr.Answer == emission.Anchored {
+		for _, b := range pr.Branches[:pr.BranchCount] {
+			fmt.Fprintf(w, "  %.1f nm, %.2f %% of the output\n", b.Emission.Nanometres(), 100*float64(b.Conversion))
+		}
+		fmt.Fprintln(w)
+	}
 	table := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	row := func(name, format string, args ...any) {
 		fmt.Fprintf(table, "%s\t%s\n", name, fmt.Sprintf(format, args...))
@@ -148,8 +154,11 @@ func modeFormula(k fibre.Kind) string {
 }
 
 func answerFormula(a emission.Answer) string {
-	if a == emission.Linear {
+	switch a {
+	case emission.Linear:
 		return "beta(omega) - beta0 - beta1*(omega-omega0) = 0: no nonlinear term"
+	case emission.Anchored:
+		return "beta(omega) - beta0 - beta1*(omega-omega0) = kappa, interpolated between full-field runs of this bench"
 	}
 	return "beta(omega) - beta0 - beta1*(omega-omega0) = 0.496*gamma*P0*(omega*T0)^(2/3) (own fit to 212 full-field runs)"
 }

@@ -18,6 +18,7 @@ import (
 	"barline/model/fibre"
 	"barline/model/gas"
 	"barline/model/pulse"
+	"barline/model/unit"
 	"barline/tui/figure"
 )
 
@@ -141,8 +142,12 @@ type propagation struct {
 	predictor *emission.Predictor // for the numbers beside the run
 	medium    *gas.Medium
 	fibre     *fibre.Fibre
+	rates     *pulse.Rates
 	tolerance float64
 }
+
+// anyTemperature will do to make the ionisation rates, which ask for none.
+const anyTemperature = 293.15
 
 func newPropagation(s emission.Setup, tolerance float64) (*propagation, error) {
 	if s.Answer == emission.Anchored {
@@ -152,7 +157,14 @@ func newPropagation(s emission.Setup, tolerance float64) (*propagation, error) {
 	if err != nil {
 		return nil, err
 	}
-	return &propagation{s, predictor, predictor.Medium(), predictor.Fibre(), tolerance}, nil
+	p := &propagation{setup: s, predictor: predictor, medium: predictor.Medium(), fibre: predictor.Fibre(), tolerance: tolerance}
+	state, err := p.medium.At(unit.Bar, anyTemperature, 0)
+	if err != nil {
+		return nil, err
+	}
+	ready, err := pulse.Setup{Fibre: p.fibre, Gas: state, Pulse: s.Pulse, Plasma: s.Plasma}.Prepare()
+	p.rates = ready.Rates
+	return p, err
 }
 
 // clone returns a propagation for another goroutine.
@@ -176,7 +188,7 @@ func (p *propagation) run(ctx context.Context, in emission.Input, samples int, p
 	if err != nil {
 		return nil, err
 	}
-	s := pulse.Setup{Fibre: p.fibre, Gas: state, Pulse: p.setup.Pulse, Plasma: p.setup.Plasma}
+	s := pulse.Setup{Fibre: p.fibre, Gas: state, Pulse: p.setup.Pulse, Plasma: p.setup.Plasma, Rates: p.rates}
 	s.Pulse.Energy = in.Energy
 	start := time.Now()
 	r, err := s.Run(ctx, pulse.Options{Tolerance: p.tolerance, Samples: samples, Progress: progress})

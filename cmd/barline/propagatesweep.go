@@ -30,10 +30,7 @@ type step struct {
 
 // runSweep runs the steps on all cores and prints them in order.
 func (f *propagateFlags) runSweep(ctx context.Context, out *bufio.Writer, stderr io.Writer, p *propagation, in emission.Input, s *sweep) error {
-	var inputs []emission.Input
-	if err := s.each(in, func(in emission.Input) error { inputs = append(inputs, in); return nil }); err != nil {
-		return err
-	}
+	inputs := s.inputs(in)
 	kept, err := openKept(f.resume)
 	if err != nil {
 		return err

@@ -11,17 +11,20 @@ import (
 	"barline/model/unit"
 )
 
-// bench is a single-ring fibre in argon between 7 and 12 bar.
+// low and high are argon at 7 and 12 bar, in mol/m³.
+const low, high = 286.0, 493.0
+
+// span is what the tests anchor.
+var span = Range{low, high}
+
+// bench is a single-ring fibre in argon.
 func bench(t testing.TB) *Bench {
 	t.Helper()
 	b, err := New(Spec{
 		Gas: gas.Spec{Composition: "argon"},
 		Fibre: fibre.Spec{Kind: fibre.Antiresonant, CoreDiameter: 34 * unit.Micrometre, Wall: 180 * unit.Nanometre,
 			Length: 0.3, Loss: fibre.Loss{Constant: 1}},
-		Pulse:       pulse.Pulse{Wavelength: 1030 * unit.Nanometre, Duration: 35 * unit.Femtosecond, Energy: 1.3 * unit.Microjoule},
-		Temperature: unit.Celsius(22),
-		Pressure:    [2]unit.Pascal{7 * unit.Bar, 12 * unit.Bar},
-		Energy:      [2]unit.Joule{1.04 * unit.Microjoule, 1.56 * unit.Microjoule},
+		Pulse: pulse.Pulse{Wavelength: 1030 * unit.Nanometre, Duration: 35 * unit.Femtosecond, Energy: 1.3 * unit.Microjoule},
 	})
 	if err != nil {
 		t.Fatal(err)
@@ -37,11 +40,11 @@ type made struct {
 }
 
 func (b made) kappa(branch int, density float64, energy unit.Joule) float64 {
-	x := (density - b.low) / (b.high - b.low)
+	x := (density - low) / (high - low)
 	y := float64(energy/b.spec.Pulse.Energy) - 1
 	k := 80 + 900*x - 250*x*x + 60*x*x*x - 700*y*(1-x) + 300*y*y
 	if branch == 1 {
-		k += 900 // some 20 nm to shorter wavelength
+		k += 500 // some 10 nm to shorter wavelength
 	}
 	return k
 }
@@ -59,8 +62,17 @@ func (b made) node(k Task, branches ...int) Node {
 	return n
 }
 
+func (b made) all(tasks []Task) (list []Node) {
+	for _, k := range tasks {
+		if k.Moved == Nothing {
+			list = append(list, b.node(k, 0))
+		}
+	}
+	return list
+}
+
 func (b made) nodes(count int, branches ...int) (list []Node) {
-	for _, k := range b.Plan(nil)[:count] {
+	for _, k := range b.Plan(nil, span)[:count] {
 		if k.Moved == Nothing {
 			list = append(list, b.node(k, branches...))
 		}
@@ -72,14 +84,14 @@ func (b made) nodes(count int, branches ...int) (list []Node) {
 // exactly, its slopes included: by the theory of Lagrange interpolation.
 func TestInterpolationIsExactForItsOrder(t *testing.T) {
 	b := made{bench(t), t}
-	m := b.Build(b.nodes(len(b.Plan(nil)), 0, 1))
+	m := b.Build(b.nodes(len(b.Plan(nil, span)), 0, 1))
 	if len(m.branches) != 2 {
 		t.Fatalf("%d branches, want 2", len(m.branches))
 	}
 	rng := rand.New(rand.NewPCG(7, 7))
 	for range 200 {
-		density := b.low + (b.high-b.low)*rng.Float64()
-		energy := b.spec.Energy[0] + (b.spec.Energy[1]-b.spec.Energy[0])*unit.Joule(rng.Float64())
+		density := low + (high-low)*rng.Float64()
+		energy := b.energy(-2) + (b.energy(2)-b.energy(-2))*unit.Joule(rng.Float64())
 		var dst [MaxBranches]Point
 		var omega [MaxBranches]float64
 		if n := m.Emission(b.Guide(density), energy, &dst, &omega); n != 2 {
@@ -116,35 +128,60 @@ func TestCoarseMapAnswersAndSaysSo(t *testing.T) {
 		t.Errorf("two nodes usable %v, three usable %v and coarse %v", two.Usable(), three.Usable(), three.Coarse())
 	}
 	var dst [MaxBranches]Point
-	if n := three.At((b.low+b.high)/2, b.spec.Pulse.Energy, &dst); n != 1 {
+	if n := three.At(370, b.spec.Pulse.Energy, &dst); n != 1 {
 		t.Errorf("%d branches in the middle, want 1", n)
 	}
-	if full := b.Build(b.nodes(len(b.Plan(nil)), 0)); full.Coarse() {
+	if full := b.Build(b.nodes(len(b.Plan(nil, span)), 0)); full.Coarse() {
 		t.Error("all nodes count as coarse")
 	}
 }
 
 func TestNoExtrapolation(t *testing.T) {
 	b := made{bench(t), t}
-	m := b.Build(b.nodes(len(b.Plan(nil)), 0))
-	step := (b.high - b.low) / 8
+	m := b.Build(b.nodes(len(b.Plan(nil, span)), 0))
+	edge := b.Plan(nil, span)[0].Density // the lowest node
+	first, last := edge, m.nodes[len(m.nodes)-1].Density
 	var dst [MaxBranches]Point
 	for _, c := range []struct {
 		density float64
 		energy  unit.Joule
 		want    int
 	}{
-		{b.low - 0.4*step, b.spec.Pulse.Energy, 1},
-		{b.low - 0.6*step, b.spec.Pulse.Energy, 0},
-		{b.high + 0.6*step, b.spec.Pulse.Energy, 0},
-		{b.high, b.spec.Energy[1] * 1.03, 1},
-		{b.high, b.spec.Energy[1] * 1.07, 0},
-		{b.high, b.spec.Energy[0] * 0.9, 0},
+		{first * 0.97, b.spec.Pulse.Energy, 1},
+		{first * 0.96, b.spec.Pulse.Energy, 0},
+		{last * 1.03, b.spec.Pulse.Energy, 1},
+		{last * 1.04, b.spec.Pulse.Energy, 0},
+		{last, b.energy(2) * 1.03, 1},
+		{last, b.energy(2) * 1.06, 0},
+		{last, b.energy(-2) * 0.9, 0},
 		{math.NaN(), b.spec.Pulse.Energy, 0},
-		{b.high, unit.Joule(math.NaN()), 0},
+		{last, unit.Joule(math.NaN()), 0},
 	} {
-		if n := m.At(c.density, c.energy, &dst); n != c.want {
-			t.Errorf("%d branches at %g mol/m³ and %g uJ, want %d", n, c.density, c.energy.Microjoules(), c.want)
+		if n := m.At(c.density, c.energy, &dst); n != c.want || m.Covers(c.density, c.energy) != (c.want > 0) {
+			t.Errorf("%d branches at %g mol/m³ and %g uJ, covered %v; want %d", n, c.density, c.energy.Microjoules(), m.Covers(c.density, c.energy), c.want)
+		}
+	}
+}
+
+// Between two ranges that were anchored apart nothing is known.
+func TestGapBetweenRanges(t *testing.T) {
+	b := made{bench(t), t}
+	var nodes []Node
+	for _, r := range []Range{{270, 280}, {800, 900}} {
+		for _, k := range b.Plan(nil, r) {
+			if k.Moved == Nothing && k.Energy == b.spec.Pulse.Energy {
+				nodes = append(nodes, b.node(k, 0))
+			}
+		}
+	}
+	m := b.Build(nodes)
+	var dst [MaxBranches]Point
+	if n := m.At(540, b.spec.Pulse.Energy, &dst); n != 0 || m.Covers(540, b.spec.Pulse.Energy) {
+		t.Errorf("%d branches in the gap, covered %v", n, m.Covers(540, b.spec.Pulse.Energy))
+	}
+	for _, d := range []float64{275, 850} {
+		if n := m.At(d, b.spec.Pulse.Energy, &dst); n != 1 || !m.Covers(d, b.spec.Pulse.Energy) {
+			t.Errorf("%d branches at %g mol/m³", n, d)
 		}
 	}
 }
@@ -152,22 +189,22 @@ func TestNoExtrapolation(t *testing.T) {
 // A node without emission ends the branch; on its other side another begins.
 func TestDarkNodeEndsTheBranch(t *testing.T) {
 	b := made{bench(t), t}
-	dark := b.density(4, 9)
+	k0 := int(place(350))
+	dark := density(k0)
 	var nodes []Node
-	for i := range 9 {
-		k := Task{b.density(i, 9), b.spec.Pulse.Energy, Nothing}
-		if k.Density == dark {
-			nodes = append(nodes, b.node(k))
+	for k := k0 - 4; k <= k0+4; k++ {
+		task := Task{density(k), b.spec.Pulse.Energy, Nothing}
+		if k == k0 {
+			nodes = append(nodes, b.node(task))
 			continue
 		}
-		nodes = append(nodes, b.node(k, 0))
+		nodes = append(nodes, b.node(task, 0))
 	}
 	m := b.Build(nodes)
 	var dst [MaxBranches]Point
-	step := (b.high - b.low) / 8
-	for x, want := range map[float64]int{dark: 0, dark - 0.4*step: 0, dark - 0.6*step: 1, dark + 0.6*step: 1} {
-		if n := m.At(x, b.spec.Pulse.Energy, &dst); n != want {
-			t.Errorf("%d branches %.2g spacings from the dark node, want %d", n, (x-dark)/step, want)
+	for x, want := range map[float64]int{dark: 0, dark * 0.97: 0, dark * 0.96: 1, dark * 1.04: 1} {
+		if n := m.At(x, b.spec.Pulse.Energy, &dst); n != want || !m.Covers(x, b.spec.Pulse.Energy) {
+			t.Errorf("%d branches at %.3f of the dark node, want %d; covered %v", n, x/dark, want, m.Covers(x, b.spec.Pulse.Energy))
 		}
 	}
 }
@@ -177,14 +214,15 @@ func TestDarkNodeEndsTheBranch(t *testing.T) {
 func TestStrongerBranchComesFirst(t *testing.T) {
 	b := made{bench(t), t}
 	var nodes []Node
+	k0 := int(place(low))
 	for i := range 9 {
-		n := b.node(Task{b.density(i, 9), b.spec.Pulse.Energy, Nothing}, 0, 1)
+		n := b.node(Task{density(k0 + i), b.spec.Pulse.Energy, Nothing}, 0, 1)
 		n.Lobes[0].Conversion, n.Lobes[1].Conversion = 0.10-0.01*float64(i), 0.02+0.01*float64(i)
 		nodes = append(nodes, n)
 	}
 	m := b.Build(nodes)
 	var at, below [MaxBranches]Point
-	if m.At(b.low, b.spec.Pulse.Energy, &below) != 2 || m.At(b.high, b.spec.Pulse.Energy, &at) != 2 {
+	if m.At(density(k0), b.spec.Pulse.Energy, &below) != 2 || m.At(density(k0+8), b.spec.Pulse.Energy, &at) != 2 {
 		t.Fatal("want two branches at either end")
 	}
 	if below[0].Branch != at[1].Branch || below[1].Branch != at[0].Branch || at[0].Conversion < at[1].Conversion {
@@ -195,8 +233,8 @@ func TestStrongerBranchComesFirst(t *testing.T) {
 
 func TestSlopeOverAnInput(t *testing.T) {
 	b := made{bench(t), t}
-	nodes := b.nodes(len(b.Plan(nil)), 0)
-	k := Task{b.density(1, 3), b.spec.Pulse.Energy, NonlinearIndex}
+	nodes := b.nodes(len(b.Plan(nil, span)), 0)
+	k := Task{density(int(place(380))), b.spec.Pulse.Energy, NonlinearIndex}
 	moved := b.node(k)
 	shifted := b.kappa(0, k.Density, k.Energy) + 50
 	omega, ok := Solve(b.Guide(k.Density), b.omega, shifted, fibre.Frequency(255*unit.Nanometre))
@@ -215,7 +253,7 @@ func TestSlopeOverAnInput(t *testing.T) {
 
 func TestPlanLeavesOutWhatIsThere(t *testing.T) {
 	b := made{bench(t), t}
-	all := b.Plan(nil)
+	all := b.Plan(nil, span)
 	seen := make(map[Task]bool)
 	for _, k := range all {
 		if seen[k] {
@@ -223,8 +261,17 @@ func TestPlanLeavesOutWhatIsThere(t *testing.T) {
 		}
 		seen[k] = true
 	}
-	if rest := b.Plan([]Node{b.node(all[0], 0)}); len(rest) != len(all)-1 || rest[0] != all[1] {
+	if rest := b.Plan([]Node{b.node(all[0], 0)}, span); len(rest) != len(all)-1 || rest[0] != all[1] {
 		t.Errorf("with the first node there, %d of %d tasks remain", len(rest), len(all))
+	}
+	for _, r := range []Range{{}, {5, 4}, {math.NaN(), 5}, {math.Inf(1), math.Inf(1)}} {
+		if tasks := b.Plan(nil, r); len(tasks) != 0 {
+			t.Errorf("the range %v needs %d tasks", r, len(tasks))
+		}
+	}
+	quick := b.Quick(nil, span)
+	if m := b.Build(b.all(quick)); len(quick) > 32 || !m.Usable() || !m.Covers(low, b.energy(-2)) || !m.Covers(high, b.energy(2)) {
+		t.Errorf("the quick plan has %d tasks and does not span the range", len(quick))
 	}
 	for _, k := range all[:3] {
 		if k.Energy != b.spec.Pulse.Energy || k.Moved != Nothing {
@@ -236,9 +283,9 @@ func TestPlanLeavesOutWhatIsThere(t *testing.T) {
 func TestDigest(t *testing.T) {
 	s := bench(t).Spec()
 	same := s
-	same.Pressure[1], same.Energy[0], same.Temperature = 11*unit.Bar, unit.Microjoule, 300
+	same.Pulse.Energy *= 2
 	if s.Digest() != same.Digest() {
-		t.Error("another range changes the digest, so that nodes are lost")
+		t.Error("another energy changes the digest, so that nodes are lost")
 	}
 	for name, change := range map[string]func(*Spec){
 		"gas":      func(s *Spec) { s.Gas.Composition = "neon" },
@@ -258,11 +305,10 @@ func TestDigest(t *testing.T) {
 func TestRefusals(t *testing.T) {
 	good := bench(t).Spec()
 	for name, change := range map[string]func(*Spec){
-		"descending pressure": func(s *Spec) { s.Pressure[0] = 13 * unit.Bar },
-		"no pressure":         func(s *Spec) { s.Pressure[0] = 0 },
-		"energy outside":      func(s *Spec) { s.Pulse.Energy = 2 * unit.Microjoule },
-		"no such gas":         func(s *Spec) { s.Gas.Composition = "phlogiston" },
-		"not a number":        func(s *Spec) { s.Energy[0] = unit.Joule(math.NaN()) },
+		"no energy":    func(s *Spec) { s.Pulse.Energy = 0 },
+		"no fibre":     func(s *Spec) { s.Fibre.CoreDiameter = 0 },
+		"no such gas":  func(s *Spec) { s.Gas.Composition = "phlogiston" },
+		"not a number": func(s *Spec) { s.Pulse.Duration = unit.Second(math.NaN()) },
 	} {
 		s := good
 		change(&s)
@@ -274,8 +320,8 @@ func TestRefusals(t *testing.T) {
 
 func TestAnswersAllocateNothing(t *testing.T) {
 	b := made{bench(t), t}
-	m := b.Build(b.nodes(len(b.Plan(nil)), 0, 1))
-	g := b.Guide((b.low + b.high) / 2)
+	m := b.Build(b.nodes(len(b.Plan(nil, span)), 0, 1))
+	g := b.Guide((low + high) / 2)
 	var dst [MaxBranches]Point
 	var omega [MaxBranches]float64
 	if n := testing.AllocsPerRun(20, func() { m.Emission(g, b.spec.Pulse.Energy, &dst, &omega) }); n != 0 {
@@ -285,8 +331,8 @@ func TestAnswersAllocateNothing(t *testing.T) {
 
 func BenchmarkEmission(b *testing.B) {
 	x := made{bench(b), b}
-	m := x.Build(x.nodes(len(x.Plan(nil)), 0, 1))
-	g := x.Guide((x.low+x.high)/2 + 1)
+	m := x.Build(x.nodes(len(x.Plan(nil, span)), 0, 1))
+	g := x.Guide((low+high)/2 + 1)
 	var dst [MaxBranches]Point
 	var omega [MaxBranches]float64
 	b.ReportAllocs()

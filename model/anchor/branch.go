@@ -15,11 +15,12 @@ type anchored struct {
 	slope      float64 // ∂Δβ/∂ω there, s/m
 	omega      float64 // rad/s
 	conversion float64
+	peak       float64 // from the centroid, m
 	branch     int
 }
 
 // knot is one node on a branch.
-type knot struct{ density, kappa, omega, conversion float64 }
+type knot struct{ density, kappa, omega, conversion, peak, ionised float64 }
 
 // row is the part of a branch at one energy, ascending in density.
 type row struct {
@@ -31,8 +32,8 @@ type row struct {
 type branch struct{ rows []row }
 
 // reach is how far, in wavelength, two lobes of neighbouring nodes may be apart
-// after the linear shift and still be the same. It holds for the spacing of
-// nine densities; wider spacings allow in proportion.
+// after the linear shift and still be the same. It holds for neighbours on the
+// lattice; wider spacings allow in proportion.
 const reach = 5 * unit.Nanometre
 
 // link joins lobes into branches. nodes ascend in energy and then density.
@@ -45,18 +46,17 @@ func (b *Bench) link(nodes []Node) []branch {
 		for _, l := range n.Lobes {
 			omega := fibre.Frequency(l.Centroid)
 			if delta, slope, ok := m.at(omega); ok && slope > 0 {
-				lobes = append(lobes, anchored{i, delta, slope, omega, l.Conversion, len(lobes)})
+				lobes = append(lobes, anchored{i, delta, slope, omega, l.Conversion, float64(l.Peak - l.Centroid), len(lobes)})
 			}
 		}
 	}
 	first[len(nodes)] = len(lobes)
-	fine := (b.high - b.low) / 8
 	for i := range nodes {
 		for j := i + 1; j < len(nodes); j++ {
 			allowed := 0.0
 			switch {
-			case j == i+1 && nodes[i].Energy == nodes[j].Energy:
-				allowed = float64(reach) * max(1, (nodes[j].Density-nodes[i].Density)/fine)
+			case j == i+1 && neighbours(nodes[i], nodes[j]):
+				allowed = float64(reach) * max(1, place(nodes[j].Density)-place(nodes[i].Density))
 			case nodes[i].Density == nodes[j].Density && adjacent(nodes, i, j):
 				allowed = 2 * float64(reach)
 			default:
@@ -66,6 +66,12 @@ func (b *Bench) link(nodes []Node) []branch {
 		}
 	}
 	return gather(nodes, lobes)
+}
+
+// neighbours reports whether two nodes of the same energy are close enough in
+// density to interpolate between.
+func neighbours(a, b Node) bool {
+	return a.Energy == b.Energy && place(b.Density)-place(a.Density) < coarsest+0.5
 }
 
 // adjacent reports whether no other node of the same density lies between the
@@ -143,7 +149,7 @@ func gather(nodes []Node, lobes []anchored) []branch {
 			br.rows = append(br.rows, row{energy: float64(n.Energy)})
 		}
 		r := &br.rows[len(br.rows)-1]
-		r.knots = append(r.knots, knot{n.Density, l.kappa, l.omega, l.conversion})
+		r.knots = append(r.knots, knot{n.Density, l.kappa, l.omega, l.conversion, l.peak, n.Ionised})
 	}
 	return list
 }

@@ -3,10 +3,10 @@
 //
 // Concepts:
 //
-//   - A Spec is the bench: gas, fibre, pulse, and the range of density and
-//     pulse energy over which it is used. Its Digest names what a node depends
-//     on.
-//   - A Task is one full-field run; Spec.Plan lists them, the coarse ones first.
+//   - A Spec is the bench: gas, fibre, pulse. Its Digest names what a node
+//     depends on.
+//   - A Task is one full-field run; Bench.Plan lists those that a range of
+//     density needs, the coarse ones first.
 //   - A Node is what a run found: the lobes of its spectrum at one density and
 //     energy. Each lobe gives κ = Δβ(ω), what phase matching would have needed
 //     there.

@@ -1,6 +1,10 @@
 package anchor
 
-import "sort"
+import (
+	"sort"
+
+	"barline/model/unit"
+)
 
 // most is the number of knots in one direction that an interpolation uses:
 // a cubic where there are as many.
@@ -21,13 +25,13 @@ func weights(x *[most]float64, n int, at float64, w, dw *[most]float64) {
 }
 
 // value is an interpolated κ with its derivative in the direction of the row.
-type value struct{ kappa, slope, omega, conversion float64 }
+type value struct{ kappa, slope, omega, conversion, peak, ionised float64 }
 
-// at interpolates along the row; ok is false more than half a spacing beyond
-// its knots.
+// at interpolates along the row; ok is false beyond its knots by more than the
+// factor half.
 func (r *row) at(density, half float64) (v value, ok bool) {
 	n := len(r.knots)
-	if !(density >= r.knots[0].density-half && density <= r.knots[n-1].density+half) {
+	if !(density >= r.knots[0].density/half && density <= r.knots[n-1].density*half) {
 		return v, false
 	}
 	i := sort.Search(n, func(k int) bool { return r.knots[k].density >= density })
@@ -44,6 +48,8 @@ func (r *row) at(density, half float64) (v value, ok bool) {
 		v.slope += dw[k] * q.kappa
 		v.omega += w[k] * q.omega
 		v.conversion += w[k] * q.conversion
+		v.peak += w[k] * q.peak
+		v.ionised += w[k] * q.ionised
 	}
 	return v, true
 }
@@ -88,7 +94,9 @@ func (b *branch) at(density, energy, halfDensity, halfEnergy float64) (p Point, 
 		p.OverEnergy += dw[k] * v[k].kappa
 		p.Omega += w[k] * v[k].omega
 		p.Conversion += w[k] * v[k].conversion
+		p.Peak += unit.Metre(w[k] * v[k].peak)
+		p.Ionised += w[k] * v[k].ionised
 	}
-	p.Conversion = min(max(p.Conversion, 0), 1)
+	p.Conversion, p.Ionised = min(max(p.Conversion, 0), 1), min(max(p.Ionised, 0), 1)
 	return p, true
 }

@@ -19,7 +19,7 @@ func (m *Map) leaveOut() (rms unit.Metre, count int) {
 			for k := 1; k+1 < len(knots); k++ {
 				without := row{energy: br.rows[r].energy, knots: make([]knot, 0, len(knots)-1)}
 				without.knots = append(append(without.knots, knots[:k]...), knots[k+1:]...)
-				v, ok := without.at(knots[k].density, 0)
+				v, ok := without.at(knots[k].density, 1)
 				if !ok {
 					continue
 				}

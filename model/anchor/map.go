@@ -13,7 +13,7 @@ type Map struct {
 	bench    *Bench
 	nodes    []Node
 	branches []branch
-	spacing  struct{ density, energy float64 } // of the nodes, the largest
+	spacing  struct{ density, energy float64 } // of the nodes, the smallest: relative, and in J
 	slopes   [InputCount]Slope
 	leftOut  unit.Metre
 	tested   int
@@ -29,20 +29,23 @@ type Slope struct {
 
 // Point is one branch at one density and energy.
 type Point struct {
-	Kappa      float64 // 1/m
-	OverDens   float64 // ∂κ/∂density at constant energy, 1/m per mol/m³
-	OverEnergy float64 // ∂κ/∂energy at constant density, 1/m per J
-	Omega      float64 // rad/s, interpolated: where to start solving
-	Conversion float64 // of the output energy
-	Branch     int     // the same number on the same branch of one map
+	Kappa      float64    // 1/m
+	OverDens   float64    // ∂κ/∂density at constant energy, 1/m per mol/m³
+	OverEnergy float64    // ∂κ/∂energy at constant density, 1/m per J
+	Omega      float64    // rad/s, interpolated: where to start solving
+	Conversion float64    // of the output energy
+	Peak       unit.Metre // of the lobe, from its centroid
+	Ionised    float64    // largest share of atoms along the fibre
+	Branch     int        // the same number on the same branch of one map
 }
 
-// Build joins nodes into a map. The nodes may come in any order; those of
-// other densities and energies than planned are used too.
+// Build joins nodes into a map. The nodes may come in any order; those that do
+// not stand on the lattice, which a bench with another pulse energy may have
+// left, are not used.
 func (b *Bench) Build(nodes []Node) *Map {
 	m := &Map{bench: b}
 	for _, n := range nodes {
-		if n.Moved == Nothing {
+		if n.Moved == Nothing && b.holds(n) {
 			m.nodes = append(m.nodes, n)
 		}
 	}
@@ -58,7 +61,7 @@ func (b *Bench) Build(nodes []Node) *Map {
 	m.measure()
 	m.slopes = b.slopesOf(m, nodes)
 	m.leftOut, m.tested = m.leaveOut()
-	m.coarse = m.rows() < 3 || m.nodesPerRow() < 9
+	m.coarse = m.rows() < 3 || m.spacing.density > 1.5*densityStep
 	return m
 }
 
@@ -118,23 +121,45 @@ func (m *Map) nodesPerRow() int {
 // measure finds the spacing of the nodes, which says how far a branch reaches
 // beyond its last one.
 func (m *Map) measure() {
-	m.spacing.density = math.Inf(1)
-	m.spacing.energy = float64(m.bench.spec.Energy[1]-m.bench.spec.Energy[0]) / 2
-	energies := 0
+	m.spacing.density, m.spacing.energy = math.Inf(1), math.Inf(1)
 	for i := 1; i < len(m.nodes); i++ {
 		if m.nodes[i].Energy == m.nodes[i-1].Energy {
-			m.spacing.density = min(m.spacing.density, m.nodes[i].Density-m.nodes[i-1].Density)
+			m.spacing.density = min(m.spacing.density, m.nodes[i].Density/m.nodes[i-1].Density-1)
 			continue
 		}
-		step := float64(m.nodes[i].Energy - m.nodes[i-1].Energy)
-		if energies++; energies == 1 {
-			m.spacing.energy = step
-		}
-		m.spacing.energy = min(m.spacing.energy, step)
+		m.spacing.energy = min(m.spacing.energy, float64(m.nodes[i].Energy-m.nodes[i-1].Energy))
 	}
 	if math.IsInf(m.spacing.density, 1) {
 		m.spacing.density = 0
 	}
+	if math.IsInf(m.spacing.energy, 1) { // one energy so far: as if the next stood at the first step
+		m.spacing.energy = 2 * energyStep * float64(m.bench.spec.Pulse.Energy)
+	}
+}
+
+// Covers reports whether the map speaks for a density in mol/m³ and an energy:
+// between neighbouring nodes, or at most half a spacing beyond. Where it does
+// and At finds no branch, full-field runs near there find no emission.
+func (m *Map) Covers(density float64, energy unit.Joule) bool {
+	if !m.Usable() {
+		return false
+	}
+	first, last := m.nodes[0], m.nodes[len(m.nodes)-1]
+	halfEnergy := m.spacing.energy / 2
+	if !(float64(energy) >= float64(first.Energy)-halfEnergy && float64(energy) <= float64(last.Energy)+halfEnergy) {
+		return false
+	}
+	half := 1 + m.spacing.density/2
+	for i := range m.nodes {
+		n := &m.nodes[i]
+		if density >= n.Density/half && density <= n.Density*half {
+			return true
+		}
+		if i > 0 && neighbours(m.nodes[i-1], *n) && density >= m.nodes[i-1].Density && density <= n.Density {
+			return true
+		}
+	}
+	return false
 }
 
 // At fills dst with the branches at a density in mol/m³ and a pulse energy,
@@ -143,7 +168,7 @@ func (m *Map) measure() {
 func (m *Map) At(density float64, energy unit.Joule, dst *[MaxBranches]Point) int {
 	n := 0
 	for i := range m.branches {
-		p, ok := m.branches[i].at(density, float64(energy), m.spacing.density/2, m.spacing.energy/2)
+		p, ok := m.branches[i].at(density, float64(energy), 1+m.spacing.density/2, m.spacing.energy/2)
 		if !ok {
 			continue
 		}

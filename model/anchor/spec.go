@@ -12,26 +12,20 @@ import (
 	"barline/model/unit"
 )
 
-// Spec is a bench and the range over which it is used.
+// Spec is a bench.
 type Spec struct {
 	Gas    gas.Spec
 	Fibre  fibre.Spec
 	Pulse  pulse.Pulse // its Energy is the one used most
 	Plasma pulse.Plasma
-
-	// Pressure at Temperature spans the range of density.
-	Temperature unit.Kelvin
-	Pressure    [2]unit.Pascal
-	Energy      [2]unit.Joule
 }
 
 // version goes into the digest: raise it when the solver's answers change.
 const version = 1
 
 // Digest names everything that a node depends on but its density and energy,
-// as 64 hexadecimal digits. Specs that differ in their ranges share nodes.
+// as 64 hexadecimal digits.
 func (s Spec) Digest() string {
-	s.Pressure, s.Energy, s.Temperature = [2]unit.Pascal{}, [2]unit.Joule{}, 0
 	s.Pulse.Energy = 0
 	text, err := json.Marshal(struct {
 		Version   int
@@ -49,13 +43,12 @@ func (s Spec) Digest() string {
 type Bench struct {
 	spec  Spec
 	fibre *fibre.Fibre
-	gas   gas.State // at the middle of the range
-	low   float64   // density, mol/m³
-	high  float64
-	omega float64 // pump, rad/s
+	gas   gas.State // at any density
+	omega float64   // pump, rad/s
+	rates *pulse.Rates
 }
 
-// New checks a spec. It refuses empty or descending ranges.
+// New checks a spec.
 func New(s Spec) (*Bench, error) {
 	medium, err := gas.New(s.Gas)
 	if err != nil {
@@ -65,29 +58,20 @@ func New(s Spec) (*Bench, error) {
 	if err != nil {
 		return nil, err
 	}
-	if !(s.Pressure[0] > 0 && s.Pressure[1] > s.Pressure[0]) {
-		return nil, fmt.Errorf("anchoring: pressure from %v to %v, expected an ascending range above zero", s.Pressure[0], s.Pressure[1])
+	if !(s.Pulse.Energy > 0) || !(s.Pulse.Duration > 0) || !(s.Pulse.Wavelength > 0) {
+		return nil, fmt.Errorf("anchoring: pulse of %.4g fs and %.4g uJ at %.4g nm, expected all above zero",
+			s.Pulse.Duration.Femtoseconds(), s.Pulse.Energy.Microjoules(), s.Pulse.Wavelength.Nanometres())
 	}
-	if !(s.Energy[0] > 0 && s.Energy[1] > s.Energy[0] && s.Pulse.Energy >= s.Energy[0] && s.Pulse.Energy <= s.Energy[1]) {
-		return nil, fmt.Errorf("anchoring: energy from %.4g to %.4g uJ with %.4g uJ used most, expected an ascending range that holds it",
-			s.Energy[0].Microjoules(), s.Energy[1].Microjoules(), s.Pulse.Energy.Microjoules())
-	}
-	b := &Bench{spec: s, fibre: f, omega: fibre.Frequency(s.Pulse.Wavelength)}
-	iso, err := medium.Isotherm(s.Temperature)
+	const any, ambient = 293.15, unit.Bar // the density is set later
+	state, err := medium.At(ambient, any, 0)
 	if err != nil {
-		return nil, err
+		return nil, fmt.Errorf("anchoring: %w", err)
 	}
-	ends := [2]float64{}
-	for i, p := range s.Pressure {
-		state, err := iso.State(p, 0)
-		if err != nil {
-			return nil, fmt.Errorf("anchoring: %s at %v and %v: %w", medium.Name(), p, s.Temperature, err)
-		}
-		ends[i] = float64(state.Density)
-		b.gas = state
+	ready, err := pulse.Setup{Fibre: f, Gas: state, Pulse: s.Pulse, Plasma: s.Plasma}.Prepare()
+	if err != nil {
+		return nil, fmt.Errorf("anchoring: %w", err)
 	}
-	b.low, b.high = ends[0], ends[1]
-	return b, nil
+	return &Bench{spec: s, fibre: f, gas: state, omega: fibre.Frequency(s.Pulse.Wavelength), rates: ready.Rates}, nil
 }
 
 // Spec returns what the bench was made from.

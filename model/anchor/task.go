@@ -42,7 +42,7 @@ type Task struct {
 
 // Setup returns the propagation that the task asks for.
 func (b *Bench) Setup(t Task) (pulse.Setup, error) {
-	s := pulse.Setup{Fibre: b.fibre, Gas: b.Guide(t.Density).Gas, Pulse: b.spec.Pulse, Plasma: b.spec.Plasma}
+	s := pulse.Setup{Fibre: b.fibre, Gas: b.Guide(t.Density).Gas, Pulse: b.spec.Pulse, Plasma: b.spec.Plasma, Rates: b.rates}
 	s.Pulse.Energy = t.Energy
 	by := change[t.Moved]
 	spec := b.spec.Fibre

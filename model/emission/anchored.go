@@ -9,6 +9,12 @@ import (
 	"barline/model/unit"
 )
 
+// AnchorBench returns the bench whose full-field runs anchor predictions of the
+// setup. The setup's pulse energy is the one used most.
+func (s Setup) AnchorBench() (*anchor.Bench, error) {
+	return anchor.New(anchor.Spec{Gas: s.Gas, Fibre: s.Fibre, Pulse: s.Pulse, Plasma: s.Plasma})
+}
+
 // Anchored returns a predictor of the same setup that gives the anchored answer
 // on nodes. It refuses nodes of another bench, and too few of them. The
 // receiver stays as it is.

@@ -21,16 +21,13 @@ func law(branch int, density float64, energy unit.Joule) float64 {
 // nodesOf carries out all planned runs of the demo bench by the law.
 func nodesOf(t *testing.T, s Setup, branches int) *anchor.Map {
 	t.Helper()
-	b, err := anchor.New(anchor.Spec{
-		Gas: s.Gas, Fibre: s.Fibre, Pulse: s.Pulse, Plasma: s.Plasma, Temperature: 295.15,
-		Pressure: [2]unit.Pascal{7e5, 12e5}, Energy: [2]unit.Joule{1.04e-6, 1.56e-6},
-	})
+	b, err := s.AnchorBench()
 	if err != nil {
 		t.Fatal(err)
 	}
 	pump := fibre.Frequency(s.Pulse.Wavelength)
 	var list []anchor.Node
-	for _, k := range b.Plan(nil) {
+	for _, k := range b.Plan(nil, anchor.Range{From: 286, To: 493}) {
 		n := anchor.Node{Density: k.Density, Energy: k.Energy, Moved: k.Moved}
 		if k.Moved != anchor.Nothing {
 			continue

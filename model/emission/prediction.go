@@ -74,6 +74,7 @@ type Prediction struct {
 	FissionLength    unit.Metre
 
 	Emission     unit.Metre // centroid, vacuum; 0 where there is none
+	Peak         unit.Metre // of the spectrum; known where Answer is Anchored, else 0
 	Sigma        unit.Metre // standard uncertainty of Emission
 	Extrapolated bool       // index source beyond its checked range
 

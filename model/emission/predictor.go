@@ -213,6 +213,9 @@ func (p *Predictor) emit(m *mismatch, f *found, out *Prediction) {
 		at := m.at(f.root)
 		out.Emission = wavelength(f.root)
 		out.Kappa = at.kappa
+		if p.nodes != nil {
+			out.Peak = out.Emission + f.branch.Peak
+		}
 		if p.nodes == nil {
 			out.Branches[0] = Branch{Emission: out.Emission}
 			out.BranchCount = 1

@@ -46,6 +46,8 @@ type Setup struct {
 	Plasma Plasma
 	// KerrScale multiplies the nonlinear index; 0 means 1.
 	KerrScale float64
+	// Rates is what Prepare makes; nil means that every run makes it anew.
+	Rates *Rates
 	// Density is the gas density along the fibre relative to Gas; nil means
 	// the same everywhere.
 	Density *Profile
@@ -137,29 +139,72 @@ const (
 	tableReach = 30
 )
 
-// ionisation fills in the rate of the main gas. Where the gas is a mixture all
-// atoms count as its main gas.
-func (s Setup) ionisation(m *Medium) error {
+// Rates are the ionisation rates of a gas under a pump, which take a tenth of a
+// second to make and then serve every run of the same gas, pump and plasma.
+type Rates struct {
+	table      *RateTable
+	potential  float64 // J
+	medium     *gas.Medium
+	wavelength unit.Metre
+	plasma     Plasma
+	order      int
+	zero       float64
+}
+
+// Prepare returns the setup with its ionisation rates made, for setups that
+// are copied and run many times.
+func (s Setup) Prepare() (Setup, error) {
+	var err error
+	s.Rates, err = s.rates()
+	return s, err
+}
+
+// rates returns the rates of the setup: those that it has, where they are of
+// its gas, pump and plasma.
+func (s Setup) rates() (*Rates, error) {
 	medium := s.Gas.Medium()
-	if medium == nil || s.Gas.Density == 0 {
-		return nil
+	if medium == nil {
+		return nil, nil
+	}
+	order, zero := s.Fibre.Profile()
+	r := Rates{medium: medium, wavelength: s.Pulse.Wavelength, plasma: s.Plasma, order: order, zero: zero}
+	if s.Rates != nil {
+		r.table, r.potential = s.Rates.table, s.Rates.potential
+		if r == *s.Rates {
+			return s.Rates, nil
+		}
 	}
 	species := medium.Main()
 	rate, err := ionise.NewRate(species.IonisationEnergy, species.OrbitalMomentum, fibre.Frequency(s.Pulse.Wavelength))
 	if err != nil {
-		return err
+		return nil, err
 	}
-	electrons := ionise.NewTable(rate, ionise.Fundamental, ionise.Uniform)
+	profile := ionise.Profile{Order: order, Zero: zero}
+	electrons := ionise.NewTable(rate, profile, ionise.Uniform)
 	losses := electrons
 	if s.Plasma == Radial {
-		electrons = ionise.NewTable(rate, ionise.Fundamental, ionise.Electrons)
-		losses = ionise.NewTable(rate, ionise.Fundamental, ionise.Losses)
+		electrons = ionise.NewTable(rate, profile, ionise.Electrons)
+		losses = ionise.NewTable(rate, profile, ionise.Losses)
 	}
 	low := electrons.Threshold()
-	m.Rate, err = NewRateTable(low, low*tableReach, func(field float64) (float64, float64) {
+	r.potential = species.IonisationEnergy * elementaryCharge
+	r.table, err = NewRateTable(low, low*tableReach, func(field float64) (float64, float64) {
 		return electrons.Rate(field), losses.Rate(field)
 	})
+	return &r, err
+}
+
+// ionisation fills in the rate of the main gas. Where the gas is a mixture all
+// atoms count as its main gas.
+func (s Setup) ionisation(m *Medium) error {
+	if s.Gas.Density == 0 {
+		return nil
+	}
+	r, err := s.rates()
+	if err != nil || r == nil {
+		return err
+	}
+	m.Rate, m.Potential = r.table, r.potential
 	m.Atoms = float64(s.Gas.Density) * avogadro
-	m.Potential = species.IonisationEnergy * elementaryCharge
-	return err
+	return nil
 }

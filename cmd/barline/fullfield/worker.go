@@ -41,7 +41,8 @@ func (Failed) event()   {}
 
 // Options says what a worker does of itself.
 type Options struct {
-	// Bench is anchored in the background; nil means it is not.
+	// Bench is anchored in the background, around what Around says; nil means
+	// it is not.
 	Bench *anchor.Bench
 	// Store keeps the nodes; nil means they last as long as the worker.
 	Store *Store
@@ -61,6 +62,7 @@ type Worker struct {
 	current  *pulse.Setup // the question being answered
 	stop     context.CancelFunc
 	recent   []*pulse.Result // newest last
+	around   anchor.Range    // of density, to be anchored
 }
 
 const (
@@ -103,6 +105,25 @@ func (w *Worker) Ahead(list ...pulse.Setup) {
 	w.nudge()
 }
 
+// Around says that the density of the gas is now near the given one, in
+// mol/m³: nodes are computed there. While the density stays well inside the
+// range of an earlier call it changes nothing.
+func (w *Worker) Around(density float64) {
+	w.mu.Lock()
+	inside := w.around.Holds(density*wellInside) && w.around.Holds(density/wellInside)
+	if !inside {
+		w.around = anchor.Round(density)
+	}
+	w.mu.Unlock()
+	if !inside {
+		w.nudge()
+	}
+}
+
+// wellInside is the factor by which a density may move before it leaves the
+// range that is anchored.
+const wellInside = 1.1
+
 func (w *Worker) nudge() {
 	select {
 	case w.wake <- struct{}{}:
@@ -114,21 +135,20 @@ func (w *Worker) nudge() {
 // waits for more than one run of the other.
 func (w *Worker) Run(ctx context.Context) {
 	nodes := w.load()
-	var tasks []anchor.Task
-	planned := 0
-	if w.opt.Bench != nil {
-		tasks = w.opt.Bench.Plan(nodes)
-		planned = len(tasks) + len(nodes)
-		if len(nodes) > 0 {
-			w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), len(nodes), planned})
-		}
+	if w.opt.Bench != nil && len(nodes) > 0 {
+		w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), len(nodes), len(nodes)})
 	}
+	var tasks []anchor.Task
+	var planned anchor.Range
 	for ctx.Err() == nil {
+		if r := w.wanted(); w.opt.Bench != nil && r != planned {
+			planned, tasks = r, w.opt.Bench.Plan(nodes, r)
+		}
 		asked := w.answer(ctx)
 		if len(tasks) > 0 && ctx.Err() == nil {
 			if n, ok := w.node(ctx, tasks[0]); ok {
 				nodes = append(nodes, n)
-				w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), len(nodes), planned})
+				w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), len(nodes), len(nodes) + len(tasks) - 1})
 			}
 			tasks = tasks[1:]
 			continue
@@ -141,6 +161,12 @@ func (w *Worker) Run(ctx context.Context) {
 		case <-w.wake:
 		}
 	}
+}
+
+func (w *Worker) wanted() anchor.Range {
+	w.mu.Lock()
+	defer w.mu.Unlock()
+	return w.around
 }
 
 // load reads the nodes that the store keeps.
