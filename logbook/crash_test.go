@@ -13,7 +13,7 @@ import (
 
 var (
 	crashSeed    = flag.Uint64("crash-seed", 0, "run only the story of this seed")
-	crashStories = flag.Int("crash-stories", 4500, "how many stories to run, of about two and a half crashes each")
+	crashStories = flag.Int("crash-stories", 2000, "how many stories to run, of about two and a half crashes each")
 )
 
 // TestCrashes cuts the power, fails syncs and fills the disk at random places,

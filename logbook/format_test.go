@@ -265,6 +265,16 @@ func fixtureInMemory(t *testing.T) *memDisk {
 	return d
 }
 
+// fixtureOf returns the content of one segment of the fixture.
+func fixtureOf(t testing.TB, name string) []byte {
+	t.Helper()
+	b, err := os.ReadFile(filepath.Join(fixture, name))
+	if err != nil {
+		t.Fatal(err)
+	}
+	return b
+}
+
 func readAll(t *testing.T, d disk) (all []Record, damage []*Damage) {
 	t.Helper()
 	for rec, err := range records(d, Filter{}) {

@@ -39,12 +39,12 @@ func recoverEnd(d disk) (end, error) {
 			continue // the packed copy of a segment that is still there
 		}
 		e.number = max(e.number, s.number)
-		found, err := recoverSegment(d, s, &e)
+		sure, err := recoverSegment(d, s, &e)
 		if err != nil {
 			return e, fmt.Errorf("%s: %w", s.name, err)
 		}
-		if found {
-			return e, nil
+		if sure {
+			break
 		}
 	}
 	return e, nil
@@ -61,65 +61,70 @@ type ending struct {
 	sealed  bool
 	rest    bool // bytes stand behind size
 	spoilt  bool // damage stands in front of size
-	// fragment: there is not even a whole first line.
-	fragment bool
+
+	begun    bool // its first line is sound and that of its number
+	stranger bool // its first line is sound and that of another number
+	fragment bool // there is not even a whole first line
 }
 
-// recoverSegment fills e from s, and closes s where a crash left it open.
-// found is false where no sound line is in it.
-func recoverSegment(d disk, s segmentFile, e *end) (found bool, err error) {
+// recoverSegment takes into e where s ends, and closes s where a crash left it
+// open. sure is false where s does not begin as the segment of its number, so
+// that the logbook may well end in one before it.
+func recoverSegment(d disk, s segmentFile, e *end) (sure bool, err error) {
 	r, err := openSegment(d, s)
 	if err != nil {
 		return false, err
 	}
-	found, g, err := findEnd(newWalker(r, s.name))
+	g, err := findEnd(newWalker(r, s.name), s.number)
 	r.Close()
-	if err != nil {
+	switch {
+	case err != nil:
 		return false, err
-	}
-	if !found {
-		if !g.fragment {
-			return false, nil
-		}
+	case g.fragment:
 		to, err := freeName(d, segmentName(s.number, tornSuffix))
 		if err != nil {
 			return false, err
 		}
 		return false, d.rename(s.name, to)
+	case g.stranger, g.seq < e.seq, !g.begun && g.records == 0:
+		return false, nil
 	}
 	e.seq, e.crc, e.sha256 = g.seq, g.crc, g.digest
-	if g.sealed || g.spoilt || s.packed {
-		return true, nil
+	if !g.begun || g.sealed || g.spoilt || s.packed {
+		return g.begun, nil
 	}
 	e.sha256, err = closeSegment(d, s, g)
 	return true, err
 }
 
-// findEnd walks to the end of a segment.
-func findEnd(w *walker) (found bool, g ending, err error) {
+// findEnd walks to the end of segment number.
+func findEnd(w *walker, number int) (g ending, err error) {
 	h, damage := w.begin()
 	switch {
+	case damage == nil && h.Segment != number:
+		return ending{stranger: true}, nil
 	case damage == nil:
+		g.begun = true
 		g.seq, g.size, g.last = h.AfterSeq, w.offset, w.head
 		copy(g.crc[:], h.AfterCRC)
-		found = true
 	case damage.Kind == IO, damage.Kind == Newer:
-		return false, g, errors.New(damage.Text)
+		return g, errors.New(damage.Text)
+	case damage.Kind == Torn:
+		return ending{fragment: true}, nil
 	default:
-		g.rest, g.fragment = damage.Bytes > 0, damage.Kind == Torn
+		g.rest = true
 	}
 	for {
 		l, damage, more := w.next()
 		switch {
 		case !more:
-			return found, g, nil
+			return g, nil
 		case damage != nil && damage.Kind == IO:
-			return false, g, errors.New(damage.Text)
+			return g, errors.New(damage.Text)
 		case damage != nil:
 			g.rest = true
 			continue
 		}
-		found = true
 		g.spoilt = g.spoilt || g.rest
 		g.rest = false
 		g.size = w.offset

@@ -223,6 +223,9 @@ func (r *Report) join(files []segmentFile) {
 				r.Damage = append(r.Damage, d)
 			}
 		}
+		for _, d := range s.damage {
+			d.After = max(d.After, last) // where s does not say what it continues
+		}
 		if before != nil && s.From != "" && s.From < before.To {
 			s.clockBack(line{t: []byte(s.From), seq: s.First}, []byte(before.To))
 		}
