@@ -16,7 +16,8 @@ func (s Setup) AnchorBench() (*anchor.Bench, error) {
 }
 
 // Anchored returns a predictor of the same setup that gives the anchored answer
-// on nodes. It refuses nodes of another bench, and too few of them. The
+// on nodes. Where they do not reach it answers as the receiver does, and each
+// prediction says which answer it is. It refuses nodes of another bench, and too few of them. The
 // receiver stays as it is.
 func (p *Predictor) Anchored(nodes *anchor.Map) (*Predictor, error) {
 	if nodes == nil || !nodes.Usable() {
@@ -29,6 +30,10 @@ func (p *Predictor) Anchored(nodes *anchor.Map) (*Predictor, error) {
 		return nil, fmt.Errorf("anchored emission: the full-field runs belong to another gas, fibre or pulse")
 	}
 	q := p.Clone()
+	q.beyond = p.Clone()
+	if p.beyond != nil { // more nodes of a bench that was anchored already
+		q.beyond = p.beyond.Clone()
+	}
 	q.nodes = nodes
 	q.setup.Answer = Anchored
 	return q, nil

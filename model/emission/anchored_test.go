@@ -127,9 +127,24 @@ func TestAnchoredRefusals(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	// Outside the nodes there is no answer, and no guess either.
-	if got := a.Predict(at(3, 293.15, 1.3), nil); !got.Valid || got.Emission != 0 || got.Why != whyNoNode || got.BranchCount != 0 {
-		t.Errorf("far outside: %v, %q", got.Emission, got.Why)
+	// Outside the nodes the answer is the estimate's, and says so.
+	for _, in := range []Input{at(3, 293.15, 1.3), at(16, 293.15, 1.3), at(9, 293.15, 0.7), at(9, 293.15, 2)} {
+		got, want := a.Predict(in, nil), p.Predict(in, nil)
+		if got != want || got.Answer != Estimate {
+			t.Errorf("far outside: %v, %v, want %v of the estimate", got.Answer, got.Emission, want.Emission)
+		}
+		if len(a.Breakdown(got)) != len(p.Breakdown(want)) || len(a.Steadiness(got, 0.2e-9)) != len(p.Steadiness(want, 0.2e-9)) {
+			t.Error("what makes up the uncertainty is not the estimate's")
+		}
+	}
+	// In and out again, each prediction on the one before.
+	var before Prediction
+	for bar := 6.0; bar < 14; bar += 0.25 {
+		in := at(bar, 293.15, 1.3)
+		before = a.Predict(in, &before)
+		if cold := a.Predict(in, nil); before.Answer != cold.Answer || math.Abs(float64(before.Emission-cold.Emission)) > 1e-15 {
+			t.Errorf("at %.2f bar tracked %v %v, cold %v %v", bar, before.Answer, before.Emission, cold.Answer, cold.Emission)
+		}
 	}
 	if a.Clone().Nodes() == nil || p.Nodes() != nil {
 		t.Error("a clone loses its nodes, or the first predictor has them")

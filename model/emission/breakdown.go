@@ -20,6 +20,9 @@ type Contribution struct {
 // Breakdown lists what makes up the uncertainty of a prediction, largest first,
 // entries without effect left out. It is empty where there is no emission.
 func (p *Predictor) Breakdown(pr Prediction) []Contribution {
+	if p.beyond != nil && pr.Answer != Anchored {
+		return p.beyond.Breakdown(pr)
+	}
 	e, ok := p.effectsOf(pr)
 	if !ok {
 		return nil
@@ -73,6 +76,9 @@ type Steady struct {
 // left out: those that act through the nonlinear term of a linear or estimated
 // answer, and those that no full-field run has moved yet.
 func (p *Predictor) Steadiness(pr Prediction, tolerance unit.Metre) []Steady {
+	if p.beyond != nil && pr.Answer != Anchored {
+		return p.beyond.Steadiness(pr, tolerance)
+	}
 	e, ok := p.effectsOf(pr)
 	if !ok {
 		return nil

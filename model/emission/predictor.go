@@ -25,6 +25,8 @@ type Predictor struct {
 	slopes   launchSlopes
 
 	nodes *anchor.Map // full-field runs of this bench; nil but for Anchored
+	// beyond answers where the nodes do not reach; nil but for Anchored.
+	beyond *Predictor
 
 	iso  *gas.Isotherm
 	warm *gas.Isotherm // a few kelvin off, for the slope over temperature
@@ -116,6 +118,9 @@ func (p *Predictor) Clone() *Predictor {
 	q := *p
 	iso, warm := *p.iso, *p.warm
 	q.iso, q.warm = &iso, &warm
+	if p.beyond != nil {
+		q.beyond = p.beyond.Clone()
+	}
 	return &q
 }
 
@@ -160,6 +165,9 @@ func (p *Predictor) Predict(in Input, before *Prediction) Prediction {
 	m, ok := p.prepare(in, &out)
 	if !ok {
 		return out
+	}
+	if p.nodes != nil && !p.nodes.Covers(float64(out.Density), in.Energy) {
+		return p.beyond.Predict(in, before)
 	}
 	var f found
 	tracked := false
