@@ -28,8 +28,6 @@ type light struct {
 	middle [2]float64 // density and energy round which the mismatch bends
 
 	kappa, share, width, compressed surface // share as its logarithm
-
-	beta, omega []float64
 }
 
 // emission is what leaves the fibre besides the pump.
@@ -61,11 +59,9 @@ func newLight(t Truth) (*light, error) {
 	if err != nil {
 		return nil, err
 	}
-	const points = 96
 	l := &light{
 		truth: t, iso: iso,
 		fibre: stated.WithSizes(fibreRadius*(1+float64(t.CoreRadius)), fibreWall*(1+float64(t.Wall))),
-		beta:  make([]float64, points), omega: make([]float64, points),
 	}
 	for _, f := range []struct {
 		into  *surface
@@ -165,19 +161,16 @@ func (l *light) match(g *fibre.Guide, kappa float64) (float64, bool) {
 		if float64(b.To) > pumpWavelength/1.6 {
 			continue
 		}
+		const steps = 48
 		low, high := fibre.Frequency(b.To), fibre.Frequency(b.From)
-		last := len(l.omega) - 1
-		for i := range l.omega {
-			l.omega[i] = low + (high-low)*float64(i)/float64(last)
-		}
-		g.Beta(l.beta, l.omega)
-		above := excess(l.omega[last], l.beta[last])
-		for i := last - 1; i >= 0; i-- {
-			below := excess(l.omega[i], l.beta[i])
+		upper, above := high, excess(high, g.At(high).Beta)
+		for i := steps - 1; i >= 0; i-- {
+			lower := low + (high-low)*float64(i)/steps
+			below := excess(lower, g.At(lower).Beta)
 			if below < 0 && above >= 0 {
-				return polish(g, excess, l.omega[i], below, l.omega[i+1], above), true
+				return polish(g, excess, lower, below, upper, above), true
 			}
-			above = below
+			upper, above = lower, below
 		}
 		return 0, false
 	}
