@@ -14,19 +14,19 @@ import (
 )
 
 func (b *Bench) serve(ctx context.Context, c clock.Clock) (map[string]string, error) {
-	dir, err := os.MkdirTemp("", "heron-")
+	at, err := newFolder()
 	if err != nil {
-		return nil, fmt.Errorf("simulated bench: no place for its ports: %w", err)
+		return nil, err
 	}
 	var wires []*wire
 	ports := map[string]string{}
 	for name, p := range b.ports {
-		w := &wire{bench: b, port: p, pace: paces[name], clock: c, path: filepath.Join(dir, name), start: time.Now()}
+		w := &wire{bench: b, port: p, pace: paces[name], clock: c, path: filepath.Join(at.dir, name), start: time.Now()}
 		if err := w.plug(); err != nil {
 			for _, w := range wires {
 				w.pull()
 			}
-			return nil, errors.Join(fmt.Errorf("simulated %s: %w", name, err), os.RemoveAll(dir))
+			return nil, errors.Join(fmt.Errorf("simulated %s: %w", name, err), at.leave())
 		}
 		wires = append(wires, w)
 		ports[name] = w.path
@@ -42,7 +42,7 @@ func (b *Bench) serve(ctx context.Context, c clock.Clock) (map[string]string, er
 		for range wires {
 			<-running
 		}
-		_ = os.RemoveAll(dir) // a folder of links that the system clears away too
+		_ = at.leave() // if it stays, the next bench clears it away
 	})
 	return ports, nil
 }

@@ -133,3 +133,40 @@ func eventually(t *testing.T, what string, is func() bool) {
 		}
 	}
 }
+
+// Ports of a bench that was killed are cleared away by the next, those of one
+// that lives are not.
+func TestAbandonedPortsAreClearedAway(t *testing.T) {
+	t.Setenv("TMPDIR", t.TempDir())
+	live, err := newFolder()
+	if err != nil {
+		t.Fatal(err)
+	}
+	killed, err := newFolder()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := killed.lock.Close(); err != nil { // as the system does
+		t.Fatal(err)
+	}
+	next, err := newFolder()
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, c := range []struct {
+		p     folder
+		stays bool
+	}{{live, true}, {killed, false}, {next, true}} {
+		if _, err := os.Stat(c.p.dir); (err == nil) != c.stays {
+			t.Errorf("%s: %v, stays should be %v", c.p.dir, err, c.stays)
+		}
+	}
+	for _, p := range []folder{live, next} {
+		if err := p.leave(); err != nil {
+			t.Error(err)
+		}
+		if _, err := os.Stat(p.dir); err == nil {
+			t.Errorf("%s is still there", p.dir)
+		}
+	}
+}
