@@ -125,6 +125,9 @@ func writePorts(w io.Writer, found []foundPort) error {
 		if p.Vendor != "" {
 			is = append(is, "usb:"+p.Vendor+":"+p.Product)
 		}
+		if p.Vendor == "" {
+			is = append(is, "not on USB")
+		}
 		if p.Serial != "" {
 			is = append(is, "serial number "+p.Serial)
 		}

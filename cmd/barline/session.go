@@ -177,8 +177,9 @@ func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []b
 	for _, spec := range s.bench.Instrument {
 		channels = append(channels, spec.Channel...)
 	}
+	w.gather = newGather(l)
 	air := instrument.NewAmbient(s.bench.Panel.Ambient)
-	sink := instrument.NewHandover(channels, s.bench.Panel.Ambient, s.bench.Limits.Stale.Duration(), instrument.Barometer{Sink: l, Air: air})
+	sink := instrument.NewHandover(channels, s.bench.Panel.Ambient, s.bench.Limits.Stale.Duration(), instrument.Barometer{Sink: w.gather, Air: air})
 	for _, spec := range s.bench.Instrument {
 		in, err := instrument.New(spec, s.bench.Panel.Ambient)
 		if err != nil {
@@ -196,6 +197,9 @@ func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []b
 		r := instrument.NewRunner(in, open, s.clock, sink, broken("instrument "+spec.Name))
 		if in.TakesSetpoint() {
 			w.controllers = append(w.controllers, r)
+		}
+		if in.TakesHold() {
+			w.holders = append(w.holders, r)
 		}
 		lines = append(lines, r)
 	}

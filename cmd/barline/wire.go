@@ -8,9 +8,11 @@ import (
 	"barline/model/reading"
 )
 
-// wire brings commands to the instruments that take setpoints.
+// wire brings commands to the instruments that take them.
 type wire struct {
-	controllers []*instrument.Runner
+	controllers []*instrument.Runner // take setpoints
+	holders     []*instrument.Runner // have something to do on HOLD
+	gather      *gather
 	answer      func(command uint64, err error, at reading.Stamp)
 	now         func() reading.Stamp
 }
@@ -25,12 +27,15 @@ func (w *wire) Setpoint(command uint64, sp limit.Setpoint) {
 	}
 }
 
-// Hold implements loop.Wire.
+// Hold implements loop.Wire. It reaches every instrument that drives a valve
+// or has hold commands, and is answered when all of them have answered.
 func (w *wire) Hold(command uint64, sp limit.Setpoint) {
-	if len(w.controllers) == 0 {
+	if len(w.holders) == 0 {
 		w.answer(command, errNoController, w.now())
+		return
 	}
-	for _, r := range w.controllers {
+	w.gather.expect(command, len(w.holders))
+	for _, r := range w.holders {
 		r.Hold(command, sp)
 	}
 }

@@ -118,12 +118,11 @@ func (r *Runner) Run(ctx context.Context) {
 		}
 		wait, down = firstBackOff, ""
 		r.sink.Link(r.instrument.Name(), true, "", r.clock.Now())
-		err = r.serve(ctx, line)
-		closeErr := line.Close()
+		err = r.use(ctx, line)
 		if ctx.Err() != nil {
 			return
 		}
-		down = errors.Join(err, closeErr).Error()
+		down = err.Error()
 		r.sink.Link(r.instrument.Name(), false, down, r.clock.Now())
 		r.wait(ctx, firstBackOff)
 	}
@@ -151,6 +150,12 @@ func (r *Runner) refuseAll(reason error) {
 	for c, ok := r.commands.next(); ok; c, ok = r.commands.next() {
 		r.sink.Answer(c.number, reason, r.clock.Now())
 	}
+}
+
+// use serves an open line and closes it, also where serving panics.
+func (r *Runner) use(ctx context.Context, line link.Line) (err error) {
+	defer func() { err = errors.Join(err, line.Close()) }()
+	return r.serve(ctx, line)
 }
 
 // serve uses an open line until it is gone or ctx ends.

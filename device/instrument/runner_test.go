@@ -168,11 +168,13 @@ func TestPanicReachesTheHandler(t *testing.T) {
 		t.Fatal(err)
 	}
 	got := make(chan any, 1)
-	open := func(context.Context) (link.Line, error) {
-		return &scripted{answer: func([]byte) []byte { panic("broken") }}, nil
-	}
+	broken := &scripted{answer: func([]byte) []byte { panic("broken") }}
+	open := func(context.Context) (link.Line, error) { return broken, nil }
 	NewRunner(in, open, clock.NewScaled(1), newNotes(), func(v any, _ []byte) { got <- v }).Run(context.Background())
 	if v := <-got; v != "broken" {
 		t.Errorf("handler got %v", v)
+	}
+	if !broken.closed {
+		t.Error("the line was left open")
 	}
 }
