@@ -73,7 +73,7 @@ func measure(frame []byte, start int) []byte {
 }
 
 func checkTCP(frame []byte) error {
-	if size := SizeTCP(frame); size != len(frame) {
+	if size := SizeTCP(frame); size <= 0 || size != len(frame) {
 		return fmt.Errorf("frame % X of %d bytes, its header says %d: %w", clip(frame), len(frame), size, ErrFrame)
 	}
 	return nil
