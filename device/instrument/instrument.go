@@ -3,6 +3,7 @@ package instrument
 import (
 	"errors"
 	"fmt"
+	"math"
 	"os"
 	"time"
 
@@ -39,9 +40,13 @@ type protocol interface {
 	steps() int
 	step(i int, line link.Line, now Now, dst []reading.Reading) ([]reading.Reading, error)
 	drain(line link.Line, now Now, dst []reading.Reading) ([]reading.Reading, error)
-	// write sends the number of a channel and returns the number read back.
-	write(line link.Line, c *channel, number float64) (float64, error)
+	// write sends the number of a channel, back reads it back.
+	write(line link.Line, c *channel, number float64) error
+	back(line link.Line, c *channel) (float64, error)
+	// command sends text that has no answer, confirm asks what the instrument
+	// made of all that was sent.
 	command(line link.Line, text string) error
+	confirm(line link.Line) error
 	// idle takes what comes between polls, and notices that a line is gone.
 	idle(line link.Line) error
 	// opened forgets what was known of the line before.
@@ -170,6 +175,10 @@ func (in *Instrument) Set(line link.Line, s limit.Setpoint) error {
 	if in.setpoint < 0 {
 		return fmt.Errorf("%s takes no setpoint", in.spec.Name)
 	}
+	n, err := in.number(in.setpoint, float64(p))
+	if err != nil {
+		return err
+	}
 	if in.held {
 		for _, text := range in.spec.Resume {
 			if err := in.protocol.command(line, text); err != nil {
@@ -178,22 +187,29 @@ func (in *Instrument) Set(line link.Line, s limit.Setpoint) error {
 		}
 		in.held = false
 	}
-	return in.send(line, p)
+	c := &in.channels[in.setpoint]
+	if err := in.protocol.write(line, c, n); err != nil {
+		return fmt.Errorf("%s: setpoint %v: %w", in.spec.Name, p, err)
+	}
+	return errors.Join(in.standsAt(line, p), in.confirmed(line))
 }
 
 // Hold shuts the valves that the instrument drives, sends the hold commands of
 // the bench file and then the frozen setpoint. It tries all of them, whatever
-// fails.
+// fails, and asks what became of them only when all have been sent: an answer
+// that does not come must not keep the next command waiting.
 func (in *Instrument) Hold(line link.Line, s limit.Setpoint) error {
-	p, ok := s.Pressure()
+	p, checked := s.Pressure()
 	var errs []error
-	if !ok {
+	if !checked {
 		errs = append(errs, fmt.Errorf("%s: setpoint was not checked against the limits: %w", in.spec.Name, limit.ErrLimit))
 	}
 	in.held = true
-	for _, v := range []limit.Valve{limit.Inlet, limit.Pump, limit.Vent} {
-		if in.Moves(v) {
-			errs = append(errs, in.move(line, v, false))
+	for _, v := range heldValves {
+		if c := in.valves[v]; c != nil {
+			if err := in.protocol.write(line, c, c.spec.Number(0)); err != nil {
+				errs = append(errs, fmt.Errorf("%s: shutting the %v valve: %w", in.spec.Name, v, err))
+			}
 		}
 	}
 	for _, text := range in.spec.Hold {
@@ -201,11 +217,29 @@ func (in *Instrument) Hold(line link.Line, s limit.Setpoint) error {
 			errs = append(errs, fmt.Errorf("%s: %q: %w", in.spec.Name, text, err))
 		}
 	}
-	if ok && in.setpoint >= 0 {
-		errs = append(errs, in.send(line, p))
+	sets := checked && in.setpoint >= 0
+	if sets {
+		n, err := in.number(in.setpoint, float64(p))
+		if err == nil {
+			err = in.protocol.write(line, &in.channels[in.setpoint], n)
+		}
+		if sets = err == nil; !sets {
+			errs = append(errs, fmt.Errorf("%s: setpoint %v: %w", in.spec.Name, p, err))
+		}
 	}
-	return errors.Join(errs...)
+	for _, v := range heldValves {
+		if in.Moves(v) {
+			errs = append(errs, in.stands(line, v, false))
+		}
+	}
+	if sets {
+		errs = append(errs, in.standsAt(line, p))
+	}
+	return errors.Join(append(errs, in.confirmed(line))...)
 }
+
+// heldValves are shut on HOLD, in this order.
+var heldValves = [...]limit.Valve{limit.Inlet, limit.Pump, limit.Vent}
 
 // TakesHold reports whether Hold does anything.
 func (in *Instrument) TakesHold() bool {
@@ -229,36 +263,64 @@ func (in *Instrument) Move(line link.Line, o limit.ValveOrder) error {
 }
 
 func (in *Instrument) move(line link.Line, v limit.Valve, open bool) error {
-	c, want, doing := in.valves[v], 0.0, "shutting"
+	c := in.valves[v]
+	if err := in.protocol.write(line, c, c.spec.Number(share(open))); err != nil {
+		return fmt.Errorf("%s: the %v valve: %w", in.spec.Name, v, err)
+	}
+	return errors.Join(in.stands(line, v, open), in.confirmed(line))
+}
+
+func share(open bool) float64 {
 	if open {
-		want, doing = 1, "opening"
+		return 1
 	}
-	back, err := in.protocol.write(line, c, c.spec.Number(want))
+	return 0
+}
+
+// stands reads back whether a valve is where it was sent. Half open is
+// neither: what is asked for is an end of its way.
+func (in *Instrument) stands(line link.Line, v limit.Valve, open bool) error {
+	c, want := in.valves[v], "shut"
+	if open {
+		want = "open"
+	}
+	back, err := in.protocol.back(line, c)
 	if err != nil {
-		return fmt.Errorf("%s: %s the %v valve: %w", in.spec.Name, doing, v, err)
+		return fmt.Errorf("%s: the %v valve is to be %s, but is not read back: %w", in.spec.Name, v, want, err)
 	}
-	// Half open is neither: what is asked for is an end of its way.
-	if got := c.absolute(back); !(got >= want-0.02 && got <= want+0.02) {
-		return fmt.Errorf("%s: %s the %v valve: it reads back %s open", in.spec.Name, doing, v, c.text(got))
+	if got := c.absolute(back); !(math.Abs(got-share(open)) <= 0.02) {
+		return fmt.Errorf("%s: the %v valve is to be %s: it reads back %s open", in.spec.Name, v, want, c.text(got))
 	}
 	return nil
 }
 
-// send writes a setpoint and compares what is read back.
-func (in *Instrument) send(line link.Line, p unit.Pascal) error {
+// standsAt reads back whether the setpoint is the one that was sent.
+func (in *Instrument) standsAt(line link.Line, p unit.Pascal) error {
 	c := &in.channels[in.setpoint]
-	number, err := c.number(float64(p))
+	back, err := in.protocol.back(line, c)
 	if err != nil {
-		return fmt.Errorf("%s: %w", in.spec.Name, err)
-	}
-	back, err := in.protocol.write(line, c, number)
-	if err != nil {
-		return fmt.Errorf("%s: setpoint %v: %w", in.spec.Name, p, err)
+		return fmt.Errorf("%s: setpoint %v was sent, but is not read back: %w", in.spec.Name, p, err)
 	}
 	if got := c.absolute(back); !c.near(got, float64(p)) {
 		return fmt.Errorf("%s did not take setpoint %v: it reads back %v", in.spec.Name, p, unit.Pascal(got))
 	}
 	return nil
+}
+
+func (in *Instrument) confirmed(line link.Line) error {
+	if err := in.protocol.confirm(line); err != nil {
+		return fmt.Errorf("%s: after what was sent: %w", in.spec.Name, err)
+	}
+	return nil
+}
+
+// number returns what to send to channel i for an absolute quantity in SI.
+func (in *Instrument) number(i int, v float64) (float64, error) {
+	n, err := in.channels[i].number(v)
+	if err != nil {
+		return 0, fmt.Errorf("%s: %w", in.spec.Name, err)
+	}
+	return n, nil
 }
 
 var valveOf = map[reading.Role]limit.Valve{

@@ -304,11 +304,38 @@ func TestValves(t *testing.T) {
 	}
 }
 
+// A controller that has stopped answering hears all of HOLD before anything
+// waits for an answer.
+func TestHoldIsSentBeforeAnyAnswerIsAwaited(t *testing.T) {
+	line := &scripted{}
+	in := build(t, controller())
+	if err := in.Hold(line, limits.Freeze(2.385*unit.Bar)); err == nil || !strings.Contains(err.Error(), "not read back") {
+		t.Errorf("%v", err)
+	}
+	if len(line.sent) < 2 || string(line.sent[0]) != "SOUR:PRES:MODE HOLD\n" || string(line.sent[1]) != "SOUR:PRES:LEV 1.372\n" {
+		t.Errorf("sent %q", line.sent)
+	}
+}
+
+func TestOldErrorsAreNotThoseOfACommand(t *testing.T) {
+	d := &device{}
+	d.errors.Push(scpi.UndefinedHeader)
+	d.errors.Push(scpi.CommandError)
+	line := &scripted{answer: d.answer}
+	in := build(t, controller())
+	if got, err := in.Poll(line, clockOf(time.Millisecond), nil); err != nil || byChannel(t, got)["setpoint"].Status != reading.Good {
+		t.Fatalf("%+v, %v", got, err)
+	}
+	if err := in.Set(line, setpoint(t, 3*unit.Bar)); err != nil {
+		t.Error(err)
+	}
+}
+
 func TestErrorQueueIsReported(t *testing.T) {
 	spec := controller()
 	spec.Hold = []string{"NO:SUCH"}
 	err := build(t, spec).Hold(&scripted{answer: (&device{}).answer}, limits.Freeze(2*unit.Bar))
-	if err == nil || !strings.Contains(err.Error(), "-113") || !strings.Contains(err.Error(), "NO:SUCH") {
+	if err == nil || !strings.Contains(err.Error(), "-113") || !strings.Contains(err.Error(), "Undefined header") {
 		t.Errorf("%v", err)
 	}
 }

@@ -233,9 +233,13 @@ func (p *linesProtocol) askOnce(line link.Line) (refused, err error) {
 	}
 }
 
-func (p *linesProtocol) write(link.Line, *channel, float64) (float64, error) {
-	return 0, errors.New("instruments that talk in lines take no values")
-}
+var errTakesNothing = errors.New("instruments that talk in lines take no values")
+
+func (p *linesProtocol) write(link.Line, *channel, float64) error { return errTakesNothing }
+
+func (p *linesProtocol) back(link.Line, *channel) (float64, error) { return 0, errTakesNothing }
+
+func (p *linesProtocol) confirm(link.Line) error { return nil }
 
 func (p *linesProtocol) command(line link.Line, text string) error {
 	_, err := line.Write([]byte(text + p.end))

@@ -244,29 +244,39 @@ func isException(err error) bool {
 	return errors.As(err, &e)
 }
 
-func (m *modbusProtocol) write(line link.Line, c *channel, number float64) (float64, error) {
+func noStamp() reading.Stamp { return reading.Stamp{} }
+
+func (m *modbusProtocol) write(line link.Line, c *channel, number float64) error {
 	r, err := newRegister(c)
 	if err != nil {
-		return 0, err
+		return err
 	}
 	values, err := r.format.Encode(nil, r.order, number)
 	if err != nil {
-		return 0, err
+		return err
 	}
 	w := modbus.Request{Unit: r.request.Unit, Function: modbus.WriteMultiple, Address: r.request.Address, Values: values}
 	if len(values) == 1 {
 		w.Function = modbus.WriteSingle
 	}
-	now := func() reading.Stamp { return reading.Stamp{} }
-	if _, _, err := m.wire.exchange(line, now, w); err != nil {
+	_, _, err = m.wire.exchange(line, noStamp, w)
+	return err
+}
+
+func (m *modbusProtocol) back(line link.Line, c *channel) (float64, error) {
+	r, err := newRegister(c)
+	if err != nil {
 		return 0, err
 	}
-	reply, _, err := m.ask(line, now, r.request)
+	reply, _, err := m.ask(line, noStamp, r.request)
 	if err != nil {
-		return 0, fmt.Errorf("sent, but not read back: %w", err)
+		return 0, err
 	}
 	return r.format.Decode(r.order, reply.Values)
 }
+
+// confirm has nothing to ask: every write was answered.
+func (m *modbusProtocol) confirm(link.Line) error { return nil }
 
 func (m *modbusProtocol) command(link.Line, string) error {
 	return errors.New("commands of text are not for modbus")

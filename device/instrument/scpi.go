@@ -29,6 +29,7 @@ type scpiProtocol struct {
 	identity string // as learnt; empty before
 	inStep   bool
 	gaveUp   bool // no way back into step in this poll
+	told     bool // a command was sent over this line
 
 	text liner
 	buf  [1024]byte
@@ -66,7 +67,7 @@ func (s *scpiProtocol) steps() int { return len(s.queries) }
 
 func (s *scpiProtocol) opened() {
 	s.text.forget()
-	s.inStep, s.gaveUp, s.identity = false, false, ""
+	s.inStep, s.gaveUp, s.told, s.identity = false, false, false, ""
 }
 
 func (s *scpiProtocol) drain(_ link.Line, _ Now, dst []reading.Reading) ([]reading.Reading, error) {
@@ -160,6 +161,7 @@ func (s *scpiProtocol) resync(line link.Line) error {
 		return s.wait(line)
 	}
 	s.in.counts.resynced.Add(1)
+	first := s.identity == ""
 	err := s.findStep(line)
 	if errors.Is(err, os.ErrDeadlineExceeded) {
 		return s.noIdentity()
@@ -170,6 +172,16 @@ func (s *scpiProtocol) resync(line link.Line) error {
 	_, err = flush(line, s.buf[:]) // second copies that have come
 	s.text.forget()
 	s.inStep = err == nil
+	if first && s.inStep && !s.told {
+		// Errors from before the line was opened are not those of a command
+		// to come.
+		if err := s.confirm(line); errors.Is(err, errLost) {
+			return err
+		}
+		if !s.inStep {
+			return silence{s.in.spec.Errors + " is not answered"}
+		}
+	}
 	return err
 }
 
@@ -272,21 +284,19 @@ func (s *scpiProtocol) answer(line link.Line, deadline time.Time) (string, error
 	return strings.TrimSpace(string(text)), err
 }
 
-func (s *scpiProtocol) write(line link.Line, c *channel, number float64) (back float64, err error) {
-	text := strings.Replace(c.spec.Write, "{value}", string(scpi.AppendNumber(nil, number)), 1)
-	s.gaveUp = false
-	if err := s.command(line, text); err != nil {
-		return 0, err
-	}
-	number, _, err = s.query(line, func() reading.Stamp { return reading.Stamp{} }, c)
-	if err != nil {
-		return 0, fmt.Errorf("sent, but not read back: %w", err)
-	}
-	return number, nil
+func (s *scpiProtocol) write(line link.Line, c *channel, number float64) error {
+	return s.command(line, strings.Replace(c.spec.Write, "{value}", string(scpi.AppendNumber(nil, number)), 1))
 }
 
-// command sends text that has no answer, and asks the error queue about it.
+func (s *scpiProtocol) back(line link.Line, c *channel) (float64, error) {
+	s.gaveUp = false
+	number, _, err := s.query(line, noStamp, c)
+	return number, err
+}
+
+// command sends text that has no answer.
 func (s *scpiProtocol) command(line link.Line, text string) error {
+	s.told = true
 	if _, err := line.Write([]byte(text + s.end)); err != nil {
 		return lost(err)
 	}
@@ -297,22 +307,22 @@ func (s *scpiProtocol) command(line link.Line, text string) error {
 			s.inStep = false
 		}
 	}
-	if s.in.spec.Errors == "" {
-		return nil
-	}
-	return s.readErrors(line)
+	return nil
 }
 
 // mostErrors bounds how long a queue is read.
 const mostErrors = 32
 
-// readErrors empties the error queue and returns its oldest entry, if any.
-func (s *scpiProtocol) readErrors(line link.Line) error {
+// confirm empties the error queue and returns its oldest entry, if any.
+func (s *scpiProtocol) confirm(line link.Line) error {
+	if s.in.spec.Errors == "" {
+		return nil
+	}
 	var oldest error
 	for range mostErrors {
 		text, err := s.ask(line, s.in.spec.Errors)
 		if err != nil {
-			return fmt.Errorf("sent, but the error queue does not answer: %w", err)
+			return fmt.Errorf("the error queue does not answer: %w", err)
 		}
 		entry, err := scpi.ParseError(text)
 		switch {
