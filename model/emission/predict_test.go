@@ -270,6 +270,17 @@ func TestVerdicts(t *testing.T) {
 	}
 }
 
+// 0.1 µJ left over 0.1 m at 100 kHz warm argon by about half a kelvin.
+func TestWarming(t *testing.T) {
+	argon, err := gas.Named("argon")
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got := warming(0.1e-6/0.1, 100e3, argon.ThermalConductivity); math.Abs(got-0.457) > 0.01 {
+		t.Errorf("%g K", got)
+	}
+}
+
 func TestPredictAllocatesNothing(t *testing.T) {
 	p := predictor(t, heron(Estimate))
 	in := at(9, 293.15, 1.3)

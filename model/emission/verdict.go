@@ -185,13 +185,19 @@ func (p *Predictor) ionised(out *Prediction) unit.Fraction {
 	return unit.Fraction(-math.Expm1(-2 * sum * end / steps))
 }
 
-// heating returns a rough rise of temperature on the axis in K: what ionisation
-// leaves per pulse and metre, times the repetition rate, over 4πk. The energy
-// that the rough ionised fraction would take is held to a fifth of the pulse,
-// left over half the fibre: full-field runs lose no more.
+// heating returns a rough rise of temperature on the axis in K. The energy that
+// the rough ionised fraction would take is held to a fifth of the pulse, left
+// over half the fibre: full-field runs lose no more.
 func (p *Predictor) heating(out *Prediction) float64 {
-	gas := p.medium.Main()
-	perMetre := float64(out.IonisedFraction) * float64(out.Density) * avogadro * out.EffectiveArea * gas.IonisationEnergy * electronvolt
+	main := p.medium.Main()
+	perMetre := float64(out.IonisedFraction) * float64(out.Density) * avogadro * out.EffectiveArea * main.IonisationEnergy * electronvolt
 	most := 0.2 * float64(out.Input.Energy) / (0.5 * float64(p.fibre.Spec().Length))
-	return math.Min(perMetre, most) * float64(p.setup.RepetitionRate) / (4 * math.Pi * gas.ThermalConductivity)
+	return warming(math.Min(perMetre, most), p.setup.RepetitionRate, main.ThermalConductivity)
+}
+
+// warming returns the rise of temperature in K on the axis of a gas of thermal
+// conductivity k in W/(m K), for an energy in J/m left there by each pulse: the
+// power per length over 4πk, up to a logarithm of radii that is near one.
+func warming(perMetre float64, rate unit.Hertz, k float64) float64 {
+	return perMetre * float64(rate) / (4 * math.Pi * k)
 }
