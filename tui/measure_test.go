@@ -4,6 +4,7 @@ package tui
 
 import (
 	"context"
+	"slices"
 	"sync/atomic"
 	"syscall"
 	"testing"
@@ -14,6 +15,7 @@ import (
 	"barline/model/live"
 	"barline/model/reading"
 	"barline/model/trend"
+	"barline/model/unit"
 	"barline/tui/frame"
 	"barline/tui/tuitest"
 )
@@ -105,4 +107,31 @@ func movedOn(s *live.Snapshot, by time.Duration) *live.Snapshot {
 		}
 	}
 	return &now
+}
+
+// TestChangeToScreen says how long a new value takes from the source to the
+// line, on the bench page with charts:
+//
+//	go test ./tui -tags soak -run ChangeToScreen -v
+func TestChangeToScreen(t *testing.T) {
+	src := newFake(tuitest.Calm())
+	_, out, _ := start(t, src)
+	out.wait(t, "9.003 bar")
+	const changes = 300
+	delays := make([]time.Duration, 0, changes)
+	for i := range changes {
+		now := *movedOn(src.Snapshot(), 50*time.Millisecond)
+		value := 9.1e5 + 100*float64(i)
+		now.Latest[reading.CellAPressure].Value = value
+		from := time.Now()
+		src.set(&now)
+		out.wait(t, pressureText(unit.Pascal(value)))
+		delays = append(delays, time.Since(from))
+		<-time.After(time.Duration(20+i%37) * time.Millisecond) // not in step with the redraw
+	}
+	slices.Sort(delays)
+	t.Logf("half within %v, 99 %% within %v, all within %v", delays[changes/2], delays[changes*99/100], delays[changes-1])
+	if p99 := delays[changes*99/100]; p99 > 50*time.Millisecond {
+		t.Errorf("99 %% of changes are on the screen within %v, expected 50 ms", p99)
+	}
 }

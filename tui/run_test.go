@@ -167,7 +167,7 @@ func TestRunFromArmingToLeaving(t *testing.T) {
 	terminal, out, done := start(t, src)
 	out.wait(t, "9.003 bar")
 
-	type_ := func(s string) {
+	typed := func(s string) {
 		if _, err := terminal.WriteString(s); err != nil {
 			t.Fatal(err)
 		}
@@ -184,22 +184,22 @@ func TestRunFromArmingToLeaving(t *testing.T) {
 		}
 	}
 
-	type_("aarm\r") // the a opens the caution, the rest is the word: one burst
+	typed("aarm\r") // the a opens the caution, the rest is the word: one burst
 	expect(live.Arm{})
 	src.set(tuitest.Filling())
 	out.wait(t, "RAMPING")
-	type_("s")
+	typed("s")
 	out.wait(t, "go to pressure")
-	type_("9.2 bar")
+	typed("9.2 bar")
 	out.wait(t, "6.800 bar below the rating of fibre seal")
-	type_("\r")
+	typed("\r")
 	expect(live.GoTo{Target: 9.2e5})
-	type_("\t")
+	typed("\t")
 	expect(live.Hold{})
-	type_("\x1b[200~9 bar q\r\x1b[201~") // pasted by mistake: presses nothing
-	type_("q")
+	typed("\x1b[200~9 bar q\r\x1b[201~") // pasted by mistake: presses nothing
+	typed("q")
 	out.wait(t, "put on HOLD")
-	type_("\r")
+	typed("\r")
 	expect(live.Hold{})
 	select {
 	case err := <-done:
