@@ -43,7 +43,7 @@ func (f *Frame) At(x, y int) Cell {
 func (f *Frame) Area() Area { return Area{f: f, W: f.w, H: f.h} }
 
 // Area is a rectangle of a frame. Coordinates are its own; what falls outside
-// it is not drawn.
+// it is not drawn. The zero Area has no room.
 type Area struct {
 	f    *Frame
 	x, y int
@@ -51,7 +51,12 @@ type Area struct {
 }
 
 // Style returns the style that the frame will be shown in.
-func (a Area) Style() Style { return a.f.style }
+func (a Area) Style() Style {
+	if a.f == nil {
+		return Style{}
+	}
+	return a.f.style
+}
 
 // Sub returns the part of a at x, y of at most w by h cells.
 func (a Area) Sub(x, y, w, h int) Area {
@@ -102,13 +107,13 @@ func (a Area) Tint(ink Ink) {
 // Text draws s from x on and returns the column after it. Text that does not
 // fit ends in an ellipsis.
 func (a Area) Text(x, y int, s string, ink Ink) int {
-	s = a.f.style.spell(s)
+	s = a.Style().spell(s)
 	room := a.W - x
 	if y < 0 || y >= a.H || room <= 0 {
 		return x
 	}
 	if width(s) > room {
-		s = cut(s, room-1) + string(a.f.style.ellipsis())
+		s = cut(s, room-1) + string(a.Style().ellipsis())
 	}
 	for _, r := range s {
 		w := runeWidth(r)
@@ -141,7 +146,7 @@ func (a Area) Centre(x, y, w int, s string, ink Ink) {
 }
 
 // Width returns how many columns Text needs for s.
-func (a Area) Width(s string) int { return width(a.f.style.spell(s)) }
+func (a Area) Width(s string) int { return width(a.Style().spell(s)) }
 
 // runeWidth counts ambiguous characters as narrow, which is what terminals
 // outside East Asian locales do; elsewhere there is the ASCII style.

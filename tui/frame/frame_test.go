@@ -41,6 +41,18 @@ func TestControlCharactersNeverReachTheTerminal(t *testing.T) {
 	}
 }
 
+func TestZeroAreaTakesAnything(t *testing.T) {
+	var a Area
+	a.Fill('x', Plain)
+	a.Set(0, 0, 'x', Plain)
+	a.Tint(Hold)
+	a.Centre(0, 0, 5, "text", Plain)
+	a.Sub(1, 1, 5, 5).Right(9, 0, "text", Plain)
+	if x := a.Text(3, 0, "text", Plain); x != 3 || a.Width("text") != 4 || a.At(0, 0).Rune != ' ' {
+		t.Errorf("text ends at %d, want where it began", x)
+	}
+}
+
 func TestInksWithoutColours(t *testing.T) {
 	for ink := range inkCount {
 		f := New(3, 1, Style{Colours: NoColours})
