@@ -139,6 +139,8 @@ func (c *Core) Step(s *State, e Event, fx []Effect) []Effect {
 		fx = c.record(s, e.Health, fx)
 	case Told:
 		c.told(s, e)
+	case ModelChanged:
+		fx = c.modelChanged(s, e, fx)
 	default:
 		panic(fmt.Sprintf("live: unknown event %T", e))
 	}

@@ -51,6 +51,13 @@ type (
 		Priority int    `json:"priority"`
 		Cause    string `json:"cause"`
 	}
+	// NodeData says on how many full-field runs the predictions stand now.
+	NodeData struct {
+		Answer   string  `json:"answer"`
+		Nodes    int     `json:"nodes"`
+		Planned  int     `json:"planned"`
+		LeftOutM float64 `json:"left_out_m"` // rms error at nodes left out; 0 where not known
+	}
 	// NoteData is a remark.
 	NoteData struct {
 		Text string `json:"text"`

@@ -59,12 +59,24 @@ type RecordHealth struct {
 	Lost    uint64 // records that will never be written
 }
 
+// ModelChanged brings a predictor that knows more, such as one that stands on
+// full-field runs of this bench. It is asked from now on.
+type ModelChanged struct {
+	At            reading.Stamp
+	Predictor     Predictor // nil: only the progress has changed
+	Answer        string
+	Nodes         int // full-field runs that it stands on
+	NodesPlanned  int
+	LeftOutMetres unit.Metre // error at nodes left out, rms; 0 where not known
+}
+
 func (e Read) When() reading.Stamp          { return e.Reading.Taken }
 func (e Tick) When() reading.Stamp          { return e.At }
 func (e LinkChanged) When() reading.Stamp   { return e.At }
 func (e Asked) When() reading.Stamp         { return e.At }
 func (e Answered) When() reading.Stamp      { return e.At }
 func (e RecordChanged) When() reading.Stamp { return e.At }
+func (e ModelChanged) When() reading.Stamp  { return e.At }
 
 // Intent is what somebody wants done. Intents say what, never how.
 type Intent interface{ intent() }

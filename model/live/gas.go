@@ -96,15 +96,37 @@ func (c *Core) predict(s *State, fx []Effect) []Effect {
 		in.Energy = unit.Joule(e.Value)
 	}
 	if in != s.Prediction.Input || !s.Prediction.Valid {
-		s.Prediction = c.predictor.Predict(in, &s.Prediction)
+		s.Prediction = c.ask(s).Predict(in, &s.Prediction)
 	}
 	moved := math.Abs(float64(s.Prediction.Emission-s.recorded.emission)) > float64(c.wavelength)
 	if moved || s.recorded.at == 0 || s.Now.Mono-s.recorded.at >= c.heartbeat {
 		// What goes into the record is found without the one before it, so
 		// that a replay, which has not seen that, finds it again to the bit.
-		s.Prediction = c.predictor.Predict(in, nil)
+		s.Prediction = c.ask(s).Predict(in, nil)
 		s.recorded.at, s.recorded.emission = s.Now.Mono, s.Prediction.Emission
 		fx = append(fx, Record{At: s.Now, Kind: KindPrediction, Data: c.predictionData(s)})
 	}
 	return fx
+}
+
+// ask returns the predictor to ask in state s.
+func (c *Core) ask(s *State) Predictor {
+	if s.model != nil {
+		return s.model
+	}
+	return c.predictor
+}
+
+// modelChanged takes over a predictor and asks it at once.
+func (c *Core) modelChanged(s *State, e ModelChanged, fx []Effect) []Effect {
+	s.nodes, s.nodesPlanned = e.Nodes, e.NodesPlanned
+	if e.Predictor == nil {
+		return fx
+	}
+	s.model = e.Predictor
+	s.Prediction, s.predicted = emission.Prediction{}, 0
+	s.recorded.at = 0 // the next prediction goes into the record
+	return append(fx, Record{At: e.At, Kind: KindNode, Data: NodeData{
+		Answer: e.Answer, Nodes: e.Nodes, Planned: e.NodesPlanned, LeftOutM: float64(e.LeftOutMetres),
+	}})
 }

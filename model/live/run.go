@@ -8,6 +8,10 @@ import (
 	"barline/model/unit"
 )
 
+// Nodes returns how many full-field runs the predictions stand on, and how
+// many are planned.
+func (s *State) Nodes() (have, planned int) { return s.nodes, s.nodesPlanned }
+
 // Outcome returns how the last program ended.
 func (s *State) Outcome() Outcome { return s.outcome }
 

@@ -94,6 +94,8 @@ type Snapshot struct {
 
 	Latest     [reading.RoleCount]reading.Reading
 	Prediction emission.Prediction
+	// Nodes of NodesPlanned full-field runs stand behind the anchored answer.
+	Nodes, NodesPlanned int
 	// Residual is measured minus predicted emission; valid where ResidualKnown.
 	Residual      unit.Metre
 	ResidualKnown bool

@@ -43,6 +43,9 @@ type State struct {
 	LinkCount int
 	Record    RecordHealth
 
+	model        Predictor // asked instead of the core's own where it is not nil
+	nodes        int
+	nodesPlanned int
 	alarms       alarm.List
 	heldByItself bool // HOLD came without being asked for
 	refused      bool // an instrument did not take the last command

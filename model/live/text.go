@@ -58,6 +58,15 @@ func (d LinkData) String() string {
 // String returns the change of the alarm in words.
 func (d AlarmData) String() string { return fmt.Sprintf("%s: %s (%s)", d.Name, d.State, d.Cause) }
 
+// String returns what the predictions stand on in words.
+func (d NodeData) String() string {
+	text := fmt.Sprintf("%s on %d of %d full-field runs", d.Answer, d.Nodes, d.Planned)
+	if d.LeftOutM > 0 {
+		text += fmt.Sprintf(", error at runs left out %.2f nm rms", d.LeftOutM*1e9)
+	}
+	return text
+}
+
 // String returns the remark.
 func (d NoteData) String() string { return d.Text }
 

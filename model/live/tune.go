@@ -181,7 +181,7 @@ func (c *Core) slope(s *State) (float64, bool) {
 	low, high := s.Prediction.Input, s.Prediction.Input
 	low.Pressure -= step
 	high.Pressure += step
-	a, b := c.predictor.Predict(low, nil), c.predictor.Predict(high, nil)
+	a, b := c.ask(s).Predict(low, nil), c.ask(s).Predict(high, nil)
 	if !a.Valid || !b.Valid || a.Emission == 0 || b.Emission == 0 {
 		return 0, false
 	}
@@ -202,7 +202,7 @@ func (c *Core) pressureFor(s *State, wanted unit.Metre) (unit.Pascal, error) {
 	var last unit.Metre
 	for i := range points {
 		in.Pressure = most * unit.Pascal(i) / (points - 1)
-		now := c.predictor.Predict(in, nil)
+		now := c.ask(s).Predict(in, nil)
 		if i > 0 && last != 0 && now.Emission != 0 && (last-wanted)*(now.Emission-wanted) <= 0 && last != now.Emission {
 			p := in.Pressure - most/(points-1)*unit.Pascal(float64(now.Emission-wanted)/float64(now.Emission-last))
 			if !found || math.Abs(float64(p-s.Core)) < math.Abs(float64(best-s.Core)) {

@@ -234,6 +234,9 @@ func (l *Loop) handle(e live.Event) {
 			panic(fmt.Sprintf("loop: unknown effect %T", f))
 		}
 	}
+	if m, ok := e.(live.ModelChanged); ok && m.Predictor != nil {
+		l.curveIn = emission.Input{} // the curve is drawn anew
+	}
 	if _, ok := e.(live.Tick); ok {
 		l.history.tick(&l.state)
 	}
@@ -245,6 +248,10 @@ func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) {
 		l.history.line(at, kind, data)
 	}
 }
+
+// Model hands in a predictor that knows more than the one before, or how far
+// one has come.
+func (l *Loop) Model(e live.ModelChanged) { l.queue.push(e) }
 
 // Tell hands in what a record says that another core did.
 func (l *Loop) Tell(e live.Told) { l.queue.push(e) }
