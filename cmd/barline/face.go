@@ -32,6 +32,7 @@ func (s *session) face(headless bool, stdout io.Writer) front {
 	if !ok || !isatty.IsTerminal(out.Fd()) || !isatty.IsTerminal(os.Stdin.Fd()) {
 		return plain(stdout, plainEvery)
 	}
+	s.anchors = true
 	return s.screen
 }
 

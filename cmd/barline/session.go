@@ -9,6 +9,7 @@ import (
 	"io"
 	"runtime/debug"
 	"sync"
+	"sync/atomic"
 	"time"
 
 	"barline/cmd/barline/loop"
@@ -34,6 +35,7 @@ type session struct {
 	speed     float64
 	opener    func(bench.Instrument) (instrument.Open, error)
 	simulated bool
+	anchors   bool // full-field runs are computed beside it
 	stderr    io.Writer
 }
 
@@ -89,13 +91,15 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 
 	ctx, cancel := context.WithCancelCause(ctx)
 	defer cancel(nil)
-	curve := s.predictor.Clone()
+	var newest atomic.Pointer[guided]
+	newest.Store(&guided{estimate: s.predictor.Clone()})
+	base := s.predictor.Clone() // before the loop begins to ask its own
 	w := &wire{now: s.clock.Now}
 	calls := newCaller(ctx, s.bench.Alarms.OnAlarm, s.stderr)
 	l := loop.New(loop.Options{
 		Bench: s.bench, Core: s.core, State: s.state, Clock: s.clock, Book: lent{book}, Wire: w,
 		Curve: func(in emission.Input, dst []emission.CurvePoint) {
-			curve.Curve(dst, 0, s.core.Limits().Lowest().Max, in)
+			newest.Load().curve(dst, s.core.Limits().Lowest().Max, in)
 		},
 		Call:   calls.call,
 		Folder: s.folder, Simulated: s.simulated,
@@ -134,6 +138,9 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		}()
 		l.Run(ctx)
 	}()
+	if s.anchors {
+		s.anchor(ctx, base, l, &newest, &served)
+	}
 	err = f(ctx, l)
 	cancel(context.Canceled)
 	<-looped
