@@ -44,7 +44,7 @@ func barline(t *testing.T, args ...string) *exec.Cmd {
 		t.Fatalf("no barline on PATH: %v", err)
 	}
 	cmd := exec.Command(path, args...)
-	cmd.Env = append(os.Environ(), "XDG_DATA_HOME="+t.TempDir())
+	cmd.Env = append(os.Environ(), "XDG_DATA_HOME="+t.TempDir(), "XDG_CACHE_HOME="+t.TempDir())
 	return cmd
 }
 
