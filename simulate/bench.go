@@ -1,8 +1,10 @@
 package simulate
 
 import (
+	"cmp"
 	"fmt"
 	"math"
+	"slices"
 	"sync"
 	"time"
 
@@ -20,6 +22,7 @@ type Options struct {
 	Seed     uint64
 	Scenario string      // a name of Scenarios; empty is "fill"
 	Pressure unit.Pascal // in cells and core at the start; 0: as the scenario has it
+	Faults   []Timed     // besides those of the scenario
 }
 
 // Bench is Heron at one instant. It is safe for concurrent use; it starts no
@@ -73,6 +76,13 @@ func New(o Options) (*Bench, error) {
 	if !(start.P > 0) || start.P > cylinder {
 		return nil, fmt.Errorf("start pressure %v: expected above 0 bar and below the cylinder's %v", o.Pressure, unit.Pascal(cylinder))
 	}
+	for _, f := range o.Faults {
+		if f.Fault, err = f.Fault.checked(); err != nil {
+			return nil, err
+		}
+		story.cues = append(story.cues, f)
+	}
+	slices.SortStableFunc(story.cues, func(a, b Timed) int { return cmp.Compare(a.At, b.At) })
 	b := &Bench{
 		noise: noise(o.Seed),
 		truth: drawTruth(noise(o.Seed)),

@@ -99,21 +99,30 @@ func (b *Bench) Inject(f Fault) error {
 	return b.inject(f)
 }
 
-func (b *Bench) inject(f Fault) error {
+// checked fills in what f leaves open, or says what is wrong with it.
+func (f Fault) checked() (Fault, error) {
 	if f.Kind >= kindCount {
-		return fmt.Errorf("%v: no such fault", f.Kind)
+		return f, fmt.Errorf("%v: no such fault", f.Kind)
 	}
 	if f.Where == "" {
 		f.Where = places[f.Kind][0]
 	}
 	if !slices.Contains(places[f.Kind], f.Where) {
-		return fmt.Errorf("fault %v at %q: expected %s", f.Kind, f.Where, strings.Join(places[f.Kind], ", "))
+		return f, fmt.Errorf("fault %v at %q: expected %s", f.Kind, f.Where, strings.Join(places[f.Kind], ", "))
+	}
+	if !(f.Size > -1e6 && f.Size < 1e6) {
+		return f, fmt.Errorf("fault %v of size %g: expected a number of ordinary size", f.Kind, f.Size)
+	}
+	return f, nil
+}
+
+func (b *Bench) inject(f Fault) error {
+	f, err := f.checked()
+	if err != nil {
+		return err
 	}
 	if f.Size == 0 {
 		f.Size = kinds[f.Kind].size
-	}
-	if !(f.Size > -1e6 && f.Size < 1e6) {
-		return fmt.Errorf("fault %v of size %g: expected a number of ordinary size", f.Kind, f.Size)
 	}
 	if f.Over {
 		f.Size = 0

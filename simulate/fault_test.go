@@ -22,7 +22,7 @@ func TestScenarios(t *testing.T) {
 		seen[s.Name] = true
 		b := newBench(t, Options{Seed: 7, Scenario: s.Name})
 		for _, c := range s.cues {
-			if err := b.Inject(c.fault); err != nil {
+			if err := b.Inject(c.Fault); err != nil {
 				t.Errorf("%s: %v", s.Name, err)
 			}
 		}
@@ -208,5 +208,59 @@ func TestThreshold(t *testing.T) {
 		if s := string(line); !strings.HasPrefix(s, "EM --- nm W --- nm S 0.") {
 			t.Errorf("at 1.1 bar: %q", s)
 		}
+	}
+}
+
+func TestParseTimed(t *testing.T) {
+	for _, c := range []struct {
+		text string
+		want Timed
+	}{
+		{"60s leak", Timed{time.Minute, Fault{Kind: Leak, Where: "cell B"}}},
+		{"1m30s leak cell A 0.2", Timed{90 * time.Second, Fault{Kind: Leak, Where: "cell A", Size: 0.2}}},
+		{" 2m  leak  cell A  over ", Timed{2 * time.Minute, Fault{Kind: Leak, Where: "cell A", Over: true}}},
+		{"0s garbage 0.5", Timed{0, Fault{Kind: Garbage, Where: "gauges", Size: 0.5}}},
+		{"5s shutter over", Timed{5 * time.Second, Fault{Kind: Shutter, Where: "laser", Over: true}}},
+	} {
+		got, err := ParseTimed(c.text)
+		if err != nil || got != c.want {
+			t.Errorf("%q is %+v, %v; want %+v", c.text, got, err, c.want)
+		}
+	}
+	for text, says := range map[string]string{
+		"":                  "60s leak",
+		"leak":              "60s leak",
+		"60s":               "60s leak",
+		"-1s leak":          "above zero",
+		"60 leak":           `"60"`,
+		"60s flood":         "leak, air",
+		"60s leak moon":     "cell B, cell A, manifold",
+		"60s leak NaN":      "NaN",
+		"60s leak over 0.2": "cell B",
+		"60s leak 1 2":      "cell B",
+	} {
+		if got, err := ParseTimed(text); err == nil || !strings.Contains(err.Error(), says) {
+			t.Errorf("%q is %+v, %v; want an error that says %q", text, got, err, says)
+		}
+	}
+}
+
+// Faults of the options come at their times, whatever their order.
+func TestTimedFaults(t *testing.T) {
+	b := newBench(t, Options{Seed: 1, Scenario: "shutter", Faults: []Timed{
+		{4 * time.Second, Fault{Kind: Shutter, Over: true}},
+		{2 * time.Second, Fault{Kind: Shutter}},
+	}})
+	for _, c := range []struct {
+		at   time.Duration
+		shut bool
+	}{{time.Second, false}, {3 * time.Second, true}, {5 * time.Second, false}, {61 * time.Second, true}} {
+		to(t, b, c.at)
+		if b.faults.shutter != c.shut {
+			t.Errorf("at %v the shutter is shut: %v", c.at, b.faults.shutter)
+		}
+	}
+	if _, err := New(Options{Faults: []Timed{{0, Fault{Kind: Leak, Where: "moon"}}}}); err == nil {
+		t.Error("a leak on the moon was taken")
 	}
 }

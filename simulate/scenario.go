@@ -20,7 +20,7 @@ type Scenario struct {
 	Moves []Move
 
 	start panel.State
-	cues  []cue
+	cues  []Timed
 	next  int // the first cue that has not come yet
 }
 
@@ -30,17 +30,11 @@ type Move struct {
 	To unit.Pascal
 }
 
-// cue is a fault with its time.
-type cue struct {
-	at    time.Duration
-	fault Fault
-}
-
 // play lets come what is due.
 func (s *Scenario) play(b *Bench) {
-	for s.next < len(s.cues) && s.cues[s.next].at <= b.time() {
-		// The cues are ours, and a test injects each of them.
-		_ = b.inject(s.cues[s.next].fault)
+	for s.next < len(s.cues) && s.cues[s.next].At <= b.time() {
+		// Those of scenarios a test injects, others New has checked.
+		_ = b.inject(s.cues[s.next].Fault)
 		s.next++
 	}
 }
@@ -50,7 +44,7 @@ func Scenarios() []Scenario {
 	filled := func(p float64) panel.State { return panel.State{P: p * bar, T: roomTemperature} }
 	opened := panel.State{P: ambient, T: roomTemperature, Air: 1}
 	nine := []Move{{5 * time.Second, 9 * unit.Bar}}
-	hold := func(name, about string, cues ...cue) Scenario {
+	hold := func(name, about string, cues ...Timed) Scenario {
 		return Scenario{Name: name, About: about, Moves: nine, start: filled(9), cues: cues}
 	}
 	return []Scenario{
@@ -67,21 +61,21 @@ func Scenarios() []Scenario {
 		{Name: "scan", About: "from 7 to 11 bar and back in steps of half a bar", start: filled(7), Moves: scanMoves()},
 		hold("quiet", "9 bar held, nothing goes wrong"),
 		{Name: "leak", About: "closed at 9 bar, and a seal of cell B begins to leak after a minute", start: filled(9),
-			cues: []cue{{time.Minute, Fault{Kind: Leak}}}},
+			cues: []Timed{{time.Minute, Fault{Kind: Leak}}}},
 		{Name: "air", About: "the cylinder was changed and its line not purged: 2 % of air come in with the argon", start: filled(1.1),
-			Moves: nine, cues: []cue{{0, Fault{Kind: Air}}}},
-		hold("sag", "pulse energy sags by 15 % an hour from the first minute on", cue{time.Minute, Fault{Kind: Sag}}),
-		hold("warm", "the laboratory warms by 3 K an hour", cue{time.Minute, Fault{Kind: Warm}}),
+			Moves: nine, cues: []Timed{{0, Fault{Kind: Air}}}},
+		hold("sag", "pulse energy sags by 15 % an hour from the first minute on", Timed{time.Minute, Fault{Kind: Sag}}),
+		hold("warm", "the laboratory warms by 3 K an hour", Timed{time.Minute, Fault{Kind: Warm}}),
 		{Name: "stuck", About: "the inlet valve sticks while the cells are filled", start: filled(6),
-			Moves: nine, cues: []cue{{10 * time.Second, Fault{Kind: Stuck}}}},
-		hold("zero", "the transducer of cell B drifts by 100 mbar an hour", cue{time.Minute, Fault{Kind: Zero}}),
+			Moves: nine, cues: []Timed{{10 * time.Second, Fault{Kind: Stuck}}}},
+		hold("zero", "the transducer of cell B drifts by 100 mbar an hour", Timed{time.Minute, Fault{Kind: Zero}}),
 		hold("dead", "the transducer of cell A falls silent for a minute",
-			cue{time.Minute, Fault{Kind: Dead}}, cue{2 * time.Minute, Fault{Kind: Dead, Over: true}}),
-		hold("garbage", "one reply in ten of the gauges is damaged on the line", cue{30 * time.Second, Fault{Kind: Garbage}}),
+			Timed{time.Minute, Fault{Kind: Dead}}, Timed{2 * time.Minute, Fault{Kind: Dead, Over: true}}),
+		hold("garbage", "one reply in ten of the gauges is damaged on the line", Timed{30 * time.Second, Fault{Kind: Garbage}}),
 		hold("unplugged", "the controller's cable is pulled for half a minute",
-			cue{time.Minute, Fault{Kind: Unplugged}}, cue{90 * time.Second, Fault{Kind: Unplugged, Over: true}}),
+			Timed{time.Minute, Fault{Kind: Unplugged}}, Timed{90 * time.Second, Fault{Kind: Unplugged, Over: true}}),
 		hold("shutter", "somebody closes the shutter for a minute",
-			cue{time.Minute, Fault{Kind: Shutter}}, cue{2 * time.Minute, Fault{Kind: Shutter, Over: true}}),
+			Timed{time.Minute, Fault{Kind: Shutter}}, Timed{2 * time.Minute, Fault{Kind: Shutter, Over: true}}),
 	}
 }
 

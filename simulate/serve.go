@@ -41,7 +41,7 @@ type pace struct {
 
 var paces = map[string]pace{
 	gaugesLine:       {baud: 19200, bits: 11, think: 4 * time.Millisecond},
-	controllerLine:   {baud: 38400, bits: 10, think: 6 * time.Millisecond},
+	controllerLine:   {baud: 38400, bits: 10, think: 3 * time.Millisecond},
 	spectrometerLine: {baud: 115200, bits: 10, streams: true},
 }
 
