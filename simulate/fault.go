@@ -8,20 +8,20 @@ import (
 	"barline/simulate/panel"
 )
 
-// Kind is a way in which a bench goes wrong.
+// Kind is a way in which a bench goes wrong. About says what each is.
 type Kind uint8
 
 const (
-	Leak      Kind = iota // gas to the room, air from it below ambient; mbar L/s of argon at 10 bar
-	Air                   // air in what the cylinder gives; mole fraction
-	Stuck                 // a valve stays where it is
-	Zero                  // the zero of a transducer creeps; mbar an hour
-	Sag                   // pulse energy falls; share an hour
-	Warm                  // the room warms; kelvin an hour
-	Dead                  // a sensor or an instrument says nothing any more
-	Garbage               // noise on a line; share of replies hit
-	Unplugged             // a cable is pulled
-	Shutter               // the shutter is closed
+	Leak Kind = iota
+	Air
+	Stuck
+	Zero
+	Sag
+	Warm
+	Dead
+	Garbage
+	Unplugged
+	Shutter
 	kindCount
 )
 
@@ -39,11 +39,37 @@ var places = [kindCount][]string{
 }
 
 var kinds = [kindCount]struct {
-	name string
-	size float64 // what a size of zero means
+	name  string
+	size  float64 // what a size of zero means
+	about string
 }{
-	Leak: {"leak", 0.05}, Air: {"air", 0.02}, Stuck: {"stuck", 0}, Zero: {"zero", 100}, Sag: {"sag", 0.15},
-	Warm: {"warm", 3}, Dead: {"dead", 0}, Garbage: {"garbage", 0.1}, Unplugged: {"unplugged", 0}, Shutter: {"shutter", 0},
+	Leak:      {"leak", 0.05, "gas to the room, air from it below ambient; size in mbar L/s of argon at 10 bar"},
+	Air:       {"air", 0.02, "air in the cylinder's gas; size as a mole fraction"},
+	Stuck:     {"stuck", 0, "a valve stays where it is"},
+	Zero:      {"zero", 100, "the zero of a transducer creeps; size in mbar an hour"},
+	Sag:       {"sag", 0.15, "pulse energy falls; size as a share an hour"},
+	Warm:      {"warm", 3, "the room warms; size in K an hour"},
+	Dead:      {"dead", 0, "a sensor or an instrument says nothing any more"},
+	Garbage:   {"garbage", 0.1, "noise on a line; size as the share of replies hit"},
+	Unplugged: {"unplugged", 0, "a cable is pulled"},
+	Shutter:   {"shutter", 0, "the shutter is closed"},
+}
+
+// Kinds returns all kinds of fault.
+func Kinds() []Kind {
+	all := make([]Kind, kindCount)
+	for i := range all {
+		all[i] = Kind(i)
+	}
+	return all
+}
+
+// About says in one line what the fault is and what its size means.
+func (k Kind) About() string {
+	if k < kindCount {
+		return kinds[k].about
+	}
+	return ""
 }
 
 // String returns the kind's name.
@@ -58,7 +84,7 @@ func (k Kind) String() string {
 type Fault struct {
 	Kind  Kind
 	Where string  // empty: the first place of Places
-	Size  float64 // in the unit of the kind; 0: an ordinary size
+	Size  float64 // as About says; 0: an ordinary size
 	Over  bool    // it ends: repaired, cleaned, plugged in again
 }
 

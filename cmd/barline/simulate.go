@@ -20,6 +20,7 @@ import (
 
 type simulateFlags struct {
 	scenario string
+	faults   []string
 	seed     uint64
 	speed    float64
 	headless bool
@@ -34,6 +35,10 @@ func newSimulate() *cobra.Command {
 	for _, s := range simulate.Scenarios() {
 		fmt.Fprintf(&stories, "  %-10s %s\n", s.Name, s.About)
 	}
+	var wrongs strings.Builder
+	for _, k := range simulate.Kinds() {
+		fmt.Fprintf(&wrongs, "  %-10s %s\n  %-10s   at %s\n", k, k.About(), "", strings.Join(k.Places(), ", "))
+	}
 	cmd := &cobra.Command{
 		Use:   "simulate",
 		Short: "A simulated bench and its dashboard, without hardware",
@@ -44,7 +49,10 @@ from you, fibre, gauges and pulse energy as they truly are, makes prediction
 and measurement part as they do on a real bench.
 
 Scenarios:
-` + stories.String(),
+` + stories.String() + `
+Faults, each with the bench time at which it comes, perhaps a place and a size,
+or "over" where it ends: --fault "60s leak cell A 0.2" --fault "2m leak cell A over".
+` + wrongs.String(),
 		Args: noArgs,
 		RunE: func(cmd *cobra.Command, _ []string) error {
 			return f.run(cmd.Context(), cmd.OutOrStdout(), cmd.ErrOrStderr())
@@ -52,6 +60,7 @@ Scenarios:
 	}
 	flags := cmd.Flags()
 	flags.StringVar(&f.scenario, "scenario", "fill", "what happens on the bench")
+	flags.StringArrayVar(&f.faults, "fault", nil, "what goes wrong besides, such as \"60s leak\"; may be given again")
 	flags.Uint64Var(&f.seed, "seed", 1, "draws the hidden truth, the noise and the faults")
 	flags.Float64Var(&f.speed, "speed", 1, "bench time over wall time, 0.1 to 100")
 	flags.BoolVar(&f.headless, "headless", false, "no screen: run for --for, print a summary and leave")
@@ -86,7 +95,15 @@ func (f simulateFlags) place(stderr io.Writer) (*place, error) {
 	if !(f.speed >= 0.1 && f.speed <= 100) {
 		return nil, usage("--speed %g: expected 0.1 to 100", f.speed)
 	}
-	sim, err := simulate.New(simulate.Options{Seed: f.seed, Scenario: f.scenario})
+	var faults []simulate.Timed
+	for _, text := range f.faults {
+		timed, err := simulate.ParseTimed(text)
+		if err != nil {
+			return nil, usage("--fault: %w", err)
+		}
+		faults = append(faults, timed)
+	}
+	sim, err := simulate.New(simulate.Options{Seed: f.seed, Scenario: f.scenario, Faults: faults})
 	if err != nil {
 		return nil, usage("--scenario: %w", err)
 	}
