@@ -6,6 +6,7 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -116,6 +117,35 @@ func TestNotFiniteBecomesNull(t *testing.T) {
 	}
 }
 
+// TestDays begins a segment with each later day, and only then: stamps overlap
+// at midnight, and a clock may be set back.
+func TestDays(t *testing.T) {
+	dir := t.TempDir()
+	b, err := Open(dir, Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	midnight := time.Date(2026, 12, 2, 0, 0, 0, 0, time.UTC).Sub(testStart)
+	for i, d := range []time.Duration{-2 * time.Second, time.Millisecond, -time.Millisecond, 2 * time.Millisecond, -24 * time.Hour, time.Second, 24 * time.Hour} {
+		at := stampAt(midnight + d)
+		at.Mono = time.Duration(i)
+		if _, err := b.Append(at, "note", struct{}{}); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := b.Close(); err != nil {
+		t.Fatal(err)
+	}
+	r := sound(t, dir)
+	var counts []uint64
+	for _, s := range r.Segments {
+		counts = append(counts, s.Records)
+	}
+	if !slices.Equal(counts, []uint64{1, 5, 1}) || len(r.Notices) != 1 {
+		t.Errorf("records of each segment %v, expected [1 5 1]; notices %q", counts, r.Notices)
+	}
+}
+
 type brokenAppender string
 
 func (b brokenAppender) AppendJSON(dst []byte) []byte { return append(dst, b...) }
@@ -136,6 +166,7 @@ func TestAppendRefuses(t *testing.T) {
 		{"note", "not written as a JSON object", 3},
 		{"note", "not written as a JSON object", nil},
 		{"note", "one JSON object", brokenAppender("{\n}")},
+		{"reading", "no reading", (*reading.Reading)(nil)},
 		{"note", "at most", map[string]string{"text": strings.Repeat("x", maxLine)}},
 	} {
 		seq, err := b.Append(stampAt(0), c.kind, c.data)

@@ -53,7 +53,7 @@ type acknowledged struct {
 // many did.
 func crashStory(t *testing.T, seed uint64) (crashes int64) {
 	r := rand.New(rand.NewPCG(seed, 1))
-	d := newMemDisk(r)
+	d := newMemDisk(rand.New(rand.NewPCG(seed, 2))) // its own: it is asked from another goroutine
 	acked := acknowledged{text: map[uint64]string{}, excused: map[string]bool{}}
 	at := time.Duration(0)
 	for range 1 + r.IntN(4) {
@@ -123,7 +123,7 @@ func runAndDie(d *memDisk, r *rand.Rand, acked *acknowledged, at *time.Duration)
 		text := fmt.Sprintf(`{"text":"%d %s"}`, r.Uint64(), strings.Repeat("x", r.IntN(100)))
 		kind := "reading"
 		if r.IntN(10) == 0 {
-			kind = "intent"
+			kind = "step" // not one that starts a commit by itself, at a time of its own
 		}
 		if seq, err := b.Append(stampAt(*at), kind, brokenAppender(text)); err == nil {
 			waiting[seq] = text

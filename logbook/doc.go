@@ -77,8 +77,8 @@
 // added by recovery has also "recovered":true and "torn_bytes", the length of
 // what was set aside.
 //
-// A segment ends when it would grow beyond its size, when the UTC day of t
-// changes, when writing to it failed, and when the program ends. Numbers go up
+// A segment ends when it would grow beyond its size, when a later UTC day
+// begins than that of its first record, when writing to it failed, and when the program ends. Numbers go up
 // but may leave gaps. A segment without a seal is one that is being written,
 // or whose writing was cut off.
 //

@@ -9,7 +9,8 @@ import (
 	"barline/model/reading"
 )
 
-// chunk is whole lines on their way to the disk, all of one UTC day.
+// chunk is whole lines on their way to the disk, none of a later UTC day than
+// the first.
 type chunk struct {
 	lines   []byte
 	records int
@@ -76,7 +77,9 @@ func (s *stream) append(at reading.Stamp, kind string, data any) (uint64, error)
 	case reading.Reading:
 		r = &d
 	case *reading.Reading:
-		r = d
+		if r = d; r == nil {
+			return 0, fmt.Errorf("logbook: %s: no reading", kind)
+		}
 	case Appender:
 		direct = d
 	default:
@@ -127,7 +130,7 @@ func oneObject(b []byte) bool {
 // line written, and where in the chunk that line begins.
 func (s *stream) open(at reading.Stamp, kind string) (c *chunk, start int) {
 	n := len(s.waiting)
-	if n == s.taken || len(s.waiting[n-1].lines) >= chunkBytes || !sameDay(s.waiting[n-1].first.UTC, at.UTC) {
+	if n == s.taken || len(s.waiting[n-1].lines) >= chunkBytes || laterDay(s.waiting[n-1].first.UTC, at.UTC) {
 		var buf []byte
 		if k := len(s.spare); k > 0 {
 			buf, s.spare = s.spare[k-1], s.spare[:k-1]
@@ -162,9 +165,12 @@ func (s *stream) finish(c *chunk, start int, at reading.Stamp) (uint64, error) {
 	return s.seq, nil
 }
 
-func sameDay(a, b time.Time) bool {
+// laterDay reports whether b is on a later UTC day than a. An earlier one does
+// not count: stamps of several channels overlap at midnight, and clocks are
+// set back.
+func laterDay(a, b time.Time) bool {
 	const day = 24 * 60 * 60
-	return a.Unix()/day == b.Unix()/day
+	return b.Unix()/day > a.Unix()/day
 }
 
 func (s *stream) lose(at reading.Stamp, kind string) {

@@ -137,7 +137,7 @@ func (w *writer) write(s *stream, chunks []chunk) error {
 // fits reports whether c belongs in the open segment.
 func (w *writer) fits(c *chunk) bool {
 	o := w.open
-	return sameDay(o.first.UTC, c.first.UTC) && (o.records == 0 || o.size+int64(len(c.lines)) <= w.options.SegmentBytes)
+	return !laterDay(o.first.UTC, c.first.UTC) && (o.records == 0 || o.size+int64(len(c.lines)) <= w.options.SegmentBytes)
 }
 
 // start opens the next segment and writes its first line. It syncs that by
