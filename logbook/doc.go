@@ -23,6 +23,7 @@
 //	000001.index       where in the segment which times are; derived, may be deleted
 //	000001.torn        bytes behind the last whole record, set aside after a crash
 //	000001.torn.2      the same, from a later crash
+//	*.part             a file that is not yet whole; may be deleted
 //	lock               held with an advisory lock by the program that writes
 //	spectra/           files that records name by the SHA-256 of their content
 //

@@ -79,6 +79,9 @@ func (w *writer) present() error {
 		return nil
 	}
 	lock, err := w.disk.lock()
+	if err != nil && w.disk.is(lockName, w.lock) {
+		return nil // the folder came back in between, with our own lock in it
+	}
 	if errors.Is(err, fs.ErrNotExist) {
 		return fmt.Errorf("the folder %s is gone", w.disk)
 	}
