@@ -105,7 +105,7 @@ func writeExplanation(w io.Writer, p *emission.Predictor, pr emission.Prediction
 	source("density", m.DensitySource())
 	source("index", m.IndexSource())
 	pub, chk := m.Published(), m.Checked()
-	row("", fmt.Sprintf("published %.4g to %.4g nm, checked %s", pub.From.Nanometres(), pub.To.Nanometres(), checkedSpan(chk)))
+	row("", fmt.Sprintf("published %.5g to %.5g nm, checked %s", pub.From.Nanometres(), pub.To.Nanometres(), checkedSpan(chk)))
 	row("", "scaled by Lorentz-Lorenz: (n2-1)/(n2+2) goes with molar density (Born & Wolf, Principles of Optics, 2.3.3)")
 	row("effective index", modeFormula(s.Fibre.Kind))
 	row("dispersion", "derivatives of beta = n_eff*omega/c, exact to the third order")
