@@ -74,7 +74,7 @@ type Channel struct {
 	Current    string      `toml:"current"`                           // with span: the current that the number 1 means, as written; default 1 mA
 	GasFactor  float64     `toml:"gas_factor"`                        // multiplies the reading of a gauge that depends on the gas; 0 is none
 	Resolution string      `toml:"resolution"`                        // a setpoint read back this near to the one sent was taken, as written
-	Stale      unit.Second `toml:"stale" form:"least=1 ms; most=1 h"` // instead of that of [limits]; 0 is that
+	Stale      unit.Second `toml:"stale" form:"least=1 ms; most=1 h"` // instead of that of [limits], for a pressure only if shorter; 0 is that
 
 	Factor    float64 // SI per count
 	Zero      float64 // SI at the number 0; above ambient where Gauge

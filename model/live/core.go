@@ -100,6 +100,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 			if ch.Role == reading.Setpoint && ch.Write != "" {
 				c.controlled = true
 			}
+			s.staleBy[ch.Role] = max(s.staleBy[ch.Role], ch.Stale.Duration())
 		}
 	}
 	definitions, channels := alarmsOf(b)

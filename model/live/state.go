@@ -46,6 +46,12 @@ type State struct {
 	model        Predictor // asked instead of the core's own where it is not nil
 	nodes        int
 	nodesPlanned int
+
+	// staleBy is the age beyond which a reading of a role is a failure, where
+	// its channel says so itself; 0 where that of the bench holds. For a
+	// pressure it can only be shorter than that: ramps lean on it.
+	staleBy [reading.RoleCount]time.Duration
+
 	alarms       alarm.List
 	heldByItself bool // HOLD came without being asked for
 	refused      bool // an instrument did not take the last command
@@ -70,12 +76,15 @@ type State struct {
 }
 
 // Reading returns the newest reading of a role, with the status that it
-// deserves now: one older than stale is a failure.
+// deserves now: one older than stale, or than its channel allows, is a failure.
 func (s *State) Reading(r reading.Role, stale time.Duration) reading.Reading {
 	got := s.Latest[r]
 	if got.Channel == "" {
 		got.Reason = "no reading yet"
 		return got
+	}
+	if own := s.staleBy[r]; own > 0 && (own < stale || !r.IsPressure()) {
+		stale = own
 	}
 	if age := s.Now.Mono - got.Taken.Mono; age > stale && got.Status != reading.Failure {
 		got.Status, got.Reason = reading.Failure, "stale"
