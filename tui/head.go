@@ -174,8 +174,12 @@ func programText(s *live.Snapshot) string {
 	return text
 }
 
-// rampLeft says how long the setpoint still travels at the allowed rate.
+// rampLeft says how long until the gas is at the target, or, where that is not
+// known, how long the setpoint still travels at the allowed rate.
 func rampLeft(s *live.Snapshot) string {
+	if s.ArriveIn > 0 {
+		return "there in " + spanText(s.ArriveIn)
+	}
 	if s.Bench == nil {
 		return ""
 	}

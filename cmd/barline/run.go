@@ -220,13 +220,11 @@ func (f *runFlags) print(out io.Writer, s *session, program *live.Program) error
 	if err != nil {
 		return usage("--from-pressure: %w", err)
 	}
-	gas, err := flow.Named(s.bench.Gas.Species)
+	panel, err := flow.BenchHandling(s.bench, 295.15)
 	if err != nil {
 		return err
 	}
-	site := procedure.Site{
-		Limits: s.core.Limits(), Volume: 2 * s.bench.Panel.CellVolume, Gas: gas, Temperature: 295.15, Settle: 5 * time.Second,
-	}
+	site := procedure.Site{Panel: panel, Settle: 5 * time.Second}
 	each, sum, err := site.Estimate(program, from)
 	if err != nil {
 		return err

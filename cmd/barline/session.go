@@ -7,10 +7,13 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"os"
 	"runtime/debug"
 	"sync"
 	"sync/atomic"
 	"time"
+
+	"github.com/mattn/go-isatty"
 
 	"barline/cmd/barline/loop"
 	"barline/device/instrument"
@@ -36,6 +39,7 @@ type session struct {
 	opener    func(bench.Instrument) (instrument.Open, error)
 	simulated bool
 	anchors   bool // full-field runs are computed beside it
+	noCharts  bool // for slow lines
 	stderr    io.Writer
 }
 
@@ -101,6 +105,7 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		Curve: func(in emission.Input, dst []emission.CurvePoint) {
 			newest.Load().curve(dst, s.core.Limits().Lowest().Max, in)
 		},
+		Bell:   s.bell,
 		Call:   calls.call,
 		Folder: s.folder, Simulated: s.simulated,
 	})
@@ -160,6 +165,13 @@ const (
 	holdOfPanic = ^uint64(0)
 	panicGrace  = 500 * time.Millisecond
 )
+
+// bell rings at the terminal, where there is one.
+func (s *session) bell() {
+	if f, ok := s.stderr.(*os.File); ok && isatty.IsTerminal(f.Fd()) {
+		fmt.Fprint(f, "\a")
+	}
+}
 
 // open writes the first records of the session.
 func (s *session) open(book *logbook.Book) error {

@@ -16,6 +16,7 @@ type watchFlags struct {
 	bench      string
 	logbook    string
 	followOnly bool
+	noCharts   bool
 }
 
 func newWatch() *cobra.Command {
@@ -38,6 +39,7 @@ interlocks come first.`,
 	cmd.Flags().StringVarP(&f.bench, "bench", "b", "", "the bench file; barline check --sample prints one")
 	cmd.Flags().StringVar(&f.logbook, "logbook", "", "folder of the logbook; without it that of the bench file, else one in your data folder")
 	cmd.Flags().BoolVar(&f.followOnly, "follow-only", false, "a second screen on the record that another barline is writing: nothing can be commanded")
+	cmd.Flags().BoolVar(&f.noCharts, "no-charts", false, "begin without charts, for a slow line; g brings them")
 	return cmd
 }
 
@@ -54,7 +56,7 @@ func (f watchFlags) place(stderr io.Writer) (*place, error) {
 	if s.folder, err = logbookFolder(f.logbook, b.Logbook.Folder, b.Bench.Name, false); err != nil {
 		return nil, err
 	}
-	s.speed, s.opener, s.stderr = 1, openLine, stderr
+	s.speed, s.opener, s.noCharts, s.stderr = 1, openLine, f.noCharts, stderr
 	return &place{session: s, begin: func(_ context.Context, s *session) (func(), error) {
 		s.clock = clock.NewScaled(1)
 		return func() {}, nil

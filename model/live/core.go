@@ -24,8 +24,10 @@ type Predictor interface {
 type Core struct {
 	limits    limit.Limits
 	predictor Predictor
-	core      *flow.Core // scratch: every step restores it from the state
-	energy    unit.Joule // used while no meter says otherwise
+	core      *flow.Core    // scratch: every step restores it from the state
+	spec      flow.Spec     // of the core
+	handling  flow.Handling // of the panel, for how long a move takes
+	energy    unit.Joule    // used while no meter says otherwise
 
 	stale        time.Duration
 	confirm      time.Duration // how long an instrument may take to confirm a command
@@ -77,15 +79,16 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	if c.stale <= 0 || c.arming <= 0 || c.confirm <= 0 {
 		return nil, State{}, fmt.Errorf("limits.stale is %v, limits.confirm %v and limits.arming %v, expected all above zero", c.stale, c.confirm, c.arming)
 	}
-	gas, err := flow.Named(b.Gas.Species)
+	spec, _, err := flow.BenchFibre(b, assumedTemperature)
 	if err != nil {
 		return nil, State{}, err
 	}
-	c.core, err = flow.NewCore(flow.Spec{
-		Radius: b.Fibre.CoreDiameter / 2, Length: b.Fibre.Length, Gas: gas,
-		Temperature: assumedTemperature, Cells: coreCells,
-	})
-	if err != nil {
+	spec.Cells = coreCells
+	c.spec = spec
+	if c.core, err = flow.NewCore(spec); err != nil {
+		return nil, State{}, err
+	}
+	if c.handling, err = flow.BenchHandling(b, assumedTemperature); err != nil {
 		return nil, State{}, err
 	}
 	var s State

@@ -188,6 +188,8 @@ func (c *Core) Progress(s *State) Progress {
 		}
 		p.DwellLeft = max(0, ph.Dwell-(now-r.settledAt))
 		p.Left = p.DwellLeft
+	} else if wait, ok := s.ArriveIn(); ok {
+		p.Left = wait + settledFor + ph.Dwell
 	} else {
 		p.Left = c.rampTime(s.Setpoint, ph) + settledFor + ph.Dwell
 	}

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"barline/model/flow"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -51,10 +52,23 @@ func (c *Core) beginPhase(s *State, fx []Effect) []Effect {
 	}
 	s.Setpoint = min(max(from, 0), c.limits.Lowest().Max)
 	s.Target, s.Mode, s.Why, s.nearSince = min(target, c.limits.Lowest().Max), Ramping, ph.Label, 0
+	c.expect(s, p, ph)
 	if s.rampedAt != 0 && s.Now.Mono-s.rampedAt < rampEvery {
 		return fx // somebody asks faster than the rate allows: the ramp goes on in its time
 	}
 	return c.rampOn(s, fx)
+}
+
+// expect begins a forecast of how long the move to the target takes.
+func (c *Core) expect(s *State, from unit.Pascal, ph *Phase) {
+	h := c.handling
+	l := c.limits.AtMost(ph.Rate)
+	h.Rise, h.Fall = l.RiseRate, l.FallRate
+	var err error
+	s.forecast, err = flow.NewForecast(flow.Aim{
+		Handling: h, From: from, Target: s.Target, Tolerance: ph.within(), Controlled: true, Core: c.spec,
+	})
+	s.forecasting = err == nil
 }
 
 // isolate shuts inlet, pump and vent. The pressure is then only watched.
@@ -174,6 +188,10 @@ func (c *Core) row(s *State, fx []Effect) []Effect {
 func (c *Core) sample(s *State, r reading.Reading) {
 	if s.tuning.base != 0 && r.Role == reading.Emission && r.Status.Usable() {
 		s.tuning.seen.add(r.Value)
+	}
+	if s.forecasting && r.Role == reading.CellAPressure && r.Status.Usable() {
+		// A reading that teaches nothing is refused there and does no harm.
+		_ = s.forecast.See(r.Taken.Mono, unit.Pascal(max(r.Value, 0)), s.Setpoint)
 	}
 	if !s.run.active() || s.run.settledAt == 0 || s.run.paused || !r.Status.Usable() {
 		return

@@ -88,6 +88,7 @@ type Snapshot struct {
 	CoreKnown  bool
 	Profile    []unit.Pascal // along the core from cell A to cell B; empty where not known
 	Lag        unit.Pascal   // of the core behind the cells, positive where it has yet to rise
+	ArriveIn   time.Duration // until the cells are at the target and the core has followed; 0 where not known
 	SettleIn   time.Duration // until the core has caught up, if the cells stay as they are
 	Program    Progress
 	Outcome    Outcome // of the last program

@@ -57,19 +57,21 @@ type State struct {
 	refused      bool // an instrument did not take the last command
 	following    bool // another core decides, see Told
 
-	run       progress
-	tuning    tuning
-	outcome   Outcome
-	flow      flow.State
-	flowAt    time.Duration
-	lagAt     time.Duration
-	command   uint64        // number of the last command sent
-	awaiting  uint64        // number of the command whose answer is due; 0 where none
-	awaitFrom time.Duration // when it was sent
-	rampedAt  time.Duration // when the setpoint last moved
-	nearSince time.Duration // since when the pressure has been at the target; 0 where it is not
-	predicted time.Duration // when the model was last asked
-	recorded  struct {      // the prediction that last went into the record
+	run         progress
+	tuning      tuning
+	outcome     Outcome
+	forecast    flow.Forecast // of the move under way, where forecasting
+	forecasting bool
+	flow        flow.State
+	flowAt      time.Duration
+	lagAt       time.Duration
+	command     uint64        // number of the last command sent
+	awaiting    uint64        // number of the command whose answer is due; 0 where none
+	awaitFrom   time.Duration // when it was sent
+	rampedAt    time.Duration // when the setpoint last moved
+	nearSince   time.Duration // since when the pressure has been at the target; 0 where it is not
+	predicted   time.Duration // when the model was last asked
+	recorded    struct {      // the prediction that last went into the record
 		at       time.Duration
 		emission unit.Metre
 	}
@@ -90,6 +92,16 @@ func (s *State) Reading(r reading.Role, stale time.Duration) reading.Reading {
 		got.Status, got.Reason = reading.Failure, "stale"
 	}
 	return got
+}
+
+// ArriveIn returns how long until the cells are at the target and the core has
+// followed, by the model as corrected by what is seen; ok is false where no
+// move is under way or it cannot be said.
+func (s *State) ArriveIn() (wait time.Duration, ok bool) {
+	if !s.forecasting || s.Mode != Ramping && s.Mode != Settling {
+		return 0, false
+	}
+	return s.forecast.Left(s.SettleIn)
 }
 
 // panel returns how the valves stand, as far as they are read back.

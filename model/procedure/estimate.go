@@ -1,21 +1,18 @@
 package procedure
 
 import (
+	"fmt"
 	"time"
 
 	"barline/model/flow"
-	"barline/model/limit"
 	"barline/model/live"
 	"barline/model/unit"
 )
 
 // Site is where a program would run, for an estimate of what it takes.
 type Site struct {
-	Limits      limit.Limits
-	Volume      unit.CubicMetre // of both cells
-	Gas         flow.Medium
-	Temperature unit.Kelvin
-	Settle      time.Duration // after each ramp
+	Panel  flow.Handling // its rates are the limits'
+	Settle time.Duration // after each ramp
 }
 
 // Cost is what one phase takes, by estimate.
@@ -25,26 +22,25 @@ type Cost struct {
 }
 
 // Estimate works out what every phase of a program takes from a pressure on,
-// and the sum: ramps at their rate, a settling time after each, dwells; gas
-// for what the cells hold more at the end of a ramp than at its start. What a
-// valve cannot pass or a pump cannot reach in that time comes on top.
+// and the sum: ramps as fast as valves and rates let them, a settling time
+// after each, dwells; gas for what is let in. A pressure that the panel cannot
+// reach is an error that wraps flow.ErrNever.
 func (s Site) Estimate(p *live.Program, from unit.Pascal) (each []Cost, sum Cost, err error) {
 	at := from
-	held, err := s.Gas.Density(at, s.Temperature)
-	if err != nil {
-		return nil, Cost{}, err
-	}
-	for _, ph := range p.Phases {
+	for i, ph := range p.Phases {
 		c := Cost{Time: ph.Dwell}
 		if ph.Action == live.Reach {
-			c.Time += s.Settle + s.Limits.AtMost(ph.Rate).RampTime(at, ph.Target)
-			at = ph.Target
-			holds, err := s.Gas.Density(at, s.Temperature)
-			if err != nil {
-				return nil, Cost{}, err
+			h := s.Panel
+			if ph.Rate > 0 {
+				h.Rise, h.Fall = min(h.Rise, ph.Rate), min(h.Fall, ph.Rate)
 			}
-			c.Gas = max(0, float64(holds-held)*float64(s.Volume))
-			held = holds
+			stage, err := h.Move(at, ph.Target)
+			if err != nil {
+				return nil, Cost{}, fmt.Errorf("phase %d (%s): %w", i+1, ph.Label, err)
+			}
+			c.Time += s.Settle + stage.Time
+			c.Gas = stage.Gas
+			at = ph.Target
 		}
 		each = append(each, c)
 		sum.Time += c.Time

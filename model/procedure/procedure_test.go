@@ -178,7 +178,10 @@ func TestEstimate(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	site := Site{Limits: testBench().Limits, Volume: 120e-6, Gas: argon.Ideal(), Temperature: 293.15, Settle: 3 * time.Second}
+	site := Site{Settle: 3 * time.Second, Panel: flow.Handling{
+		Panel: flow.Panel{Cell: flow.Cell{Gas: argon.Ideal(), Volume: 120e-6, Wall: 293.15}, Ambient: 1.013 * unit.Bar},
+		Rise:  0.2e5, Fall: 0.4e5,
+	}}
 	each, sum, err := site.Estimate(p, 1*unit.Bar)
 	if err != nil {
 		t.Fatal(err)

@@ -131,21 +131,26 @@ func (l *Loop) Run(ctx context.Context) {
 	defer redraw.Stop()
 
 	dirty := true
+	var shown time.Time // when the last snapshot was published, on the wall
+	show := func() {
+		if dirty && time.Since(shown) >= redrawEvery {
+			l.publish()
+			dirty, shown = false, time.Now()
+		}
+	}
 	drain := func() { dirty = l.drain() || dirty }
 	for ctx.Err() == nil {
 		select {
 		case <-ctx.Done():
 		case <-l.queue.ready:
 			drain()
+			show() // what comes after a pause is on the screen at once
 		case <-tick.C:
 			drain()
 			l.tick()
 			dirty = true
 		case <-redraw.C:
-			if dirty {
-				l.publish()
-				dirty = false
-			}
+			show()
 		}
 	}
 	l.rest(drain)

@@ -38,6 +38,7 @@ func (l *Loop) publish() {
 			snap.Latest[role] = s.Reading(reading.Role(role), o.Core.Stale())
 		}
 	}
+	snap.ArriveIn, _ = s.ArriveIn()
 	snap.Nodes, snap.NodesPlanned = s.Nodes()
 	if c := l.curve.Load(); c != nil {
 		snap.Curve = *c

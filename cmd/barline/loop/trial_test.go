@@ -7,7 +7,6 @@ import (
 	"math"
 	"math/rand/v2"
 	"os"
-	"reflect"
 	"runtime"
 	"strconv"
 	"sync"
@@ -361,7 +360,7 @@ func (tr *trial) replay() {
 	for _, e := range tr.seen {
 		fx = tr.core.Step(&state, e, fx[:0])
 	}
-	if got := tr.loop.State(); !reflect.DeepEqual(got, state) {
+	if got := tr.loop.State(); !live.Same(got, state) {
 		tr.fail("replayed, the state is not the same: mode %v for %v, setpoint %v for %v", state.Mode, got.Mode, state.Setpoint, got.Setpoint)
 	}
 }
