@@ -27,6 +27,7 @@ type propagateFlags struct {
 	inputs
 	json, csv    bool
 	plot, resume string
+	spectrum     string
 	sweep        string
 	tolerance    float64
 }
@@ -61,6 +62,7 @@ those that the file already holds are not run again.`,
 	cmd.Flags().BoolVar(&f.json, "json", false, "print one JSON object; in a sweep one on each line")
 	cmd.Flags().BoolVar(&f.csv, "csv", false, "print comma-separated values")
 	cmd.Flags().StringVar(&f.plot, "plot", "", "draw spectrum and evolution to a file that ends in .svg or .png")
+	cmd.Flags().StringVar(&f.spectrum, "spectrum", "", "measured spectrum of the pulse: a CSV file of wavelength in nm, energy per nm, phase in rad; --duration then only sizes the time window")
 	cmd.Flags().StringVar(&f.sweep, "sweep", "", "one run per step: pressure=7bar:12bar:0.25bar; also temperature, energy, air")
 	cmd.Flags().StringVar(&f.resume, "resume", "", "file that keeps the steps of a sweep")
 	cmd.Flags().Float64Var(&f.tolerance, "tolerance", pulse.DefaultTolerance, "relative error of one step, 1e-9 to 1e-2")
@@ -96,6 +98,9 @@ func (f *propagateFlags) run(ctx context.Context, stdout, stderr io.Writer) erro
 	p, err := newPropagation(setup, f.tolerance)
 	if err != nil {
 		return usage("%w", err)
+	}
+	if err := p.read(f.spectrum); err != nil {
+		return usage("--spectrum: %w", err)
 	}
 	out := bufio.NewWriter(stdout)
 	if steps != nil {
@@ -143,7 +148,23 @@ type propagation struct {
 	medium    *gas.Medium
 	fibre     *fibre.Fibre
 	rates     *pulse.Rates
+	measured  *pulse.Measured
+	text      string // of the measured spectrum
 	tolerance float64
+}
+
+// read takes the pulse from a file; no name means that it was not measured.
+func (p *propagation) read(path string) error {
+	if path == "" {
+		return nil
+	}
+	text, err := os.ReadFile(path)
+	if err != nil {
+		return err
+	}
+	p.text = string(text)
+	p.measured, err = pulse.ReadMeasured(strings.NewReader(p.text))
+	return err
 }
 
 // anyTemperature will do to make the ionisation rates, which ask for none.
@@ -188,7 +209,7 @@ func (p *propagation) run(ctx context.Context, in emission.Input, samples int, p
 	if err != nil {
 		return nil, err
 	}
-	s := pulse.Setup{Fibre: p.fibre, Gas: state, Pulse: p.setup.Pulse, Plasma: p.setup.Plasma, Rates: p.rates}
+	s := pulse.Setup{Fibre: p.fibre, Gas: state, Pulse: p.setup.Pulse, Measured: p.measured, Plasma: p.setup.Plasma, Rates: p.rates}
 	s.Pulse.Energy = in.Energy
 	start := time.Now()
 	r, err := s.Run(ctx, pulse.Options{Tolerance: p.tolerance, Samples: samples, Progress: progress})

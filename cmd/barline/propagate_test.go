@@ -3,6 +3,7 @@ package main
 import (
 	"encoding/csv"
 	"encoding/json"
+	"fmt"
 	"math"
 	"os"
 	"path/filepath"
@@ -140,6 +141,28 @@ func TestSweepTables(t *testing.T) {
 	rows, err := csv.NewReader(strings.NewReader(out)).ReadAll()
 	if code != exitDone || err != nil || len(rows) != 4 {
 		t.Fatalf("exit %d, %d rows, %v", code, len(rows), err)
+	}
+}
+
+func TestPropagateTakesAMeasuredSpectrum(t *testing.T) {
+	path := filepath.Join(t.TempDir(), "pump.csv")
+	text := "wavelength_nm,energy,phase_rad\n"
+	for nm := 900.0; nm < 1200; nm++ {
+		d := (nm - 1030) / 25
+		text += fmt.Sprintf("%g,%g,0\n", nm, math.Exp(-d*d/2))
+	}
+	if err := os.WriteFile(path, []byte(text), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	code, out, stderr := command(quick("--pressure", "9 bar", "--spectrum", path)...)
+	if code != exitDone || !strings.Contains(out, "1.5 uJ in") {
+		t.Errorf("exit %d, %s: %s", code, stderr, out)
+	}
+	if err := os.WriteFile(path, []byte(text[:200]), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	if code, _, stderr = command(quick("--pressure", "9 bar", "--spectrum", path)...); code != exitUsage || !strings.Contains(stderr, "--spectrum") {
+		t.Errorf("a short file: exit %d, %s", code, stderr)
 	}
 }
 

@@ -132,7 +132,7 @@ func (p *propagation) step(ctx context.Context, in emission.Input, kept *kept) (
 
 // key names what a step depends on.
 func (p *propagation) key(in emission.Input) string {
-	text := fmt.Sprintf("%+v %+v %+v %v %g %+v", p.setup.Gas, p.setup.Fibre, p.setup.Pulse, p.setup.Plasma, p.tolerance, in)
+	text := fmt.Sprintf("%+v %+v %+v %v %g %+v %s", p.setup.Gas, p.setup.Fibre, p.setup.Pulse, p.setup.Plasma, p.tolerance, in, p.text)
 	sum := sha256.Sum256([]byte(text))
 	return hex.EncodeToString(sum[:8])
 }

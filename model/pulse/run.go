@@ -92,7 +92,7 @@ func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
 	if err != nil {
 		return nil, err
 	}
-	in, err := Launch(g, m, s.Pulse)
+	in, err := s.launch(g, m)
 	if err != nil {
 		return nil, err
 	}
@@ -123,6 +123,13 @@ func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
 		}
 	}
 	return r, r.finish(solver, w)
+}
+
+func (s Setup) launch(g Grid, m Medium) ([]complex128, error) {
+	if s.Measured != nil {
+		return s.Measured.launch(g, &m, s.Pulse.Energy)
+	}
+	return Launch(g, m, s.Pulse)
 }
 
 // finish fills in what is known at the end of the fibre.

@@ -40,10 +40,13 @@ func ParsePlasma(text string) (Plasma, error) {
 // Setups of the same bench share the Fibre and the Medium of the Gas: that is
 // how two of them are known to be alike.
 type Setup struct {
-	Fibre  *fibre.Fibre
-	Gas    gas.State // at relative density 1
-	Pulse  Pulse
-	Plasma Plasma
+	Fibre *fibre.Fibre
+	Gas   gas.State // at relative density 1
+	Pulse Pulse
+	// Measured stands in for the pulse's shape, duration and dispersion; nil
+	// means that it was not measured.
+	Measured *Measured
+	Plasma   Plasma
 	// KerrScale multiplies the nonlinear index; 0 means 1.
 	KerrScale float64
 	// Rates is what Prepare makes; nil means that every run makes it anew.
