@@ -20,7 +20,6 @@ type memDisk struct {
 	mu      sync.Mutex
 	names   map[string]*memInode
 	durable map[string]*memInode // names as of the last syncDir
-	locked  bool
 
 	ops    int
 	cutAt  int                   // operation that the power fails in; 0 is never
