@@ -50,12 +50,7 @@ step. A sweep uses all cores. With --resume its steps are kept in a file, and
 those that the file already holds are not run again.`,
 		Args: noArgs,
 		RunE: func(cmd *cobra.Command, args []string) error {
-			err := f.run(cmd.Context(), cmd.OutOrStdout(), cmd.ErrOrStderr())
-			if errors.Is(err, context.Canceled) {
-				fmt.Fprintln(cmd.ErrOrStderr(), "barline: stopped")
-				return nil
-			}
-			return err
+			return f.run(cmd.Context(), cmd.OutOrStdout(), cmd.ErrOrStderr())
 		},
 	}
 	f.bind(cmd)

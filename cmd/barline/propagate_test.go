@@ -1,6 +1,7 @@
 package main
 
 import (
+	"context"
 	"encoding/csv"
 	"encoding/json"
 	"fmt"
@@ -163,6 +164,24 @@ func TestPropagateTakesAMeasuredSpectrum(t *testing.T) {
 	}
 	if code, _, stderr = command(quick("--pressure", "9 bar", "--spectrum", path)...); code != exitUsage || !strings.Contains(stderr, "--spectrum") {
 		t.Errorf("a short file: exit %d, %s", code, stderr)
+	}
+}
+
+// Stopped, a command ends at once, says so, and has not failed.
+func TestStoppedRuns(t *testing.T) {
+	t.Setenv("XDG_CACHE_HOME", t.TempDir())
+	t.Setenv("HOME", t.TempDir())
+	for _, args := range [][]string{
+		quick("--pressure", "9 bar"),
+		quick("--sweep", "pressure=8bar:10bar:1bar", "--csv"),
+		bore("--pressure", "9 bar", "--emission", "anchored"),
+	} {
+		ctx, cancel := context.WithCancel(context.Background())
+		cancel()
+		var out, stderr strings.Builder
+		if code := run(ctx, args, strings.NewReader(""), &out, &stderr); code != exitDone || !strings.Contains(stderr.String(), "stopped") {
+			t.Errorf("%s: exit %d, %s", args[0], code, stderr.String())
+		}
 	}
 }
 

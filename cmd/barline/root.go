@@ -42,6 +42,10 @@ func run(ctx context.Context, args []string, stdin io.Reader, stdout, stderr io.
 	if err == nil {
 		return exitDone
 	}
+	if ctx.Err() != nil && errors.Is(err, context.Canceled) { // somebody asked for it
+		fmt.Fprintln(stderr, "barline: stopped")
+		return exitDone
+	}
 	fmt.Fprintln(stderr, "barline:", err)
 	var c coded
 	if errors.As(err, &c) {
