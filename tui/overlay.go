@@ -337,7 +337,7 @@ func drawAlarms(a frame.Area, s *live.Snapshot, pick int) {
 			state, ink = "○ "+al.State, frame.Faint
 		}
 		x := b.Text(2, y, al.Since.UTC.In(a.Style().Location()).Format("15:04:05")+" ", frame.Faint)
-		x = b.Text(x, 0+y, al.Name, frame.Strong) + 2
+		b.Text(x, y, al.Name, frame.Strong)
 		b.Right(b.W, y, state, ink)
 		y++
 		y += wrap(b.Sub(11, y, b.W-11, 3), sentences(al.Cause, al.Consequence, al.Action), frame.Plain) + 1

@@ -1,7 +1,6 @@
 package tui
 
 import (
-	"math"
 	"strings"
 
 	"barline/model/live"
@@ -213,15 +212,4 @@ func valve(s *live.Snapshot, name string, role reading.Role) part {
 		ink = frame.Caution
 	}
 	return part{name + " " + r.value, ink}
-}
-
-// highest returns the highest pressure that any usable gauge shows.
-func highest(s *live.Snapshot) (unit.Pascal, bool) {
-	p := math.Inf(-1)
-	for _, role := range []reading.Role{reading.CellAPressure, reading.CellBPressure, reading.ManifoldPressure, reading.ControllerSensor} {
-		if r := show(s, role); r.known {
-			p = max(p, s.Latest[role].Value)
-		}
-	}
-	return unit.Pascal(p), !math.IsInf(p, 0)
 }

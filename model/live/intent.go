@@ -104,7 +104,7 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		return data, err
 	case Note:
 		data.Intent = "note"
-		*fx = append(*fx, Record{At: s.Now, Kind: KindNote, Data: NoteData{Text: in.Text}, Sync: true})
+		*fx = append(*fx, Record{At: s.Now, Kind: KindNote, Data: NoteData(in), Sync: true})
 	case Acknowledge, Reset, Shelve, Unshelve:
 		data.Intent, data.Alarm = aboutAlarm(in)
 		record()

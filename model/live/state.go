@@ -6,7 +6,6 @@ import (
 	"barline/model/alarm"
 	"barline/model/emission"
 	"barline/model/flow"
-	"barline/model/limit"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -102,12 +101,4 @@ func (s *State) ArriveIn() (wait time.Duration, ok bool) {
 		return 0, false
 	}
 	return s.forecast.Left(s.SettleIn)
-}
-
-// panel returns how the valves stand, as far as they are read back.
-func (s *State) panel() (p limit.Panel) {
-	p.Open[limit.Inlet] = s.Latest[reading.InletValve].Value > 0.5
-	p.Open[limit.Pump] = s.Latest[reading.PumpValve].Value > 0.5
-	p.Open[limit.Vent] = s.Latest[reading.VentValve].Value > 0.5
-	return p
 }

@@ -42,8 +42,7 @@ type trial struct {
 	disk  memory
 
 	seen    []live.Event
-	last    live.State // replayed alongside, see replay
-	faulty  bool       // wire faults of this trial
+	faulty  bool // wire faults of this trial
 	alarmed map[string]time.Duration
 	sent    struct {
 		any      bool
