@@ -84,7 +84,7 @@ func newSession(b *bench.Bench, text []byte) (*session, error) {
 // run opens the logbook and the lines, shows the experiment through f until f
 // returns or ctx ends, holds the bench and closes the record.
 func (s *session) run(ctx context.Context, f front) (err error) {
-	book, err := logbook.Open(s.folder, logbook.Options{Compress: true})
+	book, err := logbook.Open(s.folder, logbook.Options{Compress: s.bench.Logbook.Compress})
 	if err != nil {
 		return err
 	}

@@ -131,6 +131,7 @@ type Logbook struct {
 	DeadbandPressure    unit.Pascal           `toml:"deadband_pressure" form:"default=2 mbar; least=0 bar"`
 	DeadbandTemperature unit.KelvinDifference `toml:"deadband_temperature" form:"default=0.1 K; least=0 K"`
 	DeadbandWavelength  unit.Metre            `toml:"deadband_wavelength" form:"default=0.05 nm; least=0 nm"`
+	Compress            bool                  `toml:"compress"` // segments that are finished
 }
 
 // Alarms says whom to call.

@@ -29,6 +29,8 @@ func newDeadbands(b *bench.Bench) *deadbands {
 			d.band[role] = float64(b.Logbook.DeadbandWavelength)
 		case reading.EmissionStrength:
 			d.band[role] = 0.005
+		case reading.InletValve, reading.PumpValve, reading.VentValve:
+			d.band[role] = 0.02 // of a proportional valve's opening
 		}
 	}
 	return d

@@ -213,17 +213,21 @@ func (l *Loop) handle(e live.Event) {
 	if r, ok := e.(live.Read); ok {
 		l.history.reading(&l.state, r.Reading)
 		if data, due := l.records.due(r.Reading); due {
-			l.record(r.Reading.Taken, live.KindReading, data)
+			_ = l.record(r.Reading.Taken, live.KindReading, data) // Health counts what was refused
 		}
 	}
+	var unrecorded error // a record that must stand before what follows it
 	for _, f := range l.fx {
 		switch f := f.(type) {
 		case live.Record:
-			l.record(f.At, f.Kind, f.Data)
-			if row, ok := f.Data.(live.StepData); ok {
-				l.history.row(row)
+			if err := l.record(f.At, f.Kind, f.Data); err != nil && f.Sync {
+				unrecorded = err
 			}
 		case live.SendSetpoint:
+			if unrecorded != nil {
+				l.Answer(f.Command, fmt.Errorf("not sent: it could not be recorded: %w", unrecorded), l.opt.Clock.Now())
+				continue
+			}
 			l.gate.setpoint(f.Command, f.Setpoint)
 		case live.SendHold:
 			l.gate.hold(f.Command, f.Setpoint)
@@ -247,11 +251,13 @@ func (l *Loop) handle(e live.Event) {
 	}
 }
 
-func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) {
+func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) error {
 	// A refused record shows in Health, which the next tick brings to the core.
-	if _, err := l.opt.Book.Append(at, string(kind), data); err == nil && kind != live.KindReading && kind != live.KindPrediction {
+	_, err := l.opt.Book.Append(at, string(kind), data)
+	if err == nil && kind != live.KindReading && kind != live.KindPrediction {
 		l.history.line(at, kind, data)
 	}
+	return err
 }
 
 // Model hands in a predictor that knows more than the one before, or how far

@@ -48,9 +48,13 @@ type fakeBook struct {
 	*trace
 	release chan struct{} // Sync waits for it where it is not nil
 	err     error
+	full    bool // Append refuses
 }
 
 func (b *fakeBook) Append(_ reading.Stamp, kind string, data any) (uint64, error) {
+	if b.full {
+		return 0, errors.New("memory is full")
+	}
 	if c, ok := data.(live.CommandData); ok {
 		b.add("append " + c.String())
 	} else {
@@ -185,6 +189,29 @@ func TestSetpointIsNotSentWhereTheDiskRefuses(t *testing.T) {
 		}
 		cancel()
 		<-done
+	})
+}
+
+// A record that the logbook refuses at once is no record: what should follow it
+// does not reach the wire, although there is nothing left to sync.
+func TestSetpointIsNotSentWhereItsRecordIsRefused(t *testing.T) {
+	synctest.Test(t, func(t *testing.T) {
+		tr := &trace{}
+		book := &fakeBook{trace: tr}
+		l := newTestLoop(t, book, tr)
+		l.gauge(1 * unit.Bar)
+		l.Do(live.Arm{})
+		l.Turn()
+		book.full = true
+		l.Do(live.GoTo{Target: 3 * unit.Bar})
+		l.Turn()
+		l.Turn()
+		if tr.index("wire setpoint 1.2 bar") >= 0 {
+			t.Fatal("a setpoint without a record reached the wire")
+		}
+		if s := l.Snapshot(); s.Mode != live.Held {
+			t.Fatalf("mode is %v (%s), want HOLD", s.Mode, s.Why)
+		}
 	})
 }
 
