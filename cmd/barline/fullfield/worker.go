@@ -59,10 +59,12 @@ type Worker struct {
 	mu       sync.Mutex
 	question *pulse.Setup // the newest, not yet begun
 	ahead    []pulse.Setup
-	current  *pulse.Setup // the question being answered
-	stop     context.CancelFunc
-	recent   []*pulse.Result // newest last
-	around   anchor.Range    // of density, to be anchored
+	current  *pulse.Setup // the setup at work
+	// preparing says that it was asked for ahead: nobody waits for it yet.
+	preparing bool
+	stop      context.CancelFunc
+	recent    []*pulse.Result // newest last
+	around    anchor.Range    // of density, to be anchored
 }
 
 const (
@@ -83,11 +85,16 @@ func NewWorker(o Options) *Worker {
 // begun, and stops one at work that is no longer close to it.
 func (w *Worker) Ask(s pulse.Setup) {
 	w.mu.Lock()
-	if w.current == nil || !alike(*w.current, s) {
+	switch {
+	case w.current == nil:
 		w.question = &s
-		if w.current != nil {
-			w.stop()
-		}
+	case !alike(*w.current, s):
+		w.question = &s
+		w.stop()
+	case w.preparing || w.question != nil:
+		// The run ahead will be the answer; a run that another question has
+		// stopped already will not.
+		w.question = &s
 	}
 	w.mu.Unlock()
 	w.nudge()
@@ -240,14 +247,14 @@ func (w *Worker) prepare(ctx context.Context) bool {
 	have := w.known(s) != nil
 	run, stop := context.WithCancel(ctx)
 	defer stop()
-	w.current, w.stop = &s, stop
+	w.current, w.stop, w.preparing = &s, stop, true
 	w.mu.Unlock()
 	var err error
 	if !have {
 		_, err = w.propagate(run, s, nil)
 	}
 	w.mu.Lock()
-	w.current = nil
+	w.current, w.preparing = nil, false
 	if errors.Is(err, context.Canceled) && ctx.Err() == nil {
 		w.ahead = append([]pulse.Setup{s}, w.ahead...)
 		err = nil

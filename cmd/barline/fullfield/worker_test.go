@@ -155,6 +155,32 @@ func TestRunsAheadAnswerAtOnce(t *testing.T) {
 	}
 }
 
+// A question for what is being computed ahead is answered by that run.
+func TestQuestionMeetsTheRunAhead(t *testing.T) {
+	b, h := short(t), newHeard()
+	w := NewWorker(Options{Tell: h.tell})
+	s := setup(t, b, 300)
+	stopped := false
+	w.current, w.stop, w.preparing = &s, func() { stopped = true }, true // as in the middle of a run ahead
+	w.Ask(s)
+	w.Ask(s)
+	if stopped || w.question == nil {
+		t.Errorf("the run ahead was stopped: %v; the question waits: %v", stopped, w.question != nil)
+	}
+	w.Ask(setup(t, b, 400))
+	if !stopped || w.question.Gas.Density != 400 {
+		t.Error("another question did not stop the run ahead")
+	}
+	// Back again, while the stopped run has not yet ended: asked anew.
+	w.preparing = false
+	if w.Ask(s); w.question.Gas.Density != 300 {
+		t.Error("the newest question was dropped in favour of a run that was stopped")
+	}
+	w.current = nil
+	start(t, w)
+	h.until(t, func(e []Event) bool { return len(answers(e)) == 1 })
+}
+
 func TestAnchoringGoesOnWhereItStopped(t *testing.T) {
 	b, h, folder := short(t), newHeard(), t.TempDir()
 	maps := func(events []Event) (list []Anchored) {
