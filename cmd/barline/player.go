@@ -108,6 +108,12 @@ func (p *player) take(r logbook.Record) error {
 			return err
 		}
 		p.tell(at, d)
+	case live.KindStep:
+		var d live.StepData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.loop.Row(d)
 	}
 	if r.Kind != string(live.KindPrediction) {
 		p.loop.Line(at, r.Kind, recordText(r))

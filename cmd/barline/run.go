@@ -37,18 +37,21 @@ type runFlags struct {
 	dryRun bool
 	arm    bool
 	from   string
+	air    string
 }
 
 func (f *runFlags) add(cmd *cobra.Command) {
 	flags := cmd.Flags()
 	flags.StringVarP(&f.watch.bench, "bench", "b", "", "the bench file")
 	flags.StringVar(&f.watch.logbook, "logbook", "", "folder of the logbook")
+	flags.StringVar(&f.watch.capture, "capture", "", captureHelp)
 	flags.BoolVar(&f.onSim, "simulated", false, "on the simulated bench instead of real instruments")
 	flags.Uint64Var(&f.sim.seed, "seed", 1, "with --simulated: draws the hidden truth and the noise")
 	flags.Float64Var(&f.sim.speed, "speed", 1, "with --simulated: bench time over wall time, 0.1 to 100")
 	flags.StringVar(&f.sim.scenario, "scenario", "quiet", "with --simulated: what happens on the bench")
 	flags.BoolVar(&f.dryRun, "dry-run", false, "print steps, times and gas used, and move nothing")
 	flags.StringVar(&f.from, "from-pressure", "1 bar", "with --dry-run: where the gas stands at the start")
+	flags.StringVar(&f.air, "from-air", "0 %", "with --dry-run: share of air in the gas at the start, such as 100 % after opening")
 	flags.BoolVar(&f.arm, "arm", false, "arm without asking: the cautions have been read")
 	cmd.MarkFlagsMutuallyExclusive("bench", "simulated")
 }
@@ -125,7 +128,7 @@ func (f *runFlags) run(cmd *cobra.Command, read func(ambient unit.Pascal) (*proc
 	var err error
 	switch {
 	case f.onSim:
-		f.sim.logbook = f.watch.logbook
+		f.sim.logbook, f.sim.capture = f.watch.logbook, f.watch.capture
 		p, err = f.sim.place(stderr)
 	case f.watch.bench != "":
 		p, err = f.watch.place(stderr)
@@ -224,22 +227,26 @@ func (f *runFlags) print(out io.Writer, s *session, program *live.Program) error
 	if err != nil {
 		return err
 	}
-	site := procedure.Site{Panel: panel, Settle: 5 * time.Second}
+	air, err := unit.ParseFraction(f.air)
+	if err != nil {
+		return usage("--from-air: %w", err)
+	}
+	site := procedure.Site{Panel: panel, Settle: 5 * time.Second, Air: air}
 	each, sum, err := site.Estimate(program, from)
 	if err != nil {
 		return err
 	}
 	w := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
 	fmt.Fprintf(w, "%s, from %v\n\n", program.Name, from)
-	fmt.Fprintln(w, "step\twhat\tto\tdwell\ttime\tgas, L at 0 °C and 1 atm")
+	fmt.Fprintln(w, "step\twhat\tto\tdwell\ttime\tgas, L at 0 °C and 1 atm\tair left")
 	for i, ph := range program.Phases {
 		to := "-"
 		if ph.Action == live.Reach {
 			to = ph.Target.String()
 		}
-		fmt.Fprintf(w, "%d\t%s\t%s\t%v\t%v\t%.3f\n", i+1, ph.Label, to, ph.Dwell, each[i].Time.Round(time.Second), flow.NormLitres(each[i].Gas))
+		fmt.Fprintf(w, "%d\t%s\t%s\t%v\t%v\t%.3f\t%v\n", i+1, ph.Label, to, ph.Dwell, each[i].Time.Round(time.Second), flow.NormLitres(each[i].Gas), each[i].Air)
 	}
-	fmt.Fprintf(w, "\t\t\t\t%v\t%.3f\n", sum.Time.Round(time.Second), flow.NormLitres(sum.Gas))
+	fmt.Fprintf(w, "\t\t\t\t%v\t%.3f\t%v\n", sum.Time.Round(time.Second), flow.NormLitres(sum.Gas), sum.Air)
 	return w.Flush()
 }
 

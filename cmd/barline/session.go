@@ -7,6 +7,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"math"
 	"os"
 	"runtime/debug"
 	"sync"
@@ -38,8 +39,9 @@ type session struct {
 	speed     float64
 	opener    func(bench.Instrument) (instrument.Open, error)
 	simulated bool
-	anchors   bool // full-field runs are computed beside it
-	noCharts  bool // for slow lines
+	anchors   bool          // full-field runs are computed beside it
+	noCharts  bool          // for slow lines
+	capture   time.Duration // bench time for which every reading is recorded
 	stderr    io.Writer
 }
 
@@ -57,6 +59,10 @@ type (
 	configurationData struct {
 		Digest string `json:"digest"`
 		Text   string `json:"text"`
+	}
+	captureData struct {
+		Always   bool    `json:"always,omitempty"`
+		Duration float64 `json:"duration_s,omitempty"`
 	}
 	stopData struct {
 		Reason string `json:"reason"`
@@ -107,7 +113,7 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		},
 		Bell:   s.bell,
 		Call:   calls.call,
-		Folder: s.folder, Simulated: s.simulated,
+		Folder: s.folder, Simulated: s.simulated, Capture: s.capture,
 	})
 	w.answer = l.Answer
 
@@ -185,6 +191,14 @@ func (s *session) open(book *logbook.Book) error {
 	_, err = book.Append(s.clock.Now(), string(live.KindConfiguration), configurationData{
 		Digest: hex.EncodeToString(digest[:]), Text: string(s.text),
 	})
+	if err != nil || s.capture == 0 {
+		return err
+	}
+	captured := captureData{Duration: s.capture.Seconds()}
+	if s.capture == math.MaxInt64 {
+		captured = captureData{Always: true}
+	}
+	_, err = book.Append(s.clock.Now(), string(live.KindCapture), captured)
 	return err
 }
 

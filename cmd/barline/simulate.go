@@ -27,6 +27,7 @@ type simulateFlags struct {
 	json     bool
 	lasts    time.Duration
 	logbook  string
+	capture  string
 }
 
 func newSimulate() *cobra.Command {
@@ -66,6 +67,7 @@ or "over" where it ends: --fault "60s leak cell A 0.2" --fault "2m leak cell A o
 	flags.BoolVar(&f.headless, "headless", false, "no screen: run for --for, print a summary and leave")
 	flags.BoolVar(&f.json, "json", false, "with --headless: the summary as JSON")
 	flags.DurationVar(&f.lasts, "for", 0, "bench time after which to leave, such as 60s; 0 is never")
+	flags.StringVar(&f.capture, "capture", "", captureHelp)
 	flags.StringVar(&f.logbook, "logbook", "", "folder of the logbook; without it one in your data folder")
 	return cmd
 }
@@ -120,6 +122,9 @@ func (f simulateFlags) place(stderr io.Writer) (*place, error) {
 		return nil, err
 	}
 	if s.folder, err = logbookFolder(f.logbook, "", b.Bench.Name, true); err != nil {
+		return nil, err
+	}
+	if s.capture, err = parseCapture(f.capture); err != nil {
 		return nil, err
 	}
 	s.simulated, s.speed, s.stderr = true, f.speed, stderr

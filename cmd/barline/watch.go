@@ -3,6 +3,8 @@ package main
 import (
 	"context"
 	"io"
+	"math"
+	"time"
 
 	"github.com/spf13/cobra"
 
@@ -17,6 +19,7 @@ type watchFlags struct {
 	logbook    string
 	followOnly bool
 	noCharts   bool
+	capture    string
 }
 
 func newWatch() *cobra.Command {
@@ -39,6 +42,7 @@ interlocks come first.`,
 	cmd.Flags().StringVarP(&f.bench, "bench", "b", "", "the bench file; barline check --sample prints one")
 	cmd.Flags().StringVar(&f.logbook, "logbook", "", "folder of the logbook; without it that of the bench file, else one in your data folder")
 	cmd.Flags().BoolVar(&f.followOnly, "follow-only", false, "a second screen on the record that another barline is writing: nothing can be commanded")
+	cmd.Flags().StringVar(&f.capture, "capture", "", captureHelp)
 	cmd.Flags().BoolVar(&f.noCharts, "no-charts", false, "begin without charts, for a slow line; g brings them")
 	return cmd
 }
@@ -54,6 +58,9 @@ func (f watchFlags) place(stderr io.Writer) (*place, error) {
 		return nil, err
 	}
 	if s.folder, err = logbookFolder(f.logbook, b.Logbook.Folder, b.Bench.Name, false); err != nil {
+		return nil, err
+	}
+	if s.capture, err = parseCapture(f.capture); err != nil {
 		return nil, err
 	}
 	s.speed, s.opener, s.noCharts, s.stderr = 1, openLine, f.noCharts, stderr
@@ -92,4 +99,21 @@ func openLine(in bench.Instrument) (instrument.Open, error) {
 		return nil, err
 	}
 	return o.Open, nil
+}
+
+const captureHelp = "record every reading and not only changes: always, or for a bench time such as 10m"
+
+// parseCapture reads --capture.
+func parseCapture(text string) (time.Duration, error) {
+	switch text {
+	case "":
+		return 0, nil
+	case "always":
+		return math.MaxInt64, nil
+	}
+	d, err := time.ParseDuration(text)
+	if err != nil || d <= 0 {
+		return 0, usage("--capture %q: expected always, or a time such as 10m", text)
+	}
+	return d, nil
 }

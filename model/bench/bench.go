@@ -57,6 +57,8 @@ type Gas struct {
 	Density string `toml:"density" form:"default=virial; oneof=reference|virial|ideal"`
 	Index   string `toml:"index"`
 	N2      string `toml:"n2"`
+	// Air is what the last purge left, as far as it is known.
+	Air unit.Fraction `toml:"air" form:"default=0 %; least=0 %; most=50 %"`
 }
 
 // Pulse is the light at the fibre input.

@@ -27,6 +27,7 @@ type Core struct {
 	core      *flow.Core    // scratch: every step restores it from the state
 	spec      flow.Spec     // of the core
 	handling  flow.Handling // of the panel, for how long a move takes
+	air       unit.Fraction // in the gas
 	energy    unit.Joule    // used while no meter says otherwise
 
 	stale        time.Duration
@@ -64,6 +65,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	c := &Core{
 		limits:       b.Limits.Enforced(),
 		predictor:    p,
+		air:          b.Gas.Air,
 		energy:       b.Pulse.Energy,
 		stale:        b.Limits.Stale.Duration(),
 		confirm:      b.Limits.Confirm.Duration(),

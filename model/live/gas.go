@@ -88,7 +88,7 @@ func (c *Core) predict(s *State, fx []Effect) []Effect {
 		return fx
 	}
 	s.predicted = s.Now.Mono
-	in := emission.Input{Pressure: s.Core, Temperature: assumedTemperature, Energy: c.energy}
+	in := emission.Input{Pressure: s.Core, Temperature: assumedTemperature, Energy: c.energy, Air: c.air}
 	if t := s.Reading(reading.FibreTemperature, c.stale); t.Status.Usable() {
 		in.Temperature = unit.Kelvin(t.Value)
 	}

@@ -196,6 +196,31 @@ func TestEstimate(t *testing.T) {
 	}
 }
 
+// Purging between two pressures divides the air by their ratio each time
+// (perfect mixing; common practice, no source).
+func TestEstimateOfAPurge(t *testing.T) {
+	p := compile(t, "[[step]]\ndo = \"purge\"\ncycles = 3\nlow = \"0.5 bar\"\nhigh = \"5 bar\"\n")
+	argon, err := flow.Named("argon")
+	if err != nil {
+		t.Fatal(err)
+	}
+	site := Site{Air: 1, Panel: flow.Handling{
+		Panel: flow.Panel{Cell: flow.Cell{Gas: argon.Ideal(), Volume: 120e-6, Wall: 293.15}, Ambient: 1.013 * unit.Bar},
+		Rise:  0.2e5, Fall: 0.4e5,
+	}}
+	_, sum, err := site.Estimate(p, 1.013*unit.Bar)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if math.Abs(float64(sum.Air)-1e-3) > 1e-12 {
+		t.Errorf("three cycles by ten leave %v of air, want 0.001", float64(sum.Air))
+	}
+	site.Supply = 1e-5 // of argon 5.0
+	if _, sum, err = site.Estimate(p, 1.013*unit.Bar); err != nil || float64(sum.Air) < 1e-3 || float64(sum.Air) > 1e-3+1.1e-5 {
+		t.Errorf("with air in the cylinder %v, %v", float64(sum.Air), err)
+	}
+}
+
 func FuzzParse(f *testing.F) {
 	f.Add([]byte("[procedure]\nname = \"x\"\n[[step]]\ndo = \"scan\"\npressures = [\"7 bar\"]\ndwell = \"1 s\"\n"))
 	f.Add([]byte("[procedure]\nname = \"x\"\n[[step]]\ndo = \"purge\"\ncycles = 3\nlow = \"5 mbar\"\nhigh = \"3 bar\"\n"))

@@ -12,12 +12,13 @@ import (
 // deadbands decides which readings go into the record, see logbook.Deadband.
 type deadbands struct {
 	heartbeat time.Duration
+	capture   time.Duration
 	band      [reading.RoleCount]float64 // SI unit of the role
 	channel   map[string]*logbook.Deadband
 }
 
-func newDeadbands(b *bench.Bench) *deadbands {
-	d := &deadbands{heartbeat: b.Logbook.Heartbeat.Duration(), channel: make(map[string]*logbook.Deadband)}
+func newDeadbands(b *bench.Bench, capture time.Duration) *deadbands {
+	d := &deadbands{capture: capture, heartbeat: b.Logbook.Heartbeat.Duration(), channel: make(map[string]*logbook.Deadband)}
 	for role := range d.band {
 		switch reading.Role(role) {
 		case reading.CellAPressure, reading.CellBPressure, reading.ManifoldPressure, reading.SupplyPressure,
@@ -41,6 +42,7 @@ func (d *deadbands) due(r reading.Reading) (live.ReadingData, bool) {
 	band := d.channel[r.Channel]
 	if band == nil {
 		band = &logbook.Deadband{Width: d.band[r.Role], Heartbeat: d.heartbeat}
+		band.CaptureUntil(d.capture)
 		d.channel[r.Channel] = band
 	}
 	if !band.Due(r) {

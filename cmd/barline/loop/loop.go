@@ -53,6 +53,7 @@ type Options struct {
 	Folder    string // where the logbook is
 	Simulated bool
 	ReadOnly  bool
+	Capture   time.Duration // bench time for which every reading is recorded
 	Bell      func()
 	Seen      func(live.Event) // every event before it is folded, for a capture of all
 	Call      func(live.Call)  // must not block
@@ -86,7 +87,7 @@ type Loop struct {
 func New(opt Options) *Loop {
 	l := &Loop{
 		opt: opt, queue: newQueue(), state: opt.State,
-		history: newHistory(), records: newDeadbands(opt.Bench), changed: make(chan struct{}, 1),
+		history: newHistory(), records: newDeadbands(opt.Bench, opt.Capture), changed: make(chan struct{}, 1),
 	}
 	l.state.Now, l.state.Record = opt.Clock.Now(), opt.Book.Health()
 	l.gate = &gate{book: opt.Book, wire: opt.Wire, answer: l.Answer, now: opt.Clock.Now}
@@ -223,6 +224,9 @@ func (l *Loop) handle(e live.Event) {
 			if err := l.record(f.At, f.Kind, f.Data); err != nil && f.Sync {
 				unrecorded = err
 			}
+			if row, ok := f.Data.(live.StepData); ok {
+				l.history.row(row)
+			}
 		case live.SendSetpoint:
 			if unrecorded != nil {
 				l.Answer(f.Command, fmt.Errorf("not sent: it could not be recorded: %w", unrecorded), l.opt.Clock.Now())
@@ -270,6 +274,9 @@ func (l *Loop) Tell(e live.Told) { l.queue.push(e) }
 // Line shows a line of a record that was written elsewhere. It is for those
 // who drive the loop by Turn.
 func (l *Loop) Line(at reading.Stamp, kind, text string) { l.history.text(at, kind, text) }
+
+// Row shows a row of a scan that was recorded elsewhere, as Line does.
+func (l *Loop) Row(r live.StepData) { l.history.row(r) }
 
 // State returns a copy of the experiment. It is for those who drive the loop
 // by Turn.

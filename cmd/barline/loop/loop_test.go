@@ -249,7 +249,7 @@ func TestQueueRefusesReadingsButNothingElse(t *testing.T) {
 func TestDeadbandKeepsSteadyReadingsOutOfTheRecord(t *testing.T) {
 	b := testBench()
 	b.Logbook.DeadbandPressure = 2 * unit.Millibar
-	d := newDeadbands(b)
+	d := newDeadbands(b, 0)
 	written := 0
 	for i := range 601 { // a minute at 10 Hz, within ±1 mbar
 		r := reading.Reading{Channel: "cell A", Role: reading.CellAPressure, Status: reading.Good,

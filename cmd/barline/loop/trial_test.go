@@ -556,6 +556,9 @@ func TestScanCompletes(t *testing.T) {
 				rows++
 			}
 		}
+		if shown := len(tr.loop.Snapshot().Rows); shown != 41 {
+			tr.fail("the screen has %d rows, want 41", shown)
+		}
 		if s := tr.loop.Snapshot(); s.Outcome != live.Completed || rows != 41 {
 			tr.fail("the scan ended in %v (%s) with %d rows, want 41", s.Mode, s.Why, rows)
 		}
