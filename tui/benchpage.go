@@ -123,8 +123,8 @@ func drawVerdicts(a frame.Area, s *live.Snapshot) {
 	if broken > 0 || !p.Valid {
 		return
 	}
-	if p.ZeroDispersionCount > 0 {
-		x = a.Text(x, 0, "zero dispersion "+fixed(p.ZeroDispersion[0].Nanometres(), 1)+" nm", frame.Faint) + 3
+	if zero, ok := zeroDispersion(s); ok {
+		x = a.Text(x, 0, "zero dispersion "+fixed(zero.Nanometres(), 1)+" nm", frame.Faint) + 3
 	}
 	if p.SolitonOrder > 0 {
 		x = a.Text(x, 0, "soliton order "+fixed(p.SolitonOrder, 1), frame.Faint) + 3
@@ -250,4 +250,20 @@ func drawResidual(a frame.Area, s *live.Snapshot, v view) {
 
 func blank(a frame.Area, why string) {
 	a.Text(max(yLabel+2, (a.W-a.Width(why))/2), a.H/2, why, frame.Faint)
+}
+
+// zeroDispersion returns the zero-dispersion wavelength that the pulse meets:
+// of several, the nearest one on the short-wave side of the pump.
+func zeroDispersion(s *live.Snapshot) (nearest unit.Metre, ok bool) {
+	p := &s.Prediction
+	pump := unit.Metre(math.Inf(1))
+	if s.Bench != nil && s.Bench.Pulse.Wavelength > 0 {
+		pump = s.Bench.Pulse.Wavelength
+	}
+	for i := range min(p.ZeroDispersionCount, len(p.ZeroDispersion)) { // ascending
+		if z := p.ZeroDispersion[i]; z < pump {
+			nearest, ok = z, true
+		}
+	}
+	return nearest, ok
 }
