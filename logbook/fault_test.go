@@ -76,7 +76,7 @@ func TestDiskTroubleAndBack(t *testing.T) {
 						default:
 							t.Fatal(err)
 						}
-						time.Sleep(10 * time.Millisecond)
+						<-time.After(10 * time.Millisecond)
 					}
 				}
 				run(2)
@@ -102,7 +102,7 @@ func TestDiskTroubleAndBack(t *testing.T) {
 				if faulty.set(nil); c.mend != nil {
 					c.mend(d, &faulty)
 				}
-				time.Sleep(1500 * time.Millisecond)
+				<-time.After(1500 * time.Millisecond)
 				if h := b.Health(); !h.Writing || h.Reason != "" {
 					t.Errorf("mended: %+v", h)
 				}
@@ -160,19 +160,19 @@ func TestSlowDisk(t *testing.T) {
 		if time.Since(before) != 0 {
 			t.Error("append waited")
 		}
-		time.Sleep(3 * time.Second)
+		<-time.After(3 * time.Second)
 		if h := b.Health(); h.Writing || !strings.Contains(h.Reason, "not answered") || h.Waiting != 100 {
 			t.Errorf("%+v", h)
 		}
 		if err := b.Sync(); !errors.Is(err, ErrNotDurable) {
 			t.Errorf("sync that takes longer than its time: %v", err)
 		}
-		time.Sleep(20 * time.Second)
+		<-time.After(20 * time.Second)
 		if h := b.Health(); !h.Writing || h.Written != 100 {
 			t.Errorf("%+v", h)
 		}
 		b.Close()
-		time.Sleep(time.Minute)
+		<-time.After(time.Minute)
 	})
 }
 
@@ -202,7 +202,7 @@ type slowFile struct {
 }
 
 func (f slowFile) Sync() error {
-	time.Sleep(f.wait)
+	<-time.After(f.wait)
 	return f.memFile.Sync()
 }
 
