@@ -58,6 +58,18 @@ type (
 		Planned  int     `json:"planned"`
 		LeftOutM float64 `json:"left_out_m"` // rms error at nodes left out; 0 where not known
 	}
+	// RiseData is what a leak test showed. Flows are positive into the volume.
+	RiseData struct {
+		Verdict         string  `json:"verdict"`
+		Text            string  `json:"text,omitempty"`
+		Readings        int     `json:"readings"`
+		TotalPaM3S      float64 `json:"total_Pa_m3_s"`
+		TotalSigma      float64 `json:"total_sigma_Pa_m3_s"`
+		LeakPaM3S       float64 `json:"leak_Pa_m3_s"`
+		LeakSigma       float64 `json:"leak_sigma_Pa_m3_s"`
+		OutgassingPaM3S float64 `json:"outgassing_Pa_m3_s"`
+		OutgassingSigma float64 `json:"outgassing_sigma_Pa_m3_s"`
+	}
 	// NoteData is a remark.
 	NoteData struct {
 		Text string `json:"text"`
@@ -78,21 +90,22 @@ type (
 	}
 	// StepData is one row of a run of pressure steps.
 	StepData struct {
-		Program      string   `json:"program"`
-		Step         int      `json:"step"` // phase of the program, from 1
-		Label        string   `json:"label"`
-		SetPa        float64  `json:"set_Pa"`
-		MeasuredPa   float64  `json:"measured_Pa"`
-		CorePa       float64  `json:"core_Pa"`
-		TemperatureK float64  `json:"temperature_K"`
-		EnergyJ      float64  `json:"energy_J"`
-		PredictedM   *float64 `json:"predicted_m"`
-		MeasuredM    *float64 `json:"measured_m"`
-		ResidualM    *float64 `json:"residual_m"`
-		ScatterM     float64  `json:"scatter_m"` // standard deviation of one measured emission
-		Samples      int      `json:"samples"`   // of the measured emission
-		SigmaM       float64  `json:"sigma_m"`
-		Status       string   `json:"status"`
+		Program      string    `json:"program"`
+		Step         int       `json:"step"` // phase of the program, from 1
+		Label        string    `json:"label"`
+		SetPa        float64   `json:"set_Pa"`
+		MeasuredPa   float64   `json:"measured_Pa"`
+		CorePa       float64   `json:"core_Pa"`
+		TemperatureK float64   `json:"temperature_K"`
+		EnergyJ      float64   `json:"energy_J"`
+		PredictedM   *float64  `json:"predicted_m"`
+		MeasuredM    *float64  `json:"measured_m"`
+		ResidualM    *float64  `json:"residual_m"`
+		ScatterM     float64   `json:"scatter_m"` // standard deviation of one measured emission
+		Samples      int       `json:"samples"`   // of the measured emission
+		SigmaM       float64   `json:"sigma_m"`
+		Status       string    `json:"status"`
+		Rise         *RiseData `json:"rise,omitempty"` // of a leak test
 	}
 )
 

@@ -130,6 +130,7 @@ type progress struct {
 	emission  mean          // m, while dwelling
 	residual  mean          // m
 	pressure  mean          // Pa, cell A
+	rise      riseLog       // Isolate
 }
 
 func (p *progress) active() bool { return p.program != nil }

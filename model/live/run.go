@@ -181,7 +181,11 @@ func (c *Core) row(s *State, fx []Effect) []Effect {
 	if !s.run.phase().Row {
 		return fx
 	}
-	return append(fx, Record{At: s.Now, Kind: KindStep, Data: c.stepData(s), Sync: true})
+	d := c.stepData(s)
+	if s.Mode == Isolated {
+		d.Rise = c.judgeRise(s)
+	}
+	return append(fx, Record{At: s.Now, Kind: KindStep, Data: d, Sync: true})
 }
 
 // sample adds a reading to the row that is being measured.
@@ -199,6 +203,9 @@ func (c *Core) sample(s *State, r reading.Reading) {
 	switch r.Role {
 	case reading.CellAPressure:
 		s.run.pressure.add(r.Value)
+		if s.Mode == Isolated {
+			c.watchRise(s, r)
+		}
 	case reading.Emission:
 		s.run.emission.add(r.Value)
 		if s.ResidualAt == r.Taken.Mono {

@@ -85,6 +85,9 @@ func (d PredictionData) String() string {
 // String returns the row in words.
 func (d StepData) String() string {
 	text := fmt.Sprintf("%s %d (%s): set %v, measured %v", d.Program, d.Step, d.Label, unit.Pascal(d.SetPa), unit.Pascal(d.MeasuredPa))
+	if d.Rise != nil {
+		return text + "; " + d.Rise.String()
+	}
 	if d.PredictedM != nil {
 		text += fmt.Sprintf(", predicted %.2f nm", *d.PredictedM*1e9)
 	}
@@ -95,4 +98,12 @@ func (d StepData) String() string {
 		text += fmt.Sprintf(", residual %+.2f nm over %d readings", *d.ResidualM*1e9, d.Samples)
 	}
 	return text
+}
+
+// String returns the verdict of a leak test in words.
+func (d RiseData) String() string {
+	if d.Text != "" {
+		return d.Text
+	}
+	return "no verdict: " + d.Verdict
 }

@@ -529,6 +529,47 @@ func TestTuneAndHold(t *testing.T) {
 	}
 }
 
+// A leak test tells a bench that leaks from one that does not, by its own
+// record.
+func TestLeakTest(t *testing.T) {
+	for _, c := range []struct {
+		name  string
+		fault *simulate.Fault
+		leaks bool
+	}{
+		{"tight", nil, false},
+		{"leaking", &simulate.Fault{Kind: simulate.Leak, Size: 0.5}, true},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			tr := newTrial(t, 3, 9*unit.Bar)
+			if c.fault != nil {
+				if err := tr.sim.Inject(*c.fault); err != nil {
+					t.Fatal(err)
+				}
+			}
+			for tr.clk.Now().Mono < 4*time.Second {
+				tr.turn()
+			}
+			tr.ask(live.Arm{})
+			tr.ask(live.Run{Program: &live.Program{Name: "leak test", Phases: []live.Phase{
+				{Label: "valves shut", Action: live.Isolate, Dwell: 5 * time.Minute, Row: true},
+			}}})
+			for tr.clk.Now().Mono < 6*time.Minute && tr.loop.Snapshot().Outcome == live.NoOutcome {
+				tr.turn()
+			}
+			rows := tr.loop.Snapshot().Rows
+			if len(rows) != 1 || rows[0].Rise == nil {
+				t.Fatalf("rows %v", rows)
+			}
+			rise := rows[0].Rise
+			t.Logf("%v", rise)
+			if leaks := rise.LeakPaM3S < -3*rise.LeakSigma && rise.LeakSigma > 0; leaks != c.leaks {
+				t.Errorf("leak %.3g ± %.1g Pa m3/s, leaking: want %v", rise.LeakPaM3S, rise.LeakSigma, c.leaks)
+			}
+		})
+	}
+}
+
 // A scan up and down with everything in order completes by itself and writes a
 // row a step.
 func TestScanCompletes(t *testing.T) {
