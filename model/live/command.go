@@ -89,6 +89,7 @@ func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 	sp := c.limits.Freeze(last)
 	p, _ := sp.Pressure()
 	s.command++
+	s.heldAt = s.Now.Mono
 	s.Mode, s.Why, s.heldByItself, s.refused = Held, why, why != heldByPerson, false
 	s.ArmedUntil, s.Target, s.Setpoint, s.tuning = 0, 0, p, tuning{}
 	if s.run.active() {

@@ -51,6 +51,11 @@ const (
 	// settledWithin and settledFor say when the gas has reached a target.
 	settledWithin = 20 * unit.Millibar
 	settledFor    = 3 * time.Second
+	// stillWithin is how much a settled pressure may wander in that time.
+	stillWithin = 10 * unit.Millibar
+	// gaugesWithin is the share by which a cell's gauge and the controller's
+	// sensor may differ.
+	gaugesWithin = 0.01
 	// assumedTemperature stands in until a thermometer has spoken; the
 	// prediction then says so by its input.
 	assumedTemperature = unit.Kelvin(295.15)
@@ -138,7 +143,7 @@ func (c *Core) Step(s *State, e Event, fx []Effect) []Effect {
 	case LinkChanged:
 		fx = c.link(s, e, fx)
 	case Asked:
-		fx = c.asked(s, e.Intent, fx)
+		fx = c.asked(s, e.At, e.Intent, fx)
 	case Answered:
 		fx = c.answered(s, e, fx)
 	case RecordChanged:

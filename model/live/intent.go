@@ -4,16 +4,24 @@ import (
 	"fmt"
 	"math"
 	"strings"
+
+	"barline/model/reading"
 )
 
 // asked carries out an intent or refuses it; either is recorded.
-func (c *Core) asked(s *State, in Intent, fx []Effect) []Effect {
+func (c *Core) asked(s *State, at reading.Stamp, in Intent, fx []Effect) []Effect {
 	s.Notice = ""
 	if _, ok := in.(Hold); ok {
 		fx = c.hold(s, heldByPerson, fx)
 		return append(fx, Record{At: s.Now, Kind: KindIntent, Data: IntentData{Intent: "hold"}})
 	}
-	data, err := c.carryOut(s, in, &fx)
+	data, err := IntentData{Intent: verb(in)}, error(nil)
+	if moves(in) && s.heldAt != 0 && at.Mono <= s.heldAt {
+		// Who asked did not know of the HOLD that came in between.
+		err = fmt.Errorf("HOLD came before this was taken: %s", s.Why)
+	} else {
+		data, err = c.carryOut(s, in, &fx)
+	}
 	if err != nil {
 		data.Refused = err.Error()
 		s.Notice = "refused: " + err.Error()
@@ -94,7 +102,7 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		*fx, err = c.tune(s, in, *fx)
 		return data, err
 	case Pause, Resume, Skip, Stop:
-		data.Intent = strings.ToLower(strings.TrimPrefix(fmt.Sprintf("%T", in), "live."))
+		data.Intent = verb(in)
 		if !s.run.active() && s.tuning.base == 0 {
 			return data, fmt.Errorf("no program is under way")
 		}
@@ -140,4 +148,18 @@ func aboutAlarm(in Intent) (verb, name string) {
 		return "unshelve", in.Alarm
 	}
 	return "", ""
+}
+
+// moves reports whether an intent moves gas or makes that possible.
+func moves(in Intent) bool {
+	switch in.(type) {
+	case Arm, GoTo, Run, Resume, Skip, Tune:
+		return true
+	}
+	return false
+}
+
+// verb is what an intent is called where nothing more is known of it.
+func verb(in Intent) string {
+	return strings.ToLower(strings.TrimPrefix(fmt.Sprintf("%T", in), "live."))
 }

@@ -30,7 +30,7 @@ type Phase struct {
 	Action   Action
 	Target   unit.Pascal          // Reach
 	Rate     unit.PascalPerSecond // Reach: at most this and the limits' own; 0 is the limits' own
-	Within   unit.Pascal          // Reach: how near to the target the gas counts as settled; 0 is 20 mbar
+	Within   unit.Pascal          // Reach: how near to the target the gas counts as settled; 0 is 20 mbar or 1 %
 	Patience time.Duration        // Reach: longest wait to settle before HOLD; 0 is 10 min
 	Dwell    time.Duration        // after settling; of Isolate and Stay the whole phase
 	Row      bool                 // write a row of what was measured during the dwell
@@ -97,6 +97,15 @@ func (ph *Phase) within() unit.Pascal {
 		return ph.Within
 	}
 	return settledWithin
+}
+
+// near returns how far from the target the cell's gauge may read in a gas that
+// has settled: what the file says, or what two gauges may differ by.
+func (ph *Phase) near(target unit.Pascal) unit.Pascal {
+	if ph.Within > 0 {
+		return ph.Within
+	}
+	return max(settledWithin, gaugesWithin*target)
 }
 
 func (ph *Phase) patience() time.Duration {

@@ -136,19 +136,22 @@ func (c *Core) proceed(s *State, fx []Effect) []Effect {
 }
 
 // settle watches a gas that is on its way to the target: settled is what has
-// been near to it for a while, in the cell and in the core.
+// been near to it and still for a while, in the cell and in the core. The
+// controller keeps its own sensor at the target, and the cell's gauge may read
+// a little beside that for ever.
 func (c *Core) settle(s *State, fx []Effect) []Effect {
 	ph := s.run.phase()
 	a := s.Reading(reading.CellAPressure, c.stale)
-	near := math.Abs(a.Value-float64(s.Target)) <= float64(ph.within()) && math.Abs(float64(s.Lag)) <= float64(ph.within())
+	near := math.Abs(a.Value-float64(s.Target)) <= float64(ph.near(s.Target)) && math.Abs(float64(s.Lag)) <= float64(ph.within())
+	s.nearLow, s.nearHigh = min(s.nearLow, a.Value), max(s.nearHigh, a.Value)
 	switch {
 	case !near:
 		s.nearSince = 0
 		if s.Now.Mono-s.run.began > ph.patience() {
 			return c.hold(s, fmt.Sprintf("the gas did not settle at %v within %v", s.Target, ph.patience()), fx)
 		}
-	case s.nearSince == 0:
-		s.nearSince = s.Now.Mono
+	case s.nearSince == 0 || s.nearHigh-s.nearLow > float64(stillWithin):
+		s.nearSince, s.nearLow, s.nearHigh = s.Now.Mono, a.Value, a.Value
 	case s.Now.Mono-s.nearSince >= settledFor:
 		s.run.settledAt = s.Now.Mono
 	}

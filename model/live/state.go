@@ -56,21 +56,23 @@ type State struct {
 	refused      bool // an instrument did not take the last command
 	following    bool // another core decides, see Told
 
-	run         progress
-	tuning      tuning
-	outcome     Outcome
-	forecast    flow.Forecast // of the move under way, where forecasting
-	forecasting bool
-	flow        flow.State
-	flowAt      time.Duration
-	lagAt       time.Duration
-	command     uint64        // number of the last command sent
-	awaiting    uint64        // number of the command whose answer is due; 0 where none
-	awaitFrom   time.Duration // when it was sent
-	rampedAt    time.Duration // when the setpoint last moved
-	nearSince   time.Duration // since when the pressure has been at the target; 0 where it is not
-	predicted   time.Duration // when the model was last asked
-	recorded    struct {      // the prediction that last went into the record
+	run               progress
+	tuning            tuning
+	outcome           Outcome
+	forecast          flow.Forecast // of the move under way, where forecasting
+	forecasting       bool
+	flow              flow.State
+	flowAt            time.Duration
+	lagAt             time.Duration
+	command           uint64        // number of the last command sent
+	awaiting          uint64        // number of the command whose answer is due; 0 where none
+	awaitFrom         time.Duration // when it was sent
+	rampedAt          time.Duration // when the setpoint last moved
+	nearSince         time.Duration // since when the pressure has been at the target; 0 where it is not
+	nearLow, nearHigh float64       // Pa, of cell A since then
+	heldAt            time.Duration // when HOLD last came; 0 before the first
+	predicted         time.Duration // when the model was last asked
+	recorded          struct {      // the prediction that last went into the record
 		at       time.Duration
 		emission unit.Metre
 	}
