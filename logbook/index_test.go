@@ -188,7 +188,7 @@ func TestBackgroundCompression(t *testing.T) {
 		}
 		for i := range 1000 {
 			b.Append(stampAt(time.Duration(i)), "reading", reading.Reading{Channel: "cell A", Value: float64(i), Status: reading.Good})
-			time.Sleep(10 * time.Millisecond)
+			<-time.After(10 * time.Millisecond)
 		}
 		if err := b.Close(); err != nil {
 			t.Fatal(err)
@@ -236,7 +236,7 @@ func TestFollow(t *testing.T) {
 			for range 200 {
 				n++
 				b.Append(stampAt(time.Duration(n)), "note", map[string]int{"n": n})
-				time.Sleep(37 * time.Millisecond)
+				<-time.After(37 * time.Millisecond)
 			}
 			synctest.Wait()
 			if len(got) < n-10 {
@@ -246,7 +246,7 @@ func TestFollow(t *testing.T) {
 				t.Fatal(err)
 			}
 		}
-		time.Sleep(time.Second)
+		<-time.After(time.Second)
 		stop()
 		<-done
 		if len(got) != n || len(damage) > 0 {
