@@ -74,7 +74,13 @@ func nearRange(s *live.Snapshot) (x, y chart.Range) {
 func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 	curve := make([]chart.Point, len(s.Curve))
 	low, high := make([]chart.Point, len(s.Curve)), make([]chart.Point, len(s.Curve))
+	var others []chart.Point
 	for i, c := range s.Curve {
+		for _, o := range c.Others {
+			if o > 0 {
+				others = append(others, chart.Point{X: c.Pressure.Bar(), Y: o.Nanometres()})
+			}
+		}
 		bar, nm, sigma := c.Pressure.Bar(), c.Emission.Nanometres(), c.Sigma.Nanometres()
 		if !(c.Emission > 0) {
 			nm = math.NaN()
@@ -112,13 +118,18 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 	p := chart.New(body, chart.Axes{
 		X: x, Y: y, XTicks: chart.Ticks(x, max(2, a.W/8)), YTicks: chart.Ticks(y, rowTicks(body.H)), LabelWidth: 4,
 	})
+	drawResonances(p, s, a.Style().ASCII)
 	if a.Style().ASCII { // without Braille, shading hides the curve
 		p.Dashes(low, frame.Band)
 		p.Dashes(high, frame.Band)
 	} else {
 		p.Band(low, high, frame.Band)
 	}
+	p.Dots(others, frame.Predicted)
 	p.Curve(curve, frame.Predicted)
+	if s.CalibratedTo > s.CalibratedFrom {
+		p.Reach(s.CalibratedFrom.Bar(), s.CalibratedTo.Bar(), frame.Good)
+	}
 	if s.CoreKnown {
 		p.Upright(here.X, frame.Faint)
 	}
@@ -147,6 +158,21 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 	drawMapKey(p.Pane(), s)
 }
 
+// drawResonances shades the wavelengths at which the wall of the fibre
+// resonates: what is predicted near them is not guided.
+func drawResonances(p *chart.Plot, s *live.Snapshot, ascii bool) {
+	for _, r := range s.Resonances {
+		lo, hi := r.From.Nanometres(), r.To.Nanometres()
+		if ascii {
+			p.Level(lo, frame.Rule)
+			p.Level(hi, frame.Rule)
+		} else {
+			p.Stripe(lo, hi, frame.Rule)
+		}
+		p.Label((lo+hi)/2, "wall resonance", frame.Faint)
+	}
+}
+
 // otherBranches are the lobes beside the strongest that the source may emit.
 func otherBranches(s *live.Snapshot) []emission.Branch {
 	p := &s.Prediction
@@ -162,35 +188,44 @@ func drawMapKey(a frame.Area, s *live.Snapshot) {
 	if a.W < 26 || a.H < 8 {
 		return
 	}
-	lines := []struct {
+	type entry struct {
 		mark rune
 		ink  frame.Ink
 		text string
-	}{{'●', frame.Measured, "measured now"}, {'◇', frame.Predicted, "predicted now"}}
+	}
+	lines := []entry{{'●', frame.Measured, "measured now"}, {'◇', frame.Predicted, "predicted now"}}
 	rising, falling := false, false
 	for _, p := range s.Points {
 		rising, falling = rising || p.Rising, falling || !p.Rising
 	}
 	if rising {
-		lines = append(lines, struct {
-			mark rune
-			ink  frame.Ink
-			text string
-		}{'▲', frame.Rising, "rising"})
+		lines = append(lines, entry{'▲', frame.Rising, "rising"})
 	}
 	if falling {
-		lines = append(lines, struct {
-			mark rune
-			ink  frame.Ink
-			text string
-		}{'▼', frame.Falling, "falling"})
+		lines = append(lines, entry{'▼', frame.Falling, "falling"})
 	}
-	y := a.H - len(lines)
+	if branched(s) {
+		lines = append(lines, entry{'⠒', frame.Predicted, "weaker branch"})
+	}
+	if s.CalibratedTo > s.CalibratedFrom {
+		lines = append(lines, entry{'⣀', frame.Good, "calibrated"})
+	}
+	y := a.H - len(lines) - 1 // the lowest row holds the reach of the calibration
 	a.Sub(a.W-17, y, 17, len(lines)).Fill(' ', frame.Plain)
 	for i, l := range lines {
 		a.Set(a.W-16, y+i, l.mark, l.ink)
 		a.Text(a.W-14, y+i, l.text, frame.Faint)
 	}
+}
+
+// branched reports whether a second branch is predicted anywhere.
+func branched(s *live.Snapshot) bool {
+	for _, c := range s.Curve {
+		if c.Others[0] > 0 {
+			return true
+		}
+	}
+	return false
 }
 
 // drawRecent shows the last lines of the record, newest at the bottom.
@@ -201,6 +236,6 @@ func drawRecent(a frame.Area, s *live.Snapshot) {
 	}
 	n := min(len(s.Recent), a.H-1)
 	for i, line := range s.Recent[len(s.Recent)-n:] {
-		a.Text(2, 1+i, line, frame.Plain)
+		a.Text(2, 1+i, lineText(line, a.Style()), frame.Plain)
 	}
 }

@@ -23,6 +23,10 @@ func drawHead(a frame.Area, s *live.Snapshot, v view) {
 }
 
 func drawTitle(a frame.Area, s *live.Snapshot, v view) {
+	if s.Replay != "" {
+		drawReplayTitle(a, s, v)
+		return
+	}
 	name, gas := "bench", ""
 	if s.Bench != nil {
 		if s.Bench.Bench.Name != "" {
@@ -48,6 +52,9 @@ func drawTitle(a frame.Area, s *live.Snapshot, v view) {
 		clock = s.Now.UTC.In(a.Style().Location()).Format("15:04:05 MST")
 	}
 	right := a.Right(a.W-1, 0, clock, frame.Plain)
+	if s.ReadOnly {
+		return // the record is another program's, and how it fares is known there
+	}
 	text, ink := recordText(s)
 	if a.Width(text) > right-3-x {
 		text = strings.Replace(text, " recording ·", "", 1)
@@ -56,6 +63,32 @@ func drawTitle(a frame.Area, s *live.Snapshot, v view) {
 		text = shortRecord(s)
 	}
 	a.Sub(x, 0, right-2-x, 1).Right(right-2-x, 0, text, ink)
+}
+
+// drawReplayTitle fills the line, so that what is over is never taken for what
+// is happening.
+func drawReplayTitle(a frame.Area, s *live.Snapshot, v view) {
+	a.Fill(' ', frame.Past)
+	text := "REPLAY, not live: " + s.Replay
+	if v.frozen != nil {
+		text += ", charts frozen"
+	}
+	x := a.Text(1, 0, text, frame.Past) + 2
+	when := "--:--:--"
+	if !s.Now.UTC.IsZero() {
+		when = s.Now.UTC.In(a.Style().Location()).Format("2006-01-02 15:04:05 MST")
+	}
+	right := a.Right(a.W-1, 0, when, frame.Past) - 2
+	if s.Bench == nil {
+		return
+	}
+	who := s.Bench.Bench.Name
+	if s.Simulated {
+		who += ", simulated"
+	}
+	if x+a.Width(who) <= right {
+		a.Right(right, 0, who, frame.Past)
+	}
 }
 
 // recordText says how the logbook fares.
@@ -128,6 +161,8 @@ func drawMode(a frame.Area, s *live.Snapshot) {
 	if why == "" || why == modeText(s.Mode) {
 		why = ""
 		switch {
+		case s.Mode == live.Watching && s.Replay != "":
+			why = "nothing moved the gas"
 		case s.Mode == live.Watching && s.ReadOnly:
 			why = "a second screen: nothing can be commanded from here"
 		case s.Mode == live.Watching:
@@ -329,10 +364,15 @@ func drawSmall(a frame.Area, s *live.Snapshot, v view) {
 			y++
 		}
 	}
+	if s.Replay != "" {
+		line("REPLAY, not live", frame.Past)
+	}
 	p, mark, ink := mainPressure(s)
 	line(p+" "+mark, ink)
 	key := " · Tab: HOLD"
-	if s.ReadOnly {
+	if s.Replay != "" {
+		key = " then"
+	} else if s.ReadOnly {
 		key = " · HOLD at the first screen"
 	}
 	line(strings.ToUpper(modeText(s.Mode))+key, modeInk(s))
@@ -342,7 +382,7 @@ func drawSmall(a frame.Area, s *live.Snapshot, v view) {
 	if al, count := worst(s); count > 0 {
 		line("▲ "+al.Name, frame.Banner)
 	}
-	if !s.Record.Writing {
+	if !s.Record.Writing && !s.ReadOnly {
 		line("✕ NOT RECORDED", frame.Alarm)
 	}
 	if e := show(s, reading.Emission); fitted(s, reading.Emission) {

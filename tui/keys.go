@@ -16,10 +16,19 @@ type binding struct {
 	press func(v view, s *live.Snapshot, key string) (view, []live.Intent)
 
 	screen bool // concerns the screen alone
+	replay bool // steers a replay, and is there for nothing else
 }
 
 // quit is the intent of leaving, which Run takes for itself.
 type quit struct{ live.Intent }
+
+// Steer is what a replay is asked for: ' ' to pause or go on, '.' for one
+// second, '>' and '<' to go a minute on and back, ']' and '[' for twice and
+// half the speed. Only a source whose snapshots say Replay is given it.
+type Steer struct {
+	live.Intent
+	Key rune
+}
 
 var bindings = []binding{
 	{key: "tab", label: "Tab", short: "HOLD", what: "HOLD: always, without asking", press: pressHold},
@@ -34,6 +43,9 @@ var bindings = []binding{
 	{key: "k", label: "k", short: "seen", what: "the alarm on top is seen", press: pressSeen},
 	{key: "l", label: "l", short: "alarms", what: "list of alarms", press: pressAlarms},
 	{key: "w", also: []string{"e"}, label: "w e", what: "listed alarm: aside, reset", press: pressListed},
+	{key: " ", also: []string{"."}, label: "Space .", short: "pause, a second on", what: "replay: pause, one second on", replay: true, press: pressSteer},
+	{key: "<", also: []string{">"}, label: "< >", short: "a minute", what: "replay: a minute back, on", replay: true, press: pressSteer},
+	{key: "[", also: []string{"]"}, label: "[ ]", short: "speed", what: "replay: half, twice the speed", replay: true, press: pressSteer},
 	{key: "q", label: "q", short: "leave", what: "HOLD and leave, asks once", press: pressLeave},
 	{key: "ctrl+c", label: "Ctrl-C", what: "HOLD and leave at once", press: pressLeaveNow},
 	{key: "1", also: []string{"2", "3", "4"}, label: "1–4", what: "bench, scan, drift, log", screen: true, press: pressPage},
@@ -90,8 +102,11 @@ func (v view) press(key string, s *live.Snapshot) (view, []live.Intent) {
 		if b.key != key && !contains(b.also, key) {
 			continue
 		}
+		if b.replay && s.Replay == "" {
+			continue
+		}
 		if b.gas && s.ReadOnly {
-			v.message = "this is a second screen: nothing can be commanded from here"
+			v.message = elsewhere(s)
 			return v, nil
 		}
 		return b.press(v, s, key)
@@ -111,7 +126,10 @@ func contains(list []string, s string) bool {
 func pressHold(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	v = v.open(noOverlay)
 	if s.ReadOnly {
-		v.message = "this is a second screen: HOLD must be pressed at the first"
+		v.message = "this is a second screen: press HOLD at the first"
+		if s.Replay != "" {
+			v.message = elsewhere(s)
+		}
 		return v, nil
 	}
 	return v, []live.Intent{live.Hold{}}
@@ -150,7 +168,7 @@ func pressSetpoint(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 
 func pressMark(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	if s.ReadOnly {
-		v.message = "this is a second screen: marks are made at the first"
+		v.message = elsewhere(s)
 		return v, nil
 	}
 	v.message = "marked"
@@ -159,11 +177,28 @@ func pressMark(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 
 func pressNote(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	if s.ReadOnly {
-		v.message = "this is a second screen: notes are written at the first"
+		v.message = elsewhere(s)
 		return v, nil
 	}
 	v = v.open(noteOverlay)
 	return v, nil
+}
+
+// elsewhere says why a screen that only reads does not do what was asked.
+func elsewhere(s *live.Snapshot) string {
+	if s.Replay != "" {
+		return "this is a replay: what it shows is over, nothing can be done about it"
+	}
+	return "this is a second screen: do that at the first"
+}
+
+// shown reports whether the help and the footer name a key.
+func (b *binding) shown(s *live.Snapshot) bool {
+	return !(b.gas && s.ReadOnly) && (!b.replay || s.Replay != "")
+}
+
+func pressSteer(v view, _ *live.Snapshot, key string) (view, []live.Intent) {
+	return v, []live.Intent{Steer{Key: rune(key[0])}}
 }
 
 func pressHelp(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {

@@ -124,15 +124,13 @@ func (v view) chosen(s *live.Snapshot) (live.Alarm, bool) {
 	return al, n > 0
 }
 
-const secondScreen = "this is a second screen: do that at the first"
-
 func pressSeen(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	al, some := v.chosen(s)
 	switch {
 	case !some || al.Acked:
 		v.message = "no alarm to acknowledge"
 	case s.ReadOnly:
-		v.message = secondScreen
+		v.message = elsewhere(s)
 	default:
 		v.message = "seen: " + al.Name
 		return v, []live.Intent{live.Acknowledge{Alarm: al.Name}}
@@ -152,7 +150,7 @@ func pressListed(v view, s *live.Snapshot, key string) (view, []live.Intent) {
 	case v.overlay != alarmOverlay || !some:
 		v.message = "open the list of alarms (l) and choose one first"
 	case s.ReadOnly:
-		v.message = secondScreen
+		v.message = elsewhere(s)
 	case key == "e" && al.Active:
 		v.message = al.Name + " still holds: mend the cause first"
 	case key == "e":

@@ -8,16 +8,25 @@ import (
 	"barline/tui/frame"
 )
 
-// found returns the lines that hold text, whatever their case, or with a minus
-// before it those that do not.
-func found(lines []string, text string) []string {
+// lineText writes a record as one line, its time as every other on the screen.
+func lineText(l live.Line, style frame.Style) string {
+	text := l.At.UTC.In(style.Location()).Format("15:04:05.0") + "  " + string(l.Kind)
+	if l.Text != "" {
+		text += "  " + l.Text
+	}
+	return text
+}
+
+// found returns the lines whose kind or text hold what is looked for, whatever
+// its case, or with a minus before it those that do not.
+func found(lines []live.Line, text string) []live.Line {
 	if text == "" {
 		return lines
 	}
 	text, without := strings.CutPrefix(strings.ToLower(text), "-")
-	var kept []string
+	var kept []live.Line
 	for _, l := range lines {
-		if strings.Contains(strings.ToLower(l), text) != without {
+		if strings.Contains(strings.ToLower(string(l.Kind)+"  "+l.Text), text) != without {
 			kept = append(kept, l)
 		}
 	}
@@ -35,7 +44,7 @@ func drawLog(a frame.Area, s *live.Snapshot, v view) {
 		}
 		x = a.Text(x, 0, text, ink) + 3
 	}
-	x = heading(a.Sub(0, 1, a.W, 1), "record", "times in UTC")
+	x = heading(a.Sub(0, 1, a.W, 1), "record", "")
 	if s.Folder != "" {
 		x = a.Text(x, 1, s.Folder, frame.Faint) + 2
 	}
@@ -53,17 +62,13 @@ func drawLog(a frame.Area, s *live.Snapshot, v view) {
 		blank(a.Sub(0, 2, a.W, rows), "no such line yet")
 	}
 	for i, l := range shown {
-		a.Text(1, 2+i, l, lineInk(l))
+		a.Text(1, 2+i, lineText(l, a.Style()), lineInk(l.Kind))
 	}
 }
 
 // lineInk tells the kinds of record apart; the kind itself stands in the line.
-func lineInk(line string) frame.Ink {
-	fields := strings.Fields(line)
-	if len(fields) < 2 {
-		return frame.Plain
-	}
-	switch live.Kind(fields[1]) {
+func lineInk(kind live.Kind) frame.Ink {
+	switch kind {
 	case live.KindAlarm:
 		return frame.Alarm
 	case live.KindNote:

@@ -19,7 +19,9 @@ const armWord = "arm"
 
 func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 	x := 1
-	if s.ReadOnly {
+	if s.Replay != "" {
+		x = a.Text(0, 0, " REPLAY ", frame.Past) + 2
+	} else if s.ReadOnly {
 		x = a.Text(x, 0, "second screen: HOLD at the first", frame.Caution) + 2
 	} else {
 		x = a.Text(0, 0, " Tab HOLD ", frame.Hold) + 2
@@ -42,7 +44,7 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 	}
 	put("?", "keys")
 	for _, b := range bindings[1:] {
-		if b.short == "" || b.gas && s.ReadOnly || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
+		if b.short == "" || !b.shown(s) || s.ReadOnly && (b.key == "m" || b.key == "n") || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
 			continue
 		}
 		put(b.label, b.short)
@@ -73,7 +75,7 @@ func box(a frame.Area, title string, w, h int, ink frame.Ink) frame.Area {
 func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 	switch v.overlay {
 	case helpOverlay:
-		drawHelp(a)
+		drawHelp(a, s)
 	case armOverlay:
 		drawArming(a, s, v)
 	case setpointOverlay:
@@ -113,7 +115,7 @@ func input(a frame.Area, text string) {
 
 // drawHelp lists every key, those of the bench on the left and those of the
 // screen on the right, and what the marks mean.
-func drawHelp(a frame.Area) {
+func drawHelp(a frame.Area, s *live.Snapshot) {
 	legend := []struct {
 		mark, text string
 		ink        frame.Ink
@@ -125,12 +127,18 @@ func drawHelp(a frame.Area) {
 	}
 	rows := [2]int{}
 	for _, k := range bindings {
+		if !k.shown(s) {
+			continue
+		}
 		rows[column(k)]++
 	}
 	most := max(rows[0], rows[1])
 	b := box(a, "keys", 76, most+len(legend), frame.Rule)
 	y := [2]int{}
 	for _, k := range bindings {
+		if !k.shown(s) {
+			continue
+		}
 		side := column(k)
 		half := b.Sub(side*37, 0, 39, b.H)
 		ink := frame.Keys

@@ -47,7 +47,7 @@ func odd(t *rapid.T) *live.Snapshot {
 		m := number("row")
 		s.Rows = append(s.Rows, live.StepData{SetPa: number("set"), CorePa: number("rc"), ResidualM: &m, MeasuredM: &m, SigmaM: number("rs"), Status: rapid.String().Draw(t, "rst")})
 		s.Alarms = append(s.Alarms, live.Alarm{Name: rapid.String().Draw(t, "al"), Cause: rapid.String().Draw(t, "ac"), Active: rapid.Bool().Draw(t, "aa")})
-		s.Recent = append(s.Recent, rapid.String().Draw(t, "line"))
+		s.Recent = append(s.Recent, live.Line{Kind: live.Kind(rapid.String().Draw(t, "kind")), Text: rapid.String().Draw(t, "line")})
 		s.Links = append(s.Links, live.LinkHealth{Instrument: rapid.String().Draw(t, "in"), Reason: rapid.String().Draw(t, "lr")})
 		s.Marks = append(s.Marks, live.Mark{At: time.Duration(rapid.Int64().Draw(t, "mark")), Kind: live.KindNote})
 	}

@@ -36,10 +36,6 @@ type Options struct {
 	In    io.Reader // nil is the standard input
 	Out   io.Writer // nil is the standard output
 	Plain bool      // begin without charts, for slow lines
-	// Keys is offered every key that is no text of a form, before the pages
-	// see it, and reports whether it took it; nil takes none. A replay is
-	// steered through it.
-	Keys func(key string) bool
 }
 
 const (
@@ -64,7 +60,7 @@ func Run(ctx context.Context, src Source, o Options) error {
 	}
 	inner, end := context.WithCancel(ctx)
 	defer end()
-	m := &model{ctx: inner, src: src, keys: o.Keys, style: o.Style, s: src.Snapshot(), moved: time.Now()}
+	m := &model{ctx: inner, src: src, style: o.Style, s: src.Snapshot(), moved: time.Now()}
 	m.v.plain = o.Plain
 	if m.s != nil && m.s.Simulated {
 		m.v.message = "new here? h shows how to begin"
@@ -121,7 +117,6 @@ func StyleFor(screen bench.Screen, getenv func(string) string) (Style, error) {
 type model struct {
 	ctx   context.Context
 	src   Source
-	keys  func(key string) bool
 	style Style
 	w, h  int
 	v     view
@@ -233,9 +228,6 @@ func (m *model) key(msg tea.KeyMsg) tea.Cmd {
 		return nil
 	}
 	for _, name := range names(msg) {
-		if m.keys != nil && !m.v.typing() && m.keys(name) {
-			continue
-		}
 		var intents []live.Intent
 		m.v, intents = m.v.press(name, s)
 		for _, in := range intents {

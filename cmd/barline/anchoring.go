@@ -43,7 +43,7 @@ func (g *guided) curve(dst []emission.CurvePoint, most unit.Pascal, in emission.
 	for i := range dst {
 		in.Pressure = most * unit.Pascal(i) / unit.Pascal(max(len(dst)-1, 1))
 		before = g.Predict(in, &before)
-		dst[i] = emission.CurvePoint{Pressure: in.Pressure, Emission: before.Emission, Sigma: before.Sigma}
+		dst[i] = before.Point()
 	}
 }
 

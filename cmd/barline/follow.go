@@ -97,7 +97,7 @@ func (r *replay) followOn(ctx context.Context, records <-chan logbook.Record, re
 			r.player.advance(playerTick)
 		}
 		s := *r.player.loop.Snapshot()
-		s.ReadOnly = true
+		s.ReadOnly, s.Simulated = true, r.player.simulated
 		if r.stopped {
 			s.Notice = "the program that wrote this record has ended"
 		}

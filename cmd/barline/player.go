@@ -22,6 +22,8 @@ type player struct {
 	last   time.Time // UTC of the last record
 	loop   *loop.Loop
 	latest map[string]reading.Reading
+
+	simulated bool // as the record says of itself
 }
 
 // shutBook is a logbook that takes nothing: what is played is written already.
@@ -61,7 +63,7 @@ func (p *player) configure(text []byte, at time.Time) error {
 		Curve: func(in emission.Input, dst []emission.CurvePoint) {
 			curve.Curve(dst, 0, s.core.Limits().Lowest().Max, in)
 		},
-		Folder: p.folder, ReadOnly: true,
+		Folder: p.folder, ReadOnly: true, Resonances: resonances(s.predictor),
 	})
 	return nil
 }
@@ -75,6 +77,13 @@ func (p *player) take(r logbook.Record) error {
 		}
 		p.last = r.UTC
 		return p.configure([]byte(d.Text), r.UTC)
+	}
+	if r.Kind == string(live.KindStart) {
+		var d startData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.simulated = d.Simulated
 	}
 	if p.loop == nil {
 		return nil // nothing is known of the bench yet
@@ -116,7 +125,7 @@ func (p *player) take(r logbook.Record) error {
 		p.loop.Row(d)
 	}
 	if r.Kind != string(live.KindPrediction) {
-		p.loop.Line(at, r.Kind, recordText(r))
+		p.loop.Line(at, live.Kind(r.Kind), recordText(r))
 	}
 	return nil
 }

@@ -100,7 +100,7 @@ func (f replayFlags) run(ctx context.Context, dir string, stdout, stderr io.Writ
 	defer cancel()
 	played := make(chan error, 1)
 	go func() { played <- r.play(ctx) }()
-	err = tui.Run(ctx, r, tui.Options{Style: style, Keys: r.key})
+	err = tui.Run(ctx, r, tui.Options{Style: style})
 	cancel()
 	if playErr := <-played; err == nil {
 		err = playErr
@@ -133,23 +133,20 @@ func (r *replay) Snapshot() *live.Snapshot { return r.shown() }
 // Changed implements tui.Source.
 func (r *replay) Changed() <-chan struct{} { return r.changed }
 
-// Do implements tui.Source: what is over cannot be commanded.
-func (r *replay) Do(live.Intent) {}
+// Do implements tui.Source: what is over cannot be commanded, but the player
+// can be steered.
+func (r *replay) Do(in live.Intent) {
+	steer, ok := in.(tui.Steer)
+	if !ok {
+		return
+	}
+	select {
+	case r.control <- steer.Key:
+	default:
+	}
+}
 
 func (r *replay) shown() *live.Snapshot { return r.snap.Load() }
-
-// key takes the keys that steer the player and reports whether it was one.
-func (r *replay) key(key string) bool {
-	switch key {
-	case " ", ".", ">", "<", "]", "[":
-		select {
-		case r.control <- rune(key[0]):
-		default:
-		}
-		return true
-	}
-	return false
-}
 
 // start plays in one stride up to the time to begin at, at least to the first
 // reading, and reports whether there is anything to show.
@@ -197,12 +194,12 @@ func (r *replay) rewind() {
 // publish shows the newest picture with what the player itself has to say.
 func (r *replay) publish(said string) {
 	s := *r.player.loop.Snapshot()
-	s.ReadOnly, s.Notice = true, fmt.Sprintf("replay of %s, %g × life", r.player.last.Format(time.RFC3339), r.speed)
+	s.ReadOnly, s.Simulated, s.Replay = true, r.player.simulated, fmt.Sprintf("%g × life", r.speed)
 	if r.paused {
-		s.Notice += ", paused"
+		s.Replay += ", paused"
 	}
 	if said != "" {
-		s.Notice += ", " + said
+		s.Replay += ", " + said
 	}
 	r.snap.Store(&s)
 	select {

@@ -113,7 +113,7 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		},
 		Bell:   s.bell,
 		Call:   calls.call,
-		Folder: s.folder, Simulated: s.simulated, Capture: s.capture,
+		Folder: s.folder, Simulated: s.simulated, Capture: s.capture, Resonances: resonances(s.predictor),
 	})
 	w.answer = l.Answer
 
@@ -237,6 +237,15 @@ func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []b
 		lines = append(lines, r)
 	}
 	return lines, nil
+}
+
+// resonances returns the gaps of the fibre as a screen shows them.
+func resonances(p *emission.Predictor) []live.Span {
+	var spans []live.Span
+	for _, g := range p.Resonances() {
+		spans = append(spans, live.Span{From: g.From, To: g.To})
+	}
+	return spans
 }
 
 // lent is a logbook as the loop knows it.

@@ -13,7 +13,7 @@ func (p *Predictor) Curve(dst []CurvePoint, from, to unit.Pascal, in Input) {
 			in.Pressure = from + (to-from)*unit.Pascal(i)/unit.Pascal(len(dst)-1)
 		}
 		before = p.Predict(in, &before)
-		dst[i] = CurvePoint{Pressure: in.Pressure, Emission: before.Emission, Sigma: before.Sigma}
+		dst[i] = before.Point()
 	}
 }
 

@@ -102,4 +102,16 @@ type CurvePoint struct {
 	Pressure unit.Pascal
 	Emission unit.Metre // 0 where none is predicted
 	Sigma    unit.Metre
+	// Others are further lobes that the source may emit, strongest first; 0
+	// where there are no more.
+	Others [MaxBranches - 1]unit.Metre
+}
+
+// Point returns the prediction as a point of a curve.
+func (p *Prediction) Point() CurvePoint {
+	c := CurvePoint{Pressure: p.Input.Pressure, Emission: p.Emission, Sigma: p.Sigma}
+	for i := 1; i < min(p.BranchCount, MaxBranches); i++ {
+		c.Others[i-1] = p.Branches[i].Emission
+	}
+	return c
 }

@@ -112,6 +112,18 @@ func electronTable(m *gas.Medium, f *fibre.Fibre, s Setup) (*ionise.Table, error
 	return ionise.NewTable(rate, ionise.Profile{Order: order, Zero: u}, averaging), nil
 }
 
+// Resonances returns the stretches of wavelength in which the wall of the
+// fibre resonates and guides nothing, longest first, for gas of 1 bar: other
+// pressures move them by less than can be seen on a chart.
+func (p *Predictor) Resonances() []fibre.Band {
+	state, err := p.medium.At(1e5, 293.15, 0)
+	if err != nil {
+		return nil
+	}
+	g := fibre.Guide{Fibre: p.fibre, Gas: state}
+	return g.Gaps()
+}
+
 // Clone returns a predictor of the same setup for another goroutine. It shares
 // what never changes.
 func (p *Predictor) Clone() *Predictor {

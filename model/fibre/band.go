@@ -85,6 +85,25 @@ func (g *Guide) Bands(dst *[MaxBands]Band) int {
 	return n
 }
 
+// Gaps returns the stretches in which a resonance of the wall keeps the fibre
+// from guiding, margins included, longest wavelengths first. A capillary has
+// none.
+func (g *Guide) Gaps() []Band {
+	if g.Fibre.spec.Kind != Antiresonant {
+		return nil
+	}
+	var gaps []Band
+	for m := 1; m < MaxBands; m++ {
+		lambda, ok := g.resonance(m)
+		if !ok {
+			break
+		}
+		margin := unit.Metre(g.Fibre.spec.Margin) * lambda
+		gaps = append(gaps, Band{lambda - margin, lambda + margin})
+	}
+	return gaps
+}
+
 // CutOff returns the vacuum wavelength beyond which the fibre guides nothing:
 // n_eff² of the plain capillary form falls below zero.
 func (g *Guide) CutOff() unit.Metre {

@@ -206,5 +206,13 @@ func TestResonances(t *testing.T) {
 				t.Errorf("at %g of resonance %d: %v", x, m, r)
 			}
 		}
+		gap := g.Gaps()[m-1]
+		if low, high := gap.From/lambda, gap.To/lambda; math.Abs(float64(low)-0.97) > 1e-12 || math.Abs(float64(high)-1.03) > 1e-12 {
+			t.Errorf("gap %d reaches from %g to %g of its resonance, want 3 %% to each side", m, low, high)
+		}
+	}
+	bore := guide(t, thick, gas.Spec{Composition: "argon"}, 9e5, 293.15)
+	if gaps := bore.Gaps(); gaps != nil {
+		t.Errorf("a capillary has gaps at %v", gaps)
 	}
 }

@@ -72,6 +72,16 @@ type Mark struct {
 	Kind Kind
 }
 
+// Line is one record as a screen lists it.
+type Line struct {
+	At   reading.Stamp
+	Kind Kind
+	Text string
+}
+
+// Span is a stretch of wavelengths in vacuum.
+type Span struct{ From, To unit.Metre }
+
 // Snapshot is all that a screen draws. It is built by the loop, never changed
 // afterwards, and shares no memory with the core.
 type Snapshot struct {
@@ -103,12 +113,18 @@ type Snapshot struct {
 
 	Curve  []emission.CurvePoint // ascending in pressure
 	Points []Point               // oldest first
+	// Resonances are where the fibre's wall keeps it from guiding, margins
+	// included; longest wavelengths first.
+	Resonances []Span
+	// CalibratedFrom and CalibratedTo are the lowest and highest pressure at
+	// which the calibration in use was measured; both are 0 without one.
+	CalibratedFrom, CalibratedTo unit.Pascal
 
 	Links  []LinkHealth
 	Alarms []Alarm // most urgent first
 	Record RecordHealth
-	Folder string   // where the logbook is
-	Recent []string // newest last: lines of the record, as text
+	Folder string // where the logbook is
+	Recent []Line // newest last: lines of the record
 
 	// History; times are bench Mono.
 	PressureA *trend.View // Pa
@@ -123,5 +139,8 @@ type Snapshot struct {
 
 	Simulated bool
 	ReadOnly  bool
-	Dropped   uint64 // readings that a full queue refused
+	// Replay says how a record is being played back, such as "10 × life": nothing
+	// shown is happening now. It is empty where it is.
+	Replay  string
+	Dropped uint64 // readings that a full queue refused
 }

@@ -187,6 +187,9 @@ func TestChartStandsAnything(t *testing.T) {
 		}
 		p.Band(a, b, frame.Band)
 		p.Curve(a, frame.Predicted)
+		p.Dots(b, frame.Band)
+		p.Stripe(anything(t, "stripe lo"), anything(t, "stripe hi"), frame.Rule)
+		p.Reach(anything(t, "reach lo"), anything(t, "reach hi"), frame.Good)
 		p.Dashes(b, frame.Predicted)
 		p.Level(anything(t, "level"), frame.Target)
 		p.Upright(anything(t, "upright"), frame.Target)

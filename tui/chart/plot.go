@@ -190,6 +190,45 @@ func (p *Plot) Dashes(points []Point, ink frame.Ink) {
 	}
 }
 
+// Dots draws each point by itself.
+func (p *Plot) Dots(points []Point, ink frame.Ink) {
+	if p.dots == nil {
+		return
+	}
+	for _, at := range points {
+		if p.On(at) {
+			p.dots.set(int(math.Round(p.x(at.X))), int(math.Round(p.y(at.Y))), ink)
+		}
+	}
+}
+
+// Stripe shades from lo to hi on Y over the whole width, more openly than Band.
+func (p *Plot) Stripe(lo, hi float64, ink frame.Ink) {
+	if p.dots == nil || math.IsNaN(lo+hi) {
+		return
+	}
+	for y := clampInt(max(math.Ceil(p.y(hi)), 0)); float64(y) <= min(p.y(lo), float64(p.dots.h-1)); y++ {
+		for x := y % 4; x < p.dots.w; x += 4 {
+			p.dots.set(x, y, ink)
+		}
+	}
+}
+
+// Reach draws a line along the bottom from lo to hi on X, its ends turned up.
+func (p *Plot) Reach(lo, hi float64, ink frame.Ink) {
+	if p.dots == nil || math.IsNaN(lo+hi) || !(lo < hi) {
+		return
+	}
+	from, to := p.x(lo), p.x(hi)
+	bottom := p.dots.h - 1
+	for x := clampInt(max(math.Round(from), 0)); float64(x) <= min(to, float64(p.dots.w-1)); x++ {
+		p.dots.set(x, bottom, ink)
+	}
+	for _, end := range []float64{from, to} {
+		p.dots.column(clampInt(math.Round(end)), bottom-3, bottom, ink)
+	}
+}
+
 // clampInt keeps what is far outside any screen an int.
 func clampInt(v float64) int {
 	if math.IsNaN(v) {

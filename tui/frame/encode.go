@@ -59,7 +59,7 @@ func (f *Frame) line(b *strings.Builder, row []Cell) {
 
 // shows reports whether a blank in this ink can be seen.
 func (s Style) shows(ink Ink) bool {
-	return ink == Hold || ink == Banner || ink == Cursor
+	return ink == Hold || ink == Banner || ink == Cursor || ink == Past
 }
 
 // ascii stands in for one drawn character.

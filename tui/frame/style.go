@@ -57,6 +57,7 @@ const (
 	Banner        // an alarm across the screen
 	Keys          // a key that works
 	Cursor        // the place that is read out
+	Past          // a record played back
 	inkCount
 )
 
@@ -89,6 +90,7 @@ var inks = [inkCount]sgr{
 	Banner:    {"1;7", "1;97;41", "1;97;41", "1;38;5;231;48;5;124", "1;38;5;231;48;5;160"},
 	Keys:      {"1", "1", "1", "1;38;5;254", "1;38;5;236"},
 	Cursor:    {"7", "7", "7", "7", "7"},
+	Past:      {"1;7", "1;30;46", "1;37;44", "1;38;5;16;48;5;110", "1;38;5;231;48;5;25"},
 }
 
 func (s Style) codes(ink Ink) string {

@@ -80,9 +80,12 @@ func Calm() *live.Snapshot {
 		Residual: -0.8 * unit.Nanometre, ResidualKnown: true,
 		Record: live.RecordHealth{Writing: true, Written: 1042, Waiting: 3},
 		Folder: "heron-2026-12-01",
-		Recent: []string{
-			"11:41:02 reading cell A 9.003 bar", "11:41:20 reading emission 261.2 nm",
-			"11:41:31 note purge valve checked", "11:42:02 reading cell A 9.002 bar", "11:42:04 prediction 262 nm estimate",
+		Recent: []live.Line{
+			{At: at(Elapsed - 182*time.Second), Kind: live.KindIntent, Text: "go to 9.000 bar"},
+			{At: at(Elapsed - 181*time.Second), Kind: live.KindCommand, Text: "setpoint 9.000 bar"},
+			{At: at(Elapsed - 63*time.Second), Kind: live.KindAlarm, Text: "lag of the core: returned"},
+			{At: at(Elapsed - 34*time.Second), Kind: live.KindNote, Text: "purge valve checked"},
+			{At: at(Elapsed - 4*time.Second), Kind: live.KindStep, Text: "step 10, 9.000 bar: 261.2 nm"},
 		},
 	}
 	for _, l := range []string{"gauges", "controller", "spectrometer"} {
@@ -99,6 +102,7 @@ func Calm() *live.Snapshot {
 	s.Profile = profile(9.003, 9.001, 8.999)
 	s.Prediction = Prediction(9.001)
 	s.Curve = Curve()
+	s.Resonances = []live.Span{{From: 376 * unit.Nanometre, To: 400 * unit.Nanometre}, {From: 204 * unit.Nanometre, To: 217 * unit.Nanometre}}
 	for i := range 13 {
 		up := 7 + 0.4*float64(i)
 		if up <= 9.01 {
@@ -350,6 +354,11 @@ func Branches() *live.Snapshot {
 			s.Curve[i].Emission, s.Curve[i].Sigma = 0, 0
 		}
 	}
+	for i := range s.Curve {
+		if c := &s.Curve[i]; c.Emission > 0 && c.Pressure.Bar() < 10.4 {
+			c.Others[0] = c.Emission - 21*unit.Nanometre
+		}
+	}
 	s.Prediction.Extrapolated = true
 	s.Prediction.Answer = emission.Anchored
 	s.Prediction.Sigma = 0.6 * unit.Nanometre
@@ -374,10 +383,20 @@ func Alarms() *live.Snapshot {
 	return s
 }
 
+// Replay is the filling played back from its record, at a stop.
+func Replay() *live.Snapshot {
+	s := Filling()
+	s.ReadOnly, s.Replay = true, "10 × life, paused"
+	s.ArmedUntil = 0
+	s.Record = live.RecordHealth{Writing: true}
+	return s
+}
+
 // Situations are all of them by name.
 func Situations() map[string]func() *live.Snapshot {
 	return map[string]func() *live.Snapshot{
 		"calm": Calm, "filling": Filling, "stale": Stale, "lost-link": LostLink, "full-disk": FullDisk,
 		"no-emission": NoEmission, "panel": Panel, "branches": Branches, "fresh": Fresh, "alarms": Alarms,
+		"replay": Replay,
 	}
 }

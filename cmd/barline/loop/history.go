@@ -36,7 +36,7 @@ type history struct {
 	marks  []live.Mark
 
 	points []live.Point
-	lines  []string
+	lines  []live.Line
 }
 
 func newHistory() history {
@@ -124,17 +124,13 @@ func (h *history) line(at reading.Stamp, kind live.Kind, data any) {
 	if t, ok := data.(fmt.Stringer); ok {
 		text = t.String()
 	}
-	h.text(at, string(kind), text)
+	h.text(at, kind, text)
 }
 
-func (h *history) text(at reading.Stamp, kind, text string) {
-	h.mark(at, live.Kind(kind))
-	line := at.UTC.Format("15:04:05.0") + "  " + kind
-	if text != "" {
-		line += "  " + text
-	}
+func (h *history) text(at reading.Stamp, kind live.Kind, text string) {
+	h.mark(at, kind)
 	if len(h.lines) == maxLines {
-		h.lines = append(make([]string, 0, 2*maxLines), h.lines[maxLines/4:]...)
+		h.lines = append(make([]live.Line, 0, 2*maxLines), h.lines[maxLines/4:]...)
 	}
-	h.lines = append(h.lines, line)
+	h.lines = append(h.lines, live.Line{At: at, Kind: kind, Text: text})
 }

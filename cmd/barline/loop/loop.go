@@ -53,10 +53,12 @@ type Options struct {
 	Folder    string // where the logbook is
 	Simulated bool
 	ReadOnly  bool
-	Capture   time.Duration // bench time for which every reading is recorded
-	Bell      func()
-	Seen      func(live.Event) // every event before it is folded, for a capture of all
-	Call      func(live.Call)  // must not block
+	// Resonances are shown on the emission map.
+	Resonances []live.Span
+	Capture    time.Duration // bench time for which every reading is recorded
+	Bell       func()
+	Seen       func(live.Event) // every event before it is folded, for a capture of all
+	Call       func(live.Call)  // must not block
 }
 
 const (
@@ -273,7 +275,7 @@ func (l *Loop) Tell(e live.Told) { l.queue.push(e) }
 
 // Line shows a line of a record that was written elsewhere. It is for those
 // who drive the loop by Turn.
-func (l *Loop) Line(at reading.Stamp, kind, text string) { l.history.text(at, kind, text) }
+func (l *Loop) Line(at reading.Stamp, kind live.Kind, text string) { l.history.text(at, kind, text) }
 
 // Row shows a row of a scan that was recorded elsewhere, as Line does.
 func (l *Loop) Row(r live.StepData) { l.history.row(r) }

@@ -26,6 +26,7 @@ func (l *Loop) publish() {
 		Prediction: s.Prediction, Residual: s.Residual,
 		ResidualKnown: s.ResidualAt != 0 && s.Now.Mono-s.ResidualAt <= o.Core.Stale(),
 		Points:        slices.Clip(l.history.points),
+		Resonances:    o.Resonances,
 		Links:         slices.Clone(s.Links[:s.LinkCount]),
 		Alarms:        o.Core.Alarms(s),
 		Record:        s.Record, Folder: o.Folder, Recent: slices.Clip(l.history.lines),
