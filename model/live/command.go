@@ -45,7 +45,7 @@ func (c *Core) unsafe(s *State) string {
 		return fmt.Sprintf("%s and %s differ by %v, allowed %v", a.Channel, b.Channel, unit.Pascal(math.Abs(a.Value-b.Value)), c.disagreement)
 	}
 	ramping := s.Mode == Ramping || s.Mode == Settling
-	if c.follow > 0 && ramping && unit.Pascal(math.Abs(float64(p-s.Setpoint))) > c.follow {
+	if c.follow > 0 && ramping && s.engaged && unit.Pascal(math.Abs(float64(p-s.Setpoint))) > c.follow {
 		return fmt.Sprintf("pressure %v does not follow the setpoint %v", p, s.Setpoint)
 	}
 	if s.commanding() && s.awaiting != 0 && s.Now.Mono-s.awaitFrom > c.confirm {
@@ -71,7 +71,7 @@ func (c *Core) send(s *State, sp limit.Setpoint, fx []Effect) []Effect {
 	p, _ := sp.Pressure()
 	s.command++
 	s.refused = false
-	s.Setpoint, s.awaiting, s.awaitFrom, s.rampedAt = p, s.command, s.Now.Mono, s.Now.Mono
+	s.Setpoint, s.engaged, s.awaiting, s.awaitFrom, s.rampedAt = p, true, s.command, s.Now.Mono, s.Now.Mono
 	return append(fx,
 		Record{At: s.Now, Kind: KindCommand, Data: CommandData{Command: s.command, SetpointPa: float64(p)}, Sync: true},
 		SendSetpoint{Command: s.command, Setpoint: sp})
@@ -91,7 +91,7 @@ func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 	s.command++
 	s.heldAt = s.Now.Mono
 	s.Mode, s.Why, s.heldByItself, s.refused = Held, why, why != heldByPerson, false
-	s.ArmedUntil, s.Target, s.Setpoint, s.tuning = 0, 0, p, tuning{}
+	s.ArmedUntil, s.Target, s.Setpoint, s.engaged, s.tuning = 0, 0, p, false, tuning{}
 	if s.run.active() {
 		s.run, s.outcome = progress{}, EndedByHold
 	}

@@ -191,6 +191,7 @@ func (c *Core) Progress(s *State) Progress {
 		Name: r.program.Name, Label: ph.Label, Index: r.index, Count: len(r.program.Phases),
 		Paused: r.paused, Dwelling: r.settledAt != 0,
 	}
+	from, _ := c.rampFrom(s)
 	if p.Dwelling {
 		now := s.Now.Mono
 		if r.paused {
@@ -201,9 +202,9 @@ func (c *Core) Progress(s *State) Progress {
 	} else if wait, ok := s.ArriveIn(); ok {
 		p.Left = wait + settledFor + ph.Dwell
 	} else {
-		p.Left = c.rampTime(s.Setpoint, ph) + settledFor + ph.Dwell
+		p.Left = c.rampTime(from, ph) + settledFor + ph.Dwell
 	}
-	at := s.Setpoint
+	at := from
 	if ph.Action == Reach {
 		at = ph.Target
 	}

@@ -32,7 +32,7 @@ func (c *Core) beginPhase(s *State, fx []Effect) []Effect {
 		return c.hold(s, "no usable pressure reading", fx)
 	}
 	target := ph.Target
-	underCommand := s.commanding() && !isolated || s.Mode == Steady
+	underCommand := s.engaged && (s.commanding() || s.Mode == Steady)
 	switch {
 	case ph.Action == Isolate:
 		s.run.from, s.run.settledAt = p, s.Now.Mono
@@ -46,17 +46,24 @@ func (c *Core) beginPhase(s *State, fx []Effect) []Effect {
 	case ph.Action == Stay:
 		target = p // take over where the gas is
 	}
-	from := p
-	if underCommand {
-		from = s.Setpoint // no leap back to a gas that lags
-	}
-	s.Setpoint = min(max(from, 0), c.limits.Lowest().Max)
 	s.Target, s.Mode, s.Why, s.nearSince = min(target, c.limits.Lowest().Max), Ramping, ph.Label, 0
 	c.expect(s, p, ph)
 	if s.rampedAt != 0 && s.Now.Mono-s.rampedAt < rampEvery {
 		return fx // somebody asks faster than the rate allows: the ramp goes on in its time
 	}
 	return c.rampOn(s, fx)
+}
+
+// rampFrom returns where the next setpoint starts from: the last one where the
+// controller stands under it, so that there is no leap back to a gas that
+// lags; else where the gas is. A setpoint that HOLD turned back, or that never
+// went out, is no place to start from.
+func (c *Core) rampFrom(s *State) (from unit.Pascal, ok bool) {
+	if s.engaged {
+		return s.Setpoint, true
+	}
+	p, ok := c.pressure(s)
+	return min(max(p, 0), c.limits.Lowest().Max), ok
 }
 
 // expect begins a forecast of how long the move to the target takes.
@@ -77,7 +84,7 @@ func (c *Core) isolate(s *State, fx []Effect) []Effect {
 	sp := c.limits.Freeze(p)
 	frozen, _ := sp.Pressure()
 	s.command++
-	s.Mode, s.Why, s.Target, s.Setpoint = Isolated, s.run.phase().Label, 0, frozen
+	s.Mode, s.Why, s.Target, s.Setpoint, s.engaged = Isolated, s.run.phase().Label, 0, frozen, false
 	s.awaiting, s.awaitFrom, s.nearSince = s.command, s.Now.Mono, 0
 	return append(fx,
 		SendHold{Command: s.command, Setpoint: sp},
@@ -88,7 +95,11 @@ func (c *Core) isolate(s *State, fx []Effect) []Effect {
 // rate.
 func (c *Core) rampOn(s *State, fx []Effect) []Effect {
 	ph := s.run.phase()
-	sp, err := c.limits.AtMost(ph.Rate).Step(s.Setpoint, s.Target, rampEvery)
+	from, ok := c.rampFrom(s)
+	if !ok {
+		return c.hold(s, "no usable pressure reading", fx)
+	}
+	sp, err := c.limits.AtMost(ph.Rate).Step(from, s.Target, rampEvery)
 	if err != nil {
 		return c.hold(s, err.Error(), fx)
 	}
@@ -167,16 +178,22 @@ func (c *Core) next(s *State, fx []Effect) []Effect {
 	name, measured := s.run.program.Name, s.run.emission
 	s.run, s.outcome = progress{}, Completed
 	s.Notice = name + ": complete"
-	if s.Mode == Isolated {
-		s.Mode, s.Why = Held, "valves shut at the end of "+name
-	} else {
-		s.Mode, s.Why = Steady, "settled"
-	}
+	c.rest(s, "settled", "valves shut at the end of "+name)
 	fx = append(fx, Record{At: s.Now, Kind: KindIntent, Data: IntentData{Intent: "complete", Program: name}})
 	if s.tuning.wanted != 0 {
 		return c.tuned(s, measured, fx)
 	}
 	return fx
+}
+
+// rest ends a program: the controller keeps its setpoint, or, where it has
+// none since the valves were shut, they stay so.
+func (c *Core) rest(s *State, steady, shut string) {
+	if s.engaged {
+		s.Target, s.Mode, s.Why = s.Setpoint, Steady, steady
+		return
+	}
+	s.Target, s.Mode, s.Why, s.heldByItself = 0, Held, shut, false
 }
 
 // row writes what was measured during the dwell of a phase that asks for it.
@@ -248,11 +265,7 @@ func (c *Core) change(s *State, in Intent, fx []Effect) ([]Effect, error) {
 	case Stop:
 		name := r.program.Name
 		*r, s.outcome, s.tuning = progress{}, Stopped, tuning{}
-		if s.Mode == Isolated {
-			s.Mode, s.Why = Held, "valves shut; "+name+" stopped"
-		} else {
-			s.Target, s.Mode, s.Why = s.Setpoint, Steady, name+" stopped"
-		}
+		c.rest(s, name+" stopped", "valves shut; "+name+" stopped")
 	}
 	return fx, nil
 }

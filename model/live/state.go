@@ -55,6 +55,7 @@ type State struct {
 	heldByItself bool // HOLD came without being asked for
 	refused      bool // an instrument did not take the last command
 	following    bool // another core decides, see Told
+	engaged      bool // the last command was a setpoint, and no HOLD came after it
 
 	run               progress
 	tuning            tuning

@@ -106,7 +106,7 @@ func (c *Core) tuned(s *State, measured mean, fx []Effect) []Effect {
 	if measured.n < leastSamples {
 		// Out of sight of the spectrometer the model alone leads on, as far
 		// as the pressure that it names.
-		if s.Setpoint == s.Target && t.left < tuneSteps-1 {
+		if t.left < tuneSteps-1 {
 			return stop(fmt.Sprintf("no emission is measured at %v", s.Setpoint))
 		}
 	} else if away := unit.Metre(measured.value) - t.wanted; math.Abs(float64(away)) <= float64(tuneWithin) {

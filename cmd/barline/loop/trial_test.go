@@ -4,10 +4,12 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
+	"maps"
 	"math"
 	"math/rand/v2"
 	"os"
 	"runtime"
+	"slices"
 	"strconv"
 	"sync"
 	"testing"
@@ -50,6 +52,7 @@ type trial struct {
 		setpoint unit.Pascal
 		at       time.Duration
 	}
+	under   bool          // the last command on the wire was a setpoint
 	heldAt  time.Duration // when HOLD last reached the wire; 0 before the first
 	askedAt time.Duration // when somebody last asked for gas to move
 }
@@ -182,13 +185,13 @@ func (tr *trial) Setpoint(command uint64, sp limit.Setpoint) {
 	if (!tr.sent.any || jump > rate+1e-6) && fromGas > rate+slack {
 		tr.fail("setpoint %v is %.0f Pa from the last and %.0f Pa from the gas", p, jump, fromGas)
 	}
-	tr.sent.any, tr.sent.setpoint, tr.sent.at = true, p, now.Mono
+	tr.sent.any, tr.sent.setpoint, tr.sent.at, tr.under = true, p, now.Mono, true
 	tr.obey(command, func(s *seat) error { return s.in.Set(s.line, sp) })
 }
 
 // Hold implements loop.Wire.
 func (tr *trial) Hold(command uint64, sp limit.Setpoint) {
-	tr.heldAt = tr.clk.Now().Mono
+	tr.heldAt, tr.under = tr.clk.Now().Mono, false
 	tr.obey(command, func(s *seat) error { return s.in.Hold(s.line, sp) })
 }
 
@@ -286,6 +289,9 @@ func (tr *trial) laws() {
 			tr.fail("the disk is lost and the bench is %v", s.Mode)
 		}
 	}
+	if s.Mode == live.Steady && !tr.under {
+		tr.fail("steady at %v (%s), which the controller was never given", s.Setpoint, s.Why)
+	}
 	for _, v := range []float64{float64(s.Core), float64(s.Lag), float64(s.Prediction.Emission), float64(s.Prediction.Sigma), float64(s.Residual)} {
 		if math.IsNaN(v) || math.IsInf(v, 0) {
 			tr.fail("a number on the screen is %v", v)
@@ -322,9 +328,8 @@ func (tr *trial) operator() {
 		}
 		tr.ask(live.Run{Program: p})
 	case 10:
-		for name := range tr.alarmed {
-			tr.ask(live.Acknowledge{Alarm: name})
-			break
+		if names := slices.Sorted(maps.Keys(tr.alarmed)); len(names) > 0 {
+			tr.ask(live.Acknowledge{Alarm: names[0]})
 		}
 	case 11:
 		tr.ask(live.GoTo{Target: unit.Pascal(math.NaN())})
@@ -370,23 +375,30 @@ func (tr *trial) replay() {
 	}
 }
 
-// runs is how many seeds a test tries; the environment variable sets it for
-// longer runs.
-func runs(variable string, short int) uint64 {
-	if n, err := strconv.Atoi(os.Getenv(variable)); err == nil {
-		return uint64(n)
+// seeds returns those that a test tries: from 0 on, as many as the
+// environment variable says, or the one that BARLINE_SEED names.
+func seeds(variable string, short int) []uint64 {
+	if one, err := strconv.ParseUint(os.Getenv("BARLINE_SEED"), 10, 64); err == nil {
+		return []uint64{one}
 	}
-	return uint64(short)
+	if n, err := strconv.Atoi(os.Getenv(variable)); err == nil {
+		short = n
+	}
+	all := make([]uint64, short)
+	for i := range all {
+		all[i] = uint64(i)
+	}
+	return all
 }
 
 // each runs f for every seed, on as many goroutines as there are processors.
-func each(t *testing.T, seeds uint64, f func(t *testing.T, seed uint64)) {
-	workers := uint64(runtime.GOMAXPROCS(0))
+func each(t *testing.T, seeds []uint64, f func(t *testing.T, seed uint64)) {
+	workers := min(runtime.GOMAXPROCS(0), len(seeds))
 	for w := range workers {
 		t.Run(fmt.Sprintf("part %d", w+1), func(t *testing.T) {
 			t.Parallel()
-			for seed := w; seed < seeds; seed += workers {
-				f(t, seed)
+			for i := w; i < len(seeds); i += workers {
+				f(t, seeds[i])
 			}
 		})
 	}
@@ -395,7 +407,7 @@ func each(t *testing.T, seeds uint64, f func(t *testing.T, seed uint64)) {
 // Anything may go wrong while anybody presses anything: the laws hold, and the
 // same events give the same state.
 func TestStorms(t *testing.T) {
-	each(t, runs("BARLINE_STORMS", 8), func(t *testing.T, seed uint64) {
+	each(t, seeds("BARLINE_STORMS", 8), func(t *testing.T, seed uint64) {
 		tr := newTrial(t, seed, unit.Pascal(1.1+float64(seed%10))*unit.Bar)
 		tr.faulty = seed%3 == 0
 		for tr.clk.Now().Mono < 120*time.Second {
@@ -411,7 +423,7 @@ func TestStorms(t *testing.T) {
 // arrives.
 func TestQuietFills(t *testing.T) {
 	worst := 0.0
-	for seed := range runs("BARLINE_FILLS", 8) {
+	for _, seed := range seeds("BARLINE_FILLS", 8) {
 		tr := newTrial(t, seed, 5*unit.Bar)
 		target := unit.Pascal(6.5+0.1*float64(seed%20)) * unit.Bar
 		for tr.clk.Now().Mono < 4*time.Second {
@@ -458,7 +470,7 @@ func TestFaultsRaiseTheirAlarms(t *testing.T) {
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			var slowest time.Duration
-			for seed := range runs("BARLINE_FAULTS", 1) {
+			for _, seed := range seeds("BARLINE_FAULTS", 1) {
 				tr := newTrial(t, seed, 5*unit.Bar)
 				for tr.clk.Now().Mono < 4*time.Second {
 					tr.turn()
@@ -494,7 +506,7 @@ func TestFaultsRaiseTheirAlarms(t *testing.T) {
 // Tuning arrives at the wanted wavelength although the model is off, and
 // holding keeps it there while the pulse energy sags.
 func TestTuneAndHold(t *testing.T) {
-	for seed := range runs("BARLINE_FAULTS", 1) {
+	for _, seed := range seeds("BARLINE_FAULTS", 1) {
 		tr := newTrial(t, seed, 8*unit.Bar)
 		for tr.clk.Now().Mono < 4*time.Second {
 			tr.turn()
@@ -579,7 +591,7 @@ func TestLeakTest(t *testing.T) {
 // A scan up and down with everything in order completes by itself and writes a
 // row a step.
 func TestScanCompletes(t *testing.T) {
-	for seed := range runs("BARLINE_SCANS", 1) {
+	for _, seed := range seeds("BARLINE_SCANS", 1) {
 		tr := newTrial(t, seed, 7*unit.Bar)
 		p := &live.Program{Name: "scan"}
 		for i := range 41 {
