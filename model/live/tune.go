@@ -192,7 +192,7 @@ func (c *Core) slope(s *State) (float64, bool) {
 // pressureFor returns the pressure within the limits at which the model puts
 // the emission, the nearest one to where the gas is.
 func (c *Core) pressureFor(s *State, wanted unit.Metre) (unit.Pascal, error) {
-	const points = 160
+	const points = 65 // the emission bends little over a quarter of a bar
 	in := s.Prediction.Input
 	if in.Temperature == 0 {
 		return 0, fmt.Errorf("nothing has been predicted yet")
