@@ -1,6 +1,9 @@
 package fourier
 
-import "fmt"
+import (
+	"fmt"
+	"unsafe"
+)
 
 // Real transforms real signals of one length by a complex transform of half
 // that length; Van Loan (1992), section 4.3.
@@ -8,14 +11,20 @@ type Real struct {
 	half    *Complex
 	pack    []complex128
 	twiddle []complex128 // exp(−2πi k/n), k = 0 … n/4
+	lanes   []float64    // the same from k = 1 on, as registers load it
 }
 
 // NewReal plans transforms of n samples, n a power of two of at least 8.
-func NewReal(n int) (*Real, error) {
+func NewReal(n int) (*Real, error) { return newReal(n, vectors()) }
+
+// NewPlainReal is NewReal without vector instructions, to compare with.
+func NewPlainReal(n int) (*Real, error) { return newReal(n, false) }
+
+func newReal(n int, vectors bool) (*Real, error) {
 	if n < 8 || n&(n-1) != 0 {
 		return nil, fmt.Errorf("transform of %d samples: want a power of two of at least 8", n)
 	}
-	half, err := NewComplex(n / 2)
+	half, err := newComplex(n/2, vectors)
 	if err != nil {
 		return nil, err
 	}
@@ -23,25 +32,34 @@ func NewReal(n int) (*Real, error) {
 	for k := range r.twiddle {
 		r.twiddle[k] = root(k, n)
 	}
+	if half.planes != nil {
+		for k := 1; k < len(r.twiddle); k += 4 {
+			r.lanes = append(r.lanes, lanes(func(i int) complex128 { return r.twiddle[k+i] })...)
+		}
+	}
 	return r, nil
 }
 
 // Len returns the number of samples that the plan transforms.
 func (r *Real) Len() int { return 2 * r.half.n }
 
+// pairs returns x as complex numbers of neighbours, in the same memory.
+func pairs(x []float64) []complex128 {
+	return unsafe.Slice((*complex128)(unsafe.Pointer(unsafe.SliceData(x))), len(x)/2)
+}
+
 // Forward writes the bins 0 … n/2 of the transform of x, of length n = Len,
 // to dst, of length n/2+1. x is not changed.
 func (r *Real) Forward(dst []complex128, x []float64) {
 	m := r.half.n
-	x = x[:2*m]
-	z := r.pack
-	for k := range z {
-		z[k] = complex(x[2*k], x[2*k+1])
-	}
-	r.half.Forward(z)
-	dst = dst[:m+1]
+	dst, z := dst[:m+1], r.pack
+	r.half.forward(z, pairs(x[:2*m]))
 	dst[0] = complex(real(z[0])+imag(z[0]), 0)
 	dst[m] = complex(real(z[0])-imag(z[0]), 0)
+	if r.lanes != nil {
+		part(&dst[0], &z[0], &r.lanes[0], m)
+		return
+	}
 	for k := 1; k <= m/2; k++ {
 		a, b := z[k], conj(z[m-k])
 		even, odd := a+b, (a-b)*r.twiddle[k]
@@ -56,22 +74,20 @@ func (r *Real) Forward(dst []complex128, x []float64) {
 // and the last bin count as zero. src is not changed.
 func (r *Real) Inverse(x []float64, src []complex128) {
 	m := r.half.n
-	src = src[:m+1]
-	z := r.pack
-	z[0] = complex(real(src[0])-real(src[m]), real(src[0])+real(src[m])) // parts exchanged, see swap
-	for k := 1; k <= m/2; k++ {
-		a, b := src[k], conj(src[m-k])
-		even, odd := a+b, (a-b)*conj(r.twiddle[k])
-		odd = complex(-imag(odd), real(odd))
-		u, v := even+odd, conj(even-odd)
-		z[k] = complex(imag(u), real(u))
-		z[m-k] = complex(imag(v), real(v))
+	src, z := src[:m+1], r.pack
+	// With time running backwards the forward transform is the inverse one.
+	z[0] = complex(real(src[0])+real(src[m]), real(src[0])-real(src[m]))
+	if r.lanes != nil {
+		merge(&z[0], &src[0], &r.lanes[0], m)
+	} else {
+		for k := 1; k <= m/2; k++ {
+			a, b := src[k], conj(src[m-k])
+			even, odd := a+b, (a-b)*conj(r.twiddle[k])
+			odd = complex(-imag(odd), real(odd))
+			z[k], z[m-k] = conj(even-odd), even+odd
+		}
 	}
-	r.half.Forward(z)
-	x = x[:2*m]
-	for k, v := range z {
-		x[2*k], x[2*k+1] = imag(v), real(v)
-	}
+	r.half.forward(pairs(x[:2*m]), z)
 }
 
 func conj(z complex128) complex128 { return complex(real(z), -imag(z)) }
