@@ -74,8 +74,8 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 		v.past = v.past.with(entry{setpointOverlay, text})
 		v = v.open(noOverlay)
 		return v, []live.Intent{live.GoTo{Target: target}}
-	case scanOverlay:
-		program, err := parseScan(s, text)
+	case runOverlay:
+		program, err := parseRun(s, text)
 		if err != nil {
 			v.message = err.Error()
 			return v, nil
@@ -85,7 +85,7 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 			v.message = "no longer armed: press a, then r"
 			return v, nil
 		}
-		v.past = v.past.with(entry{scanOverlay, text})
+		v.past = v.past.with(entry{runOverlay, text})
 		v.page = Scan
 		return v, []live.Intent{live.Run{Program: program}}
 	case tuneOverlay:

@@ -46,7 +46,7 @@ func TestGoldenScreens(t *testing.T) {
 	for name, v := range map[string]view{
 		"help": {overlay: helpOverlay}, "arm": {overlay: armOverlay, text: "ar"}, "greeting": {overlay: greetOverlay},
 		"setpoint": {overlay: setpointOverlay, text: "9.2 bar"}, "setpoint-refused": {overlay: setpointOverlay, text: "17 bar"},
-		"tune-form": {overlay: tuneOverlay, text: "265 nm hold"}, "scan-form": {overlay: scanOverlay, text: scanExample}, "alarm-list": {overlay: alarmOverlay, pick: 3},
+		"tune-form": {overlay: tuneOverlay, text: "265 nm hold"}, "scan-form": {overlay: runOverlay, text: scanExample}, "run-form": {overlay: runOverlay, text: runExample}, "run-refused": {overlay: runOverlay, text: "fill to 9 bar, dwell 3 s"}, "alarm-list": {overlay: alarmOverlay, pick: 3},
 		"plain": {plain: true}, "frozen": {frozen: freeze(situations()["filling"]), back: 20e9, cursor: tuitest.Elapsed - 60e9},
 		"found": {page: Log, find: "NOTE"},
 	} {

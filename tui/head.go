@@ -342,8 +342,10 @@ func drawTabs(a frame.Area, page Page) {
 		if p == page {
 			ink = frame.Strong
 		}
+		from := x
 		x = a.Text(x, 0, strconv.Itoa(int(p)+1), frame.Keys)
 		x = a.Text(x+1, 0, p.String(), ink) + 2
+		a.Sub(from, 0, x-from-1, 1).Name(pagePlace + strconv.Itoa(int(p)))
 	}
 }
 

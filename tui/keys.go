@@ -35,7 +35,7 @@ var bindings = []binding{
 	{key: "a", label: "a", short: "arm", what: "arm: cautions, then setpoints", gas: true, press: pressArm},
 	{key: "d", label: "d", what: "disarm", gas: true, press: pressDisarm},
 	{key: "s", label: "s", short: "setpoint", what: "go to a pressure", gas: true, press: pressSetpoint},
-	{key: "r", label: "r", what: "run a scan of pressures", gas: true, press: pressScan},
+	{key: "r", label: "r", what: "run a scan or a procedure", gas: true, press: pressRun},
 	{key: "t", label: "t", short: "tune", what: "tune to a wavelength", gas: true, press: pressTune},
 	{key: "p", also: []string{"x"}, label: "p x", short: "pause, end", what: "program: pause or go on, end", gas: true, press: pressProgram},
 	{key: "m", label: "m", short: "mark", what: "mark: something happened", press: pressMark},
@@ -59,8 +59,8 @@ var bindings = []binding{
 	{key: "up", also: []string{"down"}, label: "↑ ↓", what: "a line up, down; earlier input", screen: true, press: pressLine},
 	{key: "pgup", also: []string{"pgdown"}, label: "PgUp/Dn", what: "a page up, down in a list", screen: true, press: pressLine},
 	{key: "/", label: "/", what: "find in the record", screen: true, press: pressFind},
-	{key: "?", label: "?", what: "this list", screen: true, press: pressHelp},
-	{key: "h", label: "h", what: "how to begin", screen: true, press: pressGreet},
+	{key: "o", label: "o", what: "mouse on, off", screen: true, press: pressMouse},
+	{key: "?", also: []string{"h"}, label: "? h", what: "this list, how to begin", screen: true, press: pressHelp},
 	{key: "esc", label: "Esc", what: "close what is open", screen: true, press: pressClose},
 }
 
@@ -201,7 +201,10 @@ func pressSteer(v view, _ *live.Snapshot, key string) (view, []live.Intent) {
 	return v, []live.Intent{Steer{Key: rune(key[0])}}
 }
 
-func pressHelp(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
+func pressHelp(v view, _ *live.Snapshot, key string) (view, []live.Intent) {
+	if key == "h" {
+		return v.open(greetOverlay), nil
+	}
 	return v.toggle(helpOverlay), nil
 }
 

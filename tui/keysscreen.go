@@ -100,10 +100,6 @@ func pressLine(v view, s *live.Snapshot, key string) (view, []live.Intent) {
 	return v, nil
 }
 
-func pressGreet(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
-	return v.open(greetOverlay), nil
-}
-
 func pressFind(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 	v.page, v.overlay, v.text = Log, findOverlay, v.find
 	return v, nil

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"sort"
+	"strconv"
 	"strings"
 	"time"
 
@@ -85,8 +86,8 @@ func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 		input(b.Sub(0, 1, b.W, 1), v.text)
 	case alarmOverlay:
 		drawAlarms(a, s, min(v.pick, len(s.Alarms)-1))
-	case scanOverlay:
-		drawScanForm(a, s, v)
+	case runOverlay:
+		drawRunForm(a, s, v)
 	case tuneOverlay:
 		drawTune(a, s, v)
 	case findOverlay:
@@ -249,7 +250,7 @@ func outlook(s *live.Snapshot, from, target unit.Pascal) string {
 	if target < from {
 		rate = l.FallRate
 	}
-	if rate > 0 {
+	if rate > 0 && target != from {
 		seconds := math.Abs(float64(target-from)) / float64(rate)
 		text += ", " + spanText(time.Duration(seconds*1e9))
 	}
@@ -329,6 +330,7 @@ func drawAlarms(a frame.Area, s *live.Snapshot, pick int) {
 			b.Right(b.W, b.H-1, fmt.Sprintf(" and %d more", len(s.Alarms)-first-i), frame.Caution)
 			return
 		}
+		b.Sub(0, y, b.W, 3).Name(alarmPlace + strconv.Itoa(first+i))
 		if first+i == pick {
 			b.Set(0, y, '▶', frame.Keys)
 		}

@@ -36,6 +36,7 @@ type Options struct {
 	In    io.Reader // nil is the standard input
 	Out   io.Writer // nil is the standard output
 	Plain bool      // begin without charts, for slow lines
+	Greet bool      // begin by telling how to begin
 }
 
 const (
@@ -62,7 +63,10 @@ func Run(ctx context.Context, src Source, o Options) error {
 	defer end()
 	m := &model{ctx: inner, src: src, style: o.Style, s: src.Snapshot(), moved: time.Now()}
 	m.v.plain = o.Plain
-	if m.s != nil && m.s.Simulated {
+	switch {
+	case o.Greet:
+		m.v = m.v.open(greetOverlay)
+	case m.s != nil && m.s.Simulated:
 		m.v.message = "new here? h shows how to begin"
 	}
 	options := []tea.ProgramOption{
@@ -121,6 +125,7 @@ type model struct {
 	w, h  int
 	v     view
 	s     *live.Snapshot
+	frame *frame.Frame // as text, what the terminal shows
 	text  string
 
 	moved time.Time // wall time at which bench time was last seen to move
@@ -193,6 +198,11 @@ func (m *model) Update(msg tea.Msg) (tea.Model, tea.Cmd) {
 		cmd = m.second()
 	case tea.KeyMsg:
 		cmd = m.key(msg)
+	case tea.MouseMsg:
+		m.take()
+		if m.s != nil && m.frame != nil {
+			m.v = m.v.mouse(msg, m.frame, m.s)
+		}
 	default:
 		return m, nil
 	}
@@ -211,7 +221,8 @@ func (m *model) take() {
 
 func (m *model) draw() {
 	m.drawn = time.Now()
-	m.text = draw(m.s, m.v, m.w, m.h, m.style).String()
+	m.frame = draw(m.s, m.v, m.w, m.h, m.style)
+	m.text = m.frame.String()
 }
 
 func (m *model) View() string { return m.text }
@@ -227,6 +238,7 @@ func (m *model) key(msg tea.KeyMsg) tea.Cmd {
 	if msg.Paste && !m.v.typing() {
 		return nil
 	}
+	mousing := m.v.mousing
 	for _, name := range names(msg) {
 		var intents []live.Intent
 		m.v, intents = m.v.press(name, s)
@@ -236,6 +248,12 @@ func (m *model) key(msg tea.KeyMsg) tea.Cmd {
 			}
 			m.src.Do(in)
 		}
+	}
+	switch {
+	case m.v.mousing && !mousing:
+		return tea.EnableMouseCellMotion
+	case mousing && !m.v.mousing:
+		return tea.DisableMouse
 	}
 	return nil
 }

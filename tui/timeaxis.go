@@ -49,6 +49,7 @@ func (t timeAxis) include(y *chart.Range, view *trend.View, to func(float64) flo
 
 // drawCursor draws the upright line that is read out.
 func (t timeAxis) drawCursor(p *chart.Plot) {
+	p.Pane().Name(timePlace)
 	if t.cursor != 0 {
 		p.Upright(t.cursor.Seconds(), frame.Strong)
 	}

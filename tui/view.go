@@ -15,6 +15,7 @@ type view struct {
 	frozen  *frozen
 	cursor  time.Duration // bench Mono that is read out; 0: none
 	plain   bool          // no charts, for slow lines
+	mousing bool          // the mouse is ours and not the terminal's
 	near    bool          // the emission map shows what is near
 	scroll  int           // lines of the record back from the newest
 	find    string        // only lines of the record with this
@@ -38,7 +39,7 @@ const (
 	noteOverlay     // a remark is being typed
 	alarmOverlay    // the list of alarms
 	leaveOverlay    // leaving was asked for
-	scanOverlay     // a scan is being typed
+	runOverlay      // a scan or a procedure is being typed
 	findOverlay     // what to find in the record is being typed
 	greetOverlay    // how to begin
 	tuneOverlay     // a wavelength is being typed
@@ -48,7 +49,7 @@ const (
 // typing reports whether keys are text.
 func (v view) typing() bool {
 	switch v.overlay {
-	case armOverlay, setpointOverlay, noteOverlay, scanOverlay, findOverlay, tuneOverlay:
+	case armOverlay, setpointOverlay, noteOverlay, runOverlay, findOverlay, tuneOverlay:
 		return true
 	}
 	return false

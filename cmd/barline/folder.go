@@ -29,6 +29,14 @@ func dataFolder() (string, error) {
 	return filepath.Join(home, ".local", "share", "barline"), nil
 }
 
+// unused reports whether a folder in the user's data folder has never been
+// written to: whoever sits here may be new. One that was asked for by name
+// says nothing about that.
+func unused(folder, asked, configured string) bool {
+	_, err := os.Stat(folder)
+	return asked == "" && configured == "" && os.IsNotExist(err)
+}
+
 // logbookFolder returns the folder of the bench's logbook: the one asked for,
 // else the one of the bench file, else one in the user's data folder that is
 // named after the bench.

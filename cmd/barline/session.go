@@ -41,6 +41,7 @@ type session struct {
 	simulated bool
 	anchors   bool          // full-field runs are computed beside it
 	noCharts  bool          // for slow lines
+	greet     bool          // whoever looks may be new
 	capture   time.Duration // bench time for which every reading is recorded
 	stderr    io.Writer
 }

@@ -124,6 +124,7 @@ func (f simulateFlags) place(stderr io.Writer) (*place, error) {
 	if s.folder, err = logbookFolder(f.logbook, "", b.Bench.Name, true); err != nil {
 		return nil, err
 	}
+	s.greet = unused(s.folder, f.logbook, "")
 	if s.capture, err = parseCapture(f.capture); err != nil {
 		return nil, err
 	}

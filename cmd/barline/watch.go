@@ -60,6 +60,7 @@ func (f watchFlags) place(stderr io.Writer) (*place, error) {
 	if s.folder, err = logbookFolder(f.logbook, b.Logbook.Folder, b.Bench.Name, false); err != nil {
 		return nil, err
 	}
+	s.greet = unused(s.folder, f.logbook, b.Logbook.Folder)
 	if s.capture, err = parseCapture(f.capture); err != nil {
 		return nil, err
 	}

@@ -240,3 +240,48 @@ func FuzzParse(f *testing.F) {
 		}
 	})
 }
+
+func TestTypedLine(t *testing.T) {
+	for _, c := range []struct {
+		text    string
+		bar     []float64
+		refusal string
+	}{
+		{"fill to 9 bar", []float64{9}, ""},
+		{" purge cycles 2, low 50 mbar, high 3 bar ; fill to 9 bar;", []float64{0.05, 3, 0.05, 3, 9}, ""},
+		{"scan from 7 bar, to 8 bar, by 0.5 bar, dwell 20 s, order up and down", []float64{7, 7.5, 8, 7.5, 7}, ""},
+		{"scan from emission 244 nm, to emission 260 nm, emission by 8 nm, dwell 5 s", []float64{8, 9, 10}, ""},
+		{"leak test for 10 min, max rise 2 Pa/s", []float64{0}, ""},
+		{"vent", []float64{1.013}, ""},
+		{"fill", nil, "needs it"},
+		{"fill 9 bar", nil, `"9 bar": fill takes to, rate, within and patience`},
+		{"fill to 9", nil, "no unit"},
+		{"fill to 17 bar", nil, "cells allows"},
+		{"purge cycles three, low 50 mbar, high 3 bar", nil, "expected a whole number"},
+		{"fill to", nil, "a value is missing"},
+		{"fly to 9 bar", nil, "expected it to begin with"},
+		{"fill to 9 bar, dwell 3 s", nil, "does not go with"},
+		{"", nil, "nothing to do"},
+		{"scan pressures 7 bar", nil, "needs a procedure file"},
+		{"fill to \"9 bar\"\nrate = 1", nil, "expected a pressure"},
+	} {
+		p, err := ParseLine(c.text, 1.013*unit.Bar)
+		var program *live.Program
+		if err == nil {
+			program, err = p.Compile(testBench())
+		}
+		if c.refusal != "" {
+			if err == nil || !strings.Contains(err.Error(), c.refusal) {
+				t.Errorf("%q: error %v, want one with %q", c.text, err, c.refusal)
+			}
+			continue
+		}
+		if err != nil {
+			t.Errorf("%q: %v", c.text, err)
+			continue
+		}
+		if got := targets(program); !equal(got, c.bar) {
+			t.Errorf("%q goes to %v bar, want %v", c.text, got, c.bar)
+		}
+	}
+}

@@ -2,6 +2,7 @@ package chart
 
 import (
 	"math"
+	"slices"
 	"strconv"
 	"time"
 )
@@ -116,7 +117,7 @@ var spans = []time.Duration{
 	24 * time.Hour, 48 * time.Hour, 7 * 24 * time.Hour, 14 * 24 * time.Hour,
 }
 
-// TimeTicks returns about most places of an axis of seconds of bench Mono that
+// TimeTicks returns about most places, ascending, of an axis of seconds of bench Mono that
 // covers the span before end. Where the axis ends at the present and is
 // shorter than ten minutes, labels count back from it; otherwise they show the
 // clock, which reads clock at end.
@@ -158,5 +159,6 @@ func TimeTicks(end, span time.Duration, present bool, clock time.Time, most int)
 	for back := local % step; back <= span && len(ticks) < most+1; back += step {
 		add(back, clock.Add(-back).Format(format))
 	}
+	slices.Reverse(ticks) // ascending, as a plot wants them
 	return ticks
 }

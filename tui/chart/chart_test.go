@@ -64,16 +64,36 @@ func TestTicksHoldForAnyRange(t *testing.T) {
 	})
 }
 
+// Every label of a time axis finds its place below the axis.
+func TestTimeTicksAreAllDrawn(t *testing.T) {
+	clock := time.Date(2026, 12, 1, 16, 12, 0, 0, time.UTC)
+	for _, span := range []time.Duration{time.Minute, 5 * time.Minute, 30 * time.Minute, 6 * time.Hour, 3 * 24 * time.Hour, 30 * 24 * time.Hour} {
+		end := 40 * 24 * time.Hour
+		ticks := TimeTicks(end, span, true, clock, 8)
+		f := frame.New(80, 6, frame.Style{})
+		New(f.Area(), Axes{X: Between((end - span).Seconds(), end.Seconds()), Y: Between(0, 1), XTicks: ticks, LabelWidth: 4}).Done()
+		drawn := 0
+		for _, k := range ticks {
+			if strings.Contains(f.String(), k.Label) {
+				drawn++
+			}
+		}
+		if len(ticks) < 3 || drawn < len(ticks)-1 { // one may lie across the end
+			t.Errorf("%v: %d of the labels %q are drawn:\n%s", span, drawn, labels(ticks), f)
+		}
+	}
+}
+
 func TestTimeTicksFollowTheClockOnTheWall(t *testing.T) {
 	zone := time.FixedZone("half", 5*3600+1800)
 	clock := time.Date(2026, 12, 1, 16, 12, 0, 0, zone)
-	if got := labels(TimeTicks(time.Hour, 30*time.Minute, true, clock, 4)); got != "16:10 16:00 15:50" {
+	if got := labels(TimeTicks(time.Hour, 30*time.Minute, true, clock, 4)); got != "15:50 16:00 16:10" {
 		t.Errorf("ticks of half an hour are %q", got)
 	}
 	if got := labels(TimeTicks(time.Hour, 2*time.Minute, true, clock, 4)); got != "−90 s −60 s −30 s" {
 		t.Errorf("ticks of two minutes are %q", got)
 	}
-	if got := labels(TimeTicks(time.Hour, 2*time.Minute, false, clock, 4)); got != "16:12:00 16:11:30 16:11:00 16:10:30 16:10:00" {
+	if got := labels(TimeTicks(time.Hour, 2*time.Minute, false, clock, 4)); got != "16:10:00 16:10:30 16:11:00 16:11:30 16:12:00" {
 		t.Errorf("ticks of two minutes in the past are %q", got)
 	}
 }

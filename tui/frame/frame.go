@@ -16,6 +16,14 @@ type Frame struct {
 	w, h  int
 	style Style
 	cells []Cell
+
+	places []place
+}
+
+// place is a named rectangle, for the mouse.
+type place struct {
+	name       string
+	x, y, w, h int
 }
 
 // New returns a blank frame. Negative sizes count as zero.
@@ -37,6 +45,18 @@ func (f *Frame) At(x, y int) Cell {
 		return Cell{Rune: ' '}
 	}
 	return f.cells[y*f.w+x]
+}
+
+// PlaceAt returns the name of the place last named at a cell, and how far
+// across it the cell lies, from 0 to 1. The name is empty where there is none.
+func (f *Frame) PlaceAt(x, y int) (name string, across float64) {
+	for i := len(f.places) - 1; i >= 0; i-- {
+		p := f.places[i]
+		if x >= p.x && y >= p.y && x < p.x+p.w && y < p.y+p.h {
+			return p.name, float64(x-p.x) / float64(max(p.w-1, 1))
+		}
+	}
+	return "", 0
 }
 
 // Area returns the whole frame as an area to draw in.
@@ -84,6 +104,13 @@ func (a Area) At(x, y int) Cell {
 		return Cell{Rune: ' '}
 	}
 	return a.f.cells[(a.y+y)*a.f.w+a.x+x]
+}
+
+// Name makes the area a place that PlaceAt finds.
+func (a Area) Name(name string) {
+	if a.f != nil && a.W > 0 && a.H > 0 {
+		a.f.places = append(a.f.places, place{name, a.x, a.y, a.W, a.H})
+	}
 }
 
 // Fill draws r in every cell.

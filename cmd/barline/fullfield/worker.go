@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"math"
+	"slices"
 	"sync"
 
 	"barline/model/anchor"
@@ -70,8 +71,10 @@ type Worker struct {
 const (
 	// mostAhead bounds the runs asked for ahead; more drop the oldest.
 	mostAhead = 256
-	// mostRecent bounds the results that may be reused.
-	mostRecent = 32
+	// mostRecent bounds the results that may be reused, recentNumbers what
+	// they hold: 16 MB, of which a result with its evolution is about 1.
+	mostRecent    = 32
+	recentNumbers = 2 << 20
 	// evolutionSamples is the number of places along the fibre of an answer.
 	evolutionSamples = 96
 )
@@ -272,12 +275,33 @@ func (w *Worker) propagate(ctx context.Context, s pulse.Setup, report func(float
 		return nil, err
 	}
 	w.mu.Lock()
-	w.recent = append(w.recent, r)
-	if len(w.recent) > mostRecent {
-		w.recent = append([]*pulse.Result(nil), w.recent[1:]...)
-	}
+	w.remember(r)
 	w.mu.Unlock()
 	return r, nil
+}
+
+// remember keeps a result for later questions and lets go of the oldest where
+// there are too many or too large ones. The caller holds mu.
+func (w *Worker) remember(r *pulse.Result) {
+	kept := append(slices.Clone(w.recent), r)
+	numbers := 0
+	for _, k := range kept {
+		numbers += size(k)
+	}
+	for len(kept) > 1 && (len(kept) > mostRecent || numbers > recentNumbers) {
+		numbers -= size(kept[0])
+		kept = kept[1:]
+	}
+	w.recent = slices.Clone(kept)
+}
+
+// size returns how many numbers a result holds, by its large parts.
+func size(r *pulse.Result) int {
+	n := len(r.Output.Energy) + len(r.Power)
+	for _, s := range r.Evolution {
+		n += len(s.Energy)
+	}
+	return n
 }
 
 // report returns a progress function that tells every twentieth.

@@ -228,3 +228,26 @@ func TestImpossibleQuestionIsAnswered(t *testing.T) {
 		t.Errorf("a pulse without energy: %+v", a)
 	}
 }
+
+func TestResultsKeptAreBounded(t *testing.T) {
+	w := NewWorker(Options{})
+	large := func(numbers int) *pulse.Result {
+		return &pulse.Result{Evolution: []pulse.Sample{{Energy: make([]float64, numbers)}}}
+	}
+	for range 100 {
+		w.remember(large(10))
+	}
+	if len(w.recent) != mostRecent {
+		t.Errorf("%d small results are kept, expected %d", len(w.recent), mostRecent)
+	}
+	for range 10 {
+		w.remember(large(recentNumbers / 4))
+	}
+	if len(w.recent) != 4 {
+		t.Errorf("%d large results are kept, expected 4", len(w.recent))
+	}
+	w.remember(large(2 * recentNumbers))
+	if len(w.recent) != 1 {
+		t.Errorf("beside the newest %d results are kept, which is too large for them", len(w.recent)-1)
+	}
+}

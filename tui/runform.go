@@ -7,16 +7,17 @@ import (
 	"time"
 
 	"barline/model/live"
+	"barline/model/procedure"
 	"barline/model/unit"
 	"barline/tui/frame"
 )
 
-func pressScan(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+func pressRun(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	if !armed(s) {
 		v.message = "not armed: press a first"
 		return v, nil
 	}
-	v = v.open(scanOverlay)
+	v = v.open(runOverlay)
 	return v, nil
 }
 
@@ -103,16 +104,55 @@ func parseScan(s *live.Snapshot, text string) (*live.Program, error) {
 	return p, nil
 }
 
-// shortest returns how long a scan takes if every step settles at once.
+// runExample is how a procedure is written in one line.
+const runExample = "purge cycles 3, low 50 mbar, high 3 bar; fill to 9 bar"
+
+// parseRun reads what a person wants to run, a scan in its short form or a
+// procedure in one line, and checks it against the limits of the bench.
+func parseRun(s *live.Snapshot, text string) (*live.Program, error) {
+	text = strings.TrimSpace(text)
+	if text == "" || text[0] >= '0' && text[0] <= '9' {
+		return parseScan(s, text)
+	}
+	if s.Bench == nil {
+		return nil, fmt.Errorf("no bench file: its limits are not known")
+	}
+	ambient, err := ambientPressure(s)
+	if err != nil {
+		ambient = 0 // procedures that need it say so
+	}
+	p, err := procedure.ParseLine(text, ambient)
+	if err != nil {
+		return nil, err
+	}
+	return p.Compile(procedure.Bench{
+		Limits: s.Bench.Limits.Enforced(), Ambient: ambient,
+		PressureFor: func(wanted unit.Metre) (unit.Pascal, error) {
+			at, ok := pressureOf(s.Curve, wanted)
+			if !ok {
+				return 0, fmt.Errorf("%s nm is not on the predicted curve", fixed(wanted.Nanometres(), 1))
+			}
+			return at, nil
+		},
+	})
+}
+
+// shortest returns how long a program takes if every step settles at once.
 func shortest(s *live.Snapshot, p *live.Program) time.Duration {
 	l := s.Bench.Limits.Enforced()
 	at, total := s.Setpoint, time.Duration(0)
 	for _, ph := range p.Phases {
+		total += ph.Dwell
+		if ph.Action != live.Reach {
+			continue
+		}
 		rate := l.RiseRate
 		if ph.Target < at {
 			rate = l.FallRate
 		}
-		total += ph.Dwell
+		if ph.Rate > 0 {
+			rate = min(rate, ph.Rate)
+		}
 		if rate > 0 {
 			total += time.Duration(math.Abs(float64(ph.Target-at)) / float64(rate) * 1e9)
 		}
@@ -121,24 +161,44 @@ func shortest(s *live.Snapshot, p *live.Program) time.Duration {
 	return total
 }
 
-func drawScanForm(a frame.Area, s *live.Snapshot, v view) {
-	b := box(a, "run a scan", 66, 7, frame.Target)
-	b.Text(0, 0, "from : to : step : dwell, such as "+scanExample, frame.Faint)
-	input(b.Sub(0, 2, b.W, 1), v.text)
+func drawRunForm(a frame.Area, s *live.Snapshot, v view) {
+	b := box(a, "run a scan or a procedure", 74, 10, frame.Target)
+	b.Text(0, 0, "scan: from : to : step : dwell   "+scanExample, frame.Faint)
+	b.Text(0, 1, "else  "+runExample, frame.Faint)
+	b.Text(0, 2, "verbs: evacuate, purge, fill, step, scan, hold, leak test, vent", frame.Faint)
+	input(b.Sub(0, 4, b.W, 1), v.text)
 	if v.text == "" {
 		return
 	}
-	p, err := parseScan(s, v.text)
+	p, err := parseRun(s, v.text)
 	if err != nil {
-		wrap(b.Sub(0, 4, b.W, 3), err.Error(), frame.Caution)
+		wrap(b.Sub(0, 6, b.W, 4), err.Error(), frame.Caution)
 		return
 	}
-	first, last := p.Phases[0].Target, p.Phases[len(p.Phases)/2].Target
-	b.Text(0, 4, fmt.Sprintf("%d steps, at least %s", len(p.Phases), spanText(shortest(s, p))), frame.Plain)
-	if from := emissionAt(s, first); from != "" {
-		b.Text(0, 5, from+" at "+pressureText(first), frame.Predicted)
+	lowest, highest, some := reach(p)
+	b.Text(0, 6, fmt.Sprintf("%s: %d steps, at least %s", p.Name, len(p.Phases), spanText(shortest(s, p))), frame.Plain)
+	if !some {
+		return
 	}
-	if to := emissionAt(s, last); to != "" {
-		b.Text(0, 6, to+" at "+pressureText(last), frame.Predicted)
+	b.Text(0, 7, "highest "+outlook(s, highest, highest), frame.Plain)
+	if from := emissionAt(s, lowest); from != "" {
+		b.Text(0, 8, from+" at "+pressureText(lowest), frame.Predicted)
 	}
+	if to := emissionAt(s, highest); to != "" && highest != lowest {
+		b.Text(0, 9, to+" at "+pressureText(highest), frame.Predicted)
+	}
+}
+
+// reach returns the lowest and highest pressure that a program goes to.
+func reach(p *live.Program) (lowest, highest unit.Pascal, some bool) {
+	for _, ph := range p.Phases {
+		if ph.Action != live.Reach {
+			continue
+		}
+		if !some {
+			lowest, highest, some = ph.Target, ph.Target, true
+		}
+		lowest, highest = min(lowest, ph.Target), max(highest, ph.Target)
+	}
+	return lowest, highest, some
 }
