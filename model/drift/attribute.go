@@ -23,6 +23,9 @@ type Cause struct {
 	Size float64
 	// Effect is what one unit of the amount does to each observable.
 	Effect [ObservableCount]float64
+	// Doubt is how badly each effect is known, as a share of it, one standard
+	// deviation; zero: exactly, as that of a gauge on itself is.
+	Doubt [ObservableCount]float64
 	// Text writes an amount for a person, such as "moved by -0.13 bar".
 	Text func(amount float64) string
 }
@@ -108,22 +111,51 @@ func Attribute(causes []Cause, o Observation) ([]Finding, error) {
 }
 
 // explain fills in the most likely amount and returns the logarithm of the
-// evidence, up to a constant that all causes share. The covariance is
-// diagonal plus one direction, so its inverse and determinant are known
-// (Sherman & Morrison, Ann. Math. Stat. 21, 124 (1950)).
+// evidence, up to a constant that all causes share.
 func (f *Finding) explain(o Observation, seen []Observable) float64 {
-	var ee, ey, yy, logs float64 // effect·effect, effect·shift … in units of sigma
-	for _, k := range seen {
-		e, y := f.Cause.Effect[k]/o.Sigma[k], o.Shift[k]/o.Sigma[k]
-		ee, ey, yy = ee+e*e, ey+e*y, yy+y*y
-		logs += 2 * math.Log(o.Sigma[k])
+	effect, shift, sigma, doubt := make([]float64, len(seen)), make([]float64, len(seen)), make([]float64, len(seen)), make([]float64, len(seen))
+	for i, k := range seen {
+		effect[i], shift[i], sigma[i], doubt[i] = f.Cause.Effect[k], o.Shift[k], o.Sigma[k], f.Cause.Doubt[k]
 	}
-	size2 := f.Cause.Size * f.Cause.Size
-	f.Amount = ey / (ee + 1/size2)
-	f.AmountSigma = 1 / math.Sqrt(ee+1/size2)
-	f.Left = math.Sqrt(math.Max(yy-2*f.Amount*ey+f.Amount*f.Amount*ee, 0))
-	return -(yy - ey*ey/(ee+1/size2) + logs + math.Log1p(size2*ee)) / 2
+	w := weigh(0, f.Cause.Size, effect, doubt, shift, sigma)
+	f.Amount, f.AmountSigma, f.Left = w.amount, w.sigma, w.left
+	return w.evidence
 }
+
+// weighed is what values seen say of an amount.
+type weighed struct{ amount, sigma, left, evidence float64 }
+
+// weigh finds the most likely amount of a cause that was believed to be
+// amount ± size, from values seen. The covariance of the values is diagonal
+// plus one direction, so its inverse and determinant are known (Sherman &
+// Morrison, Ann. Math. Stat. 21, 124 (1950)). What is not known of an effect
+// grows with the amount: it is taken at the most likely one, which is found by
+// going round a few times.
+func weigh(amount, size float64, effect, doubt, seen, sigma []float64) weighed {
+	var w weighed
+	w.amount = amount
+	for round := range 4 {
+		var ee, ey, yy, logs float64 // effect·effect, effect·shift … in units of sigma
+		for k, e := range effect {
+			v := sigma[k] * sigma[k]
+			if round > 0 { // the first round takes the effects for known
+				v += square(w.amount * e * doubt[k])
+			}
+			y := seen[k] - amount*e
+			ee, ey, yy = ee+e*e/v, ey+e*y/v, yy+y*y/v
+			logs += math.Log(v)
+		}
+		size2 := size * size
+		more := ey * size2 / (1 + ee*size2)
+		w.amount = amount + more
+		w.sigma = size / math.Sqrt(1+ee*size2)
+		w.left = math.Sqrt(math.Max(yy-2*more*ey+more*more*ee, 0))
+		w.evidence = -(yy - ey*more + logs + math.Log1p(size2*ee)) / 2
+	}
+	return w
+}
+
+func square(x float64) float64 { return x * x }
 
 func (o Observation) seen() []Observable {
 	var seen []Observable

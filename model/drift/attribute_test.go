@@ -28,6 +28,9 @@ func TestEvidenceIsTheIntegralOverAmounts(t *testing.T) {
 	o := Observation{Sigma: testSigma}
 	o.Shift[Wavelength], o.Shift[Strength], o.Shift[Disagreement] = 0.4e-9, -0.02, -3000
 	causes := Causes(testSlopes, testState)
+	for i := range causes {
+		causes[i].Doubt = [ObservableCount]float64{} // its own test below
+	}
 	slow := func(c Cause) float64 {
 		sum, step := 0.0, c.Size/4000
 		for a := -8 * c.Size; a <= 8*c.Size; a += step {
@@ -72,13 +75,14 @@ func TestEvidenceIsTheIntegralOverAmounts(t *testing.T) {
 	}
 }
 
-// draw makes a cause happen and returns what is seen of it.
+// draw makes a cause happen, with effects as badly known as they are said to
+// be, and returns what is seen of it.
 func draw(rng *rand.Rand, c Cause, sigma [ObservableCount]float64) (Observation, float64) {
 	amount := c.Size * rng.NormFloat64()
 	o := Observation{Sigma: sigma}
 	for k, s := range sigma {
 		if s > 0 {
-			o.Shift[k] = c.Effect[k]*amount + s*rng.NormFloat64()
+			o.Shift[k] = c.Effect[k]*amount*(1+c.Doubt[k]*rng.NormFloat64()) + s*rng.NormFloat64()
 		}
 	}
 	return o, amount
@@ -283,5 +287,81 @@ func TestTheStepThatTellsIsOffered(t *testing.T) {
 	}
 	if worths[0].Step.Name != "go to 1 bar" || worths[0].Certain < 0.95 {
 		t.Errorf("offered %s", worths[0].Step.Name)
+	}
+}
+
+// Looking at one half of the observables and then, as a step, at the other must
+// say the same as looking at all of them at once.
+func TestToldAfterwardsIsToldAtOnce(t *testing.T) {
+	causes := Causes(testSlopes, testState)
+	for i := range causes {
+		causes[i].Doubt = [ObservableCount]float64{}
+	}
+	all := Observation{Sigma: testSigma}
+	all.Shift[Wavelength], all.Shift[Strength], all.Shift[Disagreement], all.Shift[Decay] = 0.4e-9, -0.02, -3000, 0.1
+	first, later := all, [ObservableCount]float64{}
+	var seen []float64
+	for _, k := range []Observable{Strength, Disagreement, Decay} {
+		first.Sigma[k], later[k] = 0, testSigma[k]
+		seen = append(seen, all.Shift[k])
+	}
+	want, err := Attribute(causes, all)
+	if err != nil {
+		t.Fatal(err)
+	}
+	before, err := Attribute(causes, first)
+	if err != nil {
+		t.Fatal(err)
+	}
+	step := Elsewhere("look again", time.Minute, testSlopes, testState, later)
+	step.Doubt = nil
+	got, err := step.Told(before, seen)
+	if err != nil {
+		t.Fatal(err)
+	}
+	moved := false
+	for i, w := range want {
+		g := got[i]
+		if g.Cause.Name != w.Cause.Name || math.Abs(g.Probability-w.Probability) > 1e-9 ||
+			math.Abs(g.Amount-w.Amount) > 1e-9*w.Cause.Size || math.Abs(g.AmountSigma-w.AmountSigma) > 1e-9*w.Cause.Size {
+			t.Errorf("afterwards %s %v %v ± %v, at once %s %v %v ± %v", g.Cause.Name, g.Probability, g.Amount, g.AmountSigma,
+				w.Cause.Name, w.Probability, w.Amount, w.AmountSigma)
+		}
+		moved = moved || math.Abs(before[i].Probability-w.Probability) > 0.1
+	}
+	if !moved {
+		t.Error("the step told nothing")
+	}
+	if _, err := step.Told(before, seen[1:]); err == nil {
+		t.Error("a value short is accepted")
+	}
+	if _, err := step.Told(nil, seen); !errors.Is(err, ErrNoEvidence) {
+		t.Errorf("no findings: %v", err)
+	}
+}
+
+// An effect that is known to a fifth explains a shift that is a fifth off, and
+// not one that has the other sign.
+func TestDoubtForgivesSizeNotSign(t *testing.T) {
+	o := Observation{Sigma: testSigma}
+	coupling := func(strength float64) Finding {
+		o.Shift[Wavelength], o.Shift[Strength], o.Shift[Width] = 0.48e-9, strength, -0.036
+		findings, err := Attribute(Causes(testSlopes, testState), o)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, f := range findings {
+			if f.Cause.Name == "coupling into the fibre" {
+				return f
+			}
+		}
+		t.Fatal("coupling is not among the findings")
+		return Finding{}
+	}
+	if f := coupling(-0.18 * 1.2); f.Left > 1.5 || f.Probability < 0.5 {
+		t.Errorf("a fifth more is %.1f standard deviations off, %.0f %%", f.Left, 100*f.Probability)
+	}
+	if f := coupling(0.18); f.Left < 4 {
+		t.Errorf("the other sign is %.1f standard deviations off", f.Left)
 	}
 }

@@ -67,6 +67,17 @@ type State struct {
 	EnergyMetered, TemperatureMetered bool
 }
 
+// How well slopes are known, as shares: those of pressure, temperature and air
+// follow from the linear dispersion, those of energy, duration and core from
+// runs of a bench that is only nearly this one, and how a coat on the core
+// takes light away nobody has measured. From experience, no source.
+const (
+	doubtLinear   = 0.05
+	doubtRuns     = 0.15
+	doubtStrength = 0.2
+	doubtCoat     = 0.5
+)
+
 // Causes lists what moves the emission of a bench, with the amounts in which
 // it usually comes (common practice, no source). The signs follow from what
 // the residual is: measured minus predicted, predicted from what the gauges
@@ -112,6 +123,18 @@ func Causes(s Slopes, b State) []Cause {
 	} else { // nothing to disagree with
 		for i := range causes {
 			causes[i].Effect[Disagreement] = 0
+		}
+	}
+	for i := range causes {
+		doubt := &causes[i].Doubt
+		switch causes[i].Name {
+		case "pulse energy", "coupling into the fibre", "pulse duration":
+			doubt[Wavelength], doubt[Strength], doubt[Width] = doubtRuns, doubtStrength, doubtStrength
+		case "coating of the core":
+			doubt[Wavelength], doubt[Strength] = doubtRuns, doubtCoat
+		case "spectrometer wavelength", "slow leak":
+		default:
+			doubt[Wavelength] = doubtLinear
 		}
 	}
 	return causes
