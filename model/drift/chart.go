@@ -68,11 +68,7 @@ func NewChart(q Quiet, d Design) (Chart, error) {
 		slack = math.Min(math.Max(d.Shift/q.GroupSigma/2, 0.1), 2)
 	}
 	values := 2 * float64(d.FalseAlarm) / float64(q.Group) // for each of the two
-	threshold, err := ThresholdCUSUM(slack, values)
-	if err != nil {
-		return Chart{}, err
-	}
-	limit, err := LimitEWMA(d.Lambda, values)
+	threshold, limit, err := design(slack, d.Lambda, values)
 	if err != nil {
 		return Chart{}, err
 	}
@@ -97,6 +93,24 @@ func (c *Chart) Restart() {
 	c.ewma.value, c.ewma.steps = 0, 0
 	c.cusum.high, c.cusum.low, c.cusum.sinceHigh, c.cusum.sinceLow = 0, 0, 0, 0
 	c.open, c.last = false, Point{}
+}
+
+// Rebase moves the target by an amount, as where the prediction that a residual
+// counts from has moved: what was seen before keeps its distance.
+func (c *Chart) Rebase(by float64) {
+	c.quiet.Mean += by
+	c.ewma.Target += by
+	c.cusum.Target += by
+	c.sum += by * float64(c.count)
+	c.last.Mean, c.last.Average = c.last.Mean+by, c.last.Average+by
+	c.last.Lower, c.last.Upper = c.last.Lower+by, c.last.Upper+by
+}
+
+// Limits returns the limits of the moving average in the long run.
+func (c *Chart) Limits() (lower, upper float64) {
+	settled := c.ewma
+	settled.steps = 1 << 20
+	return settled.Limits()
 }
 
 // Add takes a usable value. It returns a verdict where the value is the first
