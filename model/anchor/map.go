@@ -15,6 +15,9 @@ type Map struct {
 	branches []branch
 	spacing  struct{ density, energy float64 } // of the nodes, the smallest: relative, and in J
 	slopes   [InputCount]Slope
+	// longer is the run with a longer pulse, and plain the node it compares
+	// with; nil before they stand.
+	longer, plain *Node
 	leftOut  unit.Metre
 	tested   int
 	coarse   bool
@@ -60,6 +63,7 @@ func (b *Bench) Build(nodes []Node) *Map {
 	m.branches = b.link(m.nodes)
 	m.measure()
 	m.slopes = b.slopesOf(m, nodes)
+	m.longer, m.plain = m.stretched(nodes)
 	m.leftOut, m.tested = m.leaveOut()
 	m.coarse = m.rows() < 3 || m.spacing.density > 1.5*densityStep
 	return m

@@ -25,6 +25,7 @@ type Bench struct {
 	Instrument []Instrument `toml:"instrument"`
 	Emission   Emission     `toml:"emission"`
 	Logbook    Logbook      `toml:"logbook"`
+	Drift      Drift        `toml:"drift"`
 	Alarms     Alarms       `toml:"alarms"`
 	Screen     Screen       `toml:"screen"`
 }
@@ -134,6 +135,20 @@ type Logbook struct {
 	DeadbandTemperature unit.KelvinDifference `toml:"deadband_temperature" form:"default=0.1 K; least=0 K"`
 	DeadbandWavelength  unit.Metre            `toml:"deadband_wavelength" form:"default=0.05 nm; least=0 nm"`
 	Compress            bool                  `toml:"compress"` // segments that are finished
+}
+
+// Drift says what counts as drift of the light. A shift that is smaller than
+// these is charted, and nobody is called.
+type Drift struct {
+	// Learn is the shortest quiet stretch that is learnt from: sixty means of
+	// ten seconds, at least.
+	Learn      unit.Second          `toml:"learn" form:"default=10 min; least=10 min; most=25 min"`
+	FalseAlarm unit.Second          `toml:"false_alarm" form:"default=1000 h; least=10 h; most=100000 h"` // mean time between, of one chart
+	Wavelength unit.Metre           `toml:"wavelength" form:"default=0.2 nm; above=0 nm"`
+	Strength   unit.Fraction        `toml:"strength" form:"default=10 %; above=0 %"`    // relative
+	Width      unit.Fraction        `toml:"width" form:"default=5 %; above=0 %"`        // relative
+	Gauges     unit.Pascal          `toml:"gauges" form:"default=10 mbar; above=0 bar"` // cell A less cell B
+	Leak       unit.PascalPerSecond `toml:"leak" form:"default=0.01 mbar/s; above=0 bar/s"`
 }
 
 // Alarms says whom to call.
