@@ -9,6 +9,7 @@ import (
 
 	"barline/cmd/barline/fullfield"
 	"barline/cmd/barline/loop"
+	"barline/model/drift"
 	"barline/model/emission"
 	"barline/model/live"
 	"barline/model/unit"
@@ -35,6 +36,14 @@ func (g *guided) Predict(in emission.Input, before *emission.Prediction) emissio
 		}
 	}
 	return g.estimate.Predict(in, same(g.estimate.Setup().Answer))
+}
+
+// Slopes implements live.Sloped.
+func (g *guided) Slopes(p emission.Prediction) (drift.Slopes, bool) {
+	if g.anchored != nil && p.Answer == emission.Anchored {
+		return live.SlopesOf(g.anchored, p)
+	}
+	return live.SlopesOf(g.estimate, p)
 }
 
 // curve fills dst with predictions evenly spaced from nothing to most.

@@ -35,6 +35,10 @@ func recordText(r logbook.Record) string {
 		said, err = decoded[live.AlarmData](r)
 	case live.KindPrediction:
 		said, err = decoded[live.PredictionData](r)
+	case live.KindMeans:
+		said, err = decoded[live.MeansData](r)
+	case live.KindDrift:
+		said, err = decoded[live.DriftData](r)
 	case live.KindStep:
 		said, err = decoded[live.StepData](r)
 	case live.KindNote:

@@ -56,6 +56,7 @@ func (p *player) configure(text []byte, at time.Time) error {
 		p.clk = clock.NewFake(at)
 		p.clk.Advance(time.Second) // an instant of zero means never
 	}
+	s.state.Follow()
 	curve := s.predictor.Clone()
 	p.latest = map[string]reading.Reading{}
 	p.loop = loop.New(loop.Options{
@@ -113,6 +114,19 @@ func (p *player) take(r logbook.Record) error {
 		p.tell(at, d)
 	case live.KindIntent:
 		var d live.IntentData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.tell(at, d)
+	case live.KindMeans:
+		var d live.MeansData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.tell(at, d)
+		return nil
+	case live.KindDrift:
+		var d live.DriftData
 		if err := r.Decode(&d); err != nil {
 			return err
 		}

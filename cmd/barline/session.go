@@ -81,7 +81,7 @@ func newSession(b *bench.Bench, text []byte) (*session, error) {
 	if err != nil {
 		return nil, coded{exitUsage, err}
 	}
-	core, state, err := live.New(b, predictor)
+	core, state, err := live.New(b, &guided{estimate: predictor})
 	if err != nil {
 		return nil, coded{exitUsage, err}
 	}

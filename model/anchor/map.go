@@ -18,9 +18,9 @@ type Map struct {
 	// longer is the run with a longer pulse, and plain the node it compares
 	// with; nil before they stand.
 	longer, plain *Node
-	leftOut  unit.Metre
-	tested   int
-	coarse   bool
+	leftOut       unit.Metre
+	tested        int
+	coarse        bool
 }
 
 // Slope is how κ moves with an uncertain input, from one run at the central

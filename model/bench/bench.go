@@ -145,7 +145,7 @@ type Drift struct {
 	Learn      unit.Second          `toml:"learn" form:"default=10 min; least=10 min; most=25 min"`
 	FalseAlarm unit.Second          `toml:"false_alarm" form:"default=1000 h; least=10 h; most=100000 h"` // mean time between, of one chart
 	Wavelength unit.Metre           `toml:"wavelength" form:"default=0.2 nm; above=0 nm"`
-	Strength   unit.Fraction        `toml:"strength" form:"default=10 %; above=0 %"`    // relative
+	Strength   unit.Fraction        `toml:"strength" form:"default=5 %; above=0 %"`     // relative
 	Width      unit.Fraction        `toml:"width" form:"default=5 %; above=0 %"`        // relative
 	Gauges     unit.Pascal          `toml:"gauges" form:"default=10 mbar; above=0 bar"` // cell A less cell B
 	Leak       unit.PascalPerSecond `toml:"leak" form:"default=0.01 mbar/s; above=0 bar/s"`

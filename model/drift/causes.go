@@ -46,15 +46,18 @@ func (o Observable) String() string {
 // use or from full-field runs. Wavelength slopes are in m of emission,
 // relative ones per relative change.
 type Slopes struct {
-	Pressure    float64 // m per Pa
-	Temperature float64 // m per K at constant pressure
-	Energy      float64 // m per relative change of the energy in the fibre
-	Duration    float64 // m per relative change of the pulse duration
-	Core        float64 // m per relative change of the core radius
-	Air         float64 // m per share of air
+	Pressure    float64 `json:"pressure_m_Pa"`
+	Temperature float64 `json:"temperature_m_K"` // at constant pressure
+	Energy      float64 `json:"energy_m"`        // relative change of the energy in the fibre
+	Duration    float64 `json:"duration_m"`      // relative change of the pulse duration
+	Core        float64 `json:"core_radius_m"`   // relative change
+	Air         float64 `json:"air_m"`           // share of air
 
-	StrengthEnergy, StrengthDuration float64 // relative per relative
-	WidthEnergy, WidthDuration       float64 // relative per relative
+	// Relative per relative.
+	StrengthEnergy   float64 `json:"strength_energy"`
+	StrengthDuration float64 `json:"strength_duration"`
+	WidthEnergy      float64 `json:"width_energy"`
+	WidthDuration    float64 `json:"width_duration"`
 }
 
 // State is the bench that the causes act on.
@@ -64,7 +67,8 @@ type State struct {
 	TwoGauges bool
 	// EnergyMetered and TemperatureMetered say that the prediction takes the
 	// measured value, so that a real change of it leaves no residual.
-	EnergyMetered, TemperatureMetered bool
+	EnergyMetered      bool
+	TemperatureMetered bool
 }
 
 // How well slopes are known, as shares: those of pressure, temperature and air

@@ -14,7 +14,12 @@ import (
 // shares it with one that looks the same from here, it says so. Shift is in m,
 // since in the local time to be shown.
 func Sentence(shift float64, since time.Time, findings []Finding, alike map[string][]string) string {
-	parts := []string{fmt.Sprintf("%+.1f nm since %s", shift*1e9, since.Format("15:04"))}
+	lead := fmt.Sprintf("%+.1f nm since %s", shift*1e9, since.Format("15:04"))
+	return strings.Join(append([]string{lead}, Explain(findings, alike)...), "; ")
+}
+
+// Explain says what explains a drift, a cause at a time, as Sentence does.
+func Explain(findings []Finding, alike map[string][]string) (parts []string) {
 	for i, f := range findings {
 		if f.Probability < 0.1 && i > 0 {
 			break
@@ -37,10 +42,16 @@ func Sentence(shift float64, since time.Time, findings []Finding, alike map[stri
 		}
 		switch {
 		case len(same) > 0:
-			parts = append(parts, fmt.Sprintf("%s and %s cannot be told apart from here", first.Cause.Name, strings.Join(same, ", ")))
+			parts = append(parts, listed(append([]string{first.Cause.Name}, same...))+" cannot be told apart from here")
 		case first.Probability < 0.5:
 			parts = append(parts, "no cause stands out")
 		}
 	}
-	return strings.Join(parts, "; ")
+	return parts
+}
+
+// listed joins names as a sentence does: a, b and c.
+func listed(names []string) string {
+	n := len(names)
+	return strings.Join(names[:n-1], ", ") + " and " + names[n-1]
 }

@@ -110,6 +110,20 @@ func (m *Monitor) Standing() (by Observable, since time.Duration, ok bool) {
 	return m.by, m.since, m.standing
 }
 
+// Here reports whether what stands is seen at the present place, and not only
+// remembered of another.
+func (m *Monitor) Here() bool {
+	if !m.standing || m.count == 0 {
+		return false
+	}
+	for o := range m.places[0].track {
+		if m.places[0].track[o].ringing {
+			return true
+		}
+	}
+	return m.leaks
+}
+
 // RunsAway reports whether what stands is a stretch that never stood still.
 func (m *Monitor) RunsAway() bool { return m.count > 0 && m.places[0].runs && !m.places[0].learnt }
 

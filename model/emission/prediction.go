@@ -78,6 +78,12 @@ type Prediction struct {
 	Sigma        unit.Metre // standard uncertainty of Emission
 	Extrapolated bool       // index source beyond its checked range
 
+	// Calibration is the name of the one that corrected the emission, empty
+	// where none did; Beyond says that the input lies outside the range in
+	// which it was made.
+	Calibration string
+	Beyond      bool
+
 	// Kappa is the nonlinear part of phase matching that was used, in 1/m.
 	Kappa float64
 	// IonisedFraction is a rough guess for the compressed pulse.
@@ -105,11 +111,12 @@ type CurvePoint struct {
 	// Others are further lobes that the source may emit, strongest first; 0
 	// where there are no more.
 	Others [MaxBranches - 1]unit.Metre
+	Beyond bool // outside the range of the calibration in use
 }
 
 // Point returns the prediction as a point of a curve.
 func (p *Prediction) Point() CurvePoint {
-	c := CurvePoint{Pressure: p.Input.Pressure, Emission: p.Emission, Sigma: p.Sigma}
+	c := CurvePoint{Pressure: p.Input.Pressure, Emission: p.Emission, Sigma: p.Sigma, Beyond: p.Beyond}
 	for i := 1; i < min(p.BranchCount, MaxBranches); i++ {
 		c.Others[i-1] = p.Branches[i].Emission
 	}

@@ -7,6 +7,7 @@ import (
 
 	"barline/model/alarm"
 	"barline/model/bench"
+	"barline/model/drift"
 	"barline/model/reading"
 )
 
@@ -17,6 +18,9 @@ const (
 	alarmRecord   = "nothing is being recorded"
 	alarmCommand  = "command not confirmed"
 	alarmDisagree = "cell gauges disagree"
+	alarmLight    = "the light drifts"
+	alarmGauges   = "cell gauges drift apart"
+	alarmLeak     = "pressure falls with every valve shut"
 )
 
 // watched is a channel whose silence somebody must hear of.
@@ -59,6 +63,9 @@ func alarmsOf(b *bench.Bench) (definitions []alarm.Definition, channels []watche
 			Action: "Check both cell valves and the zero of both gauges.", ShelveAtMost: 8 * time.Hour,
 		},
 	}
+	if b.Drift.Wavelength > 0 {
+		definitions = append(definitions, driftAlarms()...)
+	}
 	for i := range b.Instrument {
 		in := &b.Instrument[i]
 		definitions = append(definitions, alarm.Definition{
@@ -87,6 +94,42 @@ func alarmsOf(b *bench.Bench) (definitions []alarm.Definition, channels []watche
 	return definitions, channels
 }
 
+// driftAlarms are those of a light that moves. What explains it stands in the
+// place of their cause.
+func driftAlarms() []alarm.Definition {
+	return []alarm.Definition{
+		{
+			Name: alarmLight, Priority: alarm.Medium, Cause: "the light is not where it was quiet",
+			Consequence: "nothing is changed by itself", Action: "Look at the drift page: causes, and the step that would tell them apart.", ShelveAtMost: 24 * time.Hour,
+		},
+		{
+			Name: alarmGauges, Priority: alarm.Medium, Cause: "two cell gauges moved against each other",
+			Consequence: "the prediction rests on their mean", Action: "Look at the drift page.", ShelveAtMost: 24 * time.Hour,
+		},
+		{
+			Name: alarmLeak, Priority: alarm.Medium, Cause: "gas leaves the cells",
+			Consequence: "nothing is changed by itself", Action: "Look for the leak. Noble gas displaces the air that you breathe: air the room.", ShelveAtMost: 8 * time.Hour,
+		},
+	}
+}
+
+// watchLight evaluates the alarms of drift. Where nothing can be said they
+// stay as they are.
+func (c *Core) watchLight(s *State, evaluate func(name string, condition alarm.Condition)) {
+	if c.driftOf.Matters[drift.Wavelength] == 0 {
+		return
+	}
+	by, _, standing := s.drift.monitor.Standing()
+	for _, a := range [...]struct {
+		name string
+		is   bool
+	}{
+		{alarmLight, by != drift.Disagreement && by != drift.Decay}, {alarmGauges, by == drift.Disagreement}, {alarmLeak, by == drift.Decay},
+	} {
+		evaluate(a.name, alarm.When(standing && a.is))
+	}
+}
+
 // watch evaluates every alarm at the present instant.
 func (c *Core) watch(s *State, fx []Effect) []Effect {
 	at := s.Now
@@ -113,6 +156,7 @@ func (c *Core) watch(s *State, fx []Effect) []Effect {
 	}
 	evaluate(alarmDisagree, disagree)
 
+	c.watchLight(s, evaluate)
 	for i := range s.Links[:s.LinkCount] {
 		evaluate(c.lineAlarms[i], alarm.When(!s.Links[i].Up))
 	}
@@ -142,14 +186,27 @@ const startup = 5 * time.Second
 func (c *Core) annunciate(s *State, t alarm.Transition, fx []Effect) []Effect {
 	d, _, _ := s.alarms.Get(t.Name)
 	data := AlarmData{Name: t.Name, State: t.To.String(), Was: t.From.String(), Priority: int(t.Priority), Cause: d.Cause}
-	if t.Name == alarmHeld && t.Active {
-		data.Cause = s.Why
+	if t.Active {
+		data.Cause = s.causeOf(t.Name, d.Cause)
 	}
 	fx = append(fx, Record{At: t.At, Kind: KindAlarm, Data: data, Sync: true})
 	if t.Rings() {
 		fx = append(fx, Bell{}, Call{Alarm: t.Name, Cause: data.Cause, Action: d.Action})
 	}
 	return fx
+}
+
+// causeOf is what is known of the cause of an alarm, beyond its definition.
+func (s *State) causeOf(name, otherwise string) string {
+	switch name {
+	case alarmHeld:
+		return s.Why
+	case alarmLight, alarmGauges, alarmLeak:
+		if s.drift.text != "" {
+			return s.drift.text
+		}
+	}
+	return otherwise
 }
 
 // person carries out what somebody asked of an alarm.
@@ -185,9 +242,7 @@ func (c *Core) Alarms(s *State) []Alarm {
 			Hidden: e.State.Hidden(),
 			Cause:  d.Cause, Consequence: d.Consequence, Action: d.Action,
 		}
-		if d.Name == alarmHeld {
-			a.Cause = s.Why
-		}
+		a.Cause = s.causeOf(d.Name, d.Cause)
 		out = append(out, a)
 	}
 	return out

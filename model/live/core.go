@@ -7,6 +7,7 @@ import (
 
 	"barline/model/alarm"
 	"barline/model/bench"
+	"barline/model/drift"
 	"barline/model/emission"
 	"barline/model/flow"
 	"barline/model/limit"
@@ -38,6 +39,7 @@ type Core struct {
 	heartbeat    time.Duration
 	wavelength   unit.Metre // deadband of recorded predictions
 	controlled   bool       // an instrument takes setpoints
+	driftOf      drift.Watch
 	watched      []watched
 	lineAlarms   []string // names, in the order of the links
 }
@@ -79,6 +81,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 		disagreement: b.Limits.Disagreement,
 		heartbeat:    b.Logbook.Heartbeat.Duration(),
 		wavelength:   b.Logbook.DeadbandWavelength,
+		driftOf:      watchOf(b),
 	}
 	if err := c.limits.Check(); err != nil {
 		return nil, State{}, err
@@ -170,6 +173,7 @@ func (c *Core) read(s *State, r reading.Reading, fx []Effect) []Effect {
 		c.compare(s, r)
 	}
 	c.sample(s, r)
+	c.average(s, r)
 	return fx
 }
 
@@ -192,6 +196,7 @@ func (c *Core) tick(s *State, fx []Effect) []Effect {
 	}
 	c.coreGas(s)
 	fx = c.predict(s, fx)
+	fx = c.watchDrift(s, fx)
 	fx = c.act(s, fx)
 	return c.watch(s, fx)
 }

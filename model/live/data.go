@@ -81,6 +81,8 @@ type (
 		EnergyJ         float64   `json:"energy_J"`
 		Air             float64   `json:"air_fraction,omitempty"`
 		Answer          string    `json:"answer"`
+		Calibration     string    `json:"calibration,omitempty"`
+		Beyond          bool      `json:"beyond_calibration,omitempty"` // outside the range of its data
 		ZeroDispersionM []float64 `json:"zero_dispersion_m"`
 		EmissionM       *float64  `json:"emission_m"` // null where there is none
 		SigmaM          float64   `json:"sigma_m,omitempty"`
@@ -106,6 +108,10 @@ type (
 		SigmaM       float64   `json:"sigma_m"`
 		Status       string    `json:"status"`
 		Rise         *RiseData `json:"rise,omitempty"` // of a leak test
+		ApartPa      *float64  `json:"cell_a_less_cell_b_Pa,omitempty"`
+		RatePaS      *float64  `json:"rate_Pa_s,omitempty"`   // with every valve shut
+		Calibration  string    `json:"calibration,omitempty"` // of the prediction
+		Beyond       bool      `json:"beyond_calibration,omitempty"`
 	}
 )
 
@@ -114,7 +120,7 @@ func (c *Core) predictionData(s *State) PredictionData {
 	d := PredictionData{
 		PressurePa: float64(p.Input.Pressure), TemperatureK: float64(p.Input.Temperature),
 		EnergyJ: float64(p.Input.Energy), Air: float64(p.Input.Air),
-		Answer: p.Answer.String(), Why: p.Why,
+		Answer: p.Answer.String(), Why: p.Why, Calibration: p.Calibration, Beyond: p.Beyond,
 		ZeroDispersionM: make([]float64, p.ZeroDispersionCount),
 	}
 	for i := range d.ZeroDispersionM {
@@ -145,6 +151,17 @@ func (c *Core) stepData(s *State) StepData {
 		TemperatureK: float64(s.Prediction.Input.Temperature), EnergyJ: float64(s.Prediction.Input.Energy),
 		Samples: r.emission.n, ScatterM: r.emission.deviation(),
 		SigmaM: float64(s.Prediction.Sigma), Status: e.Status.String(),
+		Calibration: s.Prediction.Calibration, Beyond: s.Prediction.Beyond,
+	}
+	if r.apart.n > 0 {
+		m := r.apart.value
+		d.ApartPa = &m
+	}
+	if elapsed := (s.Now.Mono - r.settledAt).Seconds(); s.Mode == Isolated && elapsed > 0 && r.from > 0 {
+		if p, ok := c.pressure(s); ok {
+			rate := float64(p-r.from) / elapsed
+			d.RatePaS = &rate
+		}
 	}
 	if r.pressure.n > 0 {
 		d.MeasuredPa = r.pressure.value

@@ -64,6 +64,8 @@ const (
 	KindNode          Kind = "node"
 	KindPrediction    Kind = "prediction"
 	KindStep          Kind = "step"
+	KindMeans         Kind = "means"
+	KindDrift         Kind = "drift"
 	KindClock         Kind = "clock"
 	KindCapture       Kind = "capture"
 	KindSeal          Kind = "seal"

@@ -124,6 +124,7 @@ func (c *Core) modelChanged(s *State, e ModelChanged, fx []Effect) []Effect {
 		return fx
 	}
 	s.model = e.Predictor
+	c.rebase(s, s.Prediction)
 	s.Prediction, s.predicted = emission.Prediction{}, 0
 	s.recorded.at = 0 // the next prediction goes into the record
 	return append(fx, Record{At: e.At, Kind: KindNode, Data: NodeData{

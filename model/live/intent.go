@@ -113,6 +113,10 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 	case Note:
 		data.Intent = "note"
 		*fx = append(*fx, Record{At: s.Now, Kind: KindNote, Data: NoteData(in), Sync: true})
+	case LearnAnew:
+		data.Intent = "learn anew"
+		record()
+		c.learnAnew(s)
 	case Acknowledge, Reset, Shelve, Unshelve:
 		data.Intent, data.Alarm = aboutAlarm(in)
 		record()

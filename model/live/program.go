@@ -139,6 +139,7 @@ type progress struct {
 	emission  mean          // m, while dwelling
 	residual  mean          // m
 	pressure  mean          // Pa, cell A
+	apart     mean          // Pa, cell A less cell B
 	rise      riseLog       // Isolate
 }
 

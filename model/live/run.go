@@ -205,7 +205,7 @@ func (c *Core) row(s *State, fx []Effect) []Effect {
 	if s.Mode == Isolated {
 		d.Rise = c.judgeRise(s)
 	}
-	return append(fx, Record{At: s.Now, Kind: KindStep, Data: d, Sync: true})
+	return c.shown(s, d, append(fx, Record{At: s.Now, Kind: KindStep, Data: d, Sync: true}))
 }
 
 // sample adds a reading to the row that is being measured.
@@ -223,6 +223,9 @@ func (c *Core) sample(s *State, r reading.Reading) {
 	switch r.Role {
 	case reading.CellAPressure:
 		s.run.pressure.add(r.Value)
+		if b := s.Reading(reading.CellBPressure, c.stale); b.Status.Usable() {
+			s.run.apart.add(r.Value - b.Value)
+		}
 		if s.Mode == Isolated {
 			c.watchRise(s, r)
 		}

@@ -4,6 +4,7 @@ import (
 	"time"
 
 	"barline/model/bench"
+	"barline/model/drift"
 	"barline/model/emission"
 	"barline/model/reading"
 	"barline/model/trend"
@@ -82,6 +83,25 @@ type Line struct {
 // Span is a stretch of wavelengths in vacuum.
 type Span struct{ From, To unit.Metre }
 
+// DriftView is what a screen shows of the drift of the light.
+type DriftView struct {
+	Watched  bool          // the bench file asks for it
+	Since    reading.Stamp // when the bench came to rest at this pressure
+	Learnt   bool          // what is quiet here is known
+	Why      string        // why it is not, after an attempt
+	Standing bool
+	By       drift.Observable // what moved most
+	Changed  reading.Stamp    // since when
+	RunsAway bool             // it never stood still
+	Text     string
+	Tracks   [drift.ObservableCount]drift.Track // zero where nothing is known
+	Decay    drift.Line                         // of a shut volume, Pa and Pa/s; zero where not known
+	Findings []drift.Finding                    // most probable first
+	Alike    map[string][]string                // that cannot be told apart from here
+	Steps    []NextStep                         // that would tell, best first
+	Taken    int                                // steps that were taken
+}
+
 // Snapshot is all that a screen draws. It is built by the loop, never changed
 // afterwards, and shares no memory with the core.
 type Snapshot struct {
@@ -136,6 +156,10 @@ type Snapshot struct {
 	Trends [reading.RoleCount]*trend.View
 	Rows   []StepData // of the runs of steps since the start, oldest first
 	Marks  []Mark     // what happened meanwhile, oldest first
+
+	Drift DriftView
+	// DriftPoints are the group means of each observable's chart, oldest first.
+	DriftPoints [drift.ObservableCount][]drift.Point
 
 	Simulated bool
 	ReadOnly  bool

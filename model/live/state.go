@@ -57,6 +57,7 @@ type State struct {
 	following    bool // another core decides, see Told
 	engaged      bool // the last command was a setpoint, and no HOLD came after it
 
+	drift             drifting
 	run               progress
 	tuning            tuning
 	outcome           Outcome

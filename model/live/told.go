@@ -1,6 +1,9 @@
 package live
 
 import (
+	"time"
+
+	"barline/model/drift"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -14,6 +17,9 @@ type Told struct {
 	Why      string      // beside Mode
 
 	HasSetpoint, HasMode bool
+
+	Means *MeansData // what ten seconds came to
+	Drift *DriftData // a verdict
 }
 
 // When implements Event.
@@ -26,6 +32,31 @@ func (c *Core) told(s *State, e Told) {
 	if e.HasMode {
 		s.Mode, s.Why, s.following = e.Mode, e.Why, true
 	}
+	if e.Means != nil {
+		s.drift.monitor.Add(c.watching(s), e.Means.Means(e.At.Mono))
+	}
+	if e.Drift != nil {
+		s.drift.tell(e.Drift)
+	}
+}
+
+// tell takes a verdict as another core gave it. Of the steps it takes the
+// text: nothing can be begun from here.
+func (d *drifting) tell(v *DriftData) {
+	d.text, d.findings, d.alike, d.steps = v.Text, nil, v.Alike, nil
+	for _, f := range v.Findings {
+		text := f.Text
+		d.findings = append(d.findings, drift.Finding{
+			Cause:       drift.Cause{Name: f.Cause, Text: func(float64) string { return text }},
+			Probability: f.Probability, Amount: f.Amount, AmountSigma: f.AmountSigma, Left: f.Left,
+		})
+	}
+	for _, n := range v.Steps {
+		d.steps = append(d.steps, NextStep{
+			Worth:  drift.Worth{Step: drift.Step{Name: n.Name, Cost: time.Duration(n.CostS * float64(time.Second))}, Bits: n.Bits, Certain: n.Certain},
+			ByHand: "as the first screen says",
+		})
+	}
 }
 
 // ToldBy returns what a record of a command, an intent or its completion tells
@@ -33,6 +64,12 @@ func (c *Core) told(s *State, e Told) {
 func ToldBy(at reading.Stamp, data any) (e Told, ok bool) {
 	e.At = at
 	switch d := data.(type) {
+	case MeansData:
+		e.Means = &d
+		return e, true
+	case DriftData:
+		e.Drift = &d
+		return e, true
 	case CommandData:
 		e.Setpoint, e.HasSetpoint, e.HasMode = unit.Pascal(d.SetpointPa), true, true
 		e.Mode, e.Why = Ramping, d.Why

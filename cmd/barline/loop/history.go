@@ -2,8 +2,10 @@ package loop
 
 import (
 	"fmt"
+	"slices"
 	"time"
 
+	"barline/model/drift"
 	"barline/model/live"
 	"barline/model/reading"
 	"barline/model/trend"
@@ -15,6 +17,7 @@ const (
 	maxLines  = 200 // of the record on screen
 	maxRows   = 512 // of runs of steps
 	maxMarks  = 512
+	maxDrift  = 1024 // groups of one chart
 
 	trendsEvery = time.Second
 
@@ -37,6 +40,7 @@ type history struct {
 
 	points []live.Point
 	lines  []live.Line
+	drift  [drift.ObservableCount][]drift.Point
 }
 
 func newHistory() history {
@@ -117,6 +121,29 @@ func (h *history) tick(s *live.State) {
 	if s.Setpoint != 0 {
 		h.expected.Add(s.Now.Mono, float64(s.Setpoint))
 	}
+}
+
+// groups keeps the newest group mean of every chart.
+func (h *history) groups(v *live.DriftView) {
+	for o := range v.Tracks {
+		p := v.Tracks[o].Last
+		n := len(h.drift[o])
+		if p.At == 0 || n > 0 && h.drift[o][n-1].At == p.At {
+			continue
+		}
+		if n == maxDrift {
+			h.drift[o] = append(make([]drift.Point, 0, 2*maxDrift), h.drift[o][maxDrift/4:]...)
+		}
+		h.drift[o] = append(h.drift[o], p)
+	}
+}
+
+// charted returns the group means of every chart.
+func (h *history) charted() (all [drift.ObservableCount][]drift.Point) {
+	for o := range all {
+		all[o] = slices.Clip(h.drift[o])
+	}
+	return all
 }
 
 func (h *history) line(at reading.Stamp, kind live.Kind, data any) {

@@ -260,7 +260,7 @@ func (l *Loop) handle(e live.Event) {
 func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) error {
 	// A refused record shows in Health, which the next tick brings to the core.
 	_, err := l.opt.Book.Append(at, string(kind), data)
-	if err == nil && kind != live.KindReading && kind != live.KindPrediction {
+	if err == nil && kind != live.KindReading && kind != live.KindPrediction && kind != live.KindMeans {
 		l.history.line(at, kind, data)
 	}
 	return err

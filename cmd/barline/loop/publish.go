@@ -32,6 +32,7 @@ func (l *Loop) publish() {
 		Record:        s.Record, Folder: o.Folder, Recent: slices.Clip(l.history.lines),
 		PressureA: l.history.pressure.View(), Expected: l.history.expected.View(), Residuals: l.history.residual.View(),
 		Trends: l.history.trends(s.Now.Mono), Rows: slices.Clip(l.history.rows), Marks: slices.Clip(l.history.marks),
+		Drift:     o.Core.Drift(s),
 		Simulated: o.Simulated, ReadOnly: o.ReadOnly, Dropped: l.dropped,
 	}
 	for role := range snap.Latest {
@@ -39,6 +40,8 @@ func (l *Loop) publish() {
 			snap.Latest[role] = s.Reading(reading.Role(role), o.Core.Stale())
 		}
 	}
+	l.history.groups(&snap.Drift)
+	snap.DriftPoints = l.history.charted()
 	snap.ArriveIn, _ = s.ArriveIn()
 	snap.Nodes, snap.NodesPlanned = s.Nodes()
 	if c := l.curve.Load(); c != nil {
