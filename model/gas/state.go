@@ -143,6 +143,21 @@ const c = 299792458.0 // m/s, exact (SI Brochure, 9th ed., 2019)
 // WithDensity returns the same gas at another molar density.
 func (s State) WithDensity(rho unit.MolePerCubicMetre) State { s.Density = rho; return s }
 
+// Components returns the gases of s and their mole fractions, which add up to
+// one. Air that got into the gas is one of them.
+func (s *State) Components() []Component {
+	if s.medium == nil {
+		return nil
+	}
+	var list []Component
+	for i, x := range s.fractions[:s.medium.count] {
+		if x > 0 {
+			list = append(list, Component{s.medium.parts[i].species, unit.Fraction(x)})
+		}
+	}
+	return list
+}
+
 // As returns the same gas, of the same composition and density, with its index
 // and nonlinear index from the sources of another medium.
 func (s State) As(m *Medium) State { s.medium = m; return s }

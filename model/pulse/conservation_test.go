@@ -102,7 +102,7 @@ func withPlasma(t *testing.T, m Medium) Medium {
 	if err != nil {
 		t.Fatal(err)
 	}
-	m.Rate, m.Atoms, m.Potential = rate, 2.2e26, 15.76*elementaryCharge
+	m.Atoms = []Atoms{{rate, 2.2e26, 15.76 * elementaryCharge}}
 	return m
 }
 
@@ -111,6 +111,11 @@ func withPlasma(t *testing.T, m Medium) Medium {
 func TestEnergyLostIsTheWorkDone(t *testing.T) {
 	g, m := glass(t, 8192, 0.05*unit.Femtosecond, 180*unit.Nanometre, 3*unit.Micrometre)
 	m = withPlasma(t, m)
+	harder, err := NewRateTable(1.2e10, 2e11, func(field float64) (electrons, loss float64) { return steep(field / 1.2) })
+	if err != nil {
+		t.Fatal(err)
+	}
+	m.Atoms = append(m.Atoms, Atoms{harder, 0.8e26, 21.6 * elementaryCharge})
 	m.Length = 0.01
 	in := launched(t, g, m, 9*unit.Microjoule)
 	s := solve(t, g, m, in, 1e-6)

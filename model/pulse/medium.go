@@ -23,16 +23,20 @@ type Medium struct {
 	Area float64
 	// Chi3 is the third-order susceptibility in m²/V² at r = 1.
 	Chi3 float64
-	// Rate is the ionisation rate; nil means no plasma.
-	Rate *RateTable
-	// Atoms is the number density in 1/m³ at r = 1.
-	Atoms float64
-	// Potential is the ionisation energy of one atom in J.
-	Potential float64
+	// Atoms are the kinds of atom that the field can ionise; none means no
+	// plasma.
+	Atoms []Atoms
 	// Density is the relative density along the fibre; nil means r = 1.
 	Density *Profile
 	// Length is the length of the fibre in m.
 	Length float64
+}
+
+// Atoms are the atoms of one kind. Each kind ionises by itself.
+type Atoms struct {
+	Rate      *RateTable
+	Density   float64 // number density in 1/m³ at r = 1
+	Potential float64 // ionisation energy of one atom in J
 }
 
 // Chi3FromN2 returns χ⁽³⁾ in m²/V² of a dilute gas with the nonlinear index n2
@@ -53,6 +57,11 @@ func (m *Medium) check(g Grid) error {
 	}
 	if !(m.Length > 0) || !(m.Area > 0) || math.IsInf(m.Length+m.Area, 0) {
 		return fmt.Errorf("medium: length %g m and effective area %g m², want both above 0", m.Length, m.Area)
+	}
+	for _, a := range m.Atoms {
+		if a.Rate == nil || !(a.Density >= 0 && a.Potential >= 0) || math.IsInf(a.Density+a.Potential, 0) {
+			return fmt.Errorf("medium: %g atoms per m³ with an ionisation energy of %g J: want a rate and both finite and at least 0", a.Density, a.Potential)
+		}
 	}
 	for i := range n {
 		if b := m.beta(i, 1); !(b > 0) || math.IsInf(b, 0) {

@@ -2,6 +2,7 @@ package pulse
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 
@@ -25,11 +26,20 @@ type Options struct {
 	// Progress is called after every step with the share of the fibre that is
 	// done; nil means nobody asks.
 	Progress func(share float64)
+
+	planned func(int) (*fourier.Real, error) // nil means fourier.NewReal
 }
 
 // DefaultTolerance gives the centroid of the emission within 0.3 nm of the
 // converged one.
 const DefaultTolerance = 2e-4
+
+// ErrWindow is wrapped where the time window is so short that the light meets
+// itself at its ends: what follows would take long and mean nothing.
+var ErrWindow = errors.New("the time window is too short for this pulse")
+
+// hopelessEdge is the share of energy at the ends of time at which a run ends.
+const hopelessEdge = 0.2
 
 // Result is what became of the light.
 type Result struct {
@@ -79,7 +89,8 @@ func (r *Result) Emission() (spectrum.Lobe, bool) {
 }
 
 // Run propagates the setup to the end of its fibre. It returns the context's
-// error as soon as that ends.
+// error as soon as that ends, and ErrWindow where the light meets the ends of
+// time.
 func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
 	g := o.Grid
 	if g == (Grid{}) {
@@ -99,7 +110,10 @@ func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
 	if o.Tolerance == 0 {
 		o.Tolerance = DefaultTolerance
 	}
-	solver, err := NewSolver(g, m, in, o.Tolerance)
+	if o.planned == nil {
+		o.planned = fourier.NewReal
+	}
+	solver, err := newSolver(g, m, in, o.Tolerance, o.planned)
 	if err != nil {
 		return nil, err
 	}
@@ -118,6 +132,10 @@ func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
 			return nil, fmt.Errorf("propagation: %w", err)
 		}
 		w.look()
+		if w.timeEdge > hopelessEdge {
+			return nil, fmt.Errorf("propagation: %w: after %v %.0f %% of the energy is at the ends of %.0f fs",
+				ErrWindow, unit.Metre(solver.Position()), 100*w.timeEdge, g.Window().Femtoseconds())
+		}
 		if o.Progress != nil {
 			o.Progress(solver.Position() / m.Length)
 		}
@@ -155,8 +173,10 @@ func (r *Result) finish(s *Solver, w *watch) error {
 	r.Steps, r.Evaluated = s.steps, s.evaluations
 	r.Evolution = w.samples
 	r.peakField = w.peak
-	if s.medium.Rate != nil {
-		r.tableField = s.medium.Rate.high
+	for _, a := range s.medium.Atoms {
+		if r.tableField == 0 || a.Rate.high < r.tableField {
+			r.tableField = a.Rate.high
+		}
 	}
 	r.judge()
 	return nil

@@ -5,7 +5,6 @@ import (
 
 	"barline/model/fibre"
 	"barline/model/gas"
-	"barline/model/ionise"
 	"barline/model/unit"
 )
 
@@ -135,79 +134,26 @@ func (s Setup) propagation(m *Medium, omega []float64) (fibre.Region, error) {
 	return worst, nil
 }
 
-const (
-	avogadro = 6.02214076e23 // 1/mol, exact
-	// tableReach is the top of the ionisation table over its threshold: five
-	// times the field that pulls the barrier down.
-	tableReach = 30
-)
-
-// Rates are the ionisation rates of a gas under a pump, which take a tenth of a
-// second to make and then serve every run of the same gas, pump and plasma.
-type Rates struct {
-	table      *RateTable
-	potential  float64 // J
-	medium     *gas.Medium
-	wavelength unit.Metre
-	plasma     Plasma
-	order      int
-	zero       float64
-}
-
-// Prepare returns the setup with its ionisation rates made, for setups that
-// are copied and run many times.
-func (s Setup) Prepare() (Setup, error) {
-	var err error
-	s.Rates, err = s.rates()
-	return s, err
-}
-
-// rates returns the rates of the setup: those that it has, where they are of
-// its gas, pump and plasma.
-func (s Setup) rates() (*Rates, error) {
-	medium := s.Gas.Medium()
-	if medium == nil {
-		return nil, nil
-	}
-	order, zero := s.Fibre.Profile()
-	r := Rates{medium: medium, wavelength: s.Pulse.Wavelength, plasma: s.Plasma, order: order, zero: zero}
-	if s.Rates != nil {
-		r.table, r.potential = s.Rates.table, s.Rates.potential
-		if r == *s.Rates {
-			return s.Rates, nil
-		}
-	}
-	species := medium.Main()
-	rate, err := ionise.NewRate(species.IonisationEnergy, species.OrbitalMomentum, fibre.Frequency(s.Pulse.Wavelength))
-	if err != nil {
-		return nil, err
-	}
-	profile := ionise.Profile{Order: order, Zero: zero}
-	electrons := ionise.NewTable(rate, profile, ionise.Uniform)
-	losses := electrons
-	if s.Plasma == Radial {
-		electrons = ionise.NewTable(rate, profile, ionise.Electrons)
-		losses = ionise.NewTable(rate, profile, ionise.Losses)
-	}
-	low := electrons.Threshold()
-	r.potential = species.IonisationEnergy * elementaryCharge
-	r.table, err = NewRateTable(low, low*tableReach, func(field float64) (float64, float64) {
-		return electrons.Rate(field), losses.Rate(field)
-	})
-	return &r, err
-}
-
-// ionisation fills in the rate of the main gas. Where the gas is a mixture all
-// atoms count as its main gas.
+// ionisation fills in the atoms of the gas. Every gas of a mixture ionises by
+// itself, at its own partial density.
 func (s Setup) ionisation(m *Medium) error {
 	if s.Gas.Density == 0 {
 		return nil
 	}
-	r, err := s.rates()
-	if err != nil || r == nil {
-		return err
+	rates := s.Rates
+	if !rates.serve(s) {
+		rates = newRates(s)
 	}
-	m.Rate, m.Potential = r.table, r.potential
-	m.Atoms = float64(s.Gas.Density) * avogadro
+	for _, c := range s.Gas.Components() {
+		table, err := rates.of(c.Species)
+		if err != nil {
+			return err
+		}
+		m.Atoms = append(m.Atoms, Atoms{
+			Rate:      table,
+			Density:   float64(s.Gas.Density) * float64(c.Fraction) * avogadro,
+			Potential: c.Species.IonisationEnergy * elementaryCharge,
+		})
+	}
 	return nil
 }

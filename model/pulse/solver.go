@@ -60,6 +60,11 @@ var ErrStep = errors.New("step size vanished")
 // NewSolver prepares the propagation of spectrum, which holds the kept bins of
 // g as Grid.Launch gives them, at the relative tolerance of one step.
 func NewSolver(g Grid, m Medium, spectrum []complex128, tolerance float64) (*Solver, error) {
+	return newSolver(g, m, spectrum, tolerance, fourier.NewReal)
+}
+
+// newSolver takes how to plan the transforms, which tests compare.
+func newSolver(g Grid, m Medium, spectrum []complex128, tolerance float64, planned func(int) (*fourier.Real, error)) (*Solver, error) {
 	if err := m.check(g); err != nil {
 		return nil, err
 	}
@@ -69,7 +74,7 @@ func NewSolver(g Grid, m Medium, spectrum []complex128, tolerance float64) (*Sol
 	if !(tolerance >= 1e-12 && tolerance <= 0.1) {
 		return nil, fmt.Errorf("solver: tolerance %g, want 1e-12 to 0.1", tolerance)
 	}
-	plan, err := fourier.NewReal(g.Points)
+	plan, err := planned(g.Points)
 	if err != nil {
 		return nil, err
 	}
@@ -84,12 +89,7 @@ func NewSolver(g Grid, m Medium, spectrum []complex128, tolerance float64) (*Sol
 		slopes:   make([]slopes, n),
 		before:   1,
 	}
-	s.pol = polarisation{
-		field: make([]float64, g.Points), p: make([]float64, g.Points),
-		drive: make([]float64, g.Points), absorb: make([]float64, g.Points),
-		step: float64(g.Step), window: softEnds(g.Points, timeEdge),
-		kerr: vacuumPermit * m.Chi3, rate: m.Rate, atoms: m.Atoms, potential: m.Potential, area: m.Area,
-	}
+	s.pol = newPolarisation(g, &s.medium)
 	for i := range s.turns {
 		s.turns[i] = turn{make([]complex128, n), make([]complex128, n)}
 	}

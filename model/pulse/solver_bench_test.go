@@ -24,7 +24,7 @@ func BenchmarkEvaluation(b *testing.B) {
 				b.Fatal(err)
 			}
 			m := Medium{Area: 4.3e-10, Chi3: Chi3FromN2(8e-23), Length: 0.1, Slowness: 1 / lightSpeed,
-				Rate: rate, Atoms: 2.2e26, Potential: 15.76 * elementaryCharge}
+				Atoms: []Atoms{{rate, 2.2e26, 15.76 * elementaryCharge}}}
 			for _, w := range g.Frequencies() {
 				m.Beta[0] = append(m.Beta[0], w/lightSpeed)
 			}
