@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"runtime/debug"
 	"sync"
 	"time"
 
@@ -17,6 +18,9 @@ type Options struct {
 	MemoryBytes  int           // for records that wait for the disk; 32 MiB
 	SyncTimeout  time.Duration // longest wait of Sync and Close; 5 s
 	Compress     bool          // compress segments after they are sealed, in the background
+	// Panicked is told of a panic of the goroutines behind the book, which
+	// then writes no more; nil lets the program end.
+	Panicked func(value any, stack []byte)
 
 	untidy bool // leave indexes and compression alone
 }
@@ -116,16 +120,35 @@ func open(d disk, o Options) (*Book, error) {
 			default: // the next program will see to it
 			}
 		}
-		tidying.Go(func() { tidy(ctx, d, o.Compress, sealed) })
+		tidying.Go(func() { _ = b.guarded(func() { tidy(ctx, d, o.Compress, sealed) }) })
 	}
 	go func() {
-		b.keep(w)
+		if err := b.guarded(func() { b.keep(w) }); err != nil {
+			b.closed = err
+		}
 		stopTidying()
 		tidying.Wait()
 		w.lock.Close() // nothing was written through it
 		close(b.stopped)
 	}()
 	return b, nil
+}
+
+// guarded runs f and hands a panic of it to whoever wants to know.
+func (b *Book) guarded(f func()) (err error) {
+	defer func() {
+		v := recover()
+		if v == nil {
+			return
+		}
+		if b.options.Panicked == nil {
+			panic(v)
+		}
+		err = fmt.Errorf("%w: the writer broke down: %v", ErrNotDurable, v)
+		b.options.Panicked(v, debug.Stack())
+	}()
+	f()
+	return nil
 }
 
 // Append adds a record of the given kind and returns its number. It encodes

@@ -276,3 +276,33 @@ func TestSecondProgramInAnotherFolder(t *testing.T) {
 		t.Log(err)
 	}
 }
+
+// A panic behind the book is told, and neither Sync nor Close waits for ever.
+func TestWriterThatBreaksDownSaysSo(t *testing.T) {
+	d := newMemDisk(nil)
+	told := make(chan any, 1)
+	b, err := open(d, Options{SyncTimeout: time.Second, untidy: true, Panicked: func(v any, _ []byte) { told <- v }})
+	if err != nil {
+		t.Fatal(err)
+	}
+	d.mu.Lock()
+	d.fault = func(string) error { panic("out of order") }
+	d.mu.Unlock()
+	if _, err := b.Append(reading.Stamp{UTC: time.Unix(1, 0).UTC()}, "note", map[string]string{"text": "x"}); err != nil {
+		t.Fatal(err)
+	}
+	if err := b.Sync(); err == nil {
+		t.Error("Sync says that all is on the disk")
+	}
+	select {
+	case v := <-told:
+		if v != "out of order" {
+			t.Errorf("told %v", v)
+		}
+	case <-time.After(10 * time.Second):
+		t.Fatal("nobody was told")
+	}
+	if err := b.Close(); !errors.Is(err, ErrNotDurable) {
+		t.Errorf("Close gives %v, expected %v", err, ErrNotDurable)
+	}
+}

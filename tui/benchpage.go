@@ -14,10 +14,6 @@ import (
 // drawBench lays the page out: the gas path, the emission in numbers, and
 // three charts. The taller the screen, the more air and the more record.
 func drawBench(a frame.Area, s *live.Snapshot, v view) {
-	if v.plain {
-		drawPlain(a, s)
-		return
-	}
 	roomy := a.H >= 26
 	y := 0
 	if roomy {

@@ -77,6 +77,9 @@ func pressPresent(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 
 func pressPlain(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 	v.plain = !v.plain
+	if v.plain {
+		v.message = "no charts, a new picture every two seconds; g brings them back"
+	}
 	return v, nil
 }
 

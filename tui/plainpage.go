@@ -6,7 +6,7 @@ import (
 	"barline/tui/frame"
 )
 
-// drawPlain is the bench page without charts, one value a line: over a slow
+// drawPlain is the pages of charts without them, one value a line: over a slow
 // line only the lines that changed are sent.
 func drawPlain(a frame.Area, s *live.Snapshot) {
 	y := 0

@@ -68,13 +68,15 @@ func draw(s *live.Snapshot, v view, w, h int, style Style) *frame.Frame {
 	}
 	drawHead(a.Sub(0, 0, w, headHeight), s, v)
 	body := a.Sub(0, headHeight, w, h-headHeight-1)
-	switch v.page {
-	case Scan:
-		drawScan(body, s, v)
-	case Drift:
-		drawDrift(body, s, v)
-	case Log:
+	switch {
+	case v.page == Log:
 		drawLog(body, s, v)
+	case v.page == Scan:
+		drawScan(body, s, v)
+	case v.plain:
+		drawPlain(body, s)
+	case v.page == Drift:
+		drawDrift(body, s, v)
 	default:
 		drawBench(body, s, v)
 	}

@@ -15,6 +15,10 @@ import (
 // from the prediction, and the rows that the record keeps.
 func drawScan(a frame.Area, s *live.Snapshot, v view) {
 	drawProgress(a.Sub(0, 0, a.W, 1), s)
+	if v.plain {
+		drawRows(a.Sub(0, 2, a.W, a.H-2), s)
+		return
+	}
 	table := max(5, a.H*2/5)
 	charts := a.Sub(0, 2, a.W, a.H-table-2)
 	left := charts.W / 2

@@ -73,7 +73,7 @@ const aroundEvery = 500 * time.Millisecond
 // anchor starts the runs; they end with ctx. Where they cannot be had the
 // estimate stays, and a note in the record says why.
 // base is a predictor that nobody else asks.
-func (s *session) anchor(ctx context.Context, base *emission.Predictor, l *loop.Loop, newest *atomic.Pointer[guided], running *sync.WaitGroup) {
+func (s *session) anchor(ctx context.Context, base *emission.Predictor, l *loop.Loop, newest *atomic.Pointer[guided], running *sync.WaitGroup, broken breakdown) {
 	a := &anchoring{session: s, base: base, loop: l, newest: newest}
 	bench, err := base.Setup().AnchorBench()
 	if err != nil {
@@ -87,7 +87,7 @@ func (s *session) anchor(ctx context.Context, base *emission.Predictor, l *loop.
 		a.trouble(err) // the runs then last as long as the program
 	}
 	worker := fullfield.NewWorker(o)
-	running.Go(func() { worker.Run(ctx) })
+	running.Go(func() { broken.guard("the full-field runs", func() { worker.Run(ctx) }) })
 	running.Go(func() {
 		tick := time.NewTicker(aroundEvery)
 		defer tick.Stop()

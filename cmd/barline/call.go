@@ -22,24 +22,27 @@ type caller struct {
 	waiting chan live.Call
 }
 
-// newCaller returns a caller that works until ctx ends, or nil where no
-// command is configured.
-func newCaller(ctx context.Context, words []string, stderr io.Writer) *caller {
+// newCaller returns a caller, or nil where no command is configured.
+func newCaller(words []string, stderr io.Writer) *caller {
 	if len(words) == 0 {
 		return nil
 	}
-	c := &caller{words: words, stderr: stderr, waiting: make(chan live.Call, 8)}
-	go func() {
-		for {
-			select {
-			case <-ctx.Done():
-				return
-			case call := <-c.waiting:
-				c.run(ctx, call)
-			}
+	return &caller{words: words, stderr: stderr, waiting: make(chan live.Call, 8)}
+}
+
+// serve runs commands until ctx ends.
+func (c *caller) serve(ctx context.Context) {
+	if c == nil {
+		return
+	}
+	for {
+		select {
+		case <-ctx.Done():
+			return
+		case call := <-c.waiting:
+			c.run(ctx, call)
 		}
-	}()
-	return c
+	}
 }
 
 // call asks for the command to be run. Where too many wait already it is

@@ -2,6 +2,7 @@ package main
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"io"
 	"os"
@@ -24,22 +25,35 @@ func follow(ctx context.Context, folder string, stdout, stderr io.Writer) error 
 	defer cancel()
 	r := &replay{player: newPlayer(folder), dir: folder, changed: make(chan struct{}, 1), control: make(chan rune, 1), speed: 1}
 	records := make(chan logbook.Record, 1024)
+	read := make(chan error, 1)
 	go func() {
 		defer close(records)
-		for rec, err := range logbook.Follow(ctx, folder, logbook.Filter{}) {
-			if err != nil {
-				continue // damage is what log verify is for
+		read <- safely(func() error {
+			for rec, err := range logbook.Follow(ctx, folder, logbook.Filter{}) {
+				if err != nil {
+					continue // damage is what log verify is for
+				}
+				select {
+				case records <- rec:
+				case <-ctx.Done():
+					return nil
+				}
 			}
-			select {
-			case records <- rec:
-			case <-ctx.Done():
-				return
-			}
-		}
+			return nil
+		})
 	}()
 	ready := make(chan struct{})
 	played := make(chan error, 1)
-	go func() { played <- r.followOn(ctx, records, ready) }()
+	go func() {
+		defer cancel()
+		err := safely(func() error { return r.followOn(ctx, records, ready) })
+		select {
+		case readErr := <-read:
+			err = errors.Join(err, readErr)
+		default:
+		}
+		played <- err
+	}()
 	fmt.Fprintf(stderr, "barline: following %s\n", folder)
 	select {
 	case <-ready:

@@ -99,7 +99,10 @@ func (f replayFlags) run(ctx context.Context, dir string, stdout, stderr io.Writ
 	ctx, cancel := context.WithCancel(ctx)
 	defer cancel()
 	played := make(chan error, 1)
-	go func() { played <- r.play(ctx) }()
+	go func() {
+		defer cancel() // without a player the screen would stand still
+		played <- safely(func() error { return r.play(ctx) })
+	}()
 	err = tui.Run(ctx, r, tui.Options{Style: style})
 	cancel()
 	if playErr := <-played; err == nil {
@@ -297,7 +300,7 @@ func (r *replay) lines(ctx context.Context, out io.Writer) error {
 	ctx, cancel := context.WithCancel(ctx)
 	defer cancel()
 	played := make(chan error, 1)
-	go func() { played <- r.play(ctx) }()
+	go func() { played <- safely(func() error { return r.play(ctx) }) }()
 	return r.print(out, played)
 }
 

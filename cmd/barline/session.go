@@ -9,7 +9,6 @@ import (
 	"io"
 	"math"
 	"os"
-	"runtime/debug"
 	"sync"
 	"sync/atomic"
 	"time"
@@ -44,6 +43,7 @@ type session struct {
 	greet     bool          // whoever looks may be new
 	capture   time.Duration // bench time for which every reading is recorded
 	stderr    io.Writer
+	broken    breakdown // set while it runs
 }
 
 // front shows a running experiment to somebody until it is over.
@@ -91,22 +91,24 @@ func newSession(b *bench.Bench, text []byte) (*session, error) {
 // run opens the logbook and the lines, shows the experiment through f until f
 // returns or ctx ends, holds the bench and closes the record.
 func (s *session) run(ctx context.Context, f front) (err error) {
-	book, err := logbook.Open(s.folder, logbook.Options{Compress: s.bench.Logbook.Compress})
+	// A broken assumption of ours anywhere ends at broken: it holds what can be
+	// held, closes the record, gives the terminal back, and says so.
+	var broken breakdown
+	book, err := logbook.Open(s.folder, logbook.Options{
+		Compress: s.bench.Logbook.Compress,
+		Panicked: func(value any, stack []byte) { broken("the logbook", value, stack) },
+	})
 	if err != nil {
 		return err
 	}
 	defer func() { err = errors.Join(err, book.Close()) }()
-	if err := s.open(book); err != nil {
-		return err
-	}
-
 	ctx, cancel := context.WithCancelCause(ctx)
 	defer cancel(nil)
 	var newest atomic.Pointer[guided]
 	newest.Store(&guided{estimate: s.predictor.Clone()})
 	base := s.predictor.Clone() // before the loop begins to ask its own
 	w := &wire{now: s.clock.Now}
-	calls := newCaller(ctx, s.bench.Alarms.OnAlarm, s.stderr)
+	calls := newCaller(s.bench.Alarms.OnAlarm, s.stderr)
 	l := loop.New(loop.Options{
 		Bench: s.bench, Core: s.core, State: s.state, Clock: s.clock, Book: lent{book}, Wire: w,
 		Curve: func(in emission.Input, dst []emission.CurvePoint) {
@@ -114,20 +116,20 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		},
 		Bell:   s.bell,
 		Call:   calls.call,
+		Broken: func(where string, value any, stack []byte) { broken(where, value, stack) },
 		Folder: s.folder, Simulated: s.simulated, Capture: s.capture, Resonances: resonances(s.predictor),
 	})
 	w.answer = l.Answer
 
-	// A broken assumption of ours anywhere ends here: hold what can be held,
-	// close the record, give the terminal back, and say so.
 	var panicked sync.Once
-	broken := func(where string) func(value any, stack []byte) {
-		return func(value any, stack []byte) {
-			panicked.Do(func() {
-				w.Hold(holdOfPanic, s.core.Limits().Freeze(l.Snapshot().Core))
-				cancel(fmt.Errorf("%s broke down: %v\n%s", where, value, stack))
-			})
-		}
+	broken = func(where string, value any, stack []byte) {
+		panicked.Do(func() {
+			w.Hold(holdOfPanic, s.core.Limits().Freeze(l.Snapshot().Core))
+			cancel(fmt.Errorf("%s broke down: %v\n%s", where, value, stack))
+		})
+	}
+	if err := s.open(book); err != nil {
+		return err
 	}
 	lines, err := s.lines(l, w, broken)
 	if err != nil {
@@ -139,20 +141,20 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 	for _, r := range lines {
 		served.Go(func() { r.Run(linesCtx) })
 	}
+	served.Go(func() { broken.guard("the calls of alarms", func() { calls.serve(ctx) }) })
 	looped := make(chan struct{})
 	go func() {
 		defer close(looped)
-		defer func() {
-			if v := recover(); v != nil {
-				broken("the loop")(v, debug.Stack())
-				<-time.After(panicGrace) // for HOLD to reach the wire
-			}
-		}()
-		l.Run(ctx)
+		whole := false
+		broken.guard("the loop", func() { l.Run(ctx); whole = true })
+		if !whole {
+			<-time.After(panicGrace) // for HOLD to reach the wire
+		}
 	}()
 	if s.anchors {
-		s.anchor(ctx, base, l, &newest, &served)
+		s.anchor(ctx, base, l, &newest, &served, broken)
 	}
+	s.broken = broken
 	err = f(ctx, l)
 	cancel(context.Canceled)
 	<-looped
@@ -205,7 +207,7 @@ func (s *session) open(book *logbook.Book) error {
 
 // lines makes a runner for every instrument and hands those that take
 // setpoints to w.
-func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []byte)) ([]*instrument.Runner, error) {
+func (s *session) lines(l *loop.Loop, w *wire, broken breakdown) ([]*instrument.Runner, error) {
 	var lines []*instrument.Runner
 	var channels []bench.Channel
 	for _, spec := range s.bench.Instrument {
@@ -228,7 +230,9 @@ func (s *session) lines(l *loop.Loop, w *wire, broken func(string) func(any, []b
 		if err != nil {
 			return nil, coded{exitUsage, err}
 		}
-		r := instrument.NewRunner(in, open, s.clock, sink, broken("instrument "+spec.Name))
+		r := instrument.NewRunner(in, open, s.clock, sink, func(value any, stack []byte) {
+			broken("instrument "+spec.Name, value, stack)
+		})
 		if in.TakesSetpoint() {
 			w.controllers = append(w.controllers, r)
 		}

@@ -164,7 +164,7 @@ func (f simulateFlags) run(ctx context.Context, stdout, stderr io.Writer) error 
 		moved := make(chan struct{})
 		go func() {
 			defer close(moved)
-			play(ctx, s.clock, l, p.moves)
+			s.broken.guard("the person at the simulated bench", func() { play(ctx, s.clock, l, p.moves) })
 		}()
 		err := show(ctx, l)
 		cancel()

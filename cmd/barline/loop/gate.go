@@ -16,6 +16,7 @@ type gate struct {
 	wire   Wire
 	answer func(command uint64, err error, at reading.Stamp)
 	now    func() reading.Stamp
+	caught func(where string) // deferred
 
 	waiting chan passing // nil until started: setpoints then pass in place
 
@@ -36,6 +37,7 @@ func (g *gate) start() (stop func()) {
 	done := make(chan struct{})
 	go func() {
 		defer close(done)
+		defer g.caught("the gate before the wire")
 		for p := range waiting {
 			g.pass(p)
 		}

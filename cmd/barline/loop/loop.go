@@ -10,6 +10,7 @@ package loop
 import (
 	"context"
 	"fmt"
+	"runtime/debug"
 	"sync/atomic"
 	"time"
 
@@ -59,6 +60,8 @@ type Options struct {
 	Bell       func()
 	Seen       func(live.Event) // every event before it is folded, for a capture of all
 	Call       func(live.Call)  // must not block
+	// Broken is told of a panic beside the loop; nil lets the program end.
+	Broken func(where string, value any, stack []byte)
 }
 
 const (
@@ -92,9 +95,19 @@ func New(opt Options) *Loop {
 		history: newHistory(), records: newDeadbands(opt.Bench, opt.Capture), changed: make(chan struct{}, 1),
 	}
 	l.state.Now, l.state.Record = opt.Clock.Now(), opt.Book.Health()
-	l.gate = &gate{book: opt.Book, wire: opt.Wire, answer: l.Answer, now: opt.Clock.Now}
+	l.gate = &gate{caught: l.caught, book: opt.Book, wire: opt.Wire, answer: l.Answer, now: opt.Clock.Now}
 	l.publish()
 	return l
+}
+
+// caught is deferred by every goroutine beside the loop.
+func (l *Loop) caught(where string) {
+	if l.opt.Broken == nil {
+		return
+	}
+	if v := recover(); v != nil {
+		l.opt.Broken(where, v, debug.Stack())
+	}
 }
 
 // Snapshot returns the newest picture of the experiment.

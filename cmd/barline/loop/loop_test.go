@@ -267,3 +267,41 @@ func TestDeadbandKeepsSteadyReadingsOutOfTheRecord(t *testing.T) {
 		t.Errorf("a failure was recorded %v with value %v, want at once and null", due, data.Value)
 	}
 }
+
+// What breaks down beside the loop is told, and the loop goes on.
+func TestPanicBesideTheLoopIsTold(t *testing.T) {
+	synctest.Test(t, func(t *testing.T) {
+		tr := &trace{}
+		l := newTestLoop(t, &fakeBook{trace: tr}, tr)
+		told := make(chan string, 10)
+		l.opt.Curve = func(emission.Input, []emission.CurvePoint) { panic("out of order") }
+		l.opt.Broken = func(where string, value any, _ []byte) { told <- where }
+		l.gate.book = brokenBook{}
+		ctx, cancel := context.WithCancel(t.Context())
+		done := make(chan struct{})
+		go func() { l.Run(ctx); close(done) }()
+		l.gauge(1 * unit.Bar)
+		<-time.After(200 * time.Millisecond)
+		if got := <-told; got != "the predicted curve" {
+			t.Errorf("told of %q, expected the predicted curve", got)
+		}
+		l.Do(live.Arm{})
+		l.Do(live.GoTo{Target: 3 * unit.Bar})
+		for got := range told {
+			if got == "the gate before the wire" {
+				break
+			}
+		}
+		cancel()
+		<-done
+	})
+}
+
+// brokenBook breaks down when it is to bring something to the disk.
+type brokenBook struct{ fakeBook }
+
+func (brokenBook) Sync() error { panic("out of order") }
+func (brokenBook) Append(reading.Stamp, string, any) (uint64, error) {
+	return 0, nil
+}
+func (brokenBook) Health() live.RecordHealth { return live.RecordHealth{Writing: true} }

@@ -77,6 +77,7 @@ func (l *Loop) refreshCurve() {
 	l.curveIn = in
 	go func() {
 		defer l.curving.Store(false)
+		defer l.caught("the predicted curve")
 		points := make([]emission.CurvePoint, curvePoints)
 		l.opt.Curve(in, points)
 		l.curve.Store(&points)
