@@ -298,7 +298,7 @@ func TestPanicBesideTheLoopIsTold(t *testing.T) {
 }
 
 // brokenBook breaks down when it is to bring something to the disk.
-type brokenBook struct{ fakeBook }
+type brokenBook struct{}
 
 func (brokenBook) Sync() error { panic("out of order") }
 func (brokenBook) Append(reading.Stamp, string, any) (uint64, error) {
