@@ -1,20 +1,15 @@
 package main
 
 import (
-	"context"
-	"errors"
 	"fmt"
 	"io"
 	"os"
 	"path/filepath"
-	"strings"
 	"text/tabwriter"
 	"time"
 
-	"github.com/mattn/go-isatty"
 	"github.com/spf13/cobra"
 
-	"barline/cmd/barline/loop"
 	"barline/model/emission"
 	"barline/model/flow"
 	"barline/model/live"
@@ -38,6 +33,8 @@ type runFlags struct {
 	arm    bool
 	from   string
 	air    string
+	resume bool
+	step   int
 }
 
 func (f *runFlags) add(cmd *cobra.Command) {
@@ -52,8 +49,11 @@ func (f *runFlags) add(cmd *cobra.Command) {
 	flags.BoolVar(&f.dryRun, "dry-run", false, "print steps, times and gas used, and move nothing")
 	flags.StringVar(&f.from, "from-pressure", "1 bar", "with --dry-run: where the gas stands at the start")
 	flags.StringVar(&f.air, "from-air", "0 %", "with --dry-run: share of air in the gas at the start, such as 100 % after opening")
+	flags.BoolVar(&f.resume, "resume", false, "go on with the program that the logbook shows as unfinished")
+	flags.IntVar(&f.step, "from-step", 1, "begin with this step of the program, counted as --dry-run prints them")
 	flags.BoolVar(&f.arm, "arm", false, "arm without asking: the cautions have been read")
 	cmd.MarkFlagsMutuallyExclusive("bench", "simulated")
+	cmd.MarkFlagsMutuallyExclusive("resume", "from-step")
 }
 
 func newRun() *cobra.Command {
@@ -62,15 +62,27 @@ func newRun() *cobra.Command {
 		Use:   "run PROCEDURE",
 		Short: "A procedure file, such as purge, fill and scan, without a screen",
 		Long: `Run a procedure file without a screen: evacuate, purge, fill, step, scan, hold,
-leak test, vent. The file is checked, and every pressure in it against the
+leak test, vent, energy. The file is checked, and every pressure in it against the
 limits, before anything moves.
+
+A program that was cut off, by a crash or by HOLD, is offered at the next start
+on the same logbook: --resume, without a file, goes on behind the last step that
+was done. Nothing goes on by itself.
 
 ` + cautions + `
 
 Exit code 3 says that an alarm or an interlock stopped it; the bench is then
 held. The bench is held at the end in any case.`,
-		Args: oneArg("a procedure file"),
+		Args: func(cmd *cobra.Command, args []string) error {
+			if f.resume {
+				return noArgs(cmd, args)
+			}
+			return oneArg("a procedure file")(cmd, args)
+		},
 		RunE: func(cmd *cobra.Command, args []string) error {
+			if f.resume {
+				return f.run(cmd, nil)
+			}
 			text, err := os.ReadFile(args[0])
 			if err != nil {
 				return usage("procedure file: %w", err)
@@ -84,44 +96,8 @@ held. The bench is held at the end in any case.`,
 	return cmd
 }
 
-func newScan() *cobra.Command {
-	var f runFlags
-	step := procedure.Step{Do: "scan"}
-	var from, to, by, dwell string
-	cmd := &cobra.Command{
-		Use:   "scan --from 7bar --to 11bar --by 0.25bar --dwell 20s",
-		Short: "A pressure scan without a screen",
-		Long: `A pressure scan without a screen: at each pressure the gas settles, emission is
-averaged for the dwell, and one row goes into the logbook. It is short for a
-procedure of one scan.
-
-` + cautions,
-		Args: noArgs,
-		RunE: func(cmd *cobra.Command, _ []string) error {
-			text := fmt.Sprintf("[procedure]\nname = \"scan\"\n[[step]]\ndo = \"scan\"\nfrom = %q\nto = %q\nby = %q\ndwell = %q\norder = %q\nseed = %d\n",
-				from, to, by, dwell, step.Order, step.Seed)
-			return f.run(cmd, func(ambient unit.Pascal) (*procedure.Procedure, error) {
-				return procedure.Parse([]byte(text), "scan", ambient)
-			})
-		},
-	}
-	f.add(cmd)
-	flags := cmd.Flags()
-	flags.StringVar(&from, "from", "", "lowest pressure")
-	flags.StringVar(&to, "to", "", "highest pressure")
-	flags.StringVar(&by, "by", "", "step of pressure")
-	flags.StringVar(&dwell, "dwell", "20 s", "time at each pressure after the gas has settled")
-	flags.StringVar(&step.Order, "order", "up", "up, down, up and down, or random")
-	flags.IntVar(&step.Seed, "order-seed", 1, "draws the random order")
-	for _, name := range []string{"from", "to", "by"} {
-		if err := cmd.MarkFlagRequired(name); err != nil {
-			panic(err) // the flag stands three lines above
-		}
-	}
-	return cmd
-}
-
-// run checks the procedure that read makes, and runs it.
+// run checks the procedure that read makes, or the program that was left
+// unfinished where it is nil, and runs it.
 func (f *runFlags) run(cmd *cobra.Command, read func(ambient unit.Pascal) (*procedure.Procedure, error)) error {
 	stdout, stderr := cmd.OutOrStdout(), cmd.ErrOrStderr()
 	var p *place
@@ -139,82 +115,51 @@ func (f *runFlags) run(cmd *cobra.Command, read func(ambient unit.Pascal) (*proc
 		return err
 	}
 	s := p.session
-	proc, err := read(s.bench.Panel.Ambient)
-	if err != nil {
-		return coded{exitUsage, err}
-	}
-	program, err := proc.Compile(procedure.Bench{
-		Limits: s.core.Limits(), Ambient: s.bench.Panel.Ambient, PressureFor: pressureFor(s),
-	})
+	program, err := f.program(s, read)
 	if err != nil {
 		return err
 	}
 	if f.dryRun {
 		return f.print(stdout, s, program)
 	}
-	if err := f.consent(cmd.InOrStdin(), stderr); err != nil {
+	in, terminal := somebody(cmd.InOrStdin())
+	understood, err := f.consent(s, program, in, terminal)
+	if err != nil {
 		return err
 	}
-	return p.run(cmd.Context(), func(ctx context.Context, l *loop.Loop) error {
-		return carryOut(ctx, l, program, stdout)
+	e := &execution{program: program, read: understood, in: in, out: stdout, bar: newBar(stderr)}
+	return p.run(cmd.Context(), e.carryOut)
+}
+
+// program returns what is to be run, checked against the limits.
+func (f *runFlags) program(s *session, read func(ambient unit.Pascal) (*procedure.Procedure, error)) (*live.Program, error) {
+	if read == nil {
+		u, err := unfinished(s.folder)
+		if err != nil {
+			return nil, err
+		}
+		program := u.Program()
+		if program == nil {
+			return nil, usage("--resume: nothing is unfinished in %s", s.folder)
+		}
+		fmt.Fprintf(s.stderr, "barline: %v\n", u)
+		s.resumes = true
+		return program, program.Check(s.core.Limits())
+	}
+	proc, err := read(s.bench.Panel.Ambient)
+	if err != nil {
+		return nil, coded{exitUsage, err}
+	}
+	program, err := proc.Compile(procedure.Bench{
+		Limits: s.core.Limits(), Ambient: s.bench.Panel.Ambient, PressureFor: pressureFor(s),
 	})
-}
-
-// consent shows the cautions and waits for somebody to type arm.
-func (f *runFlags) consent(in io.Reader, stderr io.Writer) error {
-	fmt.Fprintln(stderr, cautions)
-	if f.arm {
-		return nil
+	if err != nil || f.step == 1 {
+		return program, err
 	}
-	file, ok := in.(*os.File)
-	if !ok || !isatty.IsTerminal(file.Fd()) {
-		return usage("nobody is there to arm the bench: --arm says that the cautions have been read")
+	if program, err = program.Rest(f.step - 1); err != nil {
+		return nil, usage("--from-step %d: %w", f.step, err)
 	}
-	fmt.Fprint(stderr, "Type arm and press Enter to go on: ")
-	var word string
-	if _, err := fmt.Fscanln(in, &word); err != nil || word != "arm" {
-		return usage("not armed; nothing was moved")
-	}
-	return nil
-}
-
-// errStoppedEarly is what a program ends in that was held or refused.
-var errStoppedEarly = errors.New("the procedure was stopped")
-
-// carryOut runs a program and prints how it goes on, until it ends.
-func carryOut(ctx context.Context, l *loop.Loop, program *live.Program, out io.Writer) error {
-	ctx, done := context.WithCancel(ctx)
-	defer done()
-	printed := make(chan error, 1)
-	go func() { printed <- plain(out, plainEvery)(ctx, l) }()
-	for s := l.Snapshot(); !ready(s); s = l.Snapshot() {
-		select {
-		case <-ctx.Done():
-			return nil
-		case <-time.After(50 * time.Millisecond):
-		}
-	}
-	l.Do(live.Arm{})
-	l.Do(live.Run{Program: program})
-	look := time.NewTicker(20 * time.Millisecond)
-	defer look.Stop()
-	for began := false; ; {
-		select {
-		case err := <-printed:
-			return err
-		case <-look.C:
-		}
-		s := l.Snapshot()
-		began = began || s.Program.Count > 0
-		switch {
-		case s.Outcome == live.Completed && began:
-			return nil
-		case s.Mode == live.Held && began:
-			return coded{exitStopped, fmt.Errorf("%w: %s", errStoppedEarly, s.Why)}
-		case !began && strings.HasPrefix(s.Notice, "refused"):
-			return coded{exitStopped, fmt.Errorf("%w: %s", errStoppedEarly, s.Notice)}
-		}
-	}
+	return program, nil
 }
 
 // print writes what the program would do, how long it takes and how much gas.
@@ -244,7 +189,7 @@ func (f *runFlags) print(out io.Writer, s *session, program *live.Program) error
 		if ph.Action == live.Reach {
 			to = ph.Target.String()
 		}
-		fmt.Fprintf(w, "%d\t%s\t%s\t%v\t%v\t%.3f\t%v\n", i+1, ph.Label, to, ph.Dwell, each[i].Time.Round(time.Second), flow.NormLitres(each[i].Gas), each[i].Air)
+		fmt.Fprintf(w, "%d\t%s\t%s\t%v\t%v\t%.3f\t%v\n", program.First+i+1, ph.Label, to, ph.Dwell, each[i].Time.Round(time.Second), flow.NormLitres(each[i].Gas), each[i].Air)
 	}
 	fmt.Fprintf(w, "\t\t\t\t%v\t%.3f\t%v\n", sum.Time.Round(time.Second), flow.NormLitres(sum.Gas), sum.Air)
 	return w.Flush()

@@ -41,6 +41,7 @@ type session struct {
 	anchors   bool          // full-field runs are computed beside it
 	noCharts  bool          // for slow lines
 	greet     bool          // whoever looks may be new
+	resumes   bool          // what was left unfinished is taken up, and not offered
 	capture   time.Duration // bench time for which every reading is recorded
 	stderr    io.Writer
 	broken    breakdown // set while it runs
@@ -94,6 +95,7 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 	// A broken assumption of ours anywhere ends at broken: it holds what can be
 	// held, closes the record, gives the terminal back, and says so.
 	var broken breakdown
+	left := s.offer()
 	book, err := logbook.Open(s.folder, logbook.Options{
 		Compress: s.bench.Logbook.Compress,
 		Panicked: func(value any, stack []byte) { broken("the logbook", value, stack) },
@@ -114,10 +116,11 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		Curve: func(in emission.Input, dst []emission.CurvePoint) {
 			newest.Load().curve(dst, s.core.Limits().Lowest().Max, in)
 		},
-		Bell:   s.bell,
-		Call:   calls.call,
-		Broken: func(where string, value any, stack []byte) { broken(where, value, stack) },
-		Folder: s.folder, Simulated: s.simulated, Capture: s.capture, Resonances: resonances(s.predictor),
+		Bell:       s.bell,
+		Unfinished: left,
+		Call:       calls.call,
+		Broken:     func(where string, value any, stack []byte) { broken(where, value, stack) },
+		Folder:     s.folder, Simulated: s.simulated, Capture: s.capture, Resonances: resonances(s.predictor),
 	})
 	w.answer = l.Answer
 

@@ -115,7 +115,7 @@ func (f simulateFlags) place(stderr io.Writer) (*place, error) {
 		return nil, err
 	}
 	// What the machine takes on the wall counts speed times on the bench.
-	hiccup := unit.Second(0.25 * f.speed)
+	hiccup := unit.Second(f.speed) // a second of the wall, as at life speed
 	b.Limits.Stale, b.Limits.Confirm = max(b.Limits.Stale, hiccup), max(b.Limits.Confirm, hiccup)
 	s, err := newSession(b, text)
 	if err != nil {
@@ -192,6 +192,9 @@ func play(ctx context.Context, clk clock.Clock, l *loop.Loop, moves []simulate.M
 			return
 		}
 		l.Do(live.Arm{})
+		for _, c := range []live.Caution{live.Filling, live.Venting} {
+			l.Do(live.Understood{Caution: c})
+		}
 		l.Do(live.GoTo{Target: m.To})
 	}
 }

@@ -102,6 +102,7 @@ type Limits struct {
 	Disagreement unit.Pascal          `toml:"disagreement" form:"default=150 mbar; above=0 bar"`
 	Arming       unit.Second          `toml:"arming" form:"default=120 s; above=0 s; most=1 h"`
 	Follow       unit.Pascal          `toml:"follow" form:"default=2 bar; above=0 bar"`
+	CautionAbove unit.Pascal          `toml:"caution_above" form:"default=2 bar; least=0 bar; gauge"` // 0: no caution at filling
 }
 
 // Enforced returns the limits that every command is checked against.

@@ -3,17 +3,34 @@ package live
 import (
 	"fmt"
 	"math"
+	"time"
 
 	"barline/model/limit"
 	"barline/model/reading"
 	"barline/model/unit"
 )
 
+// bridged is how long a cell's last good reading stands in for answers that
+// fail: one spoilt frame on a line must not end a scan of hours. It is one step
+// of a ramp, and less than what makes a reading stale.
+const bridged = time.Second
+
+// gauge returns the reading of a cell that decisions lean on: the newest, or
+// the last good one while the newest is a failure and that one is fresh.
+func (c *Core) gauge(s *State, role reading.Role) reading.Reading {
+	r := s.Reading(role, c.stale)
+	if last := s.lastGood[role-reading.CellAPressure]; r.Status == reading.Failure && last.Channel != "" &&
+		s.Now.Mono-last.Taken.Mono <= min(bridged, c.stale) {
+		return last
+	}
+	return r
+}
+
 // pressure returns the pressure that decisions lean on: the higher of the
 // usable cell gauges, so that the gauge nearer to a rating decides.
 func (c *Core) pressure(s *State) (p unit.Pascal, ok bool) {
 	for _, role := range [...]reading.Role{reading.CellAPressure, reading.CellBPressure} {
-		if r := s.Reading(role, c.stale); r.Status.Usable() {
+		if r := c.gauge(s, role); r.Status.Usable() {
 			p, ok = max(p, unit.Pascal(r.Value)), true
 		}
 	}
@@ -27,7 +44,7 @@ func (s *State) commanding() bool {
 
 // unsafe says why gas may not be moved now, or "".
 func (c *Core) unsafe(s *State) string {
-	a, b := s.Reading(reading.CellAPressure, c.stale), s.Reading(reading.CellBPressure, c.stale)
+	a, b := c.gauge(s, reading.CellAPressure), c.gauge(s, reading.CellBPressure)
 	for _, r := range [...]reading.Reading{a, b} {
 		if r.Channel != "" && !r.Status.Usable() {
 			return fmt.Sprintf("%s: %s, %s", r.Channel, r.Status, r.Reason)
@@ -80,6 +97,9 @@ func (c *Core) send(s *State, sp limit.Setpoint, fx []Effect) []Effect {
 // heldByPerson is why the bench is held when somebody asked for it.
 const heldByPerson = "asked for"
 
+// isolating is why a program shuts the valves.
+const isolating = "isolating"
+
 // hold goes to the safe state: it acts first and records afterwards.
 func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 	last := s.Setpoint
@@ -91,7 +111,8 @@ func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 	s.command++
 	s.heldAt = s.Now.Mono
 	s.Mode, s.Why, s.heldByItself, s.refused = Held, why, why != heldByPerson, false
-	s.ArmedUntil, s.Target, s.Setpoint, s.engaged, s.tuning = 0, 0, p, false, tuning{}
+	c.disarm(s)
+	s.Target, s.Setpoint, s.engaged, s.tuning = 0, p, false, tuning{}
 	if s.run.active() {
 		s.run, s.outcome = progress{}, EndedByHold
 	}
@@ -100,6 +121,10 @@ func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 		SendHold{Command: s.command, Setpoint: sp},
 		Record{At: s.Now, Kind: KindCommand, Data: CommandData{Command: s.command, Hold: true, SetpointPa: float64(p), Why: why}, Sync: true})
 }
+
+// disarm ends the time in which gas may be moved by a new command, and what
+// was said to be understood for that time.
+func (c *Core) disarm(s *State) { s.ArmedUntil, s.understood = 0, [cautionCount]bool{} }
 
 func (c *Core) answered(s *State, e Answered, fx []Effect) []Effect {
 	fx = append(fx, Record{At: e.At, Kind: KindReadback, Data: ReadbackData{Command: e.Command, Error: e.Err}})

@@ -40,6 +40,8 @@ type Core struct {
 	wavelength   unit.Metre // deadband of recorded predictions
 	controlled   bool       // an instrument takes setpoints
 	driftOf      drift.Watch
+	cautionAbove unit.Pascal
+	ambient      unit.Pascal // of the bench file; 0 where it says nothing
 	watched      []watched
 	lineAlarms   []string // names, in the order of the links
 }
@@ -79,6 +81,8 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 		arming:       b.Limits.Arming.Duration(),
 		follow:       b.Limits.Follow,
 		disagreement: b.Limits.Disagreement,
+		cautionAbove: b.Limits.CautionAbove,
+		ambient:      b.Panel.Ambient,
 		heartbeat:    b.Logbook.Heartbeat.Duration(),
 		wavelength:   b.Logbook.DeadbandWavelength,
 		driftOf:      watchOf(b),
@@ -169,6 +173,9 @@ func (c *Core) read(s *State, r reading.Reading, fx []Effect) []Effect {
 		return fx // answers may overtake each other; never step back
 	}
 	s.Latest[r.Role] = r
+	if r.Status.Usable() && (r.Role == reading.CellAPressure || r.Role == reading.CellBPressure) {
+		s.lastGood[r.Role-reading.CellAPressure] = r
+	}
 	if r.Role == reading.Emission {
 		c.compare(s, r)
 	}
@@ -189,7 +196,7 @@ func (c *Core) compare(s *State, r reading.Reading) {
 
 func (c *Core) tick(s *State, fx []Effect) []Effect {
 	if s.ArmedUntil != 0 && s.Now.Mono >= s.ArmedUntil {
-		s.ArmedUntil = 0
+		c.disarm(s)
 		if s.Mode == Armed {
 			s.Mode, s.Why = Watching, ""
 		}

@@ -22,8 +22,13 @@ type (
 		EmissionM *float64 `json:"emission_m,omitempty"`
 		Program   string   `json:"program,omitempty"`
 		Phases    int      `json:"phases,omitempty"`
+		Phase     int      `json:"phase,omitempty"` // from 1, of "begin"
+		EnergyJ   float64  `json:"energy_J,omitempty"`
+		Caution   string   `json:"caution,omitempty"`
 		Alarm     string   `json:"alarm,omitempty"`
 		Refused   string   `json:"refused,omitempty"`
+		// Plan is what a "run" is to do, so that it can be gone on with.
+		Plan *Plan `json:"plan,omitempty"`
 	}
 	// CommandData is a command to the controller.
 	CommandData struct {
@@ -146,7 +151,7 @@ func (c *Core) stepData(s *State) StepData {
 	a, e := s.Reading(reading.CellAPressure, c.stale), s.Reading(reading.Emission, c.stale)
 	r := &s.run
 	d := StepData{
-		Program: r.program.Name, Step: r.index + 1, Label: r.phase().Label,
+		Program: r.program.Name, Step: r.program.First + r.index + 1, Label: r.phase().Label,
 		SetPa: float64(s.Setpoint), MeasuredPa: a.Value, CorePa: float64(s.Core),
 		TemperatureK: float64(s.Prediction.Input.Temperature), EnergyJ: float64(s.Prediction.Input.Energy),
 		Samples: r.emission.n, ScatterM: r.emission.deviation(),

@@ -19,7 +19,7 @@ const lagEvery = 500 * time.Millisecond
 // works out the pressure where the pulse is shortest. Where one cell has no
 // usable gauge the other stands for both.
 func (c *Core) coreGas(s *State) {
-	a, b := s.Reading(reading.CellAPressure, c.stale), s.Reading(reading.CellBPressure, c.stale)
+	a, b := c.gauge(s, reading.CellAPressure), c.gauge(s, reading.CellBPressure)
 	if !a.Status.Usable() {
 		a = b
 	}
@@ -88,12 +88,9 @@ func (c *Core) predict(s *State, fx []Effect) []Effect {
 		return fx
 	}
 	s.predicted = s.Now.Mono
-	in := emission.Input{Pressure: s.Core, Temperature: assumedTemperature, Energy: c.energy, Air: c.air}
+	in := emission.Input{Pressure: s.Core, Temperature: assumedTemperature, Energy: c.pulseEnergy(s), Air: c.air}
 	if t := s.Reading(reading.FibreTemperature, c.stale); t.Status.Usable() {
 		in.Temperature = unit.Kelvin(t.Value)
-	}
-	if e := s.Reading(reading.PulseEnergy, c.stale); e.Status.Usable() {
-		in.Energy = unit.Joule(e.Value)
 	}
 	if in != s.Prediction.Input || !s.Prediction.Valid {
 		s.Prediction = c.ask(s).Predict(in, &s.Prediction)

@@ -37,7 +37,7 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 	record := func() { *fx = append(*fx, Record{At: s.Now, Kind: KindIntent, Data: data, Sync: true}) }
 	switch in := in.(type) {
 	case Arm:
-		data.Intent = "arm"
+		data.Intent, data.Caution = "arm", Arming.String()
 		if !c.controlled {
 			return data, fmt.Errorf("no instrument of this bench takes setpoints")
 		}
@@ -46,16 +46,27 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		}
 		record()
 		s.ArmedUntil = s.Now.Mono + c.arming
+		s.understood[Arming] = true
 		if s.Mode == Watching || s.Mode == Held {
 			s.Mode, s.Why = Armed, ""
 		}
 	case Disarm:
 		data.Intent = "disarm"
 		record()
-		s.ArmedUntil = 0
+		c.disarm(s)
 		if s.Mode == Armed {
 			s.Mode, s.Why = Watching, ""
 		}
+	case Understood:
+		data.Intent, data.Caution = "understood", in.Caution.String()
+		if in.Caution >= cautionCount {
+			return data, fmt.Errorf("%v is not known", in.Caution)
+		}
+		if s.ArmedUntil == 0 {
+			return data, fmt.Errorf("the bench is not armed")
+		}
+		record()
+		s.understood[in.Caution] = true
 	case GoTo:
 		data.Intent = "go to"
 		if p := float64(in.Target); !math.IsNaN(p) && !math.IsInf(p, 0) { // what is refused below is no number of a record
@@ -67,12 +78,13 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		if err := c.limits.Admissible(in.Target); err != nil {
 			return data, err
 		}
+		p := in.program()
+		if err := c.cautious(s, p); err != nil {
+			return data, err
+		}
 		record()
 		s.ArmedUntil = s.Now.Mono + c.arming
-		*fx = c.start(s, &Program{
-			Name:   "go to " + in.Target.String(),
-			Phases: []Phase{{Label: "going to " + in.Target.String(), Target: in.Target}},
-		}, *fx)
+		*fx = c.start(s, p, *fx)
 	case Run:
 		data.Intent = "run"
 		if err := in.Program.Check(c.limits); err != nil {
@@ -82,6 +94,10 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		if err := c.movable(s); err != nil {
 			return data, err
 		}
+		if err := c.cautious(s, in.Program); err != nil {
+			return data, err
+		}
+		data.Plan = in.Program.plan()
 		record()
 		s.ArmedUntil = s.Now.Mono + c.arming
 		*fx = c.start(s, in.Program, *fx)
@@ -96,15 +112,35 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		if err := c.movable(s); err != nil {
 			return data, err
 		}
+		// Where tuning leads is found step by step: any pressure may come.
+		if err := c.cautious(s, GoTo{Target: c.limits.Lowest().Max}.program()); err != nil {
+			return data, err
+		}
 		record()
 		s.ArmedUntil = s.Now.Mono + c.arming
 		var err error
 		*fx, err = c.tune(s, in, *fx)
 		return data, err
+	case Confirm:
+		data.Intent = "confirm"
+		if s.run.asks {
+			data.Program, data.EnergyJ = s.run.program.Name, float64(s.run.phase().Energy)
+		}
+		if err := c.confirmed(s); err != nil {
+			return data, err
+		}
+		record()
 	case Pause, Resume, Skip, Stop:
 		data.Intent = verb(in)
 		if !s.run.active() && s.tuning.base == 0 {
 			return data, fmt.Errorf("no program is under way")
+		}
+		if _, on := in.(Resume); on && s.run.paused {
+			// Who pauses may come back after hours: what moves gas then is
+			// armed anew.
+			if err := c.movable(s); err != nil {
+				return data, err
+			}
 		}
 		record()
 		var err error
@@ -127,6 +163,14 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		panic(fmt.Sprintf("live: unknown intent %T", in))
 	}
 	return data, nil
+}
+
+// program returns the program of one step that goes there.
+func (in GoTo) program() *Program {
+	return &Program{
+		Name:   "go to " + in.Target.String(),
+		Phases: []Phase{{Label: "going to " + in.Target.String(), Target: in.Target}},
+	}
 }
 
 // movable reports why gas may not be moved by a new command, or nil.
@@ -157,7 +201,7 @@ func aboutAlarm(in Intent) (verb, name string) {
 // moves reports whether an intent moves gas or makes that possible.
 func moves(in Intent) bool {
 	switch in.(type) {
-	case Arm, GoTo, Run, Resume, Skip, Tune:
+	case Arm, GoTo, Run, Resume, Skip, Tune, Confirm:
 		return true
 	}
 	return false

@@ -22,6 +22,8 @@ const (
 	Isolate
 	// Stay leaves everything as it is for the dwell.
 	Stay
+	// SetEnergy waits until a person has set another pulse energy.
+	SetEnergy
 )
 
 // Phase is one leg of a program.
@@ -34,6 +36,11 @@ type Phase struct {
 	Patience time.Duration        // Reach: longest wait to settle before HOLD; 0 is 10 min
 	Dwell    time.Duration        // after settling; of Isolate and Stay the whole phase
 	Row      bool                 // write a row of what was measured during the dwell
+	// Floor, of a Reach: the gas counts as settled, wherever it is, when its
+	// pressure changes more slowly than this, as an evacuation does at what its
+	// pump can do; nearness counts besides where Within is given. 0 is never.
+	Floor  unit.PascalPerSecond
+	Energy unit.Joule // SetEnergy: in the fibre
 	// MaxRise ends an Isolate in HOLD where the pressure rose faster; 0 is
 	// no bound.
 	MaxRise unit.PascalPerSecond
@@ -41,7 +48,10 @@ type Phase struct {
 
 // Program is a run of phases. It is never changed after it was handed in.
 type Program struct {
-	Name   string
+	Name string
+	// First counts the steps of the whole program that came before, where this
+	// is the rest of one.
+	First  int
 	Phases []Phase
 }
 
@@ -64,6 +74,9 @@ func (Stop) intent()   {}
 
 // Check reports why the program cannot be run within the limits, or nil.
 func (p *Program) Check(l limit.Limits) error {
+	if p != nil && p.First < 0 {
+		return fmt.Errorf("%d steps done, expected 0 or more", p.First)
+	}
 	if p == nil || len(p.Phases) == 0 || len(p.Phases) > MaxPhases {
 		return fmt.Errorf("a program has 1 to %d phases", MaxPhases)
 	}
@@ -77,12 +90,16 @@ func (p *Program) Check(l limit.Limits) error {
 			if err := l.Admissible(ph.Target); err != nil {
 				return where(err)
 			}
-			if !(ph.Rate >= 0) || !(ph.Within >= 0) || ph.Patience < 0 {
-				return where(fmt.Errorf("rate %v, tolerance %v, patience %v: expected none below zero", ph.Rate, ph.Within, ph.Patience))
+			if !(ph.Rate >= 0) || !(ph.Within >= 0) || !(ph.Floor >= 0) || ph.Patience < 0 {
+				return where(fmt.Errorf("rate %v, tolerance %v, slowest rate %v, patience %v: expected none below zero", ph.Rate, ph.Within, ph.Floor, ph.Patience))
 			}
 		case Isolate, Stay:
 			if ph.Dwell == 0 {
 				return where(fmt.Errorf("lasts 0 s, expected longer"))
+			}
+		case SetEnergy:
+			if !(ph.Energy > 0) || math.IsInf(float64(ph.Energy), 0) {
+				return where(fmt.Errorf("pulse energy %v, expected one above zero", ph.Energy))
 			}
 		default:
 			return where(fmt.Errorf("action %d is not known", ph.Action))
@@ -141,6 +158,9 @@ type progress struct {
 	pressure  mean          // Pa, cell A
 	apart     mean          // Pa, cell A less cell B
 	rise      riseLog       // Isolate
+	asks      bool          // SetEnergy: a person is waited for
+	halves    [2]mean       // Pa, cell A: of a Reach with a floor, before and now
+	halfFrom  time.Duration // when the present half began
 }
 
 func (p *progress) active() bool { return p.program != nil }
@@ -179,6 +199,9 @@ type Progress struct {
 	Dwelling     bool
 	DwellLeft    time.Duration
 	Left         time.Duration // estimate until the end of the program
+	// Asks is what a person is waited for to do and Confirm; "" where nobody
+	// is. Left counts no time for it.
+	Asks string
 }
 
 // Progress returns how far the program has come.
@@ -189,8 +212,11 @@ func (c *Core) Progress(s *State) Progress {
 	}
 	ph := r.phase()
 	p := Progress{
-		Name: r.program.Name, Label: ph.Label, Index: r.index, Count: len(r.program.Phases),
+		Name: r.program.Name, Label: ph.Label, Index: r.program.First + r.index, Count: r.program.First + len(r.program.Phases),
 		Paused: r.paused, Dwelling: r.settledAt != 0,
+	}
+	if r.asks {
+		p.Asks = r.request()
 	}
 	from, _ := c.rampFrom(s)
 	if p.Dwelling {
@@ -202,7 +228,7 @@ func (c *Core) Progress(s *State) Progress {
 		p.Left = p.DwellLeft
 	} else if wait, ok := s.ArriveIn(); ok {
 		p.Left = wait + settledFor + ph.Dwell
-	} else {
+	} else if ph.Action == Reach {
 		p.Left = c.rampTime(from, ph) + settledFor + ph.Dwell
 	}
 	at := from

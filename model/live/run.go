@@ -3,6 +3,7 @@ package live
 import (
 	"fmt"
 	"math"
+	"time"
 
 	"barline/model/flow"
 	"barline/model/reading"
@@ -37,13 +38,15 @@ func (c *Core) beginPhase(s *State, fx []Effect) []Effect {
 	case ph.Action == Isolate:
 		s.run.from, s.run.settledAt = p, s.Now.Mono
 		return c.isolate(s, fx)
-	case ph.Action == Stay && isolated: // the valves stay shut
-		s.run.settledAt, s.Why = s.Now.Mono, ph.Label
+	case ph.Action != Reach && (isolated || underCommand):
+		// The valves stay shut, or the controller keeps its setpoint.
+		s.Why = ph.Label
+		if underCommand {
+			s.Mode = Settling
+		}
+		c.settled(s)
 		return fx
-	case ph.Action == Stay && underCommand:
-		s.run.settledAt, s.Mode, s.Why = s.Now.Mono, Settling, ph.Label
-		return fx
-	case ph.Action == Stay:
+	case ph.Action != Reach:
 		target = p // take over where the gas is
 	}
 	s.Target, s.Mode, s.Why, s.nearSince = min(target, c.limits.Lowest().Max), Ramping, ph.Label, 0
@@ -64,6 +67,15 @@ func (c *Core) rampFrom(s *State) (from unit.Pascal, ok bool) {
 	}
 	p, ok := c.pressure(s)
 	return min(max(p, 0), c.limits.Lowest().Max), ok
+}
+
+// settled goes on from the settling of a phase to what it is for.
+func (c *Core) settled(s *State) {
+	if s.run.phase().Action == SetEnergy {
+		c.wantEnergy(s)
+		return
+	}
+	s.run.settledAt = s.Now.Mono
 }
 
 // expect begins a forecast of how long the move to the target takes.
@@ -88,7 +100,7 @@ func (c *Core) isolate(s *State, fx []Effect) []Effect {
 	s.awaiting, s.awaitFrom, s.nearSince = s.command, s.Now.Mono, 0
 	return append(fx,
 		SendHold{Command: s.command, Setpoint: sp},
-		Record{At: s.Now, Kind: KindCommand, Data: CommandData{Command: s.command, Hold: true, SetpointPa: float64(frozen), Why: "isolating"}, Sync: true})
+		Record{At: s.Now, Kind: KindCommand, Data: CommandData{Command: s.command, Hold: true, SetpointPa: float64(frozen), Why: isolating}, Sync: true})
 }
 
 // rampOn moves the setpoint on by at most one second's worth of the allowed
@@ -105,7 +117,7 @@ func (c *Core) rampOn(s *State, fx []Effect) []Effect {
 	}
 	fx = c.send(s, sp, fx)
 	if s.Setpoint == s.Target {
-		s.Mode, s.run.began = Settling, s.Now.Mono
+		s.Mode, s.run.began, s.run.halfFrom, s.run.halves = Settling, s.Now.Mono, s.Now.Mono, [2]mean{}
 	}
 	return fx
 }
@@ -113,7 +125,7 @@ func (c *Core) rampOn(s *State, fx []Effect) []Effect {
 // proceed carries the program on by one tick.
 func (c *Core) proceed(s *State, fx []Effect) []Effect {
 	r := &s.run
-	if !r.active() || r.paused {
+	if !r.active() || r.paused || r.asks {
 		return fx
 	}
 	ph := r.phase()
@@ -152,8 +164,15 @@ func (c *Core) proceed(s *State, fx []Effect) []Effect {
 // a little beside that for ever.
 func (c *Core) settle(s *State, fx []Effect) []Effect {
 	ph := s.run.phase()
-	a := s.Reading(reading.CellAPressure, c.stale)
+	a := c.gauge(s, reading.CellAPressure)
 	near := math.Abs(a.Value-float64(s.Target)) <= float64(ph.near(s.Target)) && math.Abs(float64(s.Lag)) <= float64(ph.within())
+	if c.slow(s) {
+		c.settled(s)
+		return fx
+	}
+	if ph.Floor > 0 && ph.Within == 0 {
+		near = false // the rate alone decides
+	}
 	s.nearLow, s.nearHigh = min(s.nearLow, a.Value), max(s.nearHigh, a.Value)
 	switch {
 	case !near:
@@ -164,15 +183,35 @@ func (c *Core) settle(s *State, fx []Effect) []Effect {
 	case s.nearSince == 0 || s.nearHigh-s.nearLow > float64(stillWithin):
 		s.nearSince, s.nearLow, s.nearHigh = s.Now.Mono, a.Value, a.Value
 	case s.Now.Mono-s.nearSince >= settledFor:
-		s.run.settledAt = s.Now.Mono
+		c.settled(s)
 	}
 	return fx
+}
+
+// floorSpan is how long a pressure is averaged twice over to tell how fast it
+// changes.
+const floorSpan = 10 * time.Second
+
+// slow reports whether the pressure of a phase with a floor has come to change
+// more slowly than that.
+func (c *Core) slow(s *State) bool {
+	r := &s.run
+	if r.phase().Floor == 0 || s.Now.Mono-r.halfFrom < floorSpan {
+		return false
+	}
+	before, now := r.halves[0], r.halves[1]
+	r.halves, r.halfFrom = [2]mean{now, {}}, s.Now.Mono
+	rate := math.Abs(now.value-before.value) / floorSpan.Seconds()
+	return before.n >= leastSamples && now.n >= leastSamples && rate < float64(r.phase().Floor)
 }
 
 // next goes on to the next phase or ends the program.
 func (c *Core) next(s *State, fx []Effect) []Effect {
 	if s.run.index+1 < len(s.run.program.Phases) {
 		s.run.index++
+		fx = append(fx, Record{At: s.Now, Kind: KindIntent, Data: IntentData{
+			Intent: "begin", Program: s.run.program.Name, Phase: s.run.program.First + s.run.index + 1,
+		}})
 		return c.beginPhase(s, fx)
 	}
 	name, measured := s.run.program.Name, s.run.emission
@@ -217,7 +256,13 @@ func (c *Core) sample(s *State, r reading.Reading) {
 		// A reading that teaches nothing is refused there and does no harm.
 		_ = s.forecast.See(r.Taken.Mono, unit.Pascal(max(r.Value, 0)), s.Setpoint)
 	}
-	if !s.run.active() || s.run.settledAt == 0 || s.run.paused || !r.Status.Usable() {
+	if !s.run.active() || s.run.paused || !r.Status.Usable() {
+		return
+	}
+	if s.run.settledAt == 0 {
+		if r.Role == reading.CellAPressure {
+			s.run.halves[1].add(r.Value)
+		}
 		return
 	}
 	switch r.Role {
@@ -263,6 +308,10 @@ func (c *Core) change(s *State, in Intent, fx []Effect) ([]Effect, error) {
 			r.settledAt += away
 		}
 		r.paused, s.Why = false, r.phase().Label
+		r.halfFrom, r.halves = s.Now.Mono, [2]mean{}
+		if r.asks {
+			s.Why = r.request()
+		}
 	case Skip:
 		return c.next(s, fx), nil
 	case Stop:

@@ -112,16 +112,21 @@ type Snapshot struct {
 	Why        string // why the bench is held, or what it waits for
 	Notice     string // what became of the last intent
 	ArmedUntil time.Duration
-	Target     unit.Pascal // 0 where there is none
-	Setpoint   unit.Pascal // last commanded, 0 before the first
-	Core       unit.Pascal // pressure at the point of compression as the model has it
-	CoreKnown  bool
-	Profile    []unit.Pascal // along the core from cell A to cell B; empty where not known
-	Lag        unit.Pascal   // of the core behind the cells, positive where it has yet to rise
-	ArriveIn   time.Duration // until the cells are at the target and the core has followed; 0 where not known
-	SettleIn   time.Duration // until the core has caught up, if the cells stay as they are
-	Program    Progress
-	Outcome    Outcome // of the last program
+	// Acknowledged are the cautions that stand acknowledged.
+	Acknowledged []Caution
+	Target       unit.Pascal // 0 where there is none
+	Setpoint     unit.Pascal // last commanded, 0 before the first
+	Core         unit.Pascal // pressure at the point of compression as the model has it
+	CoreKnown    bool
+	Profile      []unit.Pascal // along the core from cell A to cell B; empty where not known
+	Lag          unit.Pascal   // of the core behind the cells, positive where it has yet to rise
+	ArriveIn     time.Duration // until the cells are at the target and the core has followed; 0 where not known
+	SettleIn     time.Duration // until the core has caught up, if the cells stay as they are
+	Program      Progress
+	Outcome      Outcome // of the last program
+	// Unfinished is a program of an earlier session that never ended; nil
+	// where there is none.
+	Unfinished *Unfinished
 
 	Latest     [reading.RoleCount]reading.Reading
 	Prediction emission.Prediction

@@ -51,15 +51,19 @@ type State struct {
 	// pressure it can only be shorter than that: ramps lean on it.
 	staleBy [reading.RoleCount]time.Duration
 
+	lastGood [2]reading.Reading // of cells A and B: the last ones that could be used
+
 	alarms       alarm.List
 	heldByItself bool // HOLD came without being asked for
 	refused      bool // an instrument did not take the last command
 	following    bool // another core decides, see Told
+	understood   [cautionCount]bool
 	engaged      bool // the last command was a setpoint, and no HOLD came after it
 
 	drift             drifting
 	run               progress
 	tuning            tuning
+	energy            unit.Joule // of a pulse, as a person confirmed it; 0 before
 	outcome           Outcome
 	forecast          flow.Forecast // of the move under way, where forecasting
 	forecasting       bool

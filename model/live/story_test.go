@@ -24,8 +24,10 @@ import (
 //	expect mode HOLD because stale
 //
 // Events: tick; cell A|cell B|fibre|emission QUANTITY [failure]; arm; disarm;
-// hold; go to PRESSURE; steps PRESSURE... ; link NAME up|down; record ok|lost;
-// answer N [error text].
+// hold; go to PRESSURE; steps PRESSURE... ; stay; isolate; energy ENERGY, a
+// program that asks for it; confirm; meter ENERGY; caution above PRESSURE;
+// understood CAUTION; acknowledge ALARM; pause; resume; skip; stop;
+// link NAME up|down; record ok|lost; answer [error text]; obey on|off.
 
 // straight is a stand-in for the model: 8 nm per bar from 200 nm.
 type straight struct{}
@@ -213,6 +215,30 @@ func (st *story) event(words string) ([]string, error) {
 	case words == "stay":
 		p := &Program{Name: "stay", Phases: []Phase{{Label: "staying", Action: Stay, Dwell: 8 * time.Second}}}
 		return ask(Run{Program: p}), nil
+	case fields[0] == "energy":
+		e, err := unit.ParseEnergy(strings.TrimPrefix(words, "energy "))
+		p := &Program{Name: "energies", Phases: []Phase{
+			{Label: "energy", Action: SetEnergy, Energy: e}, {Label: "measuring", Action: Stay, Dwell: 2 * time.Second, Row: true},
+		}}
+		if err != nil {
+			return nil, err
+		}
+		return ask(Run{Program: p}), nil
+	case words == "confirm":
+		return ask(Confirm{}), nil
+	case fields[0] == "understood":
+		for x := range cautionCount {
+			if x.String() == fields[1] {
+				return ask(Understood{Caution: x}), nil
+			}
+		}
+	case fields[0] == "caution": // above a pressure
+		p, err := unit.ParsePressure(strings.TrimPrefix(words, "caution above "))
+		st.core.cautionAbove = p
+		return nil, err
+	case fields[0] == "meter":
+		e, err := unit.ParseEnergy(fields[1] + " " + fields[2])
+		return st.step(st.reading("meter", reading.PulseEnergy, float64(e), reading.Good)), err
 	case words == "isolate":
 		p := &Program{Name: "leak test", Phases: []Phase{{Label: "valves shut", Action: Isolate, Dwell: 10 * time.Second, Row: true, MaxRise: 10}}}
 		return ask(Run{Program: p}), nil

@@ -19,6 +19,15 @@ func (d IntentData) String() string {
 	if d.EmissionM != nil {
 		fmt.Fprintf(&b, " %.2f nm", *d.EmissionM*1e9)
 	}
+	if d.Phase > 0 {
+		fmt.Fprintf(&b, " step %d of", d.Phase)
+	}
+	if d.EnergyJ > 0 {
+		fmt.Fprintf(&b, " %v", unit.Joule(d.EnergyJ))
+	}
+	if d.Caution != "" {
+		fmt.Fprintf(&b, " the caution at %s", d.Caution)
+	}
 	if d.Program != "" {
 		fmt.Fprintf(&b, " %q", d.Program)
 	}

@@ -76,7 +76,7 @@ func ToldBy(at reading.Stamp, data any) (e Told, ok bool) {
 		if d.Hold {
 			e.Mode = Held
 		}
-		if d.Hold && d.Why == "isolating" {
+		if d.Hold && d.Why == isolating {
 			e.Mode = Isolated
 		}
 		return e, true

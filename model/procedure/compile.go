@@ -50,7 +50,11 @@ func (s *Step) reach(label string, to unit.Pascal, dwell unit.Second, row bool) 
 func (s *Step) phases(b Bench) ([]live.Phase, error) {
 	switch s.Do {
 	case "evacuate":
-		return []live.Phase{s.reach("evacuating", s.To, s.Hold, false)}, nil
+		ph := s.reach("evacuating", s.To, s.Hold, false)
+		ph.Floor = s.UntilRate
+		return []live.Phase{ph}, nil
+	case "energy":
+		return []live.Phase{setEnergy(s.Energy)}, nil
 	case "fill":
 		return []live.Phase{s.reach("filling", s.To, 0, false)}, nil
 	case "step":
@@ -82,7 +86,12 @@ func (s *Step) phases(b Bench) ([]live.Phase, error) {
 	return nil, fmt.Errorf("%q is not a verb", s.Do)
 }
 
-// scan returns the phases of a scan in their order.
+func setEnergy(e unit.Joule) live.Phase {
+	return live.Phase{Label: "pulse energy " + e.String(), Action: live.SetEnergy, Energy: e}
+}
+
+// scan returns the phases of a scan in their order: all pressures at the first
+// pulse energy, then all at the next, since somebody may have to set it.
 func (s *Step) scan(b Bench) ([]live.Phase, error) {
 	targets, err := s.targets(b)
 	if err != nil {
@@ -95,13 +104,22 @@ func (s *Step) scan(b Bench) ([]live.Phase, error) {
 		back := slices.Clone(targets)
 		slices.Reverse(back)
 		targets = append(targets, back[1:]...)
-	case "random":
-		rng := rand.New(rand.NewPCG(uint64(s.Seed), 0))
-		rng.Shuffle(len(targets), func(i, j int) { targets[i], targets[j] = targets[j], targets[i] })
 	}
-	out := make([]live.Phase, len(targets))
-	for i, p := range targets {
-		out[i] = s.reach(fmt.Sprintf("scan %d of %d", i+1, len(targets)), p, s.Dwell, true)
+	rng := rand.New(rand.NewPCG(uint64(s.Seed), 0))
+	rounds, all := max(1, len(s.energies)), len(targets)*max(1, len(s.energies))
+	var out []live.Phase
+	for round := range rounds {
+		if s.Order == "random" { // another order at each energy
+			rng.Shuffle(len(targets), func(i, j int) { targets[i], targets[j] = targets[j], targets[i] })
+		}
+		at := ""
+		if len(s.energies) > 0 {
+			at = " at " + s.energies[round].String()
+			out = append(out, setEnergy(s.energies[round]))
+		}
+		for i, p := range targets {
+			out = append(out, s.reach(fmt.Sprintf("scan %d of %d%s", round*len(targets)+i+1, all, at), p, s.Dwell, true))
+		}
 	}
 	return out, nil
 }
@@ -135,6 +153,7 @@ func (s *Step) targets(b Bench) ([]unit.Pascal, error) {
 				return nil, err
 			}
 		}
+		slices.Sort(out)
 		return out, nil
 	}
 	return nil, fmt.Errorf("the scan has no pressures")

@@ -21,7 +21,7 @@ type Head struct {
 
 // Step is one thing to do. Which keys it takes depends on Do, see verbs.
 type Step struct {
-	Do string `toml:"do" form:"required; oneof=evacuate|purge|fill|step|scan|hold|leak test|vent"`
+	Do string `toml:"do" form:"required; oneof=evacuate|purge|fill|step|scan|hold|leak test|vent|energy"`
 
 	To   unit.Pascal          `toml:"to" form:"gauge"`
 	Rate unit.PascalPerSecond `toml:"rate" form:"above=0 bar/s"` // below that of the limits
@@ -37,7 +37,9 @@ type Step struct {
 	Dwell        unit.Second   `toml:"dwell" form:"least=0 s; most=1 d"`
 	Within       unit.Pascal   `toml:"within" form:"above=0 bar"`
 	Patience     unit.Second   `toml:"patience" form:"above=0 s; most=1 d"`
+	Energies     []string      `toml:"energies"`
 	pressures    []unit.Pascal // Pressures, read
+	energies     []unit.Joule  // Energies, read
 
 	Cycles int         `toml:"cycles" form:"least=0; most=50"`
 	Low    unit.Pascal `toml:"low" form:"least=0 bar"`
@@ -46,25 +48,29 @@ type Step struct {
 
 	For     unit.Second          `toml:"for" form:"above=0 s; most=31 d"`
 	MaxRise unit.PascalPerSecond `toml:"max_rise" form:"above=0 Pa/s"`
+
+	UntilRate unit.PascalPerSecond `toml:"until_rate" form:"above=0 Pa/s"` // of an evacuation
+	Energy    unit.Joule           `toml:"energy" form:"above=0 uJ; most=1 J"`
 }
 
 // verb says which keys a verb needs and which it may have besides.
 type verb struct{ needs, may []string }
 
 var verbs = map[string]verb{
-	"evacuate":  {needs: []string{"to"}, may: []string{"rate", "within", "patience", "hold"}},
+	"evacuate":  {may: []string{"to", "until_rate", "rate", "within", "patience", "hold"}},
 	"purge":     {needs: []string{"cycles", "low", "high"}, may: []string{"rate", "within", "patience", "hold"}},
 	"fill":      {needs: []string{"to"}, may: []string{"rate", "within", "patience"}},
 	"step":      {needs: []string{"to"}, may: []string{"rate", "within", "patience", "dwell"}},
-	"scan":      {needs: []string{"dwell"}, may: []string{"from", "to", "by", "pressures", "from_emission", "to_emission", "emission_by", "order", "seed", "rate", "within", "patience"}},
+	"scan":      {needs: []string{"dwell"}, may: []string{"from", "to", "by", "pressures", "from_emission", "to_emission", "emission_by", "energies", "order", "seed", "rate", "within", "patience"}},
 	"hold":      {needs: []string{"for"}},
 	"leak test": {needs: []string{"for"}, may: []string{"max_rise"}},
+	"energy":    {needs: []string{"energy"}},
 	"vent":      {may: []string{"to", "rate", "within", "patience"}},
 }
 
 var keys = []string{
 	"to", "rate", "from", "by", "pressures", "from_emission", "to_emission", "emission_by", "order", "seed", "dwell",
-	"within", "patience", "cycles", "low", "high", "hold", "for", "max_rise",
+	"within", "patience", "cycles", "low", "high", "hold", "for", "max_rise", "until_rate", "energies", "energy",
 }
 
 // Parse reads a procedure file. Name is the file's name for messages; gauge
@@ -104,6 +110,9 @@ func (s *Step) check(r *form.Report, at string) {
 	}
 	if s.Do == "purge" && s.High > 0 && s.Low >= s.High {
 		r.Wrong(at+".low", "it is not below high, %v", s.High)
+	}
+	if s.Do == "evacuate" && !r.Has(at+".to") && !r.Has(at+".until_rate") {
+		r.About(at, "an evacuation ends at a pressure, to, or when the pressure falls more slowly than until_rate")
 	}
 	if s.Do == "scan" {
 		s.checkScan(r, at)
@@ -145,5 +154,16 @@ func (s *Step) checkScan(r *form.Report, at string) {
 			continue
 		}
 		s.pressures = append(s.pressures, p)
+	}
+	for i, text := range s.Energies {
+		e, err := unit.ParseEnergy(text)
+		switch {
+		case err != nil:
+			r.Wrong(item(at+".energies", i), "%s", form.Reason(err))
+		case !(e > 0):
+			r.Wrong(item(at+".energies", i), "expected more than 0 uJ")
+		default:
+			s.energies = append(s.energies, e)
+		}
 	}
 }

@@ -137,6 +137,77 @@ func TestScanInEqualStepsOfWavelength(t *testing.T) {
 	}
 }
 
+// Whichever way the emission turns with pressure, a scan in equal steps of it
+// goes up in pressure.
+func TestScanInWavelengthAscendsInPressure(t *testing.T) {
+	p, err := Parse([]byte("[procedure]\nname = \"x\"\n[[step]]\ndo = \"scan\"\nfrom_emission = \"240 nm\"\nto_emission = \"260 nm\"\nemission_by = \"10 nm\"\ndwell = \"5 s\"\n"), "f", 0)
+	if err != nil {
+		t.Fatal(err)
+	}
+	b := testBench()
+	b.PressureFor = func(e unit.Metre) (unit.Pascal, error) { return unit.Pascal(300-e.Nanometres()) / 8 * unit.Bar, nil }
+	program, err := p.Compile(b)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got, want := targets(program), []float64{5, 6.25, 7.5}; !equal(got, want) {
+		t.Errorf("%v, want %v", got, want)
+	}
+}
+
+// At each energy the whole scan is run, behind the setting of the energy.
+func TestScanOverEnergies(t *testing.T) {
+	p := compile(t, "[[step]]\ndo = \"energy\"\nenergy = \"1 uJ\"\n[[step]]\ndo = \"scan\"\npressures = [\"7 bar\", \"8 bar\"]\nenergies = [\"1.1 uJ\", \"1.3 uJ\"]\ndwell = \"5 s\"\n")
+	want := []live.Phase{
+		{Label: "pulse energy 1 uJ", Action: live.SetEnergy, Energy: 1e-6},
+		{Label: "pulse energy 1.1 uJ", Action: live.SetEnergy, Energy: 1.1e-6},
+		{Label: "scan 1 of 4 at 1.1 uJ", Target: 7e5, Dwell: 5 * time.Second, Row: true},
+		{Label: "scan 2 of 4 at 1.1 uJ", Target: 8e5, Dwell: 5 * time.Second, Row: true},
+		{Label: "pulse energy 1.3 uJ", Action: live.SetEnergy, Energy: 1.3e-6},
+		{Label: "scan 3 of 4 at 1.3 uJ", Target: 7e5, Dwell: 5 * time.Second, Row: true},
+		{Label: "scan 4 of 4 at 1.3 uJ", Target: 8e5, Dwell: 5 * time.Second, Row: true},
+	}
+	if len(p.Phases) != len(want) {
+		t.Fatalf("%d phases, want %d", len(p.Phases), len(want))
+	}
+	for i, w := range want {
+		got := p.Phases[i]
+		if math.Abs(float64(got.Energy-w.Energy)) > 1e-15 {
+			t.Errorf("phase %d: energy %v, want %v", i+1, got.Energy, w.Energy)
+		}
+		got.Energy = w.Energy
+		if got != w {
+			t.Errorf("phase %d: %+v, want %+v", i+1, got, w)
+		}
+	}
+}
+
+// A pump of speed S takes a volume V down as exp(-St/V): its rate p S/V has
+// come down to the floor at floor V/S, whatever the ultimate pressure.
+func TestEvacuationToARate(t *testing.T) {
+	p := compile(t, "[[step]]\ndo = \"evacuate\"\nuntil_rate = \"10 Pa/s\"\n")
+	if ph := p.Phases[0]; ph.Target != 0 || ph.Floor != 10 {
+		t.Fatalf("%+v", ph)
+	}
+	argon, err := flow.Named("argon")
+	if err != nil {
+		t.Fatal(err)
+	}
+	site := Site{Panel: flow.Handling{
+		Panel:     flow.Panel{Cell: flow.Cell{Gas: argon.Ideal(), Volume: 1e-3, Wall: 293.15}, Pump: flow.Pump{Speed: 1e-4}},
+		PumpBelow: 1.2 * unit.Bar, Fall: 1e6,
+	}}
+	_, sum, err := site.Estimate(p, 1*unit.Bar)
+	if err != nil {
+		t.Fatal(err)
+	}
+	// The floor is reached at 100 Pa, ln(1000)·10 s = 69 s; it is noticed within
+	// two stretches of a tenth, 2 s.
+	if sum.Time < 68*time.Second || sum.Time > 72*time.Second {
+		t.Errorf("takes %v, want 69 s to 71 s", sum.Time)
+	}
+}
+
 func TestMistakesAreNamed(t *testing.T) {
 	for _, c := range []struct{ text, want string }{
 		{"[[step]]\ndo = \"fill\"\n", `f:3:3: step.to is missing; "fill" needs it`},
@@ -147,6 +218,10 @@ func TestMistakesAreNamed(t *testing.T) {
 		{"[[step]]\ndo = \"scan\"\nfrom = \"7 bar\"\ndwell = \"1 s\"\n", "needs all of from, to, by"},
 		{"[[step]]\ndo = \"scan\"\ndwell = \"1 s\"\n", "a scan says where it goes in one way"},
 		{"[[step]]\ndo = \"scan\"\npressures = [\"7 bar\", \"8\"]\ndwell = \"1 s\"\n", "it has no unit"},
+		{"[[step]]\ndo = \"evacuate\"\n", "an evacuation ends at a pressure"},
+		{"[[step]]\ndo = \"energy\"\n", `step.energy is missing; "energy" needs it`},
+		{"[[step]]\ndo = \"scan\"\npressures = [\"7 bar\"]\nenergies = [\"1\"]\ndwell = \"1 s\"\n", "it has no unit"},
+		{"[[step]]\ndo = \"scan\"\npressures = [\"7 bar\"]\nenergies = [\"-1 uJ\"]\ndwell = \"1 s\"\n", "expected more than 0 uJ"},
 		{"", "there is nothing to do"},
 	} {
 		_, err := Parse([]byte("[procedure]\nname = \"x\"\n"+c.text), "f", 0)

@@ -56,6 +56,8 @@ type Options struct {
 	ReadOnly  bool
 	// Resonances are shown on the emission map.
 	Resonances []live.Span
+	// Unfinished is what an earlier session left; it is only shown.
+	Unfinished *live.Unfinished
 	Capture    time.Duration // bench time for which every reading is recorded
 	Bell       func()
 	Seen       func(live.Event) // every event before it is folded, for a capture of all

@@ -19,7 +19,7 @@ func (l *Loop) publish() {
 	s, o := &l.state, &l.opt
 	snap := &live.Snapshot{
 		Now: s.Now, Bench: o.Bench,
-		Mode: s.Mode, Why: s.Why, Notice: s.Notice, ArmedUntil: s.ArmedUntil,
+		Mode: s.Mode, Why: s.Why, Notice: s.Notice, ArmedUntil: s.ArmedUntil, Acknowledged: s.Acknowledged(), Unfinished: o.Unfinished,
 		Target: s.Target, Setpoint: s.Setpoint, Program: o.Core.Progress(s), Outcome: s.Outcome(),
 		Core: s.Core, CoreKnown: s.CoreKnown, Lag: s.Lag, SettleIn: s.SettleIn,
 		Profile:    o.Core.Profile(s, make([]unit.Pascal, profilePoints)),

@@ -214,11 +214,19 @@ func (tr *trial) obey(command uint64, do func(*seat) error) {
 
 func (tr *trial) ask(in live.Intent) {
 	switch in.(type) {
-	case live.GoTo, live.Run, live.Resume, live.Skip, live.Tune:
+	case live.GoTo, live.Run, live.Resume, live.Skip, live.Tune, live.Confirm:
 		tr.askedAt = tr.clk.Now().Mono
 		tr.heldAt = min(tr.heldAt, tr.askedAt-1)
 	}
 	tr.loop.Do(in)
+}
+
+// arm arms the bench, all cautions read.
+func (tr *trial) arm() {
+	tr.ask(live.Arm{})
+	for _, c := range []live.Caution{live.Filling, live.Venting} {
+		tr.ask(live.Understood{Caution: c})
+	}
 }
 
 // gaugesKept is how many cell readings come in while one does not go stale.
@@ -322,8 +330,9 @@ func (tr *trial) operator() {
 		p := &live.Program{Name: "storm"}
 		for range 1 + tr.rng.IntN(4) {
 			p.Phases = append(p.Phases, live.Phase{
-				Label: "leg", Action: live.Action(tr.rng.IntN(3)), Target: unit.Pascal(tr.rng.Float64()*17) * unit.Bar,
+				Label: "leg", Action: live.Action(tr.rng.IntN(4)), Target: unit.Pascal(tr.rng.Float64()*17) * unit.Bar,
 				Dwell: time.Duration(tr.rng.IntN(8)) * time.Second, Row: true,
+				Floor: unit.PascalPerSecond(max(0, tr.rng.IntN(400)-200)), Energy: unit.Joule(1+tr.rng.IntN(3)) * 0.5 * unit.Microjoule,
 			})
 		}
 		tr.ask(live.Run{Program: p})
@@ -336,8 +345,12 @@ func (tr *trial) operator() {
 		tr.ask(live.Tune{Emission: unit.Metre(math.NaN())})
 	case 13:
 		tr.ask(live.Tune{Emission: unit.Metre(200+100*tr.rng.Float64()) * unit.Nanometre, Hold: tr.rng.IntN(2) == 0})
+	case 14:
+		tr.ask(live.Understood{Caution: live.Caution(tr.rng.IntN(4))})
+	case 15:
+		tr.ask(live.Confirm{})
 	case 12:
-		tr.ask(live.Arm{})
+		tr.arm()
 		tr.ask(live.GoTo{Target: unit.Pascal(1+10*tr.rng.Float64()) * unit.Bar})
 	}
 }
@@ -429,7 +442,7 @@ func TestQuietFills(t *testing.T) {
 		for tr.clk.Now().Mono < 4*time.Second {
 			tr.turn()
 		}
-		tr.ask(live.Arm{})
+		tr.arm()
 		tr.ask(live.GoTo{Target: target})
 		for tr.clk.Now().Mono < 60*time.Second && tr.loop.Snapshot().Outcome != live.Completed {
 			tr.turn()
@@ -475,7 +488,7 @@ func TestFaultsRaiseTheirAlarms(t *testing.T) {
 				for tr.clk.Now().Mono < 4*time.Second {
 					tr.turn()
 				}
-				tr.ask(live.Arm{})
+				tr.arm()
 				tr.ask(live.GoTo{Target: 12 * unit.Bar})
 				for tr.clk.Now().Mono < 10*time.Second {
 					tr.turn()
@@ -511,7 +524,7 @@ func TestTuneAndHold(t *testing.T) {
 		for tr.clk.Now().Mono < 4*time.Second {
 			tr.turn()
 		}
-		tr.ask(live.Arm{})
+		tr.arm()
 		tr.ask(live.Tune{Emission: 252 * unit.Nanometre, Hold: true})
 		for tr.clk.Now().Mono < 90*time.Second {
 			tr.turn()
@@ -568,7 +581,7 @@ func TestLeakTest(t *testing.T) {
 			for tr.clk.Now().Mono < 4*time.Second {
 				tr.turn()
 			}
-			tr.ask(live.Arm{})
+			tr.arm()
 			tr.ask(live.Run{Program: &live.Program{Name: "leak test", Phases: []live.Phase{
 				{Label: "valves shut", Action: live.Isolate, Dwell: 5 * time.Minute, Row: true},
 			}}})
@@ -604,7 +617,7 @@ func TestScanCompletes(t *testing.T) {
 		for tr.clk.Now().Mono < 4*time.Second {
 			tr.turn()
 		}
-		tr.ask(live.Arm{})
+		tr.arm()
 		tr.ask(live.Run{Program: p})
 		for tr.clk.Now().Mono < 15*time.Minute && tr.loop.Snapshot().Outcome == live.NoOutcome {
 			tr.turn()

@@ -15,7 +15,7 @@ expect setpoint 1.6 bar
 at 20s   resume                  -> record intent
 at 20s   run until 22s
 expect setpoint 2 bar
-at 22s   skip                    -> record intent
+at 22s   skip                    -> record intent, record intent
 at 22s   run until 35s
 expect mode ramping
 at 35s   stop                    -> record intent
