@@ -5,6 +5,7 @@ import (
 	"unicode"
 
 	"barline/model/live"
+	"barline/model/unit"
 )
 
 const maxNote = 200
@@ -73,9 +74,9 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 		}
 		v.past = v.past.with(entry{setpointOverlay, text})
 		v = v.open(noOverlay)
-		return v, []live.Intent{live.GoTo{Target: target}}
+		return v.careful(s, towards(target), live.GoTo{Target: target})
 	case runOverlay:
-		program, err := parseRun(s, text)
+		program, err := chosenRun(s, text)
 		if err != nil {
 			v.message = err.Error()
 			return v, nil
@@ -87,7 +88,7 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 		}
 		v.past = v.past.with(entry{runOverlay, text})
 		v.page = Scan
-		return v, []live.Intent{live.Run{Program: program}}
+		return v.careful(s, program, live.Run{Program: program})
 	case tuneOverlay:
 		in, _, err := parseTune(s, text)
 		if err != nil {
@@ -100,7 +101,8 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 			return v, nil
 		}
 		v.past = v.past.with(entry{tuneOverlay, text})
-		return v, []live.Intent{in}
+		// Where tuning leads is found step by step: any pressure may come.
+		return v.careful(s, towards(s.Bench.Limits.Enforced().Lowest().Max), in)
 	case findOverlay:
 		v.overlay, v.text, v.find, v.scroll = noOverlay, "", text, 0
 		return v, nil
@@ -111,6 +113,11 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 	}
 	v.message = "noted"
 	return v, []live.Intent{live.Note{Text: text}}
+}
+
+// towards is the program of one step to a pressure.
+func towards(target unit.Pascal) *live.Program {
+	return &live.Program{Phases: []live.Phase{{Target: target}}}
 }
 
 // circumstances are what a mark keeps beside its time.

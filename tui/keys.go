@@ -10,6 +10,7 @@ type binding struct {
 	key   string   // as bubbletea names it; a letter is itself
 	also  []string // other keys that do the same
 	label string   // as the keyboard writes it
+	foot  string   // the same for the footer, where it shows fewer keys
 	short string   // in the footer; empty keeps it out of there
 	what  string   // in the help
 	gas   bool     // may lead to gas being moved, so not for a second screen
@@ -17,6 +18,13 @@ type binding struct {
 
 	screen bool // concerns the screen alone
 	replay bool // steers a replay, and is there for nothing else
+}
+
+func (b binding) footLabel() string {
+	if b.foot != "" {
+		return b.foot
+	}
+	return b.label
 }
 
 // quit is the intent of leaving, which Run takes for itself.
@@ -32,12 +40,12 @@ type Steer struct {
 
 var bindings = []binding{
 	{key: "tab", label: "Tab", short: "HOLD", what: "HOLD: always, without asking", press: pressHold},
-	{key: "a", label: "a", short: "arm", what: "arm: cautions, then setpoints", gas: true, press: pressArm},
-	{key: "d", label: "d", what: "disarm", gas: true, press: pressDisarm},
+	{key: "a", also: []string{"d"}, label: "a d", foot: "a", short: "arm", what: "arm: cautions first; disarm", gas: true, press: pressArm},
 	{key: "s", label: "s", short: "setpoint", what: "go to a pressure", gas: true, press: pressSetpoint},
 	{key: "r", label: "r", what: "run a scan or a procedure", gas: true, press: pressRun},
 	{key: "t", label: "t", short: "tune", what: "tune to a wavelength", gas: true, press: pressTune},
 	{key: "p", also: []string{"x"}, label: "p x", short: "pause, end", what: "program: pause or go on, end", gas: true, press: pressProgram},
+	{key: "y", label: "y", what: "program: done what it asks for", gas: true, press: pressProgram},
 	{key: "m", label: "m", short: "mark", what: "mark: something happened", press: pressMark},
 	{key: "n", label: "n", short: "note", what: "note for the record", press: pressNote},
 	{key: "k", label: "k", short: "seen", what: "the alarm on top is seen", press: pressSeen},
@@ -78,6 +86,8 @@ func (v view) press(key string, s *live.Snapshot) (view, []live.Intent) {
 		return v.typed(key, s)
 	}
 	switch v.overlay {
+	case cautionOverlay:
+		return pressCaution(v, s, key)
 	case leaveOverlay:
 		v.overlay = noOverlay
 		if key == "enter" {
@@ -140,7 +150,10 @@ func pressLeaveNow(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	return v, append(intents, quit{})
 }
 
-func pressArm(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+func pressArm(v view, s *live.Snapshot, key string) (view, []live.Intent) {
+	if key == "d" {
+		return pressDisarm(v, s, key)
+	}
 	if armed(s) {
 		v.message = "armed already; d disarms"
 		return v, nil

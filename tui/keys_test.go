@@ -1,6 +1,7 @@
 package tui
 
 import (
+	"encoding/json"
 	"maps"
 	"math"
 	"math/rand/v2"
@@ -14,6 +15,8 @@ import (
 	"github.com/charmbracelet/x/ansi"
 
 	"barline/model/live"
+	"barline/model/reading"
+	"barline/model/unit"
 	"barline/tui/tuitest"
 )
 
@@ -106,6 +109,94 @@ func TestArmingNeedsTheWord(t *testing.T) {
 		if _, intents := v.press("enter", s); len(intents) != want {
 			t.Errorf("%q and Enter gives %v, want %d intents", text, intents, want)
 		}
+	}
+}
+
+// Filling above the pressure of the bench file and venting ask for their
+// cautions first; Enter sends word of them before what was asked for, any
+// other key sends nothing. What stands acknowledged is not asked for again.
+func TestCautionsComeFirst(t *testing.T) {
+	filling := *tuitest.Filling() // stands above the caution's 2 bar
+	b := *filling.Bench
+	b.Limits.CautionAbove = 2 * unit.Bar
+	filling.Bench = &b
+	low := filling
+	low.Latest[reading.CellAPressure].Value, low.Latest[reading.CellBPressure].Value = 1.5e5, 1.5e5
+	for _, c := range []struct {
+		name string
+		s    live.Snapshot
+		form overlay
+		text string
+		want []live.Caution
+	}{
+		{"filling", low, setpointOverlay, "9 bar", []live.Caution{live.Filling}},
+		{"below", low, setpointOverlay, "1.9 bar", nil},
+		{"filled already", filling, setpointOverlay, "9 bar", nil},
+		{"venting", filling, setpointOverlay, "1 bar", []live.Caution{live.Venting}},
+		{"both", low, runOverlay, "fill to 3 bar; vent", []live.Caution{live.Filling, live.Venting}},
+		{"tuning", low, tuneOverlay, "262 nm", []live.Caution{live.Filling}},
+	} {
+		v, intents := view{overlay: c.form, text: c.text}.press("enter", &c.s)
+		if len(c.want) == 0 {
+			if len(intents) != 1 || v.overlay != noOverlay {
+				t.Errorf("%s: %v and overlay %d, want it sent", c.name, intents, v.overlay)
+			}
+			continue
+		}
+		if len(intents) != 0 || v.overlay != cautionOverlay || !slices.Equal(v.pending.cautions, c.want) {
+			t.Errorf("%s: %v, overlay %d (%s), want the cautions %v", c.name, intents, v.overlay, v.message, c.want)
+			continue
+		}
+		if _, sent := v.press("esc", &c.s); len(sent) != 0 {
+			t.Errorf("%s: Esc sends %v", c.name, sent)
+		}
+		_, sent := v.press("enter", &c.s)
+		if len(sent) != len(c.want)+1 {
+			t.Errorf("%s: Enter sends %v", c.name, sent)
+		}
+		for i, x := range c.want {
+			if sent[i] != live.Intent(live.Understood{Caution: x}) {
+				t.Errorf("%s: %v, want %v understood", c.name, sent[i], x)
+			}
+		}
+		lapsed := c.s
+		lapsed.ArmedUntil = 0
+		if _, sent := v.press("enter", &lapsed); len(sent) != 0 {
+			t.Errorf("%s: no longer armed, Enter sends %v", c.name, sent)
+		}
+		c.s.Acknowledged = c.want
+		if _, intents := (view{overlay: c.form, text: c.text}).press("enter", &c.s); len(intents) != 1 {
+			t.Errorf("%s: acknowledged, it still sends %v", c.name, intents)
+		}
+	}
+}
+
+// What an earlier session left is gone on with by Enter on the empty form, and
+// by nothing else.
+func TestUnfinishedIsOfferedInTheForm(t *testing.T) {
+	s := *tuitest.Filling()
+	if _, intents := (view{overlay: runOverlay}).press("enter", &s); len(intents) != 0 {
+		t.Errorf("nothing is unfinished and Enter sends %v", intents)
+	}
+	var u live.Unfinished
+	text := `{"intent":"run","plan":{"name":"scan","phases":[{"label":"one","action":"reach","target_Pa":8e5},{"label":"two","action":"reach","target_Pa":9e5}]}}`
+	var run live.IntentData
+	if err := json.Unmarshal([]byte(text), &run); err != nil {
+		t.Fatal(err)
+	}
+	u.See(s.Now, run)
+	u.See(s.Now, live.IntentData{Intent: "begin", Program: "scan", Phase: 2})
+	s.Unfinished = &u
+	screen := draw(&s, view{overlay: runOverlay}, 120, 40, Style{}).String()
+	if !strings.Contains(screen, "ended after step 1 of 2") || !strings.Contains(screen, "goes on with step 2") {
+		t.Errorf("the form does not offer it:\n%s", screen)
+	}
+	_, intents := view{overlay: runOverlay}.press("enter", &s)
+	if len(intents) != 1 {
+		t.Fatalf("Enter sends %v", intents)
+	}
+	if p := intents[0].(live.Run).Program; p.First != 1 || len(p.Phases) != 1 || p.Phases[0].Label != "two" {
+		t.Errorf("Enter runs %+v", p)
 	}
 }
 

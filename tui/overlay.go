@@ -38,7 +38,7 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 		x = a.Text(x, 0, key, frame.Keys)
 		x = a.Text(x+1, 0, what, frame.Faint) + 2
 	}
-	if v.typing() || v.overlay == leaveOverlay {
+	if v.typing() || v.overlay == leaveOverlay || v.overlay == cautionOverlay {
 		put("Enter", "do it")
 		put("Esc", "close")
 		return
@@ -48,7 +48,7 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 		if b.short == "" || !b.shown(s) || s.ReadOnly && (b.key == "m" || b.key == "n") || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
 			continue
 		}
-		put(b.label, b.short)
+		put(b.footLabel(), b.short)
 	}
 }
 
@@ -96,6 +96,8 @@ func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 		input(b.Sub(0, 2, b.W, 1), v.text)
 	case greetOverlay:
 		drawGreeting(a, s)
+	case cautionOverlay:
+		drawCaution(a, v)
 	case leaveOverlay:
 		b := box(a, "leave", 50, 3, frame.Caution)
 		b.Text(0, 0, "The bench is put on HOLD and the record closed.", frame.Plain)

@@ -21,14 +21,18 @@ func pressRun(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	return v, nil
 }
 
-// pressProgram pauses the program that is under way or goes on with it (p), or
-// ends it (x).
+// pressProgram pauses the program that is under way or goes on with it (p),
+// ends it (x), or tells it that what it asks for is done (y).
 func pressProgram(v view, s *live.Snapshot, key string) (view, []live.Intent) {
 	switch {
 	case s.Program.Count == 0:
 		v.message = "no program is under way"
 	case key == "x":
 		return v, []live.Intent{live.Stop{}}
+	case key == "y" && s.Program.Asks == "":
+		v.message = "the program asks for nothing"
+	case key == "y":
+		return v, []live.Intent{live.Confirm{}}
 	case !s.Program.Paused:
 		return v, []live.Intent{live.Pause{}}
 	case !armed(s):
@@ -137,6 +141,15 @@ func parseRun(s *live.Snapshot, text string) (*live.Program, error) {
 	})
 }
 
+// chosenRun returns what Enter runs: what was typed, or where nothing was, the
+// rest of what an earlier session left unfinished.
+func chosenRun(s *live.Snapshot, text string) (*live.Program, error) {
+	if rest := s.Unfinished.Program(); strings.TrimSpace(text) == "" && rest != nil && s.Bench != nil {
+		return rest, rest.Check(s.Bench.Limits.Enforced())
+	}
+	return parseRun(s, text)
+}
+
 // shortest returns how long a program takes if every step settles at once.
 func shortest(s *live.Snapshot, p *live.Program) time.Duration {
 	l := s.Bench.Limits.Enforced()
@@ -165,9 +178,14 @@ func drawRunForm(a frame.Area, s *live.Snapshot, v view) {
 	b := box(a, "run a scan or a procedure", 74, 10, frame.Target)
 	b.Text(0, 0, "scan: from : to : step : dwell   "+scanExample, frame.Faint)
 	b.Text(0, 1, "else  "+runExample, frame.Faint)
-	b.Text(0, 2, "verbs: evacuate, purge, fill, step, scan, hold, leak test, vent", frame.Faint)
+	b.Text(0, 2, "verbs: evacuate, purge, fill, step, scan, hold, leak test, vent, energy", frame.Faint)
 	input(b.Sub(0, 4, b.W, 1), v.text)
 	if v.text == "" {
+		if s.Unfinished.Program() != nil {
+			done, _ := s.Unfinished.Steps()
+			y := wrap(b.Sub(0, 6, b.W, 3), s.Unfinished.String()+".", frame.Caution)
+			b.Text(0, 6+y, fmt.Sprintf("Enter, with nothing typed, goes on with step %d.", done+1), frame.Strong)
+		}
 		return
 	}
 	p, err := parseRun(s, v.text)

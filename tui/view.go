@@ -26,6 +26,7 @@ type view struct {
 	recall  int    // how far back in past the form is; 0: what is typed
 	message string // why the last key did nothing, or what it did
 	late    time.Duration
+	pending *pending // waits behind cautionOverlay
 }
 
 // overlay is what stands over the page.
@@ -43,6 +44,7 @@ const (
 	findOverlay     // what to find in the record is being typed
 	greetOverlay    // how to begin
 	tuneOverlay     // a wavelength is being typed
+	cautionOverlay  // what is to be read before gas moves
 	overlayCount
 )
 

@@ -73,8 +73,8 @@ func stepLines(step string) (name, lines string, err error) {
 			return "", "", fmt.Errorf("%q: %s takes %s", item, name, takes(name))
 		case value == "":
 			return "", "", fmt.Errorf("%q: a value is missing", item)
-		case key == "pressures":
-			return "", "", fmt.Errorf("a list of pressures needs a procedure file")
+		case key == "pressures" || key == "energies":
+			return "", "", fmt.Errorf("a list of %s needs a procedure file", key)
 		case key == "cycles" || key == "seed": // whole numbers
 			if strings.Trim(value, "0123456789") != "" {
 				return "", "", fmt.Errorf("%s %q: expected a whole number", key, value)
