@@ -23,8 +23,8 @@ type Cause struct {
 	Size float64
 	// Effect is what one unit of the amount does to each observable.
 	Effect [ObservableCount]float64
-	// Doubt is how badly each effect is known, as a share of it, one standard
-	// deviation; zero: exactly, as that of a gauge on itself is.
+	// Doubt is the standard uncertainty of each effect, in the same unit; zero:
+	// it is known exactly, as that of a gauge on itself is.
 	Doubt [ObservableCount]float64
 	// Text writes an amount for a person, such as "moved by -0.13 bar".
 	Text func(amount float64) string
@@ -139,7 +139,7 @@ func weigh(amount, size float64, effect, doubt, seen, sigma []float64) weighed {
 		for k, e := range effect {
 			v := sigma[k] * sigma[k]
 			if round > 0 { // the first round takes the effects for known
-				v += square(w.amount * e * doubt[k])
+				v += square(w.amount * doubt[k])
 			}
 			y := seen[k] - amount*e
 			ee, ey, yy = ee+e*e/v, ey+e*y/v, yy+y*y/v

@@ -82,7 +82,7 @@ func draw(rng *rand.Rand, c Cause, sigma [ObservableCount]float64) (Observation,
 	o := Observation{Sigma: sigma}
 	for k, s := range sigma {
 		if s > 0 {
-			o.Shift[k] = c.Effect[k]*amount*(1+c.Doubt[k]*rng.NormFloat64()) + s*rng.NormFloat64()
+			o.Shift[k] = (c.Effect[k]+c.Doubt[k]*rng.NormFloat64())*amount + s*rng.NormFloat64()
 		}
 	}
 	return o, amount

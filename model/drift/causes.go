@@ -2,6 +2,7 @@ package drift
 
 import (
 	"fmt"
+	"math"
 
 	"barline/model/unit"
 )
@@ -82,6 +83,10 @@ const (
 	doubtCoat     = 0.5
 )
 
+// creeps is how fast a gauge may move by the amount that it has moved by, 1/s:
+// while it does, what it reads of a shut volume says nothing of a leak.
+const creeps = 1.0 / 600
+
 // Causes lists what moves the emission of a bench, with the amounts in which
 // it usually comes (common practice, no source). The signs follow from what
 // the residual is: measured minus predicted, predicted from what the gauges
@@ -130,15 +135,30 @@ func Causes(s Slopes, b State) []Cause {
 		}
 	}
 	for i := range causes {
-		doubt := &causes[i].Doubt
-		switch causes[i].Name {
+		c := &causes[i]
+		switch c.Name {
 		case "pulse energy", "coupling into the fibre", "pulse duration":
-			doubt[Wavelength], doubt[Strength], doubt[Width] = doubtRuns, doubtStrength, doubtStrength
+			// Where the prediction takes the metered energy, what it is off
+			// by is left over.
+			slope := c.Effect[Wavelength]
+			if c.Name == "pulse energy" {
+				slope = s.Energy
+			}
+			c.Doubt[Wavelength] = doubtRuns * math.Abs(slope)
+			c.Doubt[Strength], c.Doubt[Width] = doubtStrength*math.Abs(c.Effect[Strength]), doubtStrength*math.Abs(c.Effect[Width])
 		case "coating of the core":
-			doubt[Wavelength], doubt[Strength] = doubtRuns, doubtCoat
+			c.Doubt[Wavelength], c.Doubt[Strength] = doubtRuns*math.Abs(c.Effect[Wavelength]), doubtCoat*math.Abs(c.Effect[Strength])
+		case "warming of the fibre":
+			c.Doubt[Wavelength] = doubtLinear * math.Abs(s.Temperature)
 		case "spectrometer wavelength", "slow leak":
+		case "cell A gauge zero", "cell A gauge span", "cell B gauge zero", "cell B gauge span":
+			c.Doubt[Wavelength] = doubtLinear * math.Abs(c.Effect[Wavelength])
+			c.Doubt[Decay] = creeps * math.Abs(c.Effect[Disagreement])
+			if !b.TwoGauges {
+				c.Doubt[Decay] = creeps * math.Abs(c.Effect[Wavelength]) / math.Max(math.Abs(share*s.Pressure), 1e-300)
+			}
 		default:
-			doubt[Wavelength] = doubtLinear
+			c.Doubt[Wavelength] = doubtLinear * math.Abs(c.Effect[Wavelength])
 		}
 	}
 	return causes

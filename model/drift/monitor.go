@@ -73,6 +73,10 @@ const (
 	// nothing before a stretch counts as one that never stood still: it is
 	// looked at again every minute.
 	runsAway = 6
+	// sureShift is how many standard deviations the newest means must be away
+	// before somebody is called: correlation times learnt from half an hour
+	// are too short as often as not.
+	sureShift = 5
 	// Of a shut volume the first minute tells of the gas that cools after the
 	// valves closed.
 	decayAfter  = 6
@@ -104,6 +108,7 @@ type place struct {
 	pressure float64
 	began    time.Duration
 	learnt   bool
+	refined  bool // learnt from as much as is kept
 	runs     bool // it does not stand still, and never did
 	track    [ObservableCount]track
 	why      string // why nothing was learnt yet
@@ -136,6 +141,7 @@ func (m *Monitor) Add(w Watch, x Means) Verdict {
 		}
 	} else {
 		m.judge(w, p, x)
+		m.refine(w, p)
 	}
 	by, since, ringing := m.ringing(w)
 	switch {
@@ -212,16 +218,13 @@ func (m *Monitor) learn(w Watch, p *place) (learnt bool) {
 		if w.Matters[o] == 0 {
 			continue
 		}
-		s := m.samples(o, maxBins, 0)
-		light = light || o == Wavelength && len(s) > m.n/2
-		q, err := Learn(s)
-		if err == nil {
-			p.track[o].chart, err = NewChart(q, Design{FalseAlarm: w.FalseAlarm})
+		light = light || o == Wavelength && len(m.samples(o, maxBins, 0)) > m.n/2
+		c, err := m.chart(w, p, o, o != Wavelength || m.full())
+		if err != nil && o == Wavelength {
+			p.why = err.Error()
 		}
 		if p.track[o].charted = err == nil; err == nil {
-			any = true
-		} else if o == Wavelength {
-			p.why = err.Error()
+			p.track[o].chart, any = c, true
 		}
 	}
 	if !any || light && !p.track[Wavelength].charted {
@@ -231,9 +234,54 @@ func (m *Monitor) learn(w Watch, p *place) (learnt bool) {
 		m.lookForSlope(w, p)
 		return false
 	}
-	p.learnt, p.runs, p.why = true, false, ""
+	p.learnt, p.refined, p.runs, p.why = true, m.full(), false, ""
 	return true
 }
+
+// refine learns once more when as much is kept as can be, unless something has
+// moved since: ten minutes show neither the mean nor the scatter of what wanders
+// over many.
+func (m *Monitor) refine(w Watch, p *place) {
+	if p.refined || !m.full() || m.tried < tryEvery {
+		return
+	}
+	m.tried = 0
+	for o := range p.track {
+		t := &p.track[o]
+		if t.ringing || t.charted && math.Abs(m.shift(Observable(o))) > w.Matters[o]*scaleOf(Observable(o), t.chart.Quiet().Mean)/2 {
+			return
+		}
+	}
+	p.refined = true
+	for o := range Decay {
+		if w.Matters[o] == 0 || len(m.samples(o, maxBins, 0)) == 0 {
+			continue
+		}
+		if c, err := m.chart(w, p, o, true); err == nil {
+			p.track[o].chart, p.track[o].charted = c, true
+		} else if !p.track[o].charted {
+			p.refined = false // tried again in a minute
+		}
+	}
+}
+
+// chart returns a chart of an observable, learnt from what is kept: roughly
+// where it has to be and may.
+func (m *Monitor) chart(w Watch, p *place, o Observable, roughly bool) (Chart, error) {
+	s := m.samples(o, maxBins, 0)
+	q, err := Learn(s)
+	if err != nil && roughly {
+		q, err = LearnRoughly(s, w.Matters[o]*scaleOf(o, p.track[o].origin.Mean)/2)
+	}
+	if err != nil {
+		return Chart{}, err
+	}
+	return NewChart(q, Design{FalseAlarm: w.FalseAlarm})
+}
+
+// full reports whether nothing more can be waited for: what is kept is as long
+// as it gets.
+func (m *Monitor) full() bool { return m.n > maxBins*3/4 }
 
 // originOfStretch is what the first values of a stretch say of where it began.
 func originOfStretch(s []Sample) Quiet {
@@ -255,7 +303,7 @@ func (m *Monitor) lookForSlope(w Watch, p *place) {
 	for o := range Decay {
 		t := &p.track[o]
 		s := m.samples(o, maxBins, 0)
-		if w.Matters[o] == 0 || !t.begun || len(s) < 2*originOf {
+		if w.Matters[o] == 0 || !t.begun || len(s) < fewestValues {
 			continue
 		}
 		l, err := FitLine(s)
@@ -278,8 +326,9 @@ func (m *Monitor) judge(w Watch, p *place, x Means) {
 			continue
 		}
 		matters := w.Matters[o] * scaleOf(o, t.chart.Quiet().Mean)
-		switch away := math.Abs(m.shift(o)); {
-		case away >= matters:
+		shift, sigma, _ := m.shifted(o)
+		switch away := math.Abs(shift); {
+		case away >= math.Max(matters, sureShift*sigma):
 			t.ringing = true
 		case away < matters/2 && t.ringing:
 			t.ringing = false

@@ -52,6 +52,27 @@ const (
 // known to have happened. Samples ascend in time; gaps are allowed. It wants
 // at least 60 values and 12 groups, and no trend.
 func Learn(samples []Sample) (Quiet, error) {
+	q, err := measure(samples)
+	if err != nil {
+		return Quiet{}, err
+	}
+	tau := float64(q.Correlation) / float64(q.Spacing)
+	q.Group = max(time.Duration(groupOf*tau*float64(q.Spacing)), q.Spacing).Round(q.Spacing)
+	span := q.To - q.From + q.Spacing
+	if span < fewestGroups*q.Group {
+		return Quiet{}, fmt.Errorf("values are correlated over %v and the stretch lasts %v, expected at least %v: %w",
+			q.Correlation.Round(time.Second), span.Round(time.Second), (fewestGroups * q.Group).Round(time.Second), ErrNotQuiet)
+	}
+	q.GroupSigma = q.Sigma * math.Sqrt(2*tau*float64(q.Spacing)/float64(q.Group))
+	q.MeanSigma = q.Sigma * math.Sqrt(2*tau/float64(q.Values))
+	if t := trend(samples, q); math.Abs(t) > 4 {
+		return Quiet{}, fmt.Errorf("it runs away, by %.1f of its own standard deviations: %w", math.Abs(t), ErrNotQuiet)
+	}
+	return q, nil
+}
+
+// measure finds mean, scatter, spacing and correlation time of a stretch.
+func measure(samples []Sample) (Quiet, error) {
 	n := len(samples)
 	if n < fewestValues {
 		return Quiet{}, fmt.Errorf("%d values, expected at least %d: %w", n, fewestValues, ErrShort)
@@ -80,18 +101,35 @@ func Learn(samples []Sample) (Quiet, error) {
 	if q.Sigma <= 1e-13*math.Abs(q.Mean) {
 		return Quiet{}, fmt.Errorf("all values are the same: the reading is frozen or too coarse: %w", ErrNotQuiet)
 	}
-	tau := correlation(samples, q)
-	q.Correlation = time.Duration(tau * float64(q.Spacing))
-	q.Group = max(time.Duration(groupOf*tau*float64(q.Spacing)), q.Spacing).Round(q.Spacing)
-	span := q.To - q.From + q.Spacing
-	if span < fewestGroups*q.Group {
-		return Quiet{}, fmt.Errorf("values are correlated over %v and the stretch lasts %v, expected at least %v: %w",
-			q.Correlation.Round(time.Second), span.Round(time.Second), (fewestGroups * q.Group).Round(time.Second), ErrNotQuiet)
+	q.Correlation = time.Duration(correlation(samples, q) * float64(q.Spacing))
+	return q, nil
+}
+
+// roughGroup is how long means of a rough stretch are taken.
+const roughGroup = 2 * time.Minute
+
+// LearnRoughly learns from a stretch whose values know of each other for too
+// long to be learnt from properly, as those of a bench that always wanders a
+// little do. Means of two minutes are then taken for independent, and to scatter
+// as much as keeps their sums honest: what a chart makes of them finds what is
+// large, and is wrong more often than it was designed for. It
+// wants at least 60 values, and refuses a stretch that is a line rather than
+// scatter, unless it changes by less than tolerated from end to end.
+func LearnRoughly(samples []Sample, tolerated float64) (Quiet, error) {
+	q, err := measure(samples)
+	if err != nil {
+		return Quiet{}, err
 	}
-	q.GroupSigma = q.Sigma * math.Sqrt(2*tau*float64(q.Spacing)/float64(q.Group))
-	q.MeanSigma = q.Sigma * math.Sqrt(2*tau/float64(n))
-	if t := trend(samples, q); math.Abs(t) > 4 {
-		return Quiet{}, fmt.Errorf("it runs away, by %.1f of its own standard deviations: %w", math.Abs(t), ErrNotQuiet)
+	tau := float64(q.Correlation) / float64(q.Spacing)
+	q.Group = max(roughGroup, q.Spacing).Round(q.Spacing)
+	q.GroupSigma = q.Sigma * math.Max(math.Sqrt(2*float64(q.Correlation)/float64(q.Group)), 1)
+	q.MeanSigma = q.Sigma * math.Min(math.Sqrt(2*tau/float64(q.Values)), 1)
+	l, err := FitLine(samples)
+	if err != nil {
+		return Quiet{}, err
+	}
+	if math.Abs(l.Change) > math.Max(4*l.Scatter, tolerated) {
+		return Quiet{}, fmt.Errorf("it runs away, by %.1f times its scatter: %w", math.Abs(l.Change)/l.Scatter, ErrNotQuiet)
 	}
 	return q, nil
 }

@@ -17,8 +17,8 @@ type Step struct {
 	// to what the step observes; Sigma is with what uncertainty it is seen.
 	Effect map[string][]float64
 	Sigma  []float64
-	// Doubt is how badly each effect is known, as a share of it; causes that
-	// are not in it have effects that are known.
+	// Doubt is the standard uncertainty of each effect; causes that are not
+	// in it have effects that are known exactly.
 	Doubt map[string][]float64
 }
 
@@ -92,7 +92,7 @@ func (s Step) worth(causes []Finding, total float64) Worth {
 			for k := range z {
 				z[k] = effect[k]*amount + s.Sigma[k]*rng.NormFloat64()
 				if doubt[k] > 0 {
-					z[k] += effect[k] * amount * doubt[k] * rng.NormFloat64()
+					z[k] += amount * doubt[k] * rng.NormFloat64()
 				}
 			}
 			most := math.Inf(-1)
