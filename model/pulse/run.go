@@ -90,15 +90,45 @@ func (r *Result) Emission() (spectrum.Lobe, bool) {
 
 // Run propagates the setup to the end of its fibre. It returns the context's
 // error as soon as that ends, and ErrWindow where the light meets the ends of
-// time.
+// time. Where light reaches the ends of a window or the short-wave end of a
+// band that nobody asked for, it starts again with more room.
 func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
-	g := o.Grid
-	if g == (Grid{}) {
-		var err error
-		if g, err = s.Grid(); err != nil {
-			return nil, err
-		}
+	if o.Grid != (Grid{}) {
+		return s.run(ctx, o, o.Grid, false)
 	}
+	more := room{1, 1}
+	g, err := s.Grid()
+	if err != nil {
+		return nil, err
+	}
+	for range mostRuns - 1 {
+		r, err := s.run(ctx, o, g, true)
+		switch {
+		case errors.Is(err, errBand):
+			more.band *= moreBand
+		case errors.Is(err, errWindow):
+			more.time *= 2
+		default:
+			return r, err
+		}
+		next, err := s.grid(more)
+		if err != nil || next == g {
+			break
+		}
+		g = next
+	}
+	return s.run(ctx, o, g, false)
+}
+
+// These end a run that can start again with more room.
+var (
+	errBand   = errors.New("light reached the short-wave end of the band")
+	errWindow = errors.New("light reached the ends of the time window")
+)
+
+// run propagates the setup on one grid. With keen it gives up with errBand or
+// errWindow.
+func (s Setup) run(ctx context.Context, o Options, g Grid, keen bool) (*Result, error) {
 	m, region, err := s.Medium(g)
 	if err != nil {
 		return nil, err
@@ -132,6 +162,12 @@ func (s Setup) Run(ctx context.Context, o Options) (*Result, error) {
 			return nil, fmt.Errorf("propagation: %w", err)
 		}
 		w.look()
+		switch {
+		case keen && w.shortEdge > mostBandEdge:
+			return nil, errBand
+		case keen && w.timeEdge > mostTimeEdge:
+			return nil, errWindow
+		}
 		if w.timeEdge > hopelessEdge {
 			return nil, fmt.Errorf("propagation: %w: after %v %.0f %% of the energy is at the ends of %.0f fs",
 				ErrWindow, unit.Metre(solver.Position()), 100*w.timeEdge, g.Window().Femtoseconds())
@@ -192,7 +228,8 @@ type watch struct {
 	crest, best, bestAt float64
 	ionised, peak       float64
 	timeEdge, bandEdge  float64
-	total               int // samples wanted
+	shortEdge           float64 // of bandEdge, what is at the short-wave end
+	total               int     // samples wanted
 	samples             []Sample
 }
 
@@ -260,10 +297,12 @@ func (w *watch) edges() {
 	sum *= vacuumPermit * lightSpeed * s.medium.Area * float64(s.grid.Step)
 	w.timeEdge = max(w.timeEdge, sum/s.first)
 	bins := int(math.Ceil(bandEdge * float64(len(s.start))))
-	sum = 0
+	low, high := 0.0, 0.0
 	for i := range bins {
-		sum += norm2(s.start[i]) + norm2(s.start[len(s.start)-1-i])
+		low += norm2(s.start[i])
+		high += norm2(s.start[len(s.start)-1-i])
 	}
-	sum *= 2 * vacuumPermit * lightSpeed * s.medium.Area * float64(s.grid.Window())
-	w.bandEdge = max(w.bandEdge, sum/s.first)
+	scale := 2 * vacuumPermit * lightSpeed * s.medium.Area * float64(s.grid.Window()) / s.first
+	w.bandEdge = max(w.bandEdge, (low+high)*scale)
+	w.shortEdge = max(w.shortEdge, high*scale)
 }

@@ -94,15 +94,16 @@ func summits(curve []float64, from int) []int {
 	return found
 }
 
-// foot returns the minimum next to the summit p in the direction step, or the
-// end of the curve.
+// foot returns the minimum next to the summit p in the direction step: the
+// lowest place before the curve has risen from it by the dip's factor, or above
+// the summit, or ended.
 func foot(curve []float64, p, step, end int) int {
 	least := p
 	for i := p; i != end+step; i += step {
 		if curve[i] < curve[least] {
 			least = i
 		}
-		if curve[i] > curve[p] {
+		if curve[i] > curve[p] || dip*curve[i] > curve[least] {
 			break
 		}
 	}

@@ -57,6 +57,19 @@ func TestOneLobe(t *testing.T) {
 	}
 }
 
+// Emission may be so narrow that it stands above all the pump light in energy
+// per wavelength: the pump is still none of it.
+func TestEmissionAboveThePump(t *testing.T) {
+	d := hills(0.01, hill{1.2, 0.1, 20}, hill{1.829, 0.3, 60}, hill{5, 0.05, 20})
+	lobes, err := Lobes(d, pump)
+	if err != nil || len(lobes) != 1 {
+		t.Fatalf("%d lobes, %v; want one", len(lobes), err)
+	}
+	if math.Abs(lobes[0].Conversion-0.2) > 1e-3 {
+		t.Errorf("conversion %.4f, want 0.2", lobes[0].Conversion)
+	}
+}
+
 func TestWhatIsALobe(t *testing.T) {
 	light := hill{1.829, 0.05, 100}
 	for name, c := range map[string]struct {
