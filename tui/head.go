@@ -306,14 +306,16 @@ func drawAlarm(a frame.Area, s *live.Snapshot, v view) {
 		text = strings.Replace(text, "ALARM", "seen", 1)
 		ink = frame.Alarm
 	case !al.Active:
-		text = strings.Replace(text, "ALARM", "alarm over", 1)
+		// What is over no longer asks to act at once, only to be seen.
+		text = strings.Replace(text, "▲ ALARM", "△ alarm over", 1)
+		ink = frame.Caution
 	}
 	if ink == frame.Banner {
 		a.Fill(' ', ink)
 	}
 	// A message about the key just pressed matters more than the alarm's tail.
 	if v.message != "" {
-		a.Sub(0, 0, a.W, 1).Text(1, 0, "▲ "+al.Name+" · "+v.message, ink)
+		a.Sub(0, 0, a.W, 1).Text(1, 0, text[:len("▲")]+" "+al.Name+" · "+v.message, ink)
 		return
 	}
 	a.Text(1, 0, text, ink)

@@ -32,6 +32,15 @@ func (p Page) String() string {
 	return "no such page"
 }
 
+// Pages returns every page in the order of its keys.
+func Pages() []Page {
+	all := make([]Page, pageCount)
+	for i := range all {
+		all[i] = Page(i)
+	}
+	return all
+}
+
 // Style says what the terminal can show, see package frame.
 type Style = frame.Style
 

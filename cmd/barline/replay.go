@@ -27,6 +27,8 @@ type replayFlags struct {
 	to    string
 	check bool
 	json  bool
+
+	pictures string
 }
 
 func newReplay() *cobra.Command {
@@ -53,6 +55,7 @@ calibration is counted and not derived.`,
 	flags.StringVar(&f.from, "from", "", "begin at this time, RFC 3339")
 	flags.StringVar(&f.to, "to", "", "end at this time, RFC 3339")
 	flags.BoolVar(&f.check, "check", false, "derive predictions again and check commands; plays nothing")
+	flags.StringVar(&f.pictures, "pictures", "", "play nothing: as it was at --from, or at its end, "+picturesHelp)
 	flags.BoolVar(&f.json, "json", false, "with --check: the result as JSON")
 	return cmd
 }
@@ -84,8 +87,15 @@ func (f replayFlags) run(ctx context.Context, dir string, stdout, stderr io.Writ
 	}
 	r := &replay{player: newPlayer(dir), dir: dir, filter: filter, from: from, changed: make(chan struct{}, 1), control: make(chan rune, 16)}
 	r.speed = f.speed
+	if f.pictures != "" && from.IsZero() {
+		r.from = time.Unix(1<<40, 0) // later than any record
+	}
 	if !r.start() {
 		return fmt.Errorf("%s holds no configuration record: there is nothing to play", dir)
+	}
+	if f.pictures != "" {
+		defer r.stop()
+		return drawPictures(f.pictures, r.shown())
 	}
 	out, ok := stdout.(*os.File)
 	if !ok || !isatty.IsTerminal(out.Fd()) || !isatty.IsTerminal(os.Stdin.Fd()) {

@@ -1,6 +1,8 @@
 package main
 
 import (
+	"context"
+	"errors"
 	"fmt"
 	"io"
 	"os"
@@ -10,6 +12,7 @@ import (
 
 	"github.com/spf13/cobra"
 
+	"barline/cmd/barline/loop"
 	"barline/model/emission"
 	"barline/model/flow"
 	"barline/model/live"
@@ -35,6 +38,8 @@ type runFlags struct {
 	air    string
 	resume bool
 	step   int
+
+	pictures string
 }
 
 func (f *runFlags) add(cmd *cobra.Command) {
@@ -51,6 +56,7 @@ func (f *runFlags) add(cmd *cobra.Command) {
 	flags.StringVar(&f.air, "from-air", "0 %", "with --dry-run: share of air in the gas at the start, such as 100 % after opening")
 	flags.BoolVar(&f.resume, "resume", false, "go on with the program that the logbook shows as unfinished")
 	flags.IntVar(&f.step, "from-step", 1, "begin with this step of the program, counted as --dry-run prints them")
+	flags.StringVar(&f.pictures, "pictures", "", "at the end "+picturesHelp)
 	flags.BoolVar(&f.arm, "arm", false, "arm without asking: the cautions have been read")
 	cmd.MarkFlagsMutuallyExclusive("bench", "simulated")
 	cmd.MarkFlagsMutuallyExclusive("resume", "from-step")
@@ -128,7 +134,14 @@ func (f *runFlags) run(cmd *cobra.Command, read func(ambient unit.Pascal) (*proc
 		return err
 	}
 	e := &execution{program: program, read: understood, in: in, out: stdout, bar: newBar(stderr)}
-	return p.run(cmd.Context(), e.carryOut)
+	s.anchors = f.pictures != "" // the pages are to show all that they can
+	return p.run(cmd.Context(), func(ctx context.Context, l *loop.Loop) error {
+		err := e.carryOut(ctx, l)
+		if f.pictures != "" {
+			err = errors.Join(err, drawPictures(f.pictures, l.Snapshot()))
+		}
+		return err
+	})
 }
 
 // program returns what is to be run, checked against the limits.

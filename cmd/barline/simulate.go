@@ -28,6 +28,7 @@ type simulateFlags struct {
 	lasts    time.Duration
 	logbook  string
 	capture  string
+	pictures string
 }
 
 func newSimulate() *cobra.Command {
@@ -67,6 +68,7 @@ or "over" where it ends: --fault "60s leak cell A 0.2" --fault "2m leak cell A o
 	flags.BoolVar(&f.headless, "headless", false, "no screen: run for --for, print a summary and leave")
 	flags.BoolVar(&f.json, "json", false, "with --headless: the summary as JSON")
 	flags.DurationVar(&f.lasts, "for", 0, "bench time after which to leave, such as 60s; 0 is never")
+	flags.StringVar(&f.pictures, "pictures", "", "with --headless: at the end "+picturesHelp)
 	flags.StringVar(&f.capture, "capture", "", captureHelp)
 	flags.StringVar(&f.logbook, "logbook", "", "folder of the logbook; without it one in your data folder")
 	return cmd
@@ -145,6 +147,8 @@ func (f simulateFlags) run(ctx context.Context, stdout, stderr io.Writer) error 
 		return usage("--headless needs --for, such as --for 60s")
 	case f.json && !f.headless:
 		return usage("--json goes with --headless")
+	case f.pictures != "" && !f.headless:
+		return usage("--pictures goes with --headless")
 	}
 	p, err := f.place(stderr)
 	if err != nil {
@@ -152,6 +156,7 @@ func (f simulateFlags) run(ctx context.Context, stdout, stderr io.Writer) error 
 	}
 	s := p.session
 	show := s.face(f.headless, stdout)
+	s.anchors = s.anchors || f.pictures != "" // the pages are to show all that they can
 	return p.run(ctx, func(ctx context.Context, l *loop.Loop) error {
 		ctx, cancel := context.WithCancel(ctx)
 		defer cancel()
@@ -169,6 +174,9 @@ func (f simulateFlags) run(ctx context.Context, stdout, stderr io.Writer) error 
 		err := show(ctx, l)
 		cancel()
 		<-moved
+		if f.pictures != "" && err == nil {
+			err = drawPictures(f.pictures, l.Snapshot())
+		}
 		if f.headless && err == nil {
 			err = summarise(l.Snapshot()).write(stdout, f.json)
 		}
