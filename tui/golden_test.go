@@ -43,6 +43,11 @@ func TestGoldenScreens(t *testing.T) {
 			})
 		}
 	}
+	for page := Scan; page < pageCount; page++ {
+		t.Run("no-charts-"+page.String(), func(t *testing.T) {
+			golden(t, "no-charts-"+page.String(), draw(situations()["scanning"], view{page: page, plain: true}, 80, 24, Style{}).String())
+		})
+	}
 	for name, v := range map[string]view{
 		"help": {overlay: helpOverlay}, "arm": {overlay: armOverlay, text: "ar"}, "greeting": {overlay: greetOverlay},
 		"setpoint": {overlay: setpointOverlay, text: "9.2 bar"}, "setpoint-refused": {overlay: setpointOverlay, text: "17 bar"},

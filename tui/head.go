@@ -177,7 +177,11 @@ func drawMode(a frame.Area, s *live.Snapshot) {
 		why = join(why, "core even in "+spanText(s.SettleIn))
 	}
 	if s.Program.Count > 1 || s.Program.Paused { // a single phase is told by why
-		why = join(programText(s), why)
+		if s.Mode == live.Held { // why it is held matters more than how far it came
+			why = join(why, programText(s))
+		} else {
+			why = join(programText(s), why)
+		}
 	}
 	a.Sub(0, 0, right, 1).Text(max(x+2, 12), 0, why, frame.Plain)
 }

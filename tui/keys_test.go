@@ -6,6 +6,7 @@ import (
 	"math"
 	"math/rand/v2"
 	"slices"
+	"strconv"
 	"strings"
 	"sync"
 	"testing"
@@ -364,6 +365,9 @@ func TestStormOfKeysAndSizes(t *testing.T) {
 	frames, asked := 0, 0
 	for i := range 100_000 {
 		switch n := r.IntN(1000); {
+		case n < 20:
+			mouse := tea.MouseMsg{X: r.IntN(max(w, 1)), Y: r.IntN(max(h, 1)), Action: tea.MouseActionPress, Button: tea.MouseButton(r.IntN(12))}
+			v = v.mouse(mouse, draw(s, v, w, h, Style{}), s)
 		case n < 50:
 			w, h = r.IntN(140), r.IntN(45)
 		case n < 53:
@@ -407,6 +411,55 @@ func TestStormOfKeysAndSizes(t *testing.T) {
 	t.Logf("gas was asked to move %d times", asked)
 	if frames != 2000 || asked == 0 {
 		t.Fatalf("%d frames drawn, want 2000; gas moved %d times, want some", frames, asked)
+	}
+}
+
+// The mouse turns pages, reads charts out and scrolls.
+func TestMouse(t *testing.T) {
+	s := tuitest.Filling()
+	find := func(v view, name string) (x, y int) {
+		f := draw(s, v, 120, 40, Style{})
+		for y := range 40 {
+			for x := range 120 {
+				if got, _ := f.PlaceAt(x, y); got == name {
+					return x, y
+				}
+			}
+		}
+		t.Fatalf("no place %q on the screen", name)
+		return 0, 0
+	}
+	click := func(v view, x, y int, button tea.MouseButton) view {
+		return v.mouse(tea.MouseMsg{X: x, Y: y, Action: tea.MouseActionPress, Button: button}, draw(s, v, 120, 40, Style{}), s)
+	}
+	for page := range pageCount {
+		x, y := find(view{}, pagePlace+strconv.Itoa(int(page)))
+		if got := click(view{}, x, y, tea.MouseButtonLeft); got.page != page {
+			t.Errorf("a click on the name of page %v shows %v", page, got.page)
+		}
+	}
+	x, y := find(view{}, timePlace)
+	v := click(view{}, x, y, tea.MouseButtonLeft)
+	if want := s.Now.Mono - v.span(); v.frozen == nil || v.cursor != want {
+		t.Errorf("a click on the left end of a time chart reads %v out, want %v, and freezes: %v", v.cursor, want, v.frozen != nil)
+	}
+	if v := click(view{}, 60, 20, tea.MouseButtonWheelUp); v.span() >= (view{}).span() {
+		t.Errorf("the wheel zooms from %v to %v", (view{}).span(), v.span())
+	}
+	if v := click(view{page: Log}, 60, 20, tea.MouseButtonWheelUp); v.scroll == 0 {
+		t.Error("the wheel does not scroll the record")
+	}
+	many := tuitest.Alarms()
+	v = view{overlay: alarmOverlay}
+	f := draw(many, v, 120, 40, Style{})
+	for y := range 40 {
+		if name, _ := f.PlaceAt(60, y); name == alarmPlace+"2" {
+			v = v.mouse(tea.MouseMsg{X: 60, Y: y, Action: tea.MouseActionPress, Button: tea.MouseButtonLeft}, f, many)
+			break
+		}
+	}
+	if v.pick != 2 {
+		t.Errorf("a click on the third alarm picks alarm %d", v.pick)
 	}
 }
 

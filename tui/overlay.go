@@ -44,11 +44,16 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 		return
 	}
 	put("?", "keys")
-	if _, alarms := worst(s); alarms > 0 { // they stand where the pages are named otherwise
-		put("1–"+strconv.Itoa(int(pageCount)), "pages")
+	al, alarms := worst(s)
+	if alarms > 0 {
+		if !al.Acked && !s.ReadOnly {
+			put("k", "seen")
+		}
+		put("l", "alarms")
+		put("1–"+strconv.Itoa(int(pageCount)), "pages") // their names stand where the alarm is
 	}
 	for _, b := range bindings[1:] {
-		if b.short == "" || !b.shown(s) || s.ReadOnly && (b.key == "m" || b.key == "n") || (b.key == "k" || b.key == "l") && len(s.Alarms) == 0 || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
+		if b.short == "" || !b.shown(s) || s.ReadOnly && (b.key == "m" || b.key == "n") || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
 			continue
 		}
 		put(b.footLabel(), b.short)

@@ -383,6 +383,44 @@ func Alarms() *live.Snapshot {
 	return s
 }
 
+// Scanning is a scan that waits at a step, its rows behind it.
+func Scanning() *live.Snapshot {
+	s := Filling()
+	s.Mode, s.Why = live.Settling, "averaging"
+	s.Target, s.Setpoint, s.Core = 9.8*unit.Bar, 9.8*unit.Bar, 9.801*unit.Bar
+	s.Lag, s.SettleIn = 0, 0
+	s.Program.Dwelling, s.Program.DwellLeft = true, 12*time.Second
+	return s
+}
+
+// Alarm is a bench on which two gauges disagree: the ramp stopped, and nobody
+// has seen it.
+func Alarm() *live.Snapshot {
+	s := Filling()
+	s.Mode, s.Why = live.Held, "cell A and cell B disagree by 212 mbar"
+	set(s, reading.CellBPressure, "cell B", 9.498e5, 90*time.Millisecond)
+	s.Alarms = []live.Alarm{{
+		Name: "gauges disagree", Priority: 1, Active: true, Since: at(Elapsed - 4*time.Second),
+		Cause: "cell A and cell B disagree by 212 mbar", Consequence: "the ramp is held", Action: "see which gauge is wrong before going on",
+	}}
+	s.Marks = append(s.Marks, live.Mark{At: Elapsed - 4*time.Second, Kind: live.KindAlarm})
+	return s
+}
+
+// Calibrated is a bench whose prediction stands on a calibration. Calm has
+// none.
+func Calibrated() *live.Snapshot {
+	s := Calm()
+	s.CalibratedFrom, s.CalibratedTo = 7*unit.Bar, 11*unit.Bar
+	s.Prediction.Answer, s.Prediction.Sigma = emission.Anchored, 0.8*unit.Nanometre
+	for i := range s.Curve {
+		if s.Curve[i].Emission > 0 {
+			s.Curve[i].Sigma = 0.8 * unit.Nanometre
+		}
+	}
+	return s
+}
+
 // Replay is the filling played back from its record, at a stop.
 func Replay() *live.Snapshot {
 	s := Filling()
@@ -397,6 +435,6 @@ func Situations() map[string]func() *live.Snapshot {
 	return map[string]func() *live.Snapshot{
 		"calm": Calm, "filling": Filling, "stale": Stale, "lost-link": LostLink, "full-disk": FullDisk,
 		"no-emission": NoEmission, "panel": Panel, "branches": Branches, "fresh": Fresh, "alarms": Alarms,
-		"replay": Replay,
+		"replay": Replay, "scanning": Scanning, "alarm": Alarm, "calibrated": Calibrated,
 	}
 }
