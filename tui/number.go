@@ -147,8 +147,16 @@ func valueText(role reading.Role, v float64) string {
 		return fixed(unit.Joule(v).Microjoules(), 2) + " µJ"
 	case reading.Emission, reading.EmissionWidth:
 		return fixed(unit.Metre(v).Nanometres(), 1) + " nm"
-	case reading.EmissionStrength:
+	case reading.EmissionStrength, reading.Attenuator:
 		return fixed(v*100, 1) + " %"
+	case reading.LaserOn:
+		switch {
+		case math.IsNaN(v):
+			return "–"
+		case v < 0.5:
+			return "off"
+		}
+		return "on"
 	case reading.InletValve, reading.PumpValve, reading.VentValve, reading.ShutterOpen:
 		switch {
 		case math.IsNaN(v):

@@ -91,10 +91,15 @@ func roleText(role string, v float64) string {
 		return fmt.Sprintf("%.4g uJ", unit.Joule(v).Microjoules())
 	case reading.Emission, reading.EmissionWidth:
 		return fmt.Sprintf("%.2f nm", v*1e9)
-	case reading.EmissionStrength:
+	case reading.EmissionStrength, reading.Attenuator:
 		return fmt.Sprintf("%.3g %%", v*100)
 	case reading.InletValve, reading.PumpValve, reading.VentValve:
 		return fmt.Sprintf("%.0f %% open", v*100)
+	case reading.LaserOn:
+		if v == 0 {
+			return "off"
+		}
+		return "on"
 	case reading.ShutterOpen:
 		if v == 0 {
 			return "shut"

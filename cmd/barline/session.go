@@ -217,6 +217,7 @@ func (s *session) lines(l *loop.Loop, w *wire, broken breakdown) ([]*instrument.
 		channels = append(channels, spec.Channel...)
 	}
 	w.gather = newGather(l)
+	w.all = map[*instrument.Instrument]*instrument.Runner{}
 	air := instrument.NewAmbient(s.bench.Panel.Ambient)
 	sink := instrument.NewHandover(channels, s.bench.Panel.Ambient, s.bench.Limits.Stale.Duration(), instrument.Barometer{Sink: w.gather, Air: air})
 	for _, spec := range s.bench.Instrument {
@@ -236,6 +237,7 @@ func (s *session) lines(l *loop.Loop, w *wire, broken breakdown) ([]*instrument.
 		r := instrument.NewRunner(in, open, s.clock, sink, func(value any, stack []byte) {
 			broken("instrument "+spec.Name, value, stack)
 		})
+		w.all[in] = r
 		if in.TakesSetpoint() {
 			w.controllers = append(w.controllers, r)
 		}

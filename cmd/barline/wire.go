@@ -12,6 +12,7 @@ import (
 type wire struct {
 	controllers []*instrument.Runner // take setpoints
 	holders     []*instrument.Runner // have something to do on HOLD
+	all         map[*instrument.Instrument]*instrument.Runner
 	gather      *gather
 	answer      func(command uint64, err error, at reading.Stamp)
 	now         func() reading.Stamp
@@ -39,5 +40,18 @@ func (w *wire) Hold(command uint64, sp limit.Setpoint) {
 		r.Hold(command, sp)
 	}
 }
+
+// Order implements loop.Wire. It goes to the one instrument that takes it.
+func (w *wire) Order(command uint64, o limit.Order) {
+	for in, r := range w.all {
+		if in.Takes(o) {
+			r.Move(command, o)
+			return
+		}
+	}
+	w.answer(command, errNobodyTakes, w.now())
+}
+
+var errNobodyTakes = errors.New("no instrument of this bench takes that")
 
 var errNoController = errors.New("no instrument of this bench takes setpoints")

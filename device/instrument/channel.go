@@ -15,6 +15,7 @@ import (
 type channel struct {
 	spec    bench.Channel
 	ambient *Ambient // added to a gauge pressure
+	shift   float64  // Pa, added to what a gauge reads: its zero, corrected
 	air     bool     // wavelengths are those in air
 	low     string   // the range in specification, as a person reads it
 	high    string
@@ -95,6 +96,7 @@ func (c *channel) absolute(number float64) float64 {
 	if c.spec.GasFactor > 0 {
 		v *= c.spec.GasFactor
 	}
+	v += c.shift
 	switch {
 	case c.spec.Gauge:
 		v += float64(c.ambient.Pressure())

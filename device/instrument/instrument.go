@@ -3,7 +3,6 @@ package instrument
 import (
 	"errors"
 	"fmt"
-	"math"
 	"os"
 	"time"
 
@@ -29,6 +28,7 @@ type Instrument struct {
 	protocol protocol
 	setpoint int // the channel that takes one, or -1
 	valves   map[limit.Valve]*channel
+	energy   *channel // the attenuator, where one is driven
 	held     bool
 	counts   counters
 }
@@ -88,6 +88,9 @@ func New(spec bench.Instrument, ambient unit.Pascal) (*Instrument, error) {
 		in.channels = append(in.channels, ch)
 		if v, ok := valveOf[c.Role]; ok && c.Write != "" {
 			in.valves[v] = &in.channels[i]
+		}
+		if c.Role == reading.Attenuator && c.Write != "" {
+			in.energy = &in.channels[i]
 		}
 		if c.Role == reading.Setpoint && c.Write != "" {
 			if in.setpoint >= 0 {
@@ -228,8 +231,8 @@ func (in *Instrument) Hold(line link.Line, s limit.Setpoint) error {
 		}
 	}
 	for _, v := range heldValves {
-		if in.Moves(v) {
-			errs = append(errs, in.stands(line, v, false))
+		if in.valves[v] != nil {
+			errs = append(errs, in.stands(line, in.valves[v], 0, fmt.Sprintf("shutting the %v valve", v)))
 		}
 	}
 	if sets {
@@ -244,54 +247,6 @@ var heldValves = [...]limit.Valve{limit.Inlet, limit.Pump, limit.Vent}
 // TakesHold reports whether Hold does anything.
 func (in *Instrument) TakesHold() bool {
 	return in.setpoint >= 0 || len(in.valves) > 0 || len(in.spec.Hold) > 0
-}
-
-// Moves reports whether the instrument drives the valve.
-func (in *Instrument) Moves(v limit.Valve) bool { return in.valves[v] != nil }
-
-// Move sends an order to a valve and reads it back. It refuses one that no
-// limit made.
-func (in *Instrument) Move(line link.Line, o limit.ValveOrder) error {
-	v, open, ok := o.Order()
-	if !ok {
-		return fmt.Errorf("%s: order was not checked against the limits: %w", in.spec.Name, limit.ErrLimit)
-	}
-	if !in.Moves(v) {
-		return fmt.Errorf("%s does not drive the %v valve", in.spec.Name, v)
-	}
-	return in.move(line, v, open)
-}
-
-func (in *Instrument) move(line link.Line, v limit.Valve, open bool) error {
-	c := in.valves[v]
-	if err := in.protocol.write(line, c, c.spec.Number(share(open))); err != nil {
-		return fmt.Errorf("%s: the %v valve: %w", in.spec.Name, v, err)
-	}
-	return errors.Join(in.stands(line, v, open), in.confirmed(line))
-}
-
-func share(open bool) float64 {
-	if open {
-		return 1
-	}
-	return 0
-}
-
-// stands reads back whether a valve is where it was sent. Half open is
-// neither: what is asked for is an end of its way.
-func (in *Instrument) stands(line link.Line, v limit.Valve, open bool) error {
-	c, want := in.valves[v], "shut"
-	if open {
-		want = "open"
-	}
-	back, err := in.protocol.back(line, c)
-	if err != nil {
-		return fmt.Errorf("%s: the %v valve is to be %s, but is not read back: %w", in.spec.Name, v, want, err)
-	}
-	if got := c.absolute(back); !(math.Abs(got-share(open)) <= 0.02) {
-		return fmt.Errorf("%s: the %v valve is to be %s: it reads back %s open", in.spec.Name, v, want, c.text(got))
-	}
-	return nil
 }
 
 // standsAt reads back whether the setpoint is the one that was sent.

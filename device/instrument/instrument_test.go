@@ -287,7 +287,7 @@ func TestValves(t *testing.T) {
 	if err := in.Move(line, limit.ValveOrder{}); !errors.Is(err, limit.ErrLimit) {
 		t.Errorf("an order that no limit made: %v", err)
 	}
-	if err := in.Move(line, limits.Close(limit.CellA)); err == nil || !strings.Contains(err.Error(), "does not drive") {
+	if err := in.Move(line, limits.Close(limit.CellA)); err == nil || !strings.Contains(err.Error(), "does not take") {
 		t.Errorf("a valve of another instrument: %v", err)
 	}
 	if err := in.Hold(line, limits.Freeze(0)); err != nil || registers[4][0] != 0 || registers[4][1] != 0 {
@@ -299,7 +299,7 @@ func TestValves(t *testing.T) {
 		registers[4][0] = 1
 		return reply
 	}
-	if err := in.Move(line, limits.Close(limit.Inlet)); err == nil || !strings.Contains(err.Error(), "reads back 100 % open") {
+	if err := in.Move(line, limits.Close(limit.Inlet)); err == nil || !strings.Contains(err.Error(), "got 100 %") {
 		t.Errorf("a valve that sticks: %v", err)
 	}
 }

@@ -17,7 +17,7 @@ var errQueueFull = errors.New("not sent: the instrument is slower than the comma
 type command struct {
 	number   uint64
 	setpoint limit.Setpoint
-	valve    limit.ValveOrder
+	order    limit.Order
 	kind     kind
 }
 

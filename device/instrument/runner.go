@@ -71,10 +71,10 @@ func (r *Runner) Set(number uint64, s limit.Setpoint) {
 	r.add(command{number: number, setpoint: s, kind: setKind})
 }
 
-// Move queues the movement of a valve. The answer goes to the sink under the
-// same number. It may be called from any goroutine and does not block.
-func (r *Runner) Move(number uint64, o limit.ValveOrder) {
-	r.add(command{number: number, valve: o, kind: moveKind})
+// Move queues an order. The answer goes to the sink under the same number. It
+// may be called from any goroutine and does not block.
+func (r *Runner) Move(number uint64, o limit.Order) {
+	r.add(command{number: number, order: o, kind: moveKind})
 }
 
 func (r *Runner) add(c command) {
@@ -278,7 +278,7 @@ func (r *Runner) obey(line link.Line) error {
 		case setKind:
 			err = r.instrument.Set(line, c.setpoint)
 		case moveKind:
-			err = r.instrument.Move(line, c.valve)
+			err = r.instrument.Move(line, c.order)
 		case holdKind:
 			err = r.instrument.Hold(line, c.setpoint)
 		}

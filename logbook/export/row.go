@@ -45,7 +45,7 @@ func unitOf(role string) string {
 		return "J"
 	case reading.Emission, reading.EmissionWidth:
 		return "m"
-	case reading.EmissionStrength, reading.InletValve, reading.PumpValve, reading.VentValve, reading.ShutterOpen:
+	case reading.EmissionStrength, reading.InletValve, reading.PumpValve, reading.VentValve, reading.ShutterOpen, reading.LaserOn, reading.Attenuator:
 		return "1"
 	}
 	return ""

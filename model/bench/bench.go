@@ -68,6 +68,7 @@ type Pulse struct {
 	Duration       unit.Second        `toml:"duration" form:"required; above=0 fs; most=100 ps"`
 	Shape          string             `toml:"shape" form:"default=sech2; oneof=sech2|gauss"`
 	Energy         unit.Joule         `toml:"energy" form:"required; above=0 uJ; most=1 J"`
+	FullEnergy     unit.Joule         `toml:"full_energy" form:"above=0 uJ; most=1 J"` // with the attenuator wide open; 0: energy is
 	GDD            unit.SecondSquared `toml:"gdd" form:"default=0 fs2"`
 	RepetitionRate unit.Hertz         `toml:"repetition_rate" form:"required; above=0 Hz"`
 }
@@ -103,6 +104,8 @@ type Limits struct {
 	Arming       unit.Second          `toml:"arming" form:"default=120 s; above=0 s; most=1 h"`
 	Follow       unit.Pascal          `toml:"follow" form:"default=2 bar; above=0 bar"`
 	CautionAbove unit.Pascal          `toml:"caution_above" form:"default=2 bar; least=0 bar; gauge"` // 0: no caution at filling
+	Energy       unit.Joule           `toml:"energy" form:"above=0 uJ; most=1 J"`                     // of a pulse in the fibre; 0: the attenuator is never moved
+	Zero         unit.Pascal          `toml:"zero" form:"default=50 mbar; least=0 bar"`               // that a gauge may ever be corrected by
 }
 
 // Enforced returns the limits that every command is checked against.
@@ -116,7 +119,7 @@ func (l Limits) Enforced() limit.Limits {
 		},
 		RiseRate:  l.RiseRate,
 		FallRate:  l.FallRate,
-		PumpBelow: l.PumpBelow,
+		PumpBelow: l.PumpBelow, MostEnergy: l.Energy, MostZero: l.Zero,
 	}
 }
 

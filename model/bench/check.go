@@ -22,6 +22,7 @@ func (c checker) all() {
 	c.cladding()
 	c.gas()
 	c.pressures()
+	c.energy()
 	c.instruments()
 	if zone := c.b.Screen.TimeZone; strings.TrimSpace(zone) != zone || zone == "" {
 		c.Wrong("screen.time_zone", `expected "local", "UTC" or a name such as "Europe/Lisbon"`)
@@ -90,6 +91,17 @@ func (c checker) pressures() {
 	}
 	if low.Max > 0 && l.Disagreement > low.Max {
 		c.Wrong("limits.disagreement", "it is above the rating of %s, %v: two gauges could never disagree", low.Part, low.Max)
+	}
+}
+
+// energy checks what the attenuator may do against what it can do.
+func (c checker) energy() {
+	p := c.b.Pulse
+	if p.FullEnergy > 0 && p.FullEnergy < p.Energy {
+		c.Wrong("pulse.full_energy", "it is below pulse.energy, %v, which the attenuator then has to let through", p.Energy)
+	}
+	if most := c.b.Limits.Energy; most > 0 && most < p.Energy {
+		c.Wrong("limits.energy", "it is below pulse.energy, %v", p.Energy)
 	}
 }
 

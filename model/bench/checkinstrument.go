@@ -170,6 +170,9 @@ func (c checker) channel(path string, inst *Instrument, ch *Channel, fields []st
 		if ch.Function == 4 {
 			c.About(path+".write", "needs function 3: input registers cannot be written")
 		}
+		if ch.Role == reading.Attenuator && !c.Has("limits.energy") {
+			c.Missing("limits.energy", "%s moves an attenuator: the highest pulse energy that may be asked for, such as \"1.5 uJ\"", named(ch.Name))
+		}
 		if !ch.Role.IsCommanded() {
 			c.About(path+".write", "is for channels that are set, and nothing is ever sent to one with the role %s", ch.Role)
 		}
@@ -186,8 +189,8 @@ func (c checker) channel(path string, inst *Instrument, ch *Channel, fields []st
 	if ch.Gauge && !c.Has("panel.ambient") && !c.measures(reading.Ambient) {
 		c.About(path+".gauge", "needs the air pressure that it counts from; give panel.ambient or a channel with the role ambient-pressure")
 	}
-	if ch.Scale == "" && isValve(ch.Role) {
-		ch.Scale = "100 %" // the number 1 means open
+	if ch.Scale == "" && isShare(ch.Role) {
+		ch.Scale = "100 %" // the number 1 means open, on, or all of it
 	}
 	if c.Has(path+".gas_factor") && !(ch.GasFactor >= 0.01 && ch.GasFactor <= 100) {
 		c.Wrong(path+".gas_factor", "expected 0.01 to 100")
@@ -216,8 +219,9 @@ func (c checker) measures(role reading.Role) bool {
 	return false
 }
 
-func isValve(r reading.Role) bool {
-	return r == reading.InletValve || r == reading.PumpValve || r == reading.VentValve || r == reading.ShutterOpen
+func isShare(r reading.Role) bool {
+	return r == reading.InletValve || r == reading.PumpValve || r == reading.VentValve ||
+		r == reading.ShutterOpen || r == reading.LaserOn || r == reading.Attenuator
 }
 
 func named(name string) string {

@@ -46,7 +46,7 @@ func kindOf(role reading.Role, gauge bool) kind {
 		return linear("m", parser(unit.ParseLength))
 	case reading.EmissionStrength:
 		return linear("1", strength)
-	case reading.InletValve, reading.PumpValve, reading.VentValve, reading.ShutterOpen:
+	case reading.InletValve, reading.PumpValve, reading.VentValve, reading.ShutterOpen, reading.LaserOn, reading.Attenuator:
 		return linear("1", parser(unit.ParseFraction))
 	}
 	return linear("", anyQuantity)

@@ -1,7 +1,8 @@
-// Package limit is the one place where a command that moves gas can be made.
+// Package limit is the one place where a command to an instrument can be made.
 //
-// Drivers accept only a Setpoint or a ValveOrder, and only the methods of
-// Limits return them; the zero value of either is refused by every driver.
+// Drivers accept only a Setpoint, a ValveOrder, an EnergyOrder or a ZeroShift,
+// and only the methods of Limits return them; the zero value of each is refused
+// by every driver.
 // This is a check against mistakes. It is no safety device: pressure ratings,
 // relief valves and hardware interlocks come first.
 package limit
@@ -30,6 +31,9 @@ type Limits struct {
 	RiseRate  unit.PascalPerSecond
 	FallRate  unit.PascalPerSecond
 	PumpBelow unit.Pascal // the pump valve opens only below this
+
+	MostEnergy unit.Joule  // of a pulse in the fibre; 0: the attenuator is never moved
+	MostZero   unit.Pascal // that is ever added to what a gauge reads; 0: nothing is
 }
 
 // Check reports what is wrong with the limits themselves.

@@ -16,6 +16,9 @@ const (
 	CellA
 	CellB
 	valveCount
+
+	// ValveCount is the number of valves, for arrays indexed by Valve.
+	ValveCount = int(valveCount)
 )
 
 var valveText = [valveCount]string{"inlet", "pump", "vent", "cell A", "cell B"}

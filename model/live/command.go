@@ -117,6 +117,7 @@ func (c *Core) hold(s *State, why string, fx []Effect) []Effect {
 		s.run, s.outcome = progress{}, EndedByHold
 	}
 	s.awaiting, s.awaitFrom, s.nearSince = s.command, s.Now.Mono, 0
+	s.aside, s.hand = aside{}, [limit.ValveCount]byHand{}
 	return append(fx,
 		SendHold{Command: s.command, Setpoint: sp},
 		Record{At: s.Now, Kind: KindCommand, Data: CommandData{Command: s.command, Hold: true, SetpointPa: float64(p), Why: why}, Sync: true})
@@ -128,6 +129,9 @@ func (c *Core) disarm(s *State) { s.ArmedUntil, s.understood = 0, [cautionCount]
 
 func (c *Core) answered(s *State, e Answered, fx []Effect) []Effect {
 	fx = append(fx, Record{At: e.At, Kind: KindReadback, Data: ReadbackData{Command: e.Command, Error: e.Err}})
+	if s.aside.command != 0 && e.Command == s.aside.command {
+		return c.orderAnswered(s, e, fx)
+	}
 	if e.Command != s.awaiting {
 		return fx
 	}

@@ -44,6 +44,11 @@ type Core struct {
 	ambient      unit.Pascal // of the bench file; 0 where it says nothing
 	watched      []watched
 	lineAlarms   []string // names, in the order of the links
+
+	attenuates bool // an instrument sets the pulse energy
+	fullEnergy unit.Joule
+	moves      [limit.ValveCount]bool // an instrument drives the valve
+	shows      [limit.ValveCount]bool // and it is read back
 }
 
 const (
@@ -76,6 +81,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 		predictor:    p,
 		air:          b.Gas.Air,
 		energy:       b.Pulse.Energy,
+		fullEnergy:   b.Pulse.FullEnergy,
 		stale:        b.Limits.Stale.Duration(),
 		confirm:      b.Limits.Confirm.Duration(),
 		arming:       b.Limits.Arming.Duration(),
@@ -117,6 +123,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 			if ch.Role == reading.Setpoint && ch.Write != "" {
 				c.controlled = true
 			}
+			c.actuator(&ch)
 			s.staleBy[ch.Role] = max(s.staleBy[ch.Role], ch.Stale.Duration())
 		}
 	}
@@ -205,6 +212,7 @@ func (c *Core) tick(s *State, fx []Effect) []Effect {
 	fx = c.predict(s, fx)
 	fx = c.watchDrift(s, fx)
 	fx = c.act(s, fx)
+	fx = c.watchOrders(s, fx)
 	return c.watch(s, fx)
 }
 

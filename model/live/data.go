@@ -30,12 +30,20 @@ type (
 		// Plan is what a "run" is to do, so that it can be gone on with.
 		Plan *Plan `json:"plan,omitempty"`
 	}
-	// CommandData is a command to the controller.
+	// CommandData is a command to the controller, or an order to another
+	// instrument; SetpointPa then stays as it was.
 	CommandData struct {
 		Command    uint64  `json:"command"`
 		Hold       bool    `json:"hold,omitempty"`
 		SetpointPa float64 `json:"setpoint_Pa"`
 		Why        string  `json:"why,omitempty"`
+
+		Valve   string   `json:"valve,omitempty"`
+		Open    *bool    `json:"open,omitempty"` // of Valve
+		EnergyJ float64  `json:"energy_J,omitempty"`
+		Share   float64  `json:"attenuator,omitempty"` // let through, for EnergyJ
+		ZeroOf  string   `json:"zero_of,omitempty"`    // channel of a gauge
+		ShiftPa *float64 `json:"shift_Pa,omitempty"`   // added to its readings from now on
 	}
 	// ReadbackData is the controller's answer to a command.
 	ReadbackData struct {
@@ -185,3 +193,6 @@ func (c *Core) stepData(s *State) StepData {
 	}
 	return d
 }
+
+// isOrder reports whether the command is an order and no setpoint.
+func (d CommandData) isOrder() bool { return d.Valve != "" || d.EnergyJ != 0 || d.ZeroOf != "" }

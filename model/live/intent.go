@@ -146,6 +146,16 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 		var err error
 		*fx, err = c.change(s, in, *fx)
 		return data, err
+	case MoveValve, Attenuate, ZeroGauge:
+		o, err := c.order(s, in, &data)
+		if err != nil {
+			return data, err
+		}
+		record()
+		if s.ArmedUntil != 0 {
+			s.ArmedUntil = s.Now.Mono + c.arming
+		}
+		*fx = c.sendOrder(s, o, *fx)
 	case Note:
 		data.Intent = "note"
 		*fx = append(*fx, Record{At: s.Now, Kind: KindNote, Data: NoteData(in), Sync: true})
@@ -178,6 +188,11 @@ func (c *Core) movable(s *State) error {
 	if s.ArmedUntil == 0 {
 		return fmt.Errorf("the bench is not armed")
 	}
+	for _, v := range handValves {
+		if s.hand[v].open {
+			return fmt.Errorf("the %v valve stands open by hand; shut it first", v)
+		}
+	}
 	if why := c.unsafe(s); why != "" {
 		return fmt.Errorf("%s", why)
 	}
@@ -200,9 +215,11 @@ func aboutAlarm(in Intent) (verb, name string) {
 
 // moves reports whether an intent moves gas or makes that possible.
 func moves(in Intent) bool {
-	switch in.(type) {
-	case Arm, GoTo, Run, Resume, Skip, Tune, Confirm:
+	switch in := in.(type) {
+	case Arm, GoTo, Run, Resume, Skip, Tune, Confirm, Attenuate, ZeroGauge:
 		return true
+	case MoveValve:
+		return in.Open
 	}
 	return false
 }

@@ -6,6 +6,7 @@ import (
 	"barline/model/alarm"
 	"barline/model/emission"
 	"barline/model/flow"
+	"barline/model/limit"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -53,7 +54,12 @@ type State struct {
 
 	lastGood [2]reading.Reading // of cells A and B: the last ones that could be used
 
-	alarms       alarm.List
+	alarms     alarm.List
+	aside      aside
+	hand       [limit.ValveCount]byHand
+	shifts     [maxShifts]zeroed
+	attenuated unit.Joule // as the attenuator was last set; 0 before
+
 	heldByItself bool // HOLD came without being asked for
 	refused      bool // an instrument did not take the last command
 	following    bool // another core decides, see Told

@@ -103,6 +103,21 @@ func (st *story) step(e Event) []string {
 			st.wire = p
 			st.answer = append(st.answer, f.Command)
 			text = append(text, "hold "+p.String())
+		case SendOrder:
+			if !synced {
+				st.t.Fatalf("an order reached the wire before its record")
+			}
+			switch o := f.Order.(type) {
+			case limit.ValveOrder:
+				v, open, ok := o.Order()
+				text = append(text, fmt.Sprintf("valve %v open %v made %v", v, open, ok))
+			case limit.EnergyOrder:
+				e, share, ok := o.Order()
+				text = append(text, fmt.Sprintf("attenuator %.3f for %.3g uJ made %v", float64(share), e.Microjoules(), ok))
+			case limit.ZeroShift:
+				channel, shift, ok := o.Shift()
+				text = append(text, fmt.Sprintf("zero of %s %+.1f mbar made %v", channel, float64(shift)/100, ok))
+			}
 		case Bell:
 			text = append(text, "bell")
 		case Call:

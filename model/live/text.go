@@ -45,6 +45,16 @@ func (d CommandData) String() string {
 	if d.Hold {
 		return fmt.Sprintf("%d HOLD at %v: %s", d.Command, unit.Pascal(d.SetpointPa), d.Why)
 	}
+	switch {
+	case d.Valve != "" && d.Open != nil && *d.Open:
+		return fmt.Sprintf("%d open the %s valve", d.Command, d.Valve)
+	case d.Valve != "":
+		return fmt.Sprintf("%d shut the %s valve", d.Command, d.Valve)
+	case d.EnergyJ != 0:
+		return fmt.Sprintf("%d pulse energy %.4g uJ, attenuator at %.1f %%", d.Command, d.EnergyJ*1e6, d.Share*100)
+	case d.ZeroOf != "" && d.ShiftPa != nil:
+		return fmt.Sprintf("%d zero of %s: %+.4g mbar added to what it reads", d.Command, d.ZeroOf, *d.ShiftPa/100)
+	}
 	return fmt.Sprintf("%d setpoint %v", d.Command, unit.Pascal(d.SetpointPa))
 }
 

@@ -71,6 +71,9 @@ func ToldBy(at reading.Stamp, data any) (e Told, ok bool) {
 		e.Drift = &d
 		return e, true
 	case CommandData:
+		if d.isOrder() {
+			return e, false
+		}
 		e.Setpoint, e.HasSetpoint, e.HasMode = unit.Pascal(d.SetpointPa), true, true
 		e.Mode, e.Why = Ramping, d.Why
 		if d.Hold {

@@ -76,6 +76,8 @@ const (
 	PumpValve                    // 0 shut … 1 open, read back
 	VentValve                    // 0 shut … 1 open, read back
 	ShutterOpen                  // 0 shut, 1 open
+	LaserOn                      // 0 off, 1 on
+	Attenuator                   // share of the full pulse energy let through, 0 to 1
 	roleCount
 )
 
@@ -86,7 +88,7 @@ var roleText = [RoleCount]string{
 	"none", "cell-a-pressure", "cell-b-pressure", "manifold-pressure", "supply-pressure", "ambient-pressure",
 	"fibre-temperature", "cell-temperature", "room-temperature", "pulse-energy",
 	"emission", "emission-width", "emission-strength", "setpoint", "controller-pressure",
-	"inlet-valve", "pump-valve", "vent-valve", "shutter-open",
+	"inlet-valve", "pump-valve", "vent-valve", "shutter-open", "laser-on", "attenuator",
 }
 
 // String returns the role as the bench file spells it.
@@ -155,7 +157,7 @@ func (r Role) IsTemperature() bool {
 // IsCommanded reports whether the program may write to a channel of the role.
 func (r Role) IsCommanded() bool {
 	switch r {
-	case Setpoint, InletValve, PumpValve, VentValve, ShutterOpen:
+	case Setpoint, InletValve, PumpValve, VentValve, Attenuator:
 		return true
 	}
 	return false

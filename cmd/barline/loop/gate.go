@@ -8,9 +8,9 @@ import (
 	"barline/model/reading"
 )
 
-// gate stands between the core and the wire. A setpoint passes only after the
-// record of it is on the disk; HOLD passes at once and turns back every
-// setpoint that is still waiting.
+// gate stands between the core and the wire. A setpoint or an order passes only
+// after the record of it is on the disk; HOLD passes at once and turns back
+// everything that is still waiting.
 type gate struct {
 	book   Book
 	wire   Wire
@@ -18,18 +18,18 @@ type gate struct {
 	now    func() reading.Stamp
 	caught func(where string) // deferred
 
-	waiting chan passing // nil until started: setpoints then pass in place
+	waiting chan passing // nil until started: commands then pass in place
 
-	mu   sync.Mutex // orders a setpoint that passes against HOLD
+	mu   sync.Mutex // orders what passes against HOLD
 	held uint64     // number of the last HOLD
 }
 
 type passing struct {
-	command  uint64
-	setpoint limit.Setpoint
+	command uint64
+	send    func()
 }
 
-// start lets setpoints wait for the disk on a goroutine of their own. The
+// start lets commands wait for the disk on a goroutine of their own. The
 // returned function ends it.
 func (g *gate) start() (stop func()) {
 	waiting := make(chan passing, 16)
@@ -49,7 +49,14 @@ func (g *gate) start() (stop func()) {
 }
 
 func (g *gate) setpoint(command uint64, sp limit.Setpoint) {
-	p := passing{command, sp}
+	g.let(passing{command, func() { g.wire.Setpoint(command, sp) }})
+}
+
+func (g *gate) order(command uint64, o limit.Order) {
+	g.let(passing{command, func() { g.wire.Order(command, o) }})
+}
+
+func (g *gate) let(p passing) {
 	if g.waiting == nil {
 		g.pass(p)
 		return
@@ -57,7 +64,7 @@ func (g *gate) setpoint(command uint64, sp limit.Setpoint) {
 	select {
 	case g.waiting <- p:
 	default:
-		g.answer(command, fmt.Errorf("not sent: %d setpoints wait for the disk already", cap(g.waiting)), g.now())
+		g.answer(p.command, fmt.Errorf("not sent: %d commands wait for the disk already", cap(g.waiting)), g.now())
 	}
 }
 
@@ -71,7 +78,7 @@ func (g *gate) pass(p passing) {
 	if p.command < g.held {
 		return // HOLD came in between
 	}
-	g.wire.Setpoint(p.command, p.setpoint)
+	p.send()
 }
 
 func (g *gate) hold(command uint64, sp limit.Setpoint) {

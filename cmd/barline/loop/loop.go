@@ -32,11 +32,12 @@ type Book interface {
 	Health() live.RecordHealth
 }
 
-// Wire takes commands to the instruments. Neither method blocks; each command
+// Wire takes commands to the instruments. No method blocks; each command
 // is answered by Loop.Answer.
 type Wire interface {
 	Setpoint(command uint64, sp limit.Setpoint)
 	Hold(command uint64, sp limit.Setpoint)
+	Order(command uint64, o limit.Order)
 }
 
 // Curve fills dst with predictions over pressure.
@@ -250,6 +251,12 @@ func (l *Loop) handle(e live.Event) {
 				continue
 			}
 			l.gate.setpoint(f.Command, f.Setpoint)
+		case live.SendOrder:
+			if unrecorded != nil {
+				l.Answer(f.Command, fmt.Errorf("not sent: it could not be recorded: %w", unrecorded), l.opt.Clock.Now())
+				continue
+			}
+			l.gate.order(f.Command, f.Order)
 		case live.SendHold:
 			l.gate.hold(f.Command, f.Setpoint)
 		case live.Bell:

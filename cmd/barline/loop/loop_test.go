@@ -3,6 +3,7 @@ package loop
 import (
 	"context"
 	"errors"
+	"fmt"
 	"sync"
 	"testing"
 	"testing/synctest"
@@ -94,6 +95,11 @@ func (w *fakeWire) Hold(command uint64, sp limit.Setpoint) {
 	w.answer(command)
 }
 
+func (w *fakeWire) Order(command uint64, o limit.Order) {
+	w.add(fmt.Sprintf("wire order %T", o))
+	w.answer(command)
+}
+
 type flat struct{}
 
 func (flat) Predict(in emission.Input, _ *emission.Prediction) emission.Prediction {
@@ -109,7 +115,7 @@ func testBench() *bench.Bench {
 			RiseRate: 0.2e5, FallRate: 0.2e5, Stale: 2, Confirm: 3, Arming: 60, Follow: 2 * unit.Bar,
 		},
 		Logbook:    bench.Logbook{Heartbeat: 60},
-		Instrument: []bench.Instrument{{Name: "controller", Channel: []bench.Channel{{Role: reading.Setpoint, Write: "P {value}"}}}},
+		Instrument: []bench.Instrument{{Name: "controller", Channel: []bench.Channel{{Name: "setpoint", Role: reading.Setpoint, Write: "P {value}"}, {Name: "inlet", Role: reading.InletValve, Write: "I {value}"}}}},
 	}
 }
 
@@ -163,6 +169,41 @@ func TestSetpointWaitsForTheDiskAndHoldDoesNot(t *testing.T) {
 		}
 		if got := l.Snapshot().Mode; got != live.Held {
 			t.Fatalf("mode is %v", got)
+		}
+		cancel()
+		<-done
+	})
+}
+
+func TestOrderWaitsForTheDiskAndHoldTurnsItBack(t *testing.T) {
+	synctest.Test(t, func(t *testing.T) {
+		tr := &trace{}
+		book := &fakeBook{trace: tr, release: make(chan struct{})}
+		l := newTestLoop(t, book, tr)
+		ctx, cancel := context.WithCancel(t.Context())
+		done := make(chan struct{})
+		go func() { l.Run(ctx); close(done) }()
+
+		<-time.After(100 * time.Millisecond)
+		l.gauge(1 * unit.Bar)
+		l.Do(live.Arm{})
+		l.Do(live.MoveValve{Valve: limit.Inlet, Open: true})
+		<-time.After(200 * time.Millisecond)
+		if tr.index("append 1 open the inlet valve") < 0 || tr.index("wire order limit.ValveOrder") >= 0 {
+			t.Fatalf("the order did not wait for its record on the disk: %v", tr.lines)
+		}
+		l.Do(live.Hold{})
+		<-time.After(100 * time.Millisecond)
+		close(book.release)
+		<-time.After(100 * time.Millisecond)
+		if tr.index("wire hold") < 0 || tr.index("wire order limit.ValveOrder") >= 0 {
+			t.Fatalf("an order older than HOLD reached the wire after it: %v", tr.lines)
+		}
+		l.gauge(1 * unit.Bar)
+		l.Do(live.MoveValve{Valve: limit.Inlet})
+		<-time.After(100 * time.Millisecond)
+		if tr.index("wire order limit.ValveOrder") < 0 {
+			t.Fatalf("the inlet was not shut: %v", tr.lines)
 		}
 		cancel()
 		<-done

@@ -195,6 +195,9 @@ func (tr *trial) Hold(command uint64, sp limit.Setpoint) {
 	tr.obey(command, func(s *seat) error { return s.in.Hold(s.line, sp) })
 }
 
+// Order implements loop.Wire; nobody asks for one here.
+func (tr *trial) Order(uint64, limit.Order) { tr.fail("an order reached the wire, and nobody asked") }
+
 // obey lets the controller carry out a command; a faulty wire loses some.
 func (tr *trial) obey(command uint64, do func(*seat) error) {
 	if tr.faulty && tr.rng.IntN(12) == 0 {
