@@ -25,6 +25,7 @@ type idleWire struct{}
 
 func (idleWire) Setpoint(uint64, limit.Setpoint) {}
 func (idleWire) Hold(uint64, limit.Setpoint)     {}
+func (idleWire) Order(uint64, limit.Order)       {}
 
 // Eight channels of 1 kHz through loop, logbook and every page, on a fake
 // clock: nothing is dropped, and the heap after the whole time is the heap
