@@ -58,7 +58,7 @@ func (c *Core) unsafe(s *State) string {
 		return why
 	}
 	if s.Mode == Settling && a.Status.Usable() && b.Status.Usable() && c.disagreement > 0 && s.nearSince != 0 &&
-		math.Abs(a.Value-b.Value) > float64(c.disagreement) {
+		math.Abs(a.Value-b.Value) > float64(c.disagreement+c.between(a, b)) {
 		return fmt.Sprintf("%s and %s differ by %v, allowed %v", a.Channel, b.Channel, unit.Pascal(math.Abs(a.Value-b.Value)), c.disagreement)
 	}
 	ramping := s.Mode == Ramping || s.Mode == Settling
@@ -72,6 +72,13 @@ func (c *Core) unsafe(s *State) string {
 		return "nothing is being recorded: " + s.Record.Reason
 	}
 	return ""
+}
+
+// between returns how far the gas may have moved by right between two readings
+// that were not taken at the same time.
+func (c *Core) between(a, b reading.Reading) unit.Pascal {
+	apart := math.Abs((a.Taken.Mono - b.Taken.Mono).Seconds())
+	return unit.Pascal(apart * float64(max(c.limits.RiseRate, c.limits.FallRate)))
 }
 
 // overRating says which rating p is above, or "".

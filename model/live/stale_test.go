@@ -6,6 +6,7 @@ import (
 
 	"barline/model/bench"
 	"barline/model/reading"
+	"barline/model/unit"
 )
 
 // A thermometer that is asked every ten seconds may say itself that its
@@ -60,5 +61,23 @@ func TestTheBenchFileGivesTheStaleness(t *testing.T) {
 	}
 	if got := s.staleBy[reading.FibreTemperature]; got != 30*time.Second {
 		t.Errorf("stale after %v, want 30 s", got)
+	}
+}
+
+// Two gauges that were read at different times of a ramp differ by what the
+// gas moved meanwhile.
+func TestReadingsOfDifferentTimesMayDiffer(t *testing.T) {
+	core, _, err := New(testBench(), straight{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	at := func(s float64) reading.Reading {
+		return reading.Reading{Taken: reading.Stamp{Mono: time.Duration(s * float64(time.Second))}}
+	}
+	if got := core.between(at(1.5), at(1)); got < 0.0999*unit.Bar || got > 0.1001*unit.Bar {
+		t.Errorf("half a second apart at 0.2 bar/s: %v", got)
+	}
+	if got := core.between(at(1), at(1)); got != 0 {
+		t.Errorf("at once: %v", got)
 	}
 }
