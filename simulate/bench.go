@@ -49,6 +49,7 @@ type Bench struct {
 	energy     float64 // J, in the fibre, this frame
 	drift      float64 // slow part of the energy, relative
 	light      *light
+	laser      laser
 	spectro    spectrometer
 	faults     faults
 
@@ -102,6 +103,7 @@ func New(o Options) (*Bench, error) {
 	b.sensor = transducer{source: ofController, zero: 300 * b.noise.bounded(ofController, -1), rms: 60, step: 50, value: start.P}
 	b.fibreT = thermometer{source: ofFibreThermometer, zero: 0.05 * b.noise.bounded(ofFibreThermometer, -1), value: b.fibre}
 	b.roomT = thermometer{source: ofRoomThermometer, zero: 0.05 * b.noise.bounded(ofRoomThermometer, -1), value: b.room}
+	b.laser = newLaser()
 	b.ports = newPorts()
 	b.beginFrame()
 	return b, nil
@@ -152,6 +154,7 @@ func (b *Bench) step() error {
 	b.sensor.follow(b.gas.manifold().P, b.faults.zeroRate["controller"])
 	b.fibreT.follow(b.fibre)
 	b.roomT.follow(b.room)
+	b.laser.move()
 	b.frame++
 	b.beginFrame()
 	b.spectro.expose(b)
@@ -159,7 +162,8 @@ func (b *Bench) step() error {
 }
 
 func (b *Bench) beginFrame() {
-	b.energy = pulseEnergy * (1 + float64(b.truth.Energy)) * (1 - b.faults.sag) *
+	b.energy = pulseEnergy * (b.laser.share / halfWay) *
+		(1 + float64(b.truth.Energy)) * (1 - b.faults.sag) *
 		(1 + b.drift + 0.001*b.noise.normal(ofEnergy, b.frame))
 }
 

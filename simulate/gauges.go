@@ -5,12 +5,14 @@ import (
 	"barline/model/unit"
 )
 
-// gauges is the line with two transducers and a thermometer, each a unit:
+// gauges is the line with two transducers, a thermometer and what stands in the
+// beam, each a unit:
 //
 //	unit 1  transducer of cell A   function 4, registers 0–1: pressure in bar
 //	unit 2  transducer of cell B   function 4, registers 0–1: pressure in bar
 //	unit 3  thermometer            function 3, registers 16–17: fibre in °C,
 //	                               registers 18–19: room in °C
+//	unit 4  shutter and attenuator, see laser
 //
 // as IEEE 754 single, the transducers with the high word first, the thermometer
 // with the low word first. Any other register is exception 02, any other
@@ -64,6 +66,8 @@ func (b *Bench) registers(r modbus.Request) (modbus.Reply, bool) {
 			unit.Kelvin(b.fibreT.read(b.noise, b.frame)).Celsius(),
 			unit.Kelvin(b.roomT.read(b.noise, b.frame)).Celsius(),
 		}
+	case 4:
+		return b.laserAnswers(r), true
 	default:
 		return reply, false
 	}

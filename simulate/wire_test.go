@@ -31,7 +31,10 @@ func TestGaugesRefuse(t *testing.T) {
 		{"a register too many", modbus.Request{Unit: 2, Function: modbus.ReadInput, Count: 3}, modbus.IllegalAddress, false},
 		{"a register too low", modbus.Request{Unit: 3, Function: modbus.ReadHolding, Address: 15, Count: 2}, modbus.IllegalAddress, false},
 		{"a write", modbus.Request{Unit: 1, Function: modbus.WriteSingle, Values: []uint16{1}}, modbus.IllegalFunction, false},
-		{"a unit that is not there", modbus.Request{Unit: 4, Function: modbus.ReadInput, Count: 2}, 0, true},
+		{"more registers than the laser has", modbus.Request{Unit: 4, Function: modbus.ReadHolding, Count: 3}, modbus.IllegalAddress, false},
+		{"the shutter is not to be set", modbus.Request{Unit: 4, Function: modbus.WriteSingle, Values: []uint16{1}}, modbus.IllegalAddress, false},
+		{"more than all of the light", modbus.Request{Unit: 4, Function: modbus.WriteSingle, Address: 1, Values: []uint16{1001}}, modbus.IllegalValue, false},
+		{"a unit that is not there", modbus.Request{Unit: 9, Function: modbus.ReadInput, Count: 2}, 0, true},
 		{"everybody", modbus.Request{Unit: 0, Function: modbus.ReadInput, Count: 2}, 0, true},
 		{"both temperatures", modbus.Request{Unit: 3, Function: modbus.ReadHolding, Address: 16, Count: 4}, 0, false},
 	} {

@@ -179,9 +179,14 @@ func (c *Core) read(s *State, r reading.Reading, fx []Effect) []Effect {
 	if r.Taken.Mono < s.Latest[r.Role].Taken.Mono {
 		return fx // answers may overtake each other; never step back
 	}
+	r = c.Judge(s, r)
+	was := c.dark(s)
 	s.Latest[r.Role] = r
 	if r.Status.Usable() && (r.Role == reading.CellAPressure || r.Role == reading.CellBPressure) {
 		s.lastGood[r.Role-reading.CellAPressure] = r
+	}
+	if was != "" && c.dark(s) == "" {
+		s.litAt = r.Taken.Mono
 	}
 	if r.Role == reading.Emission {
 		c.compare(s, r)

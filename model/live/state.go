@@ -54,7 +54,9 @@ type State struct {
 
 	lastGood [2]reading.Reading // of cells A and B: the last ones that could be used
 
-	alarms     alarm.List
+	alarms alarm.List
+	litAt  time.Duration // when an input last said that the light came back
+
 	aside      aside
 	hand       [limit.ValveCount]byHand
 	shifts     [maxShifts]zeroed

@@ -228,6 +228,10 @@ func (l *Loop) handle(e live.Event) {
 	if l.opt.Seen != nil {
 		l.opt.Seen(e)
 	}
+	if r, ok := e.(live.Read); ok {
+		// History and record hold what the core makes of it.
+		e = live.Read{Reading: l.opt.Core.Judge(&l.state, r.Reading)}
+	}
 	l.fx = l.opt.Core.Step(&l.state, e, l.fx[:0])
 	if r, ok := e.(live.Read); ok {
 		l.history.reading(&l.state, r.Reading)
