@@ -221,6 +221,9 @@ func (s *session) lines(l *loop.Loop, w *wire, broken breakdown) ([]*instrument.
 	air := instrument.NewAmbient(s.bench.Panel.Ambient)
 	sink := instrument.NewHandover(channels, s.bench.Panel.Ambient, s.bench.Limits.Stale.Duration(), instrument.Barometer{Sink: w.gather, Air: air})
 	for _, spec := range s.bench.Instrument {
+		if s.simulated {
+			spec.Timeout = hurried(spec.Timeout, s.bench.Limits.Stale, s.speed)
+		}
 		in, err := instrument.New(spec, s.bench.Panel.Ambient)
 		if err != nil {
 			return nil, coded{exitUsage, err}

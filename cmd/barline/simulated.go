@@ -9,6 +9,7 @@ import (
 	"barline/device/link"
 	"barline/model/bench"
 	"barline/model/clock"
+	"barline/model/unit"
 	"barline/simulate"
 )
 
@@ -38,4 +39,15 @@ func serveSimulated(ctx context.Context, sim *simulate.Bench, clk clock.Clock) (
 		in.Port, in.Address, in.Command = port, "", nil
 		return openLine(in)
 	}, sim.Wait, nil
+}
+
+// hurried is how long, wall time, an answer of a simulated instrument may take
+// on a bench that runs speed times as fast as life. One that is silent must not
+// make its neighbours on the line stale: three quarters of that time is left to
+// it, so that a busy machine is not taken for silence sooner than it must be.
+func hurried(timeout, stale unit.Second, speed float64) unit.Second {
+	if !(speed > 1) {
+		return timeout
+	}
+	return min(timeout, max(timeout, 0.75*stale)/unit.Second(speed))
 }

@@ -156,8 +156,9 @@ func TestModbusRepliesAreNeverAttributedToAnotherQuery(t *testing.T) {
 			}
 			return out
 		}}
+		now := clockOf(time.Millisecond)
 		for range 40 {
-			got, err := in.Poll(f, clockOf(time.Millisecond), nil)
+			got, err := in.Poll(f, now, nil)
 			if err != nil || len(got) != len(channels) {
 				t.Fatalf("seed %d: %d readings, %v", seed, len(got), err)
 			}
@@ -204,8 +205,9 @@ func TestSCPIAnswersAreNeverAttributedToAnotherQuery(t *testing.T) {
 			}
 			return fmt.Appendf(nil, "%d.5E+00\n", i)
 		}}
+		now := clockOf(time.Millisecond)
 		for range 40 {
-			got, err := in.Poll(f, clockOf(time.Millisecond), nil)
+			got, err := in.Poll(f, now, nil)
 			if err != nil || len(got) != len(channels) {
 				t.Fatalf("seed %d: %d readings, %v", seed, len(got), err)
 			}

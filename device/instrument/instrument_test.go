@@ -149,8 +149,9 @@ func TestSilentUnitIsAskedLessOften(t *testing.T) {
 	}}
 	in := build(t, bench.Instrument{Name: "g", Protocol: bench.ModbusRTU, Channel: []bench.Channel{
 		pressure("A", reading.CellAPressure, 1, 0), pressure("B", reading.CellBPressure, 9, 0)}})
+	now := clockOf(time.Millisecond)
 	for range 100 {
-		got, err := in.Poll(line, clockOf(time.Millisecond), nil)
+		got, err := in.Poll(line, now, nil)
 		m := byChannel(t, got)
 		if err != nil || m["A"].Status != reading.Good || m["B"].Status != reading.Failure || m["B"].Reason == "" {
 			t.Fatalf("%+v, %v", got, err)
