@@ -59,7 +59,9 @@ type Gas struct {
 	Index   string `toml:"index"`
 	N2      string `toml:"n2"`
 	// Air is what the last purge left, as far as it is known.
-	Air unit.Fraction `toml:"air" form:"default=0 %; least=0 %; most=50 %"`
+	Air unit.Fraction `toml:"air" form:"default=0 %; least=0 %; most=100 %"`
+	// SupplyAir is the air in the gas supplied.
+	SupplyAir unit.Fraction `toml:"supply_air" form:"default=0 %; least=0 %; most=50 %"`
 }
 
 // Pulse is the light at the fibre input.

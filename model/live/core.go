@@ -25,10 +25,12 @@ type Predictor interface {
 type Core struct {
 	limits    limit.Limits
 	predictor Predictor
-	core      *flow.Core    // scratch: every step restores it from the state
+	core      *flow.Core // scratch: every step restores it from the state
+	cladding  *flow.Core // likewise: one hole of the cladding; nil where none is configured
+	mixing    flow.Mixing
+	ambient   unit.Pascal   // where no barometer tells
 	spec      flow.Spec     // of the core
 	handling  flow.Handling // of the panel, for how long a move takes
-	air       unit.Fraction // in the gas
 	energy    unit.Joule    // used while no meter says otherwise
 
 	stale        time.Duration
@@ -79,7 +81,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	c := &Core{
 		limits:       b.Limits.Enforced(),
 		predictor:    p,
-		air:          b.Gas.Air,
+		ambient:      b.Panel.Ambient,
 		energy:       b.Pulse.Energy,
 		fullEnergy:   b.Pulse.FullEnergy,
 		stale:        b.Limits.Stale.Duration(),
@@ -99,7 +101,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	if c.stale <= 0 || c.arming <= 0 || c.confirm <= 0 {
 		return nil, State{}, fmt.Errorf("limits.stale is %v, limits.confirm %v and limits.arming %v, expected all above zero", c.stale, c.confirm, c.arming)
 	}
-	spec, _, err := flow.BenchFibre(b, assumedTemperature)
+	spec, holes, err := flow.BenchFibre(b, assumedTemperature)
 	if err != nil {
 		return nil, State{}, err
 	}
@@ -108,10 +110,21 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	if c.core, err = flow.NewCore(spec); err != nil {
 		return nil, State{}, err
 	}
+	for _, set := range holes { // a bench file describes one set at most
+		hole := spec
+		hole.Radius = set.Radius
+		if c.cladding, err = flow.NewCore(hole); err != nil {
+			return nil, State{}, fmt.Errorf("cladding: %w", err)
+		}
+	}
+	c.mixing = flow.Mixing{Core: spec, Cylinder: b.Gas.SupplyAir, Lowest: b.Panel.PumpUltimate}
 	if c.handling, err = flow.BenchHandling(b, assumedTemperature); err != nil {
 		return nil, State{}, err
 	}
 	var s State
+	if s.residue, err = flow.NewResidue(b.Gas.Air); err != nil {
+		return nil, State{}, err
+	}
 	for _, in := range b.Instrument {
 		if s.LinkCount == MaxLinks {
 			return nil, State{}, fmt.Errorf("%d instruments, expected at most %d", len(b.Instrument), MaxLinks)

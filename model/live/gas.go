@@ -26,7 +26,7 @@ func (c *Core) coreGas(s *State) {
 	if !b.Status.Usable() {
 		b = a
 	}
-	known := s.CoreKnown
+	known, since, before := s.CoreKnown, s.Now.Mono-s.flowAt, s.flow
 	s.CoreKnown = false
 	if !a.Status.Usable() {
 		return
@@ -51,11 +51,68 @@ func (c *Core) coreGas(s *State) {
 	}
 	s.flow, s.flowAt, s.CoreKnown = c.core.State(), s.Now.Mono, true
 	s.Core = c.core.At(c.compression(s))
+	if !known {
+		since = 0
+	}
+	c.claddingGas(s, known, since, pA, pB, t)
+	c.mixing.Advance(&s.residue, since, &before, &s.flow, c.openToRoom(s))
 	if s.Now.Mono-s.lagAt >= lagEvery || s.lagAt == 0 {
 		s.lagAt = s.Now.Mono
 		s.Lag = c.core.Lag()
 		s.SettleIn, _ = c.core.TimeToSettle(settledWithin)
+		if s.cladding != nil {
+			wait, _ := c.cladding.TimeToSettle(settledWithin)
+			s.SettleIn = max(s.SettleIn, wait)
+		}
 	}
+}
+
+// claddingGas carries the gas along the holes of the cladding, where there are
+// any. Until they have followed, the core's walls stand under the difference.
+func (c *Core) claddingGas(s *State, known bool, dt time.Duration, pA, pB unit.Pascal, t unit.Kelvin) {
+	if c.cladding == nil {
+		return
+	}
+	var err error
+	if known && s.cladding != nil {
+		if err = c.cladding.Restore(*s.cladding); err == nil {
+			err = c.cladding.Advance(dt, pA, pB, t)
+		}
+	} else {
+		err = c.cladding.Fill(pA, pB, t)
+	}
+	if err != nil {
+		s.cladding, s.Differential = nil, 0
+		return
+	}
+	state := c.cladding.State() // a new one each time: states are copied
+	s.cladding = &state
+	s.Differential = s.Core - c.cladding.At(c.compression(s))
+}
+
+// openToRoom reports whether the cells draw air from the room: vented, and
+// below its pressure.
+func (c *Core) openToRoom(s *State) bool {
+	vent, inlet := s.Reading(reading.VentValve, c.stale), s.Reading(reading.InletValve, c.stale)
+	if !vent.Status.Usable() || vent.Value <= 0.02 || inlet.Status.Usable() && inlet.Value > 0.02 {
+		return false
+	}
+	room := c.ambient
+	if r := s.Reading(reading.Ambient, c.stale); r.Status.Usable() {
+		room = unit.Pascal(r.Value)
+	}
+	p, ok := c.pressure(s)
+	return ok && p < room+roomWithin
+}
+
+// roomWithin is how much a gauge may read above the room that it is open to.
+const roomWithin = 20 * unit.Millibar
+
+// Air returns the air left in the cells and in the core where the pulse is
+// shortest, as mole fractions, by
+// what was let in and out since the start.
+func (c *Core) Air(s *State) (cells, core unit.Fraction) {
+	return s.residue.Cells, c.mixing.At(&s.residue, c.compression(s))
 }
 
 // compression returns the distance along the fibre at which the pulse is
@@ -88,7 +145,7 @@ func (c *Core) predict(s *State, fx []Effect) []Effect {
 		return fx
 	}
 	s.predicted = s.Now.Mono
-	in := emission.Input{Pressure: s.Core, Temperature: assumedTemperature, Energy: c.pulseEnergy(s), Air: c.air}
+	in := emission.Input{Pressure: s.Core, Temperature: assumedTemperature, Energy: c.pulseEnergy(s), Air: c.mixing.At(&s.residue, c.compression(s))}
 	if t := s.Reading(reading.FibreTemperature, c.stale); t.Status.Usable() {
 		in.Temperature = unit.Kelvin(t.Value)
 	}

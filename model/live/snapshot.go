@@ -119,6 +119,11 @@ type Snapshot struct {
 	Core         unit.Pascal // pressure at the point of compression as the model has it
 	CoreKnown    bool
 	Profile      []unit.Pascal // along the core from cell A to cell B; empty where not known
+	CellsAir     unit.Fraction // residual air in the cells, by what was let in and out
+	CoreAir      unit.Fraction // and in the core, as the prediction has it
+	// Differential is by how much the core exceeds the holes of the cladding;
+	// 0 where none are configured.
+	Differential unit.Pascal
 	Lag          unit.Pascal   // of the core behind the cells, positive where it has yet to rise
 	ArriveIn     time.Duration // until the cells are at the target and the core has followed; 0 where not known
 	SettleIn     time.Duration // until the core has caught up, if the cells stay as they are

@@ -29,12 +29,15 @@ type State struct {
 	Target   unit.Pascal
 	Setpoint unit.Pascal // last commanded
 
-	Core       unit.Pascal // in the core, where the pulse is shortest
-	CoreKnown  bool
-	Lag        unit.Pascal   // of the core behind the cells, positive where it has yet to rise
-	SettleIn   time.Duration // until the core has caught up, if the cells stay as they are
-	Prediction emission.Prediction
-	Residual   unit.Metre // measured minus predicted emission
+	Core      unit.Pascal // in the core, where the pulse is shortest
+	CoreKnown bool
+	// Differential is by how much the core exceeds the holes of the cladding
+	// where the pulse is shortest; 0 where none are configured.
+	Differential unit.Pascal
+	Lag          unit.Pascal   // of the core behind the cells, positive where it has yet to rise
+	SettleIn     time.Duration // until the core has caught up, if the cells stay as they are
+	Prediction   emission.Prediction
+	Residual     unit.Metre // measured minus predicted emission
 	// ResidualAt is when the emission behind Residual was taken; 0 where
 	// there is none yet.
 	ResidualAt time.Duration
@@ -76,6 +79,8 @@ type State struct {
 	forecast          flow.Forecast // of the move under way, where forecasting
 	forecasting       bool
 	flow              flow.State
+	cladding          *flow.State // of one hole; nil where none is known. Never changed
+	residue           flow.Residue
 	flowAt            time.Duration
 	lagAt             time.Duration
 	command           uint64        // number of the last command sent

@@ -95,6 +95,9 @@ func (d PredictionData) String() string {
 		return fmt.Sprintf("%v: no emission, %s", unit.Pascal(d.PressurePa), d.Why)
 	}
 	text := fmt.Sprintf("%v: %.2f nm ± %.2f nm (%s)", unit.Pascal(d.PressurePa), *d.EmissionM*1e9, d.SigmaM*1e9, d.Answer)
+	if d.Air >= 1e-6 {
+		text += ", " + AirText(unit.Fraction(d.Air)) + " of air"
+	}
 	if d.ResidualM != nil {
 		text += fmt.Sprintf(", measured %.2f nm, residual %+.2f nm", *d.MeasuredM*1e9, *d.ResidualM*1e9)
 	}
@@ -125,4 +128,12 @@ func (d RiseData) String() string {
 		return d.Text
 	}
 	return "no verdict: " + d.Verdict
+}
+
+// AirText writes a share of air in per cent or parts per million.
+func AirText(air unit.Fraction) string {
+	if air >= 1e-3 {
+		return fmt.Sprintf("%.2g %%", float64(air)*100)
+	}
+	return fmt.Sprintf("%.2g ppm", float64(air)*1e6)
 }

@@ -43,6 +43,8 @@ func (l *Loop) publish() {
 	l.history.groups(&snap.Drift)
 	snap.DriftPoints = l.history.charted()
 	snap.ArriveIn, _ = s.ArriveIn()
+	snap.CellsAir, snap.CoreAir = o.Core.Air(s)
+	snap.Differential = s.Differential
 	snap.Nodes, snap.NodesPlanned = s.Nodes()
 	if c := l.curve.Load(); c != nil {
 		snap.Curve = *c
@@ -58,6 +60,7 @@ func (l *Loop) publish() {
 const (
 	curveTemperature = unit.Kelvin(0.2)
 	curveEnergy      = 0.005 // of the energy
+	curveAir         = 1e-4  // mole fraction
 	curvePoints      = 160
 )
 
@@ -70,7 +73,8 @@ func (l *Loop) refreshCurve() {
 	}
 	was := l.curveIn
 	same := math.Abs(float64(in.Temperature-was.Temperature)) < float64(curveTemperature) &&
-		math.Abs(float64(in.Energy-was.Energy)) < curveEnergy*float64(in.Energy) && in.Air == was.Air
+		math.Abs(float64(in.Energy-was.Energy)) < curveEnergy*float64(in.Energy) &&
+		math.Abs(float64(in.Air-was.Air)) <= curveAir
 	if same || !l.curving.CompareAndSwap(false, true) {
 		return
 	}
