@@ -9,7 +9,8 @@ import (
 	"barline/model/bench"
 )
 
-// readBench reads the bench file at path and returns its text and its meaning.
+// readBench reads the bench file at path, and the files that it includes from
+// beside it, and returns their text as one and its meaning.
 // Its mistakes are wrong use of the program; the error then holds
 // bench.Mistakes.
 func readBench(path string) (text []byte, b *bench.Bench, err error) {
@@ -17,7 +18,16 @@ func readBench(path string) (text []byte, b *bench.Bench, err error) {
 	if err != nil {
 		return nil, nil, usage("bench file: %w", err)
 	}
-	b, err = bench.Parse(text, filepath.Base(path))
+	whole, err := bench.Join(text, filepath.Base(path), func(file string) ([]byte, error) {
+		if !filepath.IsAbs(file) {
+			file = filepath.Join(filepath.Dir(path), file)
+		}
+		return os.ReadFile(file)
+	})
+	if err == nil {
+		text = whole.Text
+		b, err = whole.Parse()
+	}
 	if err != nil {
 		return nil, nil, usage("the bench file needs care; barline check -b %s says what was understood\n%w", path, err)
 	}
