@@ -26,6 +26,19 @@ type liveReport struct {
 	Problem    string        `json:"problem,omitempty"` // why nothing, or not everything, came
 	Seconds    float64       `json:"seconds"`           // from the first question to the last answer
 	Channels   []liveChannel `json:"channels"`
+	Counts     *liveCounts   `json:"counts,omitempty"` // where it was asked at all
+}
+
+// liveCounts is how the questions fared.
+type liveCounts struct {
+	Asked     uint64  `json:"asked"`
+	Answered  uint64  `json:"answered"`
+	Silent    uint64  `json:"silent"`
+	Refused   uint64  `json:"refused"`
+	Resynced  uint64  `json:"resynced"`
+	Stray     uint64  `json:"stray_bytes"`
+	RoundTrip float64 `json:"round_trip_s"` // mean of those answered
+	Slowest   float64 `json:"slowest_s"`
 }
 
 type liveChannel struct {
@@ -92,6 +105,9 @@ func readOnce(ctx context.Context, b *bench.Bench, spec bench.Instrument) liveRe
 	}
 	if err != nil {
 		r.Problem = err.Error()
+	}
+	if n := in.Counts(); n.Asked > 0 || n.Answered > 0 {
+		r.Counts = &liveCounts{n.Asked, n.Answered, n.Silent, n.Refused, n.Resynced, n.Stray, n.RoundTrip.Seconds(), n.Slowest.Seconds()}
 	}
 	last := start.Mono
 	for i := range spec.Channel {
@@ -192,5 +208,28 @@ func writeLive(w io.Writer, reports []liveReport) {
 			fmt.Fprintf(table, "  %s\t%s\t%s\t%s\n", c.Channel, c.Text, took, status)
 		}
 		table.Flush()
+		if n := r.Counts; n != nil {
+			fmt.Fprintf(w, "  %s\n", n)
+		}
 	}
+}
+
+// String says it in a line, leaving out what did not happen.
+func (n *liveCounts) String() string {
+	text := fmt.Sprintf("%d lines taken", n.Answered)
+	if n.Asked > 0 {
+		text = fmt.Sprintf("asked %d times, %d answers", n.Asked, n.Answered)
+	}
+	for _, c := range []struct {
+		count uint64
+		what  string
+	}{{n.Silent, "without an answer"}, {n.Refused, "refused"}, {n.Resynced, "asked again to be sure"}, {n.Stray, "stray bytes"}} {
+		if c.count > 0 {
+			text += fmt.Sprintf(", %d %s", c.count, c.what)
+		}
+	}
+	if n.RoundTrip > 0 {
+		text += fmt.Sprintf("; round trip %.1f ms, slowest %.1f ms", 1e3*n.RoundTrip, 1e3*n.Slowest)
+	}
+	return text
 }

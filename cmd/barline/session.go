@@ -119,6 +119,7 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		Bell:       s.bell,
 		Unfinished: left,
 		Call:       calls.call,
+		Fares:      w.fares,
 		Broken:     func(where string, value any, stack []byte) { broken(where, value, stack) },
 		Folder:     s.folder, Simulated: s.simulated, Capture: s.capture, Resonances: resonances(s.predictor),
 	})
@@ -241,6 +242,7 @@ func (s *session) lines(l *loop.Loop, w *wire, broken breakdown) ([]*instrument.
 			broken("instrument "+spec.Name, value, stack)
 		})
 		w.all[in] = r
+		w.instruments = append(w.instruments, in)
 		if in.TakesSetpoint() {
 			w.controllers = append(w.controllers, r)
 		}

@@ -5,6 +5,7 @@ import (
 
 	"barline/device/instrument"
 	"barline/model/limit"
+	"barline/model/live"
 	"barline/model/reading"
 )
 
@@ -12,10 +13,26 @@ import (
 type wire struct {
 	controllers []*instrument.Runner // take setpoints
 	holders     []*instrument.Runner // have something to do on HOLD
+	instruments []*instrument.Instrument
 	all         map[*instrument.Instrument]*instrument.Runner
 	gather      *gather
 	answer      func(command uint64, err error, at reading.Stamp)
 	now         func() reading.Stamp
+}
+
+// fares tells how the instruments have fared.
+func (w *wire) fares() []live.Fare {
+	all := make([]live.Fare, len(w.instruments))
+	for i, in := range w.instruments {
+		c := in.Counts()
+		all[i] = live.Fare{
+			Instrument: in.Name(), Asked: c.Asked, Silent: c.Silent, Refused: c.Refused, Resynced: c.Resynced, Stray: c.Stray,
+			Good:      c.Readings[reading.Good] + c.Readings[reading.MaintenanceRequired],
+			Bad:       c.Readings[reading.Failure] + c.Readings[reading.OutOfSpecification],
+			RoundTrip: c.RoundTrip, Slowest: c.Slowest, Worst: c.Worst,
+		}
+	}
+	return all
 }
 
 // Setpoint implements loop.Wire.

@@ -213,7 +213,8 @@ func (p *linesProtocol) askOnce(line link.Line) (refused, err error) {
 		return nil, lost(err)
 	}
 	p.in.counts.asked.Add(1)
-	deadline := time.Now().Add(p.timeout)
+	sent := time.Now()
+	deadline := sent.Add(p.timeout)
 	for {
 		text, err := p.text.await(line, deadline)
 		if err != nil {
@@ -227,6 +228,7 @@ func (p *linesProtocol) askOnce(line link.Line) (refused, err error) {
 		}
 		if refused = p.parse(text); refused == nil {
 			p.in.counts.answered.Add(1)
+			p.in.counts.took(time.Since(sent))
 			return nil, nil
 		}
 		p.in.counts.refused.Add(1)

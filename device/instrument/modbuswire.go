@@ -53,8 +53,9 @@ func (w *rtuWire) exchange(line link.Line, now Now, r modbus.Request) (modbus.Re
 		return fail(lost(err))
 	}
 	w.counts.asked.Add(1)
+	sent := time.Now()
 	wait := w.timeout + w.perByte*time.Duration(len(w.frame)+5+2*r.Count)
-	deadline := time.Now().Add(wait)
+	deadline := sent.Add(wait)
 	w.buf = w.buf[:0]
 	var seen error // the best explanation of what came instead
 	for {
@@ -76,6 +77,7 @@ func (w *rtuWire) exchange(line link.Line, now Now, r modbus.Request) (modbus.Re
 				return fail(err)
 			}
 			w.counts.answered.Add(1)
+			w.counts.took(time.Since(sent))
 			return reply, at, nil
 		}
 		if err != nil {
@@ -171,7 +173,8 @@ func (w *tcpWire) exchange(line link.Line, now Now, r modbus.Request) (modbus.Re
 		return fail(lost(err))
 	}
 	w.counts.asked.Add(1)
-	deadline := time.Now().Add(w.timeout)
+	sent := time.Now()
+	deadline := sent.Add(w.timeout)
 	for {
 		reply, found, err := w.take(w.number)
 		if err != nil && !found {
@@ -187,6 +190,7 @@ func (w *tcpWire) exchange(line link.Line, now Now, r modbus.Request) (modbus.Re
 				return fail(err)
 			}
 			w.counts.answered.Add(1)
+			w.counts.took(time.Since(sent))
 			return reply, at, nil
 		}
 		n, err := line.Read(w.scratch[:], time.Until(deadline))

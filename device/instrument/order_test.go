@@ -77,3 +77,33 @@ func TestZeroOfAGaugeIsAddedOnce(t *testing.T) {
 		t.Error("takes the zero of a gauge that it has not")
 	}
 }
+
+func TestCountsTellHowAnInstrumentFares(t *testing.T) {
+	registers := map[byte]map[uint16]uint16{1: {0: 1012}}
+	answer, mute := units(t, registers), false
+	line := &scripted{answer: func(p []byte) []byte {
+		if mute {
+			return nil
+		}
+		return answer(p)
+	}}
+	in := build(t, bench.Instrument{Name: "gauge", Protocol: bench.ModbusRTU, Channel: []bench.Channel{
+		{Name: "cell A", Role: reading.CellAPressure, Unit: 1, Function: 3, Format: "uint16", Order: "ABCD", Factor: 100, Symbol: "Pa"},
+	}})
+	now := clockOf(time.Millisecond)
+	for range 3 {
+		got, err := in.Poll(line, now, nil)
+		if err != nil {
+			t.Fatal(err)
+		}
+		in.counts.passed(got)
+		mute = true
+	}
+	c := in.Counts()
+	if c.Asked != 3 || c.Answered != 1 || c.Silent != 2 || c.Readings[reading.Good] != 1 || c.Readings[reading.Failure] != 2 {
+		t.Errorf("%+v", c)
+	}
+	if !strings.HasPrefix(c.Worst, "cell A: unit 1: no reply") || c.RoundTrip <= 0 || c.Slowest < c.RoundTrip {
+		t.Errorf("%+v", c)
+	}
+}

@@ -233,6 +233,7 @@ func (r *Runner) listen(ctx context.Context, line link.Line) error {
 }
 
 func (r *Runner) pass() {
+	r.instrument.counts.passed(r.readings)
 	for _, x := range r.readings {
 		r.sink.Reading(x)
 	}

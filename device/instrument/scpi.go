@@ -265,7 +265,8 @@ func (s *scpiProtocol) exchange(line link.Line, query string) (string, error) {
 		return "", lost(err)
 	}
 	s.in.counts.asked.Add(1)
-	text, err := s.answer(line, time.Now().Add(s.timeout))
+	sent := time.Now()
+	text, err := s.answer(line, sent.Add(s.timeout))
 	if s.in.spec.Echo && err == nil && text == query {
 		text, err = s.answer(line, time.Now().Add(s.timeout))
 	}
@@ -275,6 +276,7 @@ func (s *scpiProtocol) exchange(line link.Line, query string) (string, error) {
 	}
 	if err == nil {
 		s.in.counts.answered.Add(1)
+		s.in.counts.took(time.Since(sent))
 	}
 	return text, err
 }

@@ -28,7 +28,6 @@ type Core struct {
 	core      *flow.Core // scratch: every step restores it from the state
 	cladding  *flow.Core // likewise: one hole of the cladding; nil where none is configured
 	mixing    flow.Mixing
-	ambient   unit.Pascal   // where no barometer tells
 	spec      flow.Spec     // of the core
 	handling  flow.Handling // of the panel, for how long a move takes
 	energy    unit.Joule    // used while no meter says otherwise
@@ -81,7 +80,6 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 	c := &Core{
 		limits:       b.Limits.Enforced(),
 		predictor:    p,
-		ambient:      b.Panel.Ambient,
 		energy:       b.Pulse.Energy,
 		fullEnergy:   b.Pulse.FullEnergy,
 		stale:        b.Limits.Stale.Duration(),

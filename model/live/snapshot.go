@@ -44,6 +44,20 @@ type LinkHealth struct {
 	Reason     string // why it is down
 }
 
+// Fare is how an instrument has fared since the start.
+type Fare struct {
+	Instrument string
+	Good, Bad  uint64        // readings; a function check is neither
+	Asked      uint64        // questions; 0 where it talks by itself
+	Silent     uint64        // questions without an answer in time
+	Refused    uint64        // answers and lines that were damaged or of another question
+	Resynced   uint64        // times that it was asked again to be sure of its answers
+	Stray      uint64        // bytes that nobody had asked for
+	RoundTrip  time.Duration // mean, wall time; 0 where it talks by itself
+	Slowest    time.Duration
+	Worst      string // what was last wrong with a reading, and of which channel
+}
+
 // Alarm is one entry of the alarm list.
 type Alarm struct {
 	Name        string // such as "cell A stale"
@@ -151,6 +165,7 @@ type Snapshot struct {
 	CalibratedFrom, CalibratedTo unit.Pascal
 
 	Links  []LinkHealth
+	Fares  []Fare  // of the instruments, in the order of the bench file
 	Alarms []Alarm // most urgent first
 	Record RecordHealth
 	Folder string // where the logbook is

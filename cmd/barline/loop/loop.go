@@ -63,6 +63,7 @@ type Options struct {
 	Bell       func()
 	Seen       func(live.Event) // every event before it is folded, for a capture of all
 	Call       func(live.Call)  // must not block
+	Fares      func() []live.Fare
 	// Broken is told of a panic beside the loop; nil lets the program end.
 	Broken func(where string, value any, stack []byte)
 }

@@ -42,6 +42,9 @@ func (l *Loop) publish() {
 	}
 	l.history.groups(&snap.Drift)
 	snap.DriftPoints = l.history.charted()
+	if o.Fares != nil {
+		snap.Fares = o.Fares()
+	}
 	snap.ArriveIn, _ = s.ArriveIn()
 	snap.CellsAir, snap.CoreAir = o.Core.Air(s)
 	snap.Differential = s.Differential
