@@ -17,8 +17,9 @@ type Calibration struct {
 	Digest      string      `json:"digest"`   // of the bench that the nodes belong to
 	Corrections Corrections `json:"corrections"`
 	Values      []Value     `json:"values"` // of what was fitted
-	// BendM is what the answer is off by, smoothly over pressure, beyond all
-	// corrections: coefficients of Legendre polynomials over the range.
+	// BendM is what the answer is off by, smoothly over pressure and energy,
+	// beyond all corrections: coefficients of Legendre polynomials over the
+	// range of pressures, then of energy and of both, for a tenth of energy.
 	BendM      [bendTerms]float64 `json:"bend_m"`
 	Covariance [][]float64        `json:"covariance"` // of Values, then BendM
 
@@ -70,9 +71,9 @@ func (c *Calibration) Covers(in emission.Input) bool {
 }
 
 // Predict returns the emission at a measured input nearest to near, with the
-// uncertainty that corrections and bend leave, by numerical derivatives.
+// uncertainty that corrections, bend and nodes leave, by numerical derivatives.
 func (c *Calibration) Predict(m *Model, in emission.Input, near unit.Metre) (w, sigma unit.Metre, err error) {
-	bent := unit.Metre(bend(c.BendM[:], in.Pressure, c.PressurePa))
+	bent := unit.Metre(c.bent(c.BendM[:], in))
 	e, err := m.nearest(in, &c.Corrections, near-bent)
 	if err != nil {
 		return 0, 0, err
@@ -101,10 +102,9 @@ func (c *Calibration) Predict(m *Model, in emission.Input, near unit.Metre) (w, 
 			slopes[i] = float64(e.Wavelength-b) / h
 		}
 	}
-	for k := range bendTerms {
-		slopes = append(slopes, legendre(k, in.Pressure, c.PressurePa))
-	}
-	variance := 0.0
+	terms := c.bendAt(in)
+	slopes = append(slopes, terms[:]...)
+	variance := float64(m.interpolation() * m.interpolation())
 	for i, row := range c.Covariance {
 		for j, v := range row {
 			variance += slopes[i] * slopes[j] * v

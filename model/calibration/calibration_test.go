@@ -120,7 +120,7 @@ func TestCorrectionsDoWhatTheySay(t *testing.T) {
 func TestExactPointsGiveTheTruthBack(t *testing.T) {
 	m := lawful(t)
 	truth := Corrections{IndexScale: 0.006, Energy: -0.03}
-	c, err := Fit(m, Request{Points: scan(t, m, rand.New(rand.NewPCG(1, 1)), truth, 9, []float64{1.2, 1.3, 1.4}, 1e-15, nil), Free: []Parameter{IndexScale, Energy}, Prior: [ParameterCount]float64{}})
+	c, err := Fit(m, Request{Points: scan(t, m, rand.New(rand.NewPCG(1, 1)), truth, 9, []float64{1.2, 1.3, 1.4}, 1e-15, nil), Free: []Parameter{IndexScale, Energy}, Discrepancy: 1e-15})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -157,10 +157,11 @@ func TestCalibrationCoversTheTruth(t *testing.T) {
 			off := func(bar float64) float64 { return wrong * math.Sqrt2 * math.Sin(1.4*bar+phase) }
 			if shape == "as assumed" {
 				var b []float64
-				for range bendTerms {
+				for range 4 { // over pressure: all points have one energy
 					b = append(b, bendShare*wrong*rng.NormFloat64())
 				}
-				off = func(bar float64) float64 { return bend(b, unit.Pascal(bar)*unit.Bar, [2]float64{7.3e5, 11.7e5}) }
+				over := Calibration{PressurePa: [2]float64{7.3e5, 11.7e5}}
+				off = func(bar float64) float64 { return over.bent(b, at(bar, 1.3)) }
 			}
 			points := scan(t, m, rng, truth, 5, []float64{1.3}, 0.05e-9, off)
 			c, err := Fit(m, Request{Points: points, Free: free, Prior: prior, Discrepancy: wrong})

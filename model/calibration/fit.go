@@ -55,7 +55,7 @@ const (
 const DefaultDiscrepancy = 0.5 * unit.Nanometre
 
 // Fit finds corrections from measured points. That the model is off by itself
-// is part of the fit: a bend of the answer, smooth over pressure, is found
+// is part of the fit: a bend of the answer, smooth over pressure and energy, is found
 // together with the corrections, so that these are not pulled to make up for
 // what they cannot, and their uncertainty is honest (Kennedy & O'Hagan, J. R.
 // Stat. Soc. B 63, 425 (2001), doi:10.1111/1467-9868.00294). Uncertainties of points are
@@ -76,7 +76,7 @@ func Fit(m *Model, r Request) (*Calibration, error) {
 		return nil, fmt.Errorf("%d of %d points can be used, expected at least 2: %w%s", len(used), len(r.Points), ErrPoints, c.firstReason())
 	}
 	problem := &fit.Problem{Loss: fit.Huber()}
-	interpolation, _ := m.nodes.LeftOut()
+	interpolation := m.interpolation()
 	for _, p := range used {
 		sigma := p.Sigma
 		if sigma == 0 {
@@ -97,7 +97,7 @@ func Fit(m *Model, r Request) (*Calibration, error) {
 	}
 	for k := range bendTerms {
 		problem.Parameters = append(problem.Parameters, fit.Parameter{
-			Name: fmt.Sprintf("bend %d", k), PriorSigma: bendShare * float64(discrepancy),
+			Name: fmt.Sprintf("bend %d", k), PriorSigma: bendPrior(k) * float64(discrepancy),
 		})
 	}
 	c.rangeOf(used)
@@ -111,7 +111,7 @@ func Fit(m *Model, r Request) (*Calibration, error) {
 			if err != nil {
 				return err
 			}
-			dst[i] = float64(w) + bend(free[len(r.Free):], p.Input.Pressure, c.PressurePa)
+			dst[i] = float64(w) + c.bent(free[len(r.Free):], p.Input)
 		}
 		return nil
 	}

@@ -51,6 +51,15 @@ type Emission struct {
 	Conversion float64
 }
 
+// interpolation is the standard error of the answer between the nodes. To leave
+// a node out doubles the spacing, which makes the error of a cubic 7 times as
+// large where κ is smooth, and 1.7 times where the runs themselves scatter: half
+// of the left-out error is on the safe side of the middle.
+func (m *Model) interpolation() unit.Metre {
+	left, _ := m.nodes.LeftOut()
+	return left / 2
+}
+
 // Answer appends the branches at the measured input to dst, strongest first.
 // Without any it returns ErrOutside.
 //

@@ -76,7 +76,7 @@ type Corrections [ParameterCount]float64
 // is that of a gas whose sources differ by a tenth.
 func DefaultPrior() [ParameterCount]float64 {
 	return [ParameterCount]float64{
-		IndexScale: 0.01, CoreDiameter: 0.01, Wall: 0.03, Energy: 0.05, NonlinearIndex: 0.1,
-		GaugeZero: 20 * float64(unit.Millibar), WavelengthOffset: 0.2e-9,
+		IndexScale: 0.01, CoreDiameter: 0.01, Wall: 0.02, Energy: 0.05, NonlinearIndex: 0.1,
+		GaugeZero: 10 * float64(unit.Millibar), WavelengthOffset: 0.2e-9,
 	}
 }

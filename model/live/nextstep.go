@@ -39,8 +39,11 @@ const (
 	// no source).
 	calibratedApart = 0.4e-9
 	anchoredApart   = 1e-9
-	gaugesApart     = 900.0
+	spansApart      = 7e-4  // of the way there: two spans, each good to half a part in a thousand
+	zerosApart      = 100.0 // Pa
 	decayApart      = 0.1
+	freshApart      = 0.1e-9 // the same place, filled again
+	freshTakes      = 30 * time.Minute
 )
 
 // offers ranks what to do next by what it would tell an hour.
@@ -55,7 +58,7 @@ func (c *Core) offers(s *State, findings []drift.Finding) []NextStep {
 		return nil
 	}
 	all := append(c.comparisons(s), c.leakTest(s)...)
-	all = append(all, handSteps(s)...)
+	all = append(all, handSteps(s.drift.slopes, c.driftState(s))...)
 	steps := make([]drift.Step, len(all))
 	for i := range all {
 		steps[i] = all[i].Step
@@ -103,7 +106,7 @@ func (c *Core) comparisons(s *State) (all []NextStep) {
 		state := c.driftState(s)
 		state.Pressure = there
 		if state.TwoGauges {
-			sigma[drift.Disagreement] = gaugesApart
+			sigma[drift.Disagreement] = math.Hypot(zerosApart, spansApart*float64(there-here))
 		}
 		var looks []drift.Observable
 		var slopes drift.Slopes
@@ -156,7 +159,7 @@ func (c *Core) leakTest(s *State) []NextStep {
 }
 
 // handSteps are what only a person can do, with what each would see.
-func handSteps(s *State) (all []NextStep) {
+func handSteps(slopes drift.Slopes, b drift.State) (all []NextStep) {
 	for _, h := range [...]struct {
 		name, what string
 		cost       time.Duration
@@ -171,6 +174,12 @@ func handSteps(s *State) (all []NextStep) {
 			map[string][]float64{"pulse duration": {1}}, []float64{0.02}},
 	} {
 		all = append(all, NextStep{Worth: drift.Worth{Step: drift.Step{Name: h.name, Cost: h.cost, Effect: h.effect, Sigma: h.sigma}}, ByHand: h.what})
+	}
+	if slopes.Air != 0 {
+		// Whatever else it was stays; air does not.
+		fresh := drift.Elsewhere("fill with fresh gas", freshTakes, slopes, b, [drift.ObservableCount]float64{drift.Wavelength: freshApart})
+		fresh.Effect["air in the gas"], fresh.Doubt["air in the gas"] = []float64{0}, []float64{0}
+		all = append(all, NextStep{Worth: drift.Worth{Step: fresh}, ByHand: "purge, fill from another cylinder to the same pressure, and see whether the emission comes back"})
 	}
 	return all
 }
