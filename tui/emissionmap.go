@@ -169,7 +169,11 @@ func drawResonances(p *chart.Plot, s *live.Snapshot, ascii bool) {
 		} else {
 			p.Stripe(lo, hi, frame.Rule)
 		}
-		p.Label((lo+hi)/2, "wall resonance", frame.Faint)
+		name := "wall resonance"
+		if p.Pane().W < 44 { // the key stands beside it
+			name = "resonance"
+		}
+		p.Label((lo+hi)/2, name, frame.Faint)
 	}
 }
 
@@ -185,7 +189,7 @@ func otherBranches(s *live.Snapshot) []emission.Branch {
 // drawMapKey explains the marks where the chart is empty by nature: emission
 // rises with pressure, so the lower right corner is free.
 func drawMapKey(a frame.Area, s *live.Snapshot) {
-	if a.W < 26 || a.H < 8 {
+	if a.W < 26 || a.H < 10 { // a lower pane has no free corner
 		return
 	}
 	type entry struct {

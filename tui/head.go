@@ -91,6 +91,10 @@ func drawReplayTitle(a frame.Area, s *live.Snapshot, v view) {
 	}
 }
 
+// usualWait is how many records may wait for the disk without a word: they are
+// synced in groups, and a number that comes and goes every second only stirs.
+const usualWait = 2000
+
 // recordText says how the logbook fares.
 func recordText(s *live.Snapshot) (string, frame.Ink) {
 	r := s.Record
@@ -100,7 +104,7 @@ func recordText(s *live.Snapshot) (string, frame.Ink) {
 		text, ink = "✕ NOT RECORDED", frame.Alarm
 	}
 	text += " · " + countText(r.Written) + " written"
-	if r.Waiting > 0 {
+	if !r.Writing || r.Waiting > usualWait {
 		text += fmt.Sprintf(", %d waiting", r.Waiting)
 	}
 	if r.Lost > 0 {
@@ -203,7 +207,10 @@ func modeText(m live.Mode) string {
 // programText says how far a program has come.
 func programText(s *live.Snapshot) string {
 	p := s.Program
-	text := fmt.Sprintf("%s %d of %d", p.Name, p.Index+1, p.Count)
+	text := p.Name
+	if p.Count > 1 {
+		text += fmt.Sprintf(" %d of %d", p.Index+1, p.Count)
+	}
 	switch {
 	case p.Paused:
 		text += " PAUSED"

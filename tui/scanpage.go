@@ -32,13 +32,17 @@ func drawProgress(a frame.Area, s *live.Snapshot) {
 	p := s.Program
 	if p.Count == 0 {
 		x := a.Text(1, 0, "no program is under way", frame.Faint) + 2
-		if !s.ReadOnly {
-			a.Text(x, 0, "arm (a), then r runs a scan", frame.Faint)
+		switch {
+		case s.ReadOnly:
+		case armed(s):
+			a.Text(x, 0, "r runs a scan or a procedure", frame.Faint)
+		default:
+			a.Text(x, 0, "arm (a), then r runs a scan or a procedure", frame.Faint)
 		}
 		return
 	}
 	text := programText(s)
-	if p.Label != "" {
+	if p.Label != "" && p.Label != p.Name {
 		text += " · " + p.Label
 	}
 	if p.Left > 0 {
