@@ -92,11 +92,7 @@ func (r *replay) followOn(ctx context.Context, records <-chan logbook.Record, re
 			if !ok {
 				return nil
 			}
-			// What was written before this program came is caught up with;
-			// from then on bench time passes by itself.
-			if gap := r.player.gap(rec); !shown {
-				r.player.skip(min(gap, longestGap))
-			}
+			r.player.meet(rec)
 			if err := r.player.take(rec); err != nil {
 				return err
 			}
@@ -107,8 +103,13 @@ func (r *replay) followOn(ctx context.Context, records <-chan logbook.Record, re
 		if r.player.loop == nil {
 			continue
 		}
-		if !r.stopped {
-			r.player.advance(playerTick)
+		if !r.stopped { // between the records bench time passes by itself
+			step := time.Duration(float64(playerTick) * r.player.speed)
+			if r.player.speed > fastest {
+				r.player.skip(step)
+			} else {
+				r.player.advance(step)
+			}
 		}
 		s := *r.player.loop.Snapshot()
 		s.ReadOnly, s.Simulated = true, r.player.simulated

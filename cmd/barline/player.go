@@ -22,8 +22,11 @@ type player struct {
 	last   time.Time // UTC of the last record
 	loop   *loop.Loop
 	latest map[string]reading.Reading
+	heard  map[string]time.Duration // bench Mono of a channel's last record
+	silent time.Duration            // after which a channel without one is not believed
 
 	simulated bool // as the record says of itself
+	speed     float64
 }
 
 // shutBook is a logbook that takes nothing: what is played is written already.
@@ -39,7 +42,7 @@ var errPlayed = errors.New("a played record is not written again")
 const playerTick = 50 * time.Millisecond
 
 func newPlayer(folder string) *player {
-	return &player{folder: folder, latest: map[string]reading.Reading{}}
+	return &player{folder: folder, latest: map[string]reading.Reading{}, speed: 1}
 }
 
 // configure builds the core from the configuration that the record holds.
@@ -58,7 +61,8 @@ func (p *player) configure(text []byte, at time.Time) error {
 	}
 	s.state.Follow()
 	curve := s.predictor.Clone()
-	p.latest = map[string]reading.Reading{}
+	p.latest, p.heard = map[string]reading.Reading{}, map[string]time.Duration{}
+	p.silent = b.Logbook.Heartbeat.Duration() + heartbeatLate
 	p.loop = loop.New(loop.Options{
 		Bench: b, Core: s.core, State: s.state, Clock: p.clk, Book: shutBook{}, Wire: &wire{now: p.clk.Now, answer: func(uint64, error, reading.Stamp) {}},
 		Curve: func(in emission.Input, dst []emission.CurvePoint) {
@@ -85,6 +89,9 @@ func (p *player) take(r logbook.Record) error {
 			return err
 		}
 		p.simulated = d.Simulated
+		if d.Speed > 0 {
+			p.speed = d.Speed
+		}
 	}
 	if p.loop == nil {
 		return nil // nothing is known of the bench yet
@@ -163,9 +170,19 @@ func (p *player) reading(d live.ReadingData, at reading.Stamp) error {
 	if d.Value != nil {
 		x.Value = *d.Value
 	}
-	p.latest[d.Channel] = x
+	p.latest[d.Channel], p.heard[d.Channel] = x, at.Mono
 	p.loop.Reading(x)
 	return nil
+}
+
+// heartbeatLate is how late the record of a channel that does not change may
+// come and still be believed.
+const heartbeatLate = 10 * time.Second
+
+// alive reports whether a channel's record is recent enough to stand for now:
+// whoever wrote it would have written again.
+func (p *player) alive(channel string, now time.Duration) bool {
+	return now-p.heard[channel] <= p.silent
 }
 
 // advance carries bench time on by d, in turns of the core. Between two
@@ -179,7 +196,7 @@ func (p *player) advance(d time.Duration) {
 		p.clk.Advance(min(d, playerTick))
 		now := p.clk.Now()
 		for name, r := range p.latest {
-			if now.Mono-r.Taken.Mono >= time.Second {
+			if now.Mono-r.Taken.Mono >= time.Second && p.alive(name, now.Mono) {
 				r.Taken = now
 				p.latest[name] = r
 				p.loop.Reading(r)
@@ -197,12 +214,44 @@ func (p *player) skip(d time.Duration) {
 	p.clk.Advance(d)
 	now := p.clk.Now()
 	for name, r := range p.latest {
+		if !p.alive(name, now.Mono) {
+			continue
+		}
 		r.Taken = now
 		p.latest[name] = r
 		p.loop.Reading(r)
 	}
 	p.loop.Turn()
 }
+
+// How far the clock of a screen that follows may be from the stamp of a record.
+const (
+	mayLag  = 500 * time.Millisecond
+	mayLead = 2 * time.Second
+)
+
+// meet brings the clock to the stamp of a record that comes while following:
+// what was written before this program came is caught up with, and so is what
+// bench time did between two records.
+func (p *player) meet(r logbook.Record) {
+	if p.loop == nil {
+		return
+	}
+	p.last = r.UTC
+	apart := r.UTC.Sub(p.clk.Now().UTC)
+	switch {
+	case apart > longestGap: // nobody was there meanwhile
+		p.clk.Step(apart - longestGap)
+		p.skip(longestGap)
+	case apart > mayLag:
+		p.skip(apart)
+	case apart < -mayLead:
+		p.clk.Step(apart)
+	}
+}
+
+// fastest is the speed beyond which bench time is carried on in strides.
+const fastest = 50
 
 // gap returns the bench time from the last record to r, which is none where
 // the clock went back or a new session began.

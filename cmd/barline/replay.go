@@ -280,7 +280,7 @@ func (r *replay) play(ctx context.Context) error {
 				waiting, due = &rec, min(r.player.gap(rec), longestGap)
 			}
 			step := min(stride, due)
-			if r.speed > 50 || step > 10*time.Second {
+			if r.speed > fastest || step > 10*time.Second {
 				r.player.skip(step)
 			} else {
 				r.player.advance(step)
