@@ -6,6 +6,7 @@ import (
 	"math/rand/v2"
 	"os"
 	"testing"
+	"time"
 
 	"barline/model/fibre"
 	"barline/model/unit"
@@ -26,9 +27,16 @@ func TestAgainstFullFieldRuns(t *testing.T) {
 		return n
 	}
 	var nodes []Node
+	start, usable := time.Now(), false
 	for _, k := range b.Quick(nil, span) {
 		nodes = append(nodes, compute(k))
+		var dst [MaxBranches]Point
+		if !usable && b.Build(nodes).At((low+high)/2, b.spec.Pulse.Energy, &dst) > 0 {
+			usable = true
+			t.Logf("a first answer after %d runs and %.1f s", len(nodes), time.Since(start).Seconds())
+		}
 	}
+	t.Logf("a good one after %d runs and %.1f s", len(nodes), time.Since(start).Seconds())
 	m := b.Build(nodes)
 	rng := rand.New(rand.NewPCG(1, 2))
 	sum, count := 0.0, 0

@@ -36,11 +36,14 @@ func (r *Result) judge() {
 			doubt("the emission at %v is %v", l.Centroid, region)
 		}
 	}
+	short, long := r.Grid.Wavelengths()
+	if matched := phaseMatched(&guide, p.Wavelength, r.Setup.Gas.Usable().From); matched > 0 && fibre.Wavelength(matched) < short {
+		doubt("light may be emitted near %v, where it is phase-matched, but the band begins at %v", fibre.Wavelength(matched), short)
+	}
 	if r.TimeEdge > mostTimeEdge {
 		doubt("%.2g %% of the energy reached the ends of the time window of %.0f fs: too short", 100*r.TimeEdge, r.Grid.Window().Femtoseconds())
 	}
 	if r.BandEdge > mostBandEdge {
-		short, long := r.Grid.Wavelengths()
 		doubt("%.2g %% of the energy reached the edges of the band from %v to %v: too narrow", 100*r.BandEdge, short, long)
 	}
 	if math.Abs(r.Balance) > mostMissing {

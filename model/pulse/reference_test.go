@@ -161,6 +161,7 @@ func TestBadSetups(t *testing.T) {
 			s.Pulse.Energy = 60 * unit.Microjoule
 			s.Fibre = mustFibre(t, 0.01)
 		}, "ionised"},
+		"ionises everything at once": {func(s *Setup) { s.Pulse.Energy = 0.1 }, "ionises everything"},
 	} {
 		s := good
 		c.change(&s)
@@ -177,6 +178,17 @@ func TestBadSetups(t *testing.T) {
 		if !strings.Contains(said, c.want) {
 			t.Errorf("%s: said %q, want %q in it", name, said, c.want)
 		}
+	}
+	narrow, err := NewGrid(2048, 0.24*unit.Femtosecond, 290*unit.Nanometre, 4*unit.Micrometre)
+	if err != nil {
+		t.Fatal(err)
+	}
+	r, err := good.Run(context.Background(), Options{Grid: narrow, Tolerance: 1e-3})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if said := strings.Join(r.Reasons, "\n"); r.Reliable || !strings.Contains(said, "the band begins at") {
+		t.Errorf("emission at 270 nm in a band from 290 nm: reliable %v, said %q", r.Reliable, said)
 	}
 	g, err := NewGrid(512, 0.15*unit.Femtosecond, 180*unit.Nanometre, 4*unit.Micrometre)
 	if err != nil {

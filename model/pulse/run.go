@@ -152,8 +152,17 @@ func (s Setup) run(ctx context.Context, o Options, g Grid, keen bool) (*Result, 
 		return nil, err
 	}
 	r := &Result{Setup: s, Grid: g, Tolerance: o.Tolerance, EnergyIn: unit.Joule(solver.Energy()), region: region}
+	for _, a := range m.Atoms {
+		if r.tableField == 0 || a.Rate.high < r.tableField {
+			r.tableField = a.Rate.high
+		}
+	}
 	r.PulsePower = unit.Watt(w.envelope())
 	w.look()
+	if r.tableField > 0 && w.peak > r.tableField {
+		return nil, fmt.Errorf("pulse of %v: its field of %.2g V/m ionises everything at the input, and ionisation rates end at %.2g V/m",
+			s.Pulse.Energy, w.peak, r.tableField)
+	}
 	for done := false; !done; {
 		if err := ctx.Err(); err != nil {
 			return nil, err
@@ -209,11 +218,6 @@ func (r *Result) finish(s *Solver, w *watch) error {
 	r.Steps, r.Evaluated = s.steps, s.evaluations
 	r.Evolution = w.samples
 	r.peakField = w.peak
-	for _, a := range s.medium.Atoms {
-		if r.tableField == 0 || a.Rate.high < r.tableField {
-			r.tableField = a.Rate.high
-		}
-	}
 	r.judge()
 	return nil
 }
