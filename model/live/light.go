@@ -1,6 +1,7 @@
 package live
 
 import (
+	"math"
 	"time"
 
 	"barline/model/reading"
@@ -21,8 +22,15 @@ func isLight(r reading.Role) bool {
 
 // Judge returns a reading as the bench as a whole makes it: what is read of the
 // light while the shutter is shut or the laser off is a function check, and
-// says nothing of the source. What the instrument itself found wrong stands.
+// says nothing of the source; a value that is no number is a failure. What the
+// instrument itself found wrong stands.
 func (c *Core) Judge(s *State, r reading.Reading) reading.Reading {
+	if math.IsNaN(r.Value) || math.IsInf(r.Value, 0) {
+		if r.Value = 0; r.Status != reading.Failure {
+			r.Status, r.Reason = reading.Failure, "the value is no number"
+		}
+		return r
+	}
 	if !isLight(r.Role) || !r.Status.Usable() && r.Status != reading.OutOfSpecification {
 		return r
 	}

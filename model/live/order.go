@@ -254,6 +254,9 @@ func (c *Core) orderAnswered(s *State, e Answered, fx []Effect) []Effect {
 	s.aside = aside{}
 	if e.Err != "" {
 		s.Notice = a.what + ": " + e.Err
+		if _, is := a.order.(limit.EnergyOrder); is {
+			return c.turned(s, e.Err, fx)
+		}
 		if v, _, ok := valveOf(a.order); ok && s.Mode != Held {
 			return c.hold(s, fmt.Sprintf("the %v valve did not move as it was told: %s", v, e.Err), fx)
 		}
@@ -266,7 +269,8 @@ func (c *Core) orderAnswered(s *State, e Answered, fx []Effect) []Effect {
 			s.hand[v] = byHand{}
 		}
 	case limit.EnergyOrder:
-		s.attenuated, _, _ = o.Order()
+		s.energy, _, _ = o.Order()
+		return c.turned(s, "", fx)
 	case limit.ZeroShift:
 		channel, shift, _ := o.Shift()
 		for i := range s.shifts {
@@ -290,9 +294,13 @@ func valveOf(o limit.Order) (v limit.Valve, open, ok bool) {
 // opened: whatever goes wrong with either ends in HOLD.
 func (c *Core) watchOrders(s *State, fx []Effect) []Effect {
 	now := s.Now.Mono
+	fx = c.turnAttenuator(s, fx)
 	if a := s.aside; a.command != 0 && now-a.from > c.confirm {
 		s.aside = aside{}
 		s.Notice = fmt.Sprintf("%s: not confirmed within %v", a.what, c.confirm)
+		if _, is := a.order.(limit.EnergyOrder); is {
+			return c.turned(s, s.Notice, fx)
+		}
 		if v, _, ok := valveOf(a.order); ok && s.Mode != Held {
 			return c.hold(s, fmt.Sprintf("the %v valve was not confirmed within %v", v, c.confirm), fx)
 		}

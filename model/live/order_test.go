@@ -207,8 +207,8 @@ func TestAttenuator(t *testing.T) {
 		t.Fatal(got)
 	}
 	st.confirm()
-	if st.state.attenuated != 1.3*unit.Microjoule || !strings.Contains(st.state.Notice, "done") {
-		t.Errorf("%v (%s)", st.state.attenuated, st.state.Notice)
+	if st.state.energy != 1.3*unit.Microjoule || !strings.Contains(st.state.Notice, "done") {
+		t.Errorf("%v (%s)", st.state.energy, st.state.Notice)
 	}
 	if got := st.ask(Attenuate{1.7 * unit.Microjoule}); got != "record intent" || !strings.Contains(st.state.Notice, "at most 1.6 uJ") {
 		t.Errorf("%s (%s)", got, st.state.Notice)
@@ -216,8 +216,8 @@ func TestAttenuator(t *testing.T) {
 	// Not taken: said, and no reason to stop the gas.
 	st.ask(Attenuate{1 * unit.Microjoule})
 	st.step(Answered{At: st.stamp(), Command: st.state.aside.command, Err: "no answer"})
-	if st.state.Mode != Armed || st.state.attenuated != 1.3*unit.Microjoule || !strings.Contains(st.state.Notice, "no answer") {
-		t.Errorf("%v, %v (%s)", st.state.Mode, st.state.attenuated, st.state.Notice)
+	if st.state.Mode != Armed || st.state.energy != 1.3*unit.Microjoule || !strings.Contains(st.state.Notice, "no answer") {
+		t.Errorf("%v, %v (%s)", st.state.Mode, st.state.energy, st.state.Notice)
 	}
 }
 
@@ -240,5 +240,53 @@ func TestZeroOfAGauge(t *testing.T) {
 	}
 	if got := st.ask(ZeroGauge{reading.ManifoldPressure, 1 * unit.Bar}); got != "record intent" || !strings.Contains(st.state.Notice, "no reading yet") {
 		t.Errorf("a gauge that is not there: %s (%s)", got, st.state.Notice)
+	}
+}
+
+// An energy step of a program turns the attenuator by itself; where that fails,
+// or it may not go so far, a person is asked as on a bench without one.
+func TestEnergyStepTurnsTheAttenuator(t *testing.T) {
+	st := newPanel(t, 1*unit.Bar)
+	st.obey = true
+	step := func(e unit.Joule) {
+		p := &Program{Name: "energies", Phases: []Phase{{Label: "energy", Action: SetEnergy, Energy: e, Dwell: 2 * time.Second}}}
+		if got := st.ask(Run{Program: p}); !strings.Contains(got, "record intent") || strings.Contains(st.state.Notice, "refused") {
+			t.Fatalf("%s (%s)", got, st.state.Notice)
+		}
+	}
+	begun := func() bool { return st.state.aside.command != 0 || st.state.run.asks }
+	pass := func(until func() bool) {
+		t.Helper()
+		for n := 0; !until(); n++ {
+			if n > 2000 {
+				t.Fatalf("%v (%s, %s)", st.state.Mode, st.state.Why, st.state.Notice)
+			}
+			st.run(st.mono + 50*time.Millisecond)
+		}
+	}
+	step(1 * unit.Microjoule)
+	pass(begun)
+	if _, share, ok := st.state.aside.order.(limit.EnergyOrder).Order(); !ok || share < 0.384 || share > 0.385 || st.state.run.asks {
+		t.Fatalf("share %v, valid %v", share, ok)
+	}
+	st.confirm()
+	pass(func() bool { return st.state.Mode == Steady })
+	if st.state.energy != 1*unit.Microjoule {
+		t.Errorf("energy %v", st.state.energy)
+	}
+	// It does not get there.
+	step(1.2 * unit.Microjoule)
+	pass(begun)
+	st.step(Answered{At: st.stamp(), Command: st.state.aside.command, Err: "it sticks"})
+	if !st.state.run.asks || !strings.Contains(st.state.Why, "then confirm") || !strings.Contains(st.state.Notice, "it sticks") {
+		t.Errorf("stuck: %s (%s)", st.state.Why, st.state.Notice)
+	}
+	st.ask(Confirm{})
+	pass(func() bool { return st.state.Mode == Steady })
+	// More than it may.
+	step(1.7 * unit.Microjoule)
+	pass(begun)
+	if !st.state.run.asks || st.state.aside.command != 0 {
+		t.Errorf("beyond its limit: %s", st.state.Why)
 	}
 }

@@ -159,6 +159,7 @@ type progress struct {
 	apart     mean          // Pa, cell A less cell B
 	rise      riseLog       // Isolate
 	asks      bool          // SetEnergy: a person is waited for
+	turning   bool          // SetEnergy: the attenuator is
 	halves    [2]mean       // Pa, cell A: of a Reach with a floor, before and now
 	halfFrom  time.Duration // when the present half began
 }

@@ -125,7 +125,7 @@ func (c *Core) rampOn(s *State, fx []Effect) []Effect {
 // proceed carries the program on by one tick.
 func (c *Core) proceed(s *State, fx []Effect) []Effect {
 	r := &s.run
-	if !r.active() || r.paused || r.asks {
+	if !r.active() || r.paused || r.asks || r.turning {
 		return fx
 	}
 	ph := r.phase()

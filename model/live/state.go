@@ -60,10 +60,9 @@ type State struct {
 	alarms alarm.List
 	litAt  time.Duration // when an input last said that the light came back
 
-	aside      aside
-	hand       [limit.ValveCount]byHand
-	shifts     [maxShifts]zeroed
-	attenuated unit.Joule // as the attenuator was last set; 0 before
+	aside  aside
+	hand   [limit.ValveCount]byHand
+	shifts [maxShifts]zeroed
 
 	heldByItself bool // HOLD came without being asked for
 	refused      bool // an instrument did not take the last command

@@ -195,16 +195,38 @@ func (tr *trial) Hold(command uint64, sp limit.Setpoint) {
 	tr.obey(command, func(s *seat) error { return s.in.Hold(s.line, sp) })
 }
 
-// Order implements loop.Wire; nobody asks for one here.
-func (tr *trial) Order(uint64, limit.Order) { tr.fail("an order reached the wire, and nobody asked") }
+// Order implements loop.Wire and holds the laws of what moves a valve or the
+// attenuator.
+func (tr *trial) Order(command uint64, o limit.Order) {
+	if tr.disk.lost {
+		tr.fail("%T reached the wire with the disk lost", o)
+	}
+	if tr.heldAt != 0 && tr.askedAt <= tr.heldAt {
+		tr.fail("%T reached the wire after HOLD, and nobody asked", o)
+	}
+	switch o := o.(type) {
+	case limit.EnergyOrder:
+		if e, _, ok := o.Order(); !ok || !(e > 0 && e <= tr.core.Limits().MostEnergy) {
+			tr.fail("pulse energy %v (valid %v) reached the wire", e, ok)
+		}
+	default:
+		tr.fail("%T reached the wire, and nobody asked", o)
+	}
+	tr.obeyBy(command, func(s *seat) bool { return s.in.Takes(o) }, func(s *seat) error { return s.in.Move(s.line, o) })
+}
 
 // obey lets the controller carry out a command; a faulty wire loses some.
 func (tr *trial) obey(command uint64, do func(*seat) error) {
+	tr.obeyBy(command, func(s *seat) bool { return s.in.TakesSetpoint() }, do)
+}
+
+// obeyBy lets those instruments carry out a command that takes picks.
+func (tr *trial) obeyBy(command uint64, takes func(*seat) bool, do func(*seat) error) {
 	if tr.faulty && tr.rng.IntN(12) == 0 {
 		return // lost on the way, and so is its answer
 	}
 	for _, s := range tr.seats {
-		if !s.in.TakesSetpoint() {
+		if !takes(s) {
 			continue
 		}
 		err := errors.New("no line to " + s.name)
