@@ -103,6 +103,18 @@ func (v view) enter(s *live.Snapshot) (view, []live.Intent) {
 		v.past = v.past.with(entry{tuneOverlay, text})
 		// Where tuning leads is found step by step: any pressure may come.
 		return v.careful(s, towards(s.Bench.Limits.Enforced().Lowest().Max), in)
+	case orderOverlay:
+		in, err := live.ParseOrder(text)
+		if err != nil {
+			v.message = err.Error()
+			return v, nil
+		}
+		v.past = v.past.with(entry{orderOverlay, text})
+		v = v.open(noOverlay)
+		if valve, ok := in.(live.MoveValve); ok && s.Bench != nil {
+			return v.careful(s, valve.Towards(s.Bench.Limits.Enforced().Lowest().Max), in)
+		}
+		return v, []live.Intent{in}
 	case findOverlay:
 		v.overlay, v.text, v.find, v.scroll = noOverlay, "", text, 0
 		return v, nil

@@ -46,6 +46,7 @@ var bindings = []binding{
 	{key: "t", label: "t", short: "tune", what: "tune to a wavelength", gas: true, press: pressTune},
 	{key: "p", also: []string{"x"}, label: "p x", short: "pause, end", what: "program: pause or go on, end", gas: true, press: pressProgram},
 	{key: "y", label: "y", what: "program: done what it asks for", gas: true, press: pressProgram},
+	{key: "v", label: "v", what: "valve, pulse energy, zero", gas: true, press: pressOrder},
 	{key: "m", label: "m", short: "mark", what: "mark: something happened", press: pressMark},
 	{key: "n", label: "n", short: "note", what: "note for the record", press: pressNote},
 	{key: "k", label: "k", what: "the alarm on top is seen", press: pressSeen},
@@ -177,6 +178,10 @@ func pressSetpoint(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	}
 	v = v.open(setpointOverlay)
 	return v, nil
+}
+
+func pressOrder(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
+	return v.open(orderOverlay), nil // shutting a valve wants no arming
 }
 
 func pressMark(v view, s *live.Snapshot, _ string) (view, []live.Intent) {

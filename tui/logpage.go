@@ -53,6 +53,10 @@ func drawLog(a frame.Area, s *live.Snapshot, v view) {
 		a.Text(x, 1, fmt.Sprintf("find %q: %d of %d lines, 0 shows all", v.find, len(lines), len(s.Recent)), frame.Caution)
 	}
 	rows := a.H - 2
+	if n := len(s.Fares); n > 0 && a.H >= roomForFares {
+		rows -= n + 1
+		drawFares(a.Sub(0, a.H-n-1, a.W, n+1), s.Fares)
+	}
 	newest := len(lines) - min(v.scroll, max(0, len(lines)-1))
 	if v.scroll > 0 && newest < len(lines) {
 		a.Right(a.W-1, 1, fmt.Sprintf("%d newer below, 0 goes there", len(lines)-newest), frame.Caution)
@@ -64,6 +68,41 @@ func drawLog(a frame.Area, s *live.Snapshot, v view) {
 	for i, l := range shown {
 		a.Text(1, 2+i, lineText(l, a.Style()), lineInk(l.Kind))
 	}
+}
+
+// roomForFares is how high the page must be to say how the instruments fare.
+const roomForFares = 16
+
+// drawFares says in a line each how the instruments have fared since the start.
+func drawFares(a frame.Area, fares []live.Fare) {
+	heading(a.Sub(0, 0, a.W, 1), "instruments since the start", "")
+	for i, f := range fares {
+		text, ink := fareText(f), frame.Faint
+		if f.Bad > 0 || f.Silent > 0 || f.Refused > 0 {
+			ink = frame.Caution
+		}
+		a.Text(1, 1+i, text, ink)
+	}
+}
+
+// fareText leaves out what did not happen.
+func fareText(f live.Fare) string {
+	text := fmt.Sprintf("%s: %d readings good", f.Instrument, f.Good)
+	for _, c := range []struct {
+		count uint64
+		what  string
+	}{{f.Bad, "bad"}, {f.Silent, "without an answer"}, {f.Refused, "refused"}, {f.Resynced, "asked again"}, {f.Stray, "stray bytes"}} {
+		if c.count > 0 {
+			text += fmt.Sprintf(", %d %s", c.count, c.what)
+		}
+	}
+	if f.RoundTrip > 0 {
+		text += fmt.Sprintf(", answers in %.1f ms, slowest %.1f ms", 1e3*f.RoundTrip.Seconds(), 1e3*f.Slowest.Seconds())
+	}
+	if f.Worst != "" {
+		text += "; last: " + f.Worst
+	}
+	return text
 }
 
 // lineInk tells the kinds of record apart; the kind itself stands in the line.

@@ -102,6 +102,11 @@ func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 		b := box(a, "find in the record", 64, 3, frame.Rule)
 		b.Text(0, 0, "a word; with a minus before it, lines without the word", frame.Faint)
 		input(b.Sub(0, 2, b.W, 1), v.text)
+	case orderOverlay:
+		b := box(a, "valve, pulse energy, zero of a gauge", 64, 4, frame.Caution)
+		b.Text(0, 0, `"open inlet", "shut vent", "energy 1.2 uJ",`, frame.Faint)
+		b.Text(0, 1, `"zero cell A at 1.013 bar": the pressure that it is at now`, frame.Faint)
+		input(b.Sub(0, 3, b.W, 1), v.text)
 	case greetOverlay:
 		drawGreeting(a, s)
 	case cautionOverlay:

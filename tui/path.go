@@ -71,6 +71,9 @@ func drawPath(a frame.Area, s *live.Snapshot) {
 		note += " · " + behind
 		ink = frame.Predicted
 	}
+	if air := airText(s); air != "" && fibre.W >= fibre.Width(note+" · "+air) {
+		note += " · " + air
+	}
 	fibre.Centre(0, 1, fibre.W, note, ink)
 
 	for y := 2; y < a.H-1; y++ {
@@ -81,6 +84,18 @@ func drawPath(a frame.Area, s *live.Snapshot) {
 		drawProfile(a.Sub(ax+cell, 2, bx-ax-cell, a.H-3), s)
 	}
 	drawLine(a.Sub(0, a.H-1, w, 1), s, ax, bx)
+}
+
+// noticeableAir is the residual air in the core that is worth a word: 10 ppm
+// are in ordinary pure gas.
+const noticeableAir = 20e-6
+
+// airText says how much air is left in the core.
+func airText(s *live.Snapshot) string {
+	if !s.CoreKnown || !(s.CoreAir >= noticeableAir) {
+		return ""
+	}
+	return "air " + live.AirText(s.CoreAir)
 }
 
 // noticeableLag is the lag of the core that is worth a word.

@@ -44,6 +44,7 @@ const (
 	findOverlay     // what to find in the record is being typed
 	greetOverlay    // how to begin
 	tuneOverlay     // a wavelength is being typed
+	orderOverlay    // a valve, an energy or a zero is being typed
 	cautionOverlay  // what is to be read before gas moves
 	overlayCount
 )
@@ -51,7 +52,7 @@ const (
 // typing reports whether keys are text.
 func (v view) typing() bool {
 	switch v.overlay {
-	case armOverlay, setpointOverlay, noteOverlay, runOverlay, findOverlay, tuneOverlay:
+	case armOverlay, setpointOverlay, noteOverlay, runOverlay, findOverlay, tuneOverlay, orderOverlay:
 		return true
 	}
 	return false

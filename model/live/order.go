@@ -21,6 +21,19 @@ type MoveValve struct {
 	Open  bool
 }
 
+// Towards returns the program that says where the gas may go through the open
+// valve, for its cautions: up to most, the lowest rating, or down to the room.
+func (in MoveValve) Towards(most unit.Pascal) *Program {
+	p := &Program{}
+	switch {
+	case in.Open && in.Valve == limit.Inlet:
+		p.Phases = []Phase{{Target: most}}
+	case in.Open && in.Valve == limit.Vent:
+		p.Phases = []Phase{{Target: 0}}
+	}
+	return p
+}
+
 // Attenuate asks for a pulse energy in the fibre.
 type Attenuate struct{ Energy unit.Joule }
 
@@ -138,6 +151,9 @@ func (c *Core) moveValve(s *State, in MoveValve) (limit.Order, error) {
 	}
 	if why := c.unsafe(s); why != "" {
 		return nil, errors.New(why)
+	}
+	if err := c.cautious(s, in.Towards(c.limits.Lowest().Max)); err != nil {
+		return nil, err
 	}
 	p, _ := c.pressure(s)
 	return c.limits.Open(in.Valve, c.panel(s), p)

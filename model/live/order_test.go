@@ -151,6 +151,7 @@ func TestOpenValveEndsInHold(t *testing.T) {
 	} {
 		t.Run(name, func(t *testing.T) {
 			st := newPanel(t, c.from)
+			st.ask(Understood{Venting})
 			if got := st.ask(MoveValve{c.valve, true}); !strings.Contains(got, "made true") {
 				t.Fatalf("%s (%s)", got, st.state.Notice)
 			}
@@ -190,6 +191,17 @@ func TestOrdersWantDeliberateArming(t *testing.T) {
 	}
 	if got := st.ask(MoveValve{limit.Inlet, false}); !strings.Contains(got, "valve inlet open false made true") {
 		t.Errorf("shutting wants no arming: %s (%s)", got, st.state.Notice)
+	}
+}
+
+func TestVentingByHandHasItsCaution(t *testing.T) {
+	st := newPanel(t, 8*unit.Bar)
+	if got := st.ask(MoveValve{limit.Vent, true}); got != "record intent" || !strings.Contains(st.state.Notice, "caution at venting") {
+		t.Errorf("%s (%s)", got, st.state.Notice)
+	}
+	st.ask(Understood{Venting})
+	if got := st.ask(MoveValve{limit.Vent, true}); !strings.Contains(got, "made true") {
+		t.Errorf("%s (%s)", got, st.state.Notice)
 	}
 }
 
