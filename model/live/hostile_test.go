@@ -17,12 +17,12 @@ import (
 // that differ by orders of magnitude, readings from the past, values that no
 // instrument should send.
 func TestNoReadingMakesANumberThatIsNone(t *testing.T) {
-	for seed := range uint64(3) {
+	for seed := range uint64(2) {
 		st := newGas(t)
 		rng := rand.New(rand.NewPCG(seed, 5))
 		values := []float64{0, -600, -1e5, 1e-300, 1e-3, 12, 4e4, 9e5, 1.6e6, 1e12, math.MaxFloat64, math.NaN(), math.Inf(1), math.Inf(-1), -math.MaxFloat64}
 		st.ask(Arm{})
-		for range 400 {
+		for range 150 {
 			st.mono += time.Duration(rng.IntN(400)) * time.Millisecond
 			for _, role := range []reading.Role{reading.CellAPressure, reading.CellBPressure, reading.FibreTemperature, reading.Emission, reading.PulseEnergy, reading.Setpoint, reading.VentValve, reading.InletValve, reading.Attenuator, reading.ShutterOpen, reading.Ambient} {
 				if rng.IntN(3) == 0 {
