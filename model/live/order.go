@@ -257,7 +257,7 @@ func (c *Core) sendOrder(s *State, o limit.Order, fx []Effect) []Effect {
 		channel, shift, _ := o.Shift()
 		f := float64(shift)
 		d.ZeroOf, d.ShiftPa = channel, &f
-		what = fmt.Sprintf("%+.4g mbar on the zero of %s", f/float64(unit.Millibar), channel)
+		what = fmt.Sprintf("%+.4g mbar on the zero of %s until the program ends", f/float64(unit.Millibar), channel)
 	}
 	s.aside = aside{command: s.command, from: s.Now.Mono, order: o, what: what}
 	s.Notice = what
