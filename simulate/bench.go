@@ -48,7 +48,7 @@ type Bench struct {
 	fibre      float64 // K
 	energy     float64 // J, in the fibre, this frame
 	drift      float64 // slow part of the energy, relative
-	light      *light
+	light      *Light
 	laser      laser
 	spectro    spectrometer
 	faults     faults
@@ -94,7 +94,7 @@ func New(o Options) (*Bench, error) {
 	if b.gas, err = newGasPanel(start); err != nil {
 		return nil, err
 	}
-	if b.light, err = newLight(b.truth); err != nil {
+	if b.light, err = NewLight(b.truth); err != nil {
 		return nil, fmt.Errorf("light of the simulated bench: %w", err)
 	}
 	b.controller = newController(start.P)

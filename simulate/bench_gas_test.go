@@ -4,6 +4,8 @@ import (
 	"math"
 	"testing"
 	"time"
+
+	"barline/simulate/panel"
 )
 
 // operate plays the moves of the bench's scenario as setpoints that ramp at
@@ -174,7 +176,10 @@ func TestAirMovesTheEmission(t *testing.T) {
 	}
 	pure := core
 	pure.Air = 0
-	d := (b.light.emit(core, pulseEnergy).wavelength - b.light.emit(pure, pulseEnergy).wavelength) * 1e9
+	wavelength := func(s panel.State) float64 {
+		return b.light.Emit(Conditions{Gas: s, Energy: pulseEnergy}).Wavelength
+	}
+	d := (wavelength(core) - wavelength(pure)) * 1e9
 	if math.Abs(d) < 0.005 || math.Abs(d) > 1 {
 		t.Errorf("%g of air moves the emission by %g nm", core.Air, d)
 	}

@@ -11,7 +11,7 @@ import (
 //
 //	EM 268.14 nm W 18.32 nm S 7.41 %
 //
-// wavelength and width of the emission and its share of the light. Where it
+// wavelength and width of the Emission and its share of the light. Where it
 // finds no emission it has dashes for wavelength and width, where there is no
 // light at all also for the share.
 type spectrometer struct {
@@ -51,9 +51,9 @@ func (s *spectrometer) expose(b *Bench) {
 	line := []byte("EM --- nm W --- nm S --- %\r\n")
 	if s.lit > 0 {
 		n := float64(s.lit)
-		e := b.light.emit(panel.State{P: s.gas.P / n, T: s.gas.T / n, Air: s.gas.Air / n}, s.energy/n)
-		e.strength *= n / integration
-		s.compression = e.compression
+		e := b.light.Emit(Conditions{Gas: panel.State{P: s.gas.P / n, T: s.gas.T / n, Air: s.gas.Air / n}, Energy: s.energy / n})
+		e.Strength *= n / integration
+		s.compression = e.Compression
 		line = s.line(b, e)
 	}
 	b.ports[spectrometerLine].say(b, line)
@@ -66,19 +66,19 @@ func (s *spectrometer) begin() {
 }
 
 // line writes what the detector makes of an emission.
-func (s *spectrometer) line(b *Bench, e emission) []byte {
-	strength := max(0, e.strength*(1+0.01*b.noise.normal(ofStrength, s.lines))+2e-4*b.noise.normal(ofStrength, -1-s.lines))
-	if !(strength > threshold) || e.wavelength == 0 {
+func (s *spectrometer) line(b *Bench, e Emission) []byte {
+	strength := max(0, e.Strength*(1+0.01*b.noise.normal(ofStrength, s.lines))+2e-4*b.noise.normal(ofStrength, -1-s.lines))
+	if !(strength > threshold) || e.Wavelength == 0 {
 		return share(append([]byte(nil), "EM --- nm W --- nm S "...), strength)
 	}
-	width := e.width
+	width := e.Width
 	if strength > fullScale { // the top is cut off, which widens what is left
 		width *= strength / fullScale
 		strength = fullScale
 	}
 	// The centroid is the surer the more light there is.
 	rms := 0.03e-9 * math.Sqrt(0.05/strength)
-	wavelength := e.wavelength + float64(b.truth.Wavelength) + rms*b.noise.normal(ofWavelength, s.lines)
+	wavelength := e.Wavelength + float64(b.truth.Wavelength) + rms*b.noise.normal(ofWavelength, s.lines)
 	width *= 1 + 0.01*b.noise.normal(ofWidth, s.lines)
 	line := append([]byte(nil), "EM "...)
 	line = strconv.AppendFloat(line, wavelength*1e9, 'f', 2, 64)

@@ -10,6 +10,7 @@ type Truth struct {
 	Index      unit.Fraction // refractivity above the published one by this share
 	N2         unit.Fraction // nonlinear index, likewise
 	Energy     unit.Fraction // energy in the fibre, likewise
+	Duration   unit.Fraction // of the pulse, likewise
 	Wavelength unit.Metre    // the spectrometer reads this much too long
 	ZeroA      unit.Pascal   // cell A's transducer reads this much too high
 	ZeroB      unit.Pascal
@@ -20,6 +21,9 @@ type Truth struct {
 	// 10/m the emission moves by a third of a nanometre.
 	Mismatch [4]float64
 }
+
+// DrawTruth returns what the seed hides.
+func DrawTruth(seed uint64) Truth { return drawTruth(noise(seed)) }
 
 // Standard deviations of what is drawn, of the size that a careful bench
 // would find: common practice, no source.
@@ -44,5 +48,6 @@ func drawTruth(n noise) Truth {
 	for k := range t.Mismatch {
 		t.Mismatch[k] = draw(10)
 	}
+	t.Duration = unit.Fraction(draw(0.02))
 	return t
 }
