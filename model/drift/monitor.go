@@ -76,11 +76,12 @@ const (
 	// sureShift is how many standard deviations the newest means must be away
 	// before somebody is called: correlation times learnt from half an hour
 	// are too short as often as not.
-	sureShift = 5
+	sureShift = 7
 	// Of a shut volume the first minute tells of the gas that cools after the
 	// valves closed.
 	decayAfter  = 6
-	decayFewest = 12
+	decayFewest = 18
+	leakSure    = 12 // standard deviations, for the same reason
 )
 
 // Monitor learns what is quiet at each pressure where the bench comes to rest,
@@ -399,6 +400,16 @@ func (m *Monitor) watchDecay(w Watch, x Means) {
 	}
 	if l, err := FitLine(m.decay[:k+1]); err == nil {
 		m.line = l
-		m.leaks = math.Abs(l.Slope) >= w.Matters[Decay] && l.Sure(runsAway) || m.leaks && math.Abs(l.Slope) >= w.Matters[Decay]/2
+		m.leaks = math.Abs(l.Slope) >= w.Matters[Decay] && l.Sure(leakSure) && steady(m.decay[:k+1], w.Matters[Decay]/2) ||
+			m.leaks && math.Abs(l.Slope) >= w.Matters[Decay]/2
 	}
+}
+
+// steady reports whether both halves of a stretch run the same way, each by at
+// least slope a second: a leak does, a thermometer that wanders seldom.
+func steady(samples []Sample, slope float64) bool {
+	half := len(samples) / 2
+	a, errA := FitLine(samples[:half])
+	b, errB := FitLine(samples[half:])
+	return errA == nil && errB == nil && a.Slope*b.Slope > 0 && math.Min(math.Abs(a.Slope), math.Abs(b.Slope)) >= slope
 }
