@@ -16,8 +16,9 @@
 // answer would shift all that follow; see modbus.go and scpi.go for how each
 // is kept in step. The assumption is a line that keeps the order of bytes.
 //
-// Only a limit.Setpoint that its limits made is ever sent, each is read back,
-// and none is sent twice.
+// Only a limit.Setpoint or a limit.Order that its limits made is ever sent, each
+// is read back, and none is sent twice. What moves is asked once that it
+// answers; where it has come to is for the polls to show.
 //
 // A Runner owns one line: it opens, polls, reopens, and passes results on.
 package instrument

@@ -300,7 +300,7 @@ func TestValves(t *testing.T) {
 		registers[4][0] = 1
 		return reply
 	}
-	if err := in.Move(line, limits.Close(limit.Inlet)); err == nil || !strings.Contains(err.Error(), "got 100 %") {
+	if err := in.Hold(line, limits.Freeze(0)); err == nil || !strings.Contains(err.Error(), "got 100 %") {
 		t.Errorf("a valve that sticks: %v", err)
 	}
 }

@@ -1,9 +1,9 @@
 package instrument
 
 import (
-	"errors"
 	"fmt"
 	"math"
+	"time"
 
 	"barline/device/link"
 	"barline/model/limit"
@@ -36,9 +36,10 @@ func (in *Instrument) gauge(name string) *channel {
 	return nil
 }
 
-// Move carries out an order and reads back what became of it. It refuses one
-// that no limit made. A zero goes to no wire: it is added to what the gauge
-// reads from now on, until the program ends.
+// Move carries out an order. It refuses one that no limit made. A valve or an
+// attenuator takes its time: Move reads back that it answers, and polls show
+// where it stands. A zero goes to no wire: it is added to what the gauge reads
+// from now on, until the program ends.
 func (in *Instrument) Move(line link.Line, o limit.Order) error {
 	if !in.Takes(o) {
 		return fmt.Errorf("%s does not take %s", in.spec.Name, what(o))
@@ -67,7 +68,10 @@ func (in *Instrument) Move(line link.Line, o limit.Order) error {
 	if err := in.protocol.write(line, c, c.spec.Number(share)); err != nil {
 		return fmt.Errorf("%s: %s: %w", in.spec.Name, text, err)
 	}
-	return errors.Join(in.stands(line, c, share, text), in.confirmed(line))
+	if _, err := in.protocol.back(line, c); err != nil {
+		return fmt.Errorf("%s: %s was sent, but is not read back: %w", in.spec.Name, text, err)
+	}
+	return in.confirmed(line)
 }
 
 // what says for a person what an order is about.
@@ -101,18 +105,27 @@ func opening(open bool) float64 {
 // neither open nor shut.
 const shareWithin = 0.02
 
-// stands reads back whether an actuator is where it was sent.
+// standsWithin is how long an actuator may take to get where HOLD sent it
+// before HOLD is said not to have been taken, wall time.
+const standsWithin = 300 * time.Millisecond
+
+// stands reads back, for a moment, whether an actuator is where it was sent.
 func (in *Instrument) stands(line link.Line, c *channel, share float64, text string) error {
-	back, err := in.protocol.back(line, c)
-	if err != nil {
-		return fmt.Errorf("%s: %s was sent, but is not read back: %w", in.spec.Name, text, err)
-	}
 	within := c.spec.Step
 	if within <= 0 {
 		within = shareWithin
 	}
-	if got := c.absolute(back); !(math.Abs(got-share) <= within*(1+1e-9)) {
-		return fmt.Errorf("%s: %s: expected %s read back, got %s", in.spec.Name, text, c.text(share), c.text(got))
+	for deadline := time.Now().Add(standsWithin); ; {
+		back, err := in.protocol.back(line, c)
+		if err != nil {
+			return fmt.Errorf("%s: %s was sent, but is not read back: %w", in.spec.Name, text, err)
+		}
+		got := c.absolute(back)
+		if math.Abs(got-share) <= within*(1+1e-9) {
+			return nil
+		}
+		if time.Now().After(deadline) {
+			return fmt.Errorf("%s: %s: expected %s read back, got %s", in.spec.Name, text, c.text(share), c.text(got))
+		}
 	}
-	return nil
 }

@@ -13,7 +13,7 @@ import (
 	"barline/model/unit"
 )
 
-func TestAttenuatorIsReadBack(t *testing.T) {
+func TestAttenuatorIsSentOnce(t *testing.T) {
 	registers := map[byte]map[uint16]uint16{4: {7: 1000}}
 	answer := units(t, registers)
 	line := &scripted{answer: answer}
@@ -32,13 +32,24 @@ func TestAttenuatorIsReadBack(t *testing.T) {
 	if err := in.Move(line, limit.EnergyOrder{}); !errors.Is(err, limit.ErrLimit) || registers[4][7] != 500 {
 		t.Errorf("an order that no limit made: %v, stands at %d", err, registers[4][7])
 	}
-	line.answer = func(p []byte) []byte { // it stops short of where it was sent
-		reply := answer(p)
-		registers[4][7] = 510
-		return reply
+	sent := len(line.sent)
+	line.answer = func(p []byte) []byte { // the write is taken, then nothing comes
+		if p[1] == 6 {
+			return answer(p)
+		}
+		return nil
 	}
-	if err := in.Move(line, order); err == nil || !strings.Contains(err.Error(), "expected 50 % read back, got 51 %") {
-		t.Errorf("an attenuator that stands elsewhere: %v", err)
+	if err := in.Move(line, order); err == nil || !strings.Contains(err.Error(), "not read back") {
+		t.Errorf("an attenuator that does not answer: %v", err)
+	}
+	writes := 0
+	for _, frame := range line.sent[sent:] {
+		if frame[1] == 6 {
+			writes++
+		}
+	}
+	if writes != 1 {
+		t.Errorf("sent %d times, want once", writes)
 	}
 	if in.Takes(l.Close(limit.Inlet)) || !in.Takes(order) || in.TakesHold() {
 		t.Error("takes what it has not")

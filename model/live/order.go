@@ -67,6 +67,8 @@ type aside struct {
 	from    time.Duration // bench Mono
 	order   limit.Order
 	what    string
+	taken   bool // by the instrument, at time at; it may still move
+	at      time.Duration
 }
 
 // zeroed is a gauge and what is added to its readings.
@@ -267,14 +269,23 @@ func (c *Core) sendOrder(s *State, o limit.Order, fx []Effect) []Effect {
 // orderAnswered folds the answer to the order on its way.
 func (c *Core) orderAnswered(s *State, e Answered, fx []Effect) []Effect {
 	a := s.aside
+	if _, isZero := a.order.(limit.ZeroShift); e.Err == "" && !isZero {
+		s.aside.taken, s.aside.at = true, e.At.Mono // what it reads back says when it is there
+		return fx
+	}
+	return c.orderDone(s, a, e.Err, fx)
+}
+
+// orderDone ends an order, failed or carried out.
+func (c *Core) orderDone(s *State, a aside, failed string, fx []Effect) []Effect {
 	s.aside = aside{}
-	if e.Err != "" {
-		s.Notice = a.what + ": " + e.Err
+	if failed != "" {
+		s.Notice = a.what + ": " + failed
 		if _, is := a.order.(limit.EnergyOrder); is {
-			return c.turned(s, e.Err, fx)
+			return c.turned(s, failed, fx)
 		}
 		if v, _, ok := valveOf(a.order); ok && s.Mode != Held {
-			return c.hold(s, fmt.Sprintf("the %v valve did not move as it was told: %s", v, e.Err), fx)
+			return c.hold(s, fmt.Sprintf("the %v valve did not move as it was told: %s", v, failed), fx)
 		}
 		return fx
 	}
@@ -299,6 +310,32 @@ func (c *Core) orderAnswered(s *State, e Answered, fx []Effect) []Effect {
 	return fx
 }
 
+// arrivedWithin is how far from its order an actuator may stand, as a share.
+const arrivedWithin = 0.02
+
+// arrived reports whether the actuator of an order reads back that it is there,
+// by a reading that is younger than the order.
+func (c *Core) arrived(s *State, a aside) bool {
+	role, want := reading.Attenuator, 0.0
+	switch o := a.order.(type) {
+	case limit.ValveOrder:
+		v, open, _ := o.Order()
+		role = valveRoles[v]
+		if open {
+			want = 1
+		}
+	case limit.EnergyOrder:
+		_, share, _ := o.Order()
+		want = float64(share)
+	}
+	r := s.Reading(role, c.stale)
+	within := arrivedWithin
+	if role == reading.Attenuator {
+		within *= want // of the energy asked for
+	}
+	return r.Status.Usable() && r.Taken.Mono >= a.at && math.Abs(r.Value-want) <= within
+}
+
 func valveOf(o limit.Order) (v limit.Valve, open, ok bool) {
 	if o, is := o.(limit.ValveOrder); is {
 		return o.Order()
@@ -311,14 +348,14 @@ func valveOf(o limit.Order) (v limit.Valve, open, ok bool) {
 func (c *Core) watchOrders(s *State, fx []Effect) []Effect {
 	now := s.Now.Mono
 	fx = c.turnAttenuator(s, fx)
-	if a := s.aside; a.command != 0 && now-a.from > c.confirm {
-		s.aside = aside{}
-		s.Notice = fmt.Sprintf("%s: not confirmed within %v", a.what, c.confirm)
-		if _, is := a.order.(limit.EnergyOrder); is {
-			return c.turned(s, s.Notice, fx)
-		}
-		if v, _, ok := valveOf(a.order); ok && s.Mode != Held {
-			return c.hold(s, fmt.Sprintf("the %v valve was not confirmed within %v", v, c.confirm), fx)
+	if a := s.aside; a.command != 0 {
+		switch {
+		case a.taken && c.arrived(s, a):
+			fx = c.orderDone(s, a, "", fx)
+		case now-a.from > c.confirm && a.taken:
+			fx = c.orderDone(s, a, fmt.Sprintf("not there within %v", c.confirm), fx)
+		case now-a.from > c.confirm:
+			fx = c.orderDone(s, a, fmt.Sprintf("not confirmed within %v", c.confirm), fx)
 		}
 	}
 	var open []string

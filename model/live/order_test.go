@@ -76,8 +76,19 @@ func (st *story) pass(d time.Duration, p func(time.Duration) unit.Pascal) string
 	return strings.Join(text, ", ")
 }
 
+// confirm lets the instrument take the order on its way and get there.
 func (st *story) confirm() {
-	st.step(Answered{At: st.stamp(), Command: st.state.aside.command})
+	a := st.state.aside
+	st.step(Answered{At: st.stamp(), Command: a.command})
+	switch o := a.order.(type) {
+	case limit.ValveOrder:
+		v, open, _ := o.Order()
+		st.step(st.reading(valveRoles[v].String(), valveRoles[v], opened(open), reading.Good))
+	case limit.EnergyOrder:
+		_, share, _ := o.Order()
+		st.step(st.reading("attenuator", reading.Attenuator, float64(share), reading.Good))
+	}
+	st.step(Tick{At: st.stamp()})
 }
 
 func at(p unit.Pascal) func(time.Duration) unit.Pascal {
@@ -170,7 +181,7 @@ func TestOpenValveEndsInHold(t *testing.T) {
 func TestValveThatDoesNotAnswerEndsInHold(t *testing.T) {
 	st := newPanel(t, 1*unit.Bar)
 	st.ask(MoveValve{limit.Inlet, true})
-	if got := st.pass(4*time.Second, at(1*unit.Bar)); !strings.Contains(got, "hold") || !strings.Contains(st.state.Why, "was not confirmed within 3s") {
+	if got := st.pass(4*time.Second, at(1*unit.Bar)); !strings.Contains(got, "hold") || !strings.Contains(st.state.Why, "not confirmed within 3s") {
 		t.Errorf("%s (%s)", got, st.state.Why)
 	}
 	st = newPanel(t, 1*unit.Bar)
@@ -178,6 +189,42 @@ func TestValveThatDoesNotAnswerEndsInHold(t *testing.T) {
 	st.step(Answered{At: st.stamp(), Command: st.state.aside.command, Err: "it reads back 0 %"})
 	if st.state.Mode != Held || !strings.Contains(st.state.Why, "did not move") {
 		t.Errorf("%v (%s)", st.state.Mode, st.state.Why)
+	}
+}
+
+// Taken is not there: an actuator that sticks half-way is found by what it
+// reads back, and one that takes a while is waited for.
+func TestActuatorIsThereWhenItReadsBackSo(t *testing.T) {
+	st := newPanel(t, 1*unit.Bar)
+	turn := func(share float64) {
+		st.step(st.reading("attenuator", reading.Attenuator, share, reading.Good))
+		st.step(Tick{At: st.stamp()})
+	}
+	st.ask(Attenuate{1.3 * unit.Microjoule})
+	st.step(Answered{At: st.stamp(), Command: st.state.aside.command})
+	for _, share := range []float64{0.2, 0.3, 0.45} {
+		st.mono += 500 * time.Millisecond
+		st.show(1 * unit.Bar)
+		if turn(share); st.state.aside.command == 0 {
+			t.Fatalf("at %v it counts as arrived", share)
+		}
+	}
+	st.mono += 500 * time.Millisecond
+	if turn(0.499); st.state.aside.command != 0 || st.state.energy != 1.3*unit.Microjoule {
+		t.Errorf("there, and not taken for it: %s", st.state.Notice)
+	}
+	st.ask(MoveValve{limit.Inlet, true})
+	st.step(Answered{At: st.stamp(), Command: st.state.aside.command})
+	for range 80 {
+		st.mono += 50 * time.Millisecond
+		for _, role := range []reading.Role{reading.CellAPressure, reading.CellBPressure} {
+			st.step(st.reading(role.String(), role, 1e5, reading.Good))
+		}
+		st.step(st.reading("inlet", reading.InletValve, 0.4, reading.Good))
+		st.step(Tick{At: st.stamp()})
+	}
+	if st.state.Mode != Held || !strings.Contains(st.state.Why, "not there within 3s") {
+		t.Errorf("stuck half-way: %v (%s)", st.state.Mode, st.state.Why)
 	}
 }
 
