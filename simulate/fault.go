@@ -20,6 +20,7 @@ const (
 	Warm
 	Dead
 	Garbage
+	Confused
 	Unplugged
 	Shutter
 	kindCount
@@ -34,6 +35,7 @@ var places = [kindCount][]string{
 	Warm:      {"room"},
 	Dead:      {"cell A", "cell B", "fibre", "controller", "spectrometer"},
 	Garbage:   {"gauges", "controller", "spectrometer"},
+	Confused:  {"gauges", "controller"},
 	Unplugged: {"controller", "gauges", "spectrometer"},
 	Shutter:   {"laser"},
 }
@@ -51,6 +53,7 @@ var kinds = [kindCount]struct {
 	Warm:      {"warm", 3, "the room warms; size in K an hour"},
 	Dead:      {"dead", 0, "a sensor or an instrument says nothing any more"},
 	Garbage:   {"garbage", 0.1, "noise on a line; size as the share of replies hit"},
+	Confused:  {"confused", 0.1, "replies come late or twice, behind an echo or from another unit; size as the share of replies"},
 	Unplugged: {"unplugged", 0, "a cable is pulled"},
 	Shutter:   {"shutter", 0, "the shutter is closed"},
 }
@@ -103,6 +106,7 @@ type faults struct {
 	dead      map[string]bool
 	unplugged map[string]bool
 	garbage   map[string]float64
+	confused  map[string]float64
 	zeroRate  map[string]float64 // Pa/s
 
 	sag, sagRate     float64 // share, 1/s
@@ -175,6 +179,8 @@ func (b *Bench) inject(f Fault) error {
 		mark(&s.dead, f.Where, !f.Over)
 	case Garbage:
 		mark(&s.garbage, f.Where, min(max(f.Size, 0), 1))
+	case Confused:
+		mark(&s.confused, f.Where, min(max(f.Size, 0), 1))
 	case Unplugged:
 		mark(&s.unplugged, f.Where, !f.Over)
 		if p := b.ports[f.Where]; p != nil && !f.Over {

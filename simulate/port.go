@@ -1,6 +1,10 @@
 package simulate
 
-import "time"
+import (
+	"time"
+
+	"barline/device/modbus"
+)
 
 // port is one instrument's end of its line.
 type port struct {
@@ -9,6 +13,8 @@ type port struct {
 	talk  talker
 	in    []byte        // of a request that is not whole yet
 	heard time.Duration // when the last byte of it came
+	asked []byte        // the last request, for an echo
+	late  []byte        // a reply that comes with the next one
 	out   []byte        // said, and not yet taken by the other end
 	said  int64         // replies so far
 }
@@ -60,6 +66,7 @@ func (p *port) receive(b *Bench, bytes []byte, at time.Duration) {
 	p.in = append(p.in, bytes...)
 	for {
 		rest, out := p.talk.take(b, p.in)
+		p.asked = append(p.asked[:0], p.in[:len(p.in)-len(rest)]...)
 		done := len(rest) == len(p.in)
 		p.in = rest
 		if len(out) > 0 {
@@ -77,9 +84,41 @@ func (p *port) say(b *Bench, bytes []byte) {
 	if share := b.faults.garbage[p.name]; share > 0 {
 		bytes = spoil(b.noise, p.index, p.said, share, bytes)
 	}
+	if share := b.faults.confused[p.name]; share > 0 {
+		bytes = p.confuse(b.noise, share, bytes)
+	}
 	p.out = append(p.out, bytes...)
 	if over := len(p.out) - mostUnread; over > 0 {
 		p.out = append([]byte(nil), p.out[over:]...)
+	}
+}
+
+// confuse says a share of all replies late, with the one that follows, or
+// twice, or behind an echo of the question, or under the name of another unit.
+// Each of them is whole: nothing but what was asked tells that it is wrong.
+func (p *port) confuse(n noise, share float64, bytes []byte) []byte {
+	s := ofGarbage + source(p.index)
+	out := append(p.late, bytes...)
+	p.late = nil
+	if n.uniform(s, -1-2*p.said) >= share {
+		return out
+	}
+	switch r := n.bits(s, -2-2*p.said); r % 4 {
+	case 0:
+		p.late = append([]byte(nil), bytes...)
+		return out[:len(out)-len(bytes)]
+	case 1:
+		return append(out, bytes...)
+	case 2:
+		return append(append([]byte(nil), p.asked...), out...)
+	default:
+		if reply, err := modbus.DecodeReplyRTU(bytes); err == nil {
+			reply.Unit = reply.Unit%3 + 1
+			if other, err := modbus.AppendReplyRTU(nil, reply); err == nil {
+				return append(out[:len(out)-len(bytes)], other...)
+			}
+		}
+		return append(out, bytes...)
 	}
 }
 
