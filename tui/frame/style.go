@@ -73,7 +73,7 @@ type sgr struct {
 // nearest palette colour that keeps its contrast on the background.
 var inks = [inkCount]sgr{
 	Plain:     {"", "", "", "", ""},
-	Faint:     {"", "90", "90", "38;5;247", "38;5;242"},
+	Faint:     {"", "37", "90", "38;5;247", "38;5;242"}, // 90 is the background of some dark themes
 	Rule:      {"", "90", "37", "38;5;240", "38;5;250"},
 	Strong:    {"1", "1", "1", "1", "1"},
 	Measured:  {"1", "1;97", "1;30", "1;38;5;231", "1;38;5;16"},
