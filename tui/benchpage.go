@@ -193,7 +193,7 @@ func drawPressure(a frame.Area, s *live.Snapshot, v view) {
 		blank(body, "no pressure measured yet")
 		return
 	}
-	y = y.Padded(0.08, 0.05)
+	y = y.Padded(0.08, 0.05).Rounded()
 	p := chart.New(body, chart.Axes{X: t.x(), Y: y, YTicks: chart.Ticks(y, rowTicks(body.H)), LabelWidth: yLabel})
 	if s.Target != 0 {
 		p.Level(s.Target.Bar(), frame.Target)
@@ -236,7 +236,7 @@ func drawResidual(a frame.Area, s *live.Snapshot, v view) {
 		return
 	}
 	y.Include(0)
-	y = y.Padded(0.1, 2)
+	y = y.Padded(0.1, 2).Rounded()
 	p := chart.New(body, chart.Axes{X: t.x(), Y: y, XTicks: t.ticks, YTicks: chart.Ticks(y, rowTicks(body.H)), LabelWidth: yLabel})
 	p.Level(0, frame.Predicted)
 	t.drawCursor(p)

@@ -25,8 +25,14 @@ func (v view) end(s *live.Snapshot) time.Duration {
 	return end - v.back
 }
 
+// axis returns the time axis of a chart that fills a. It moves on by whole
+// dots, so that a curve that has not changed is not drawn anew.
 func (v view) axis(s *live.Snapshot, a frame.Area) timeAxis {
 	end, span := v.end(s), v.span()
+	if dots := time.Duration(2*(a.W-yLabel-1) - 1); dots > 0 {
+		dot := span / dots
+		end = (end + dot - 1) / dot * dot
+	}
 	clock := s.Now.UTC.Add(end - s.Now.Mono).In(a.Style().Location())
 	ticks := chart.TimeTicks(end, span, v.back == 0, clock, max(1, (a.W-yLabel)/9))
 	return timeAxis{end: end, span: span, ticks: ticks, cursor: v.cursor}

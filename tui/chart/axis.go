@@ -49,6 +49,21 @@ func (r Range) Padded(share, least float64) Range {
 	return Range{r.Lo - pad, r.Hi + pad, true}
 }
 
+// Rounded returns r with its ends moved outwards to round places, some twenty
+// to its span: a chart stands still while its values move a little.
+func (r Range) Rounded() Range {
+	span := r.Hi - r.Lo
+	if !r.some || !(span > 0) || math.IsInf(span, 0) {
+		return r
+	}
+	step := roundStep(span / 20)
+	lo, hi := math.Floor(r.Lo/step)*step, math.Ceil(r.Hi/step)*step
+	if !(lo < hi) || math.IsInf(lo, 0) || math.IsInf(hi, 0) {
+		return r
+	}
+	return Range{lo, hi, true}
+}
+
 // Tick is one labelled place of an axis.
 type Tick struct {
 	At    float64

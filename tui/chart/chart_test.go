@@ -45,6 +45,26 @@ func TestTicksAreRound(t *testing.T) {
 	}
 }
 
+func TestRoundedHoldsAndStandsStill(t *testing.T) {
+	if a, b := Between(8.9712, 9.0433).Rounded(), Between(8.9718, 9.0431).Rounded(); a != b {
+		t.Errorf("two ranges a hair apart are rounded to %v and %v", a, b)
+	}
+	rapid.Check(t, func(t *rapid.T) {
+		r := Between(rapid.Float64().Draw(t, "lo"), rapid.Float64().Draw(t, "hi"))
+		got := r.Rounded()
+		if got.Empty() != r.Empty() {
+			t.Fatalf("%v is rounded to %v", r, got)
+		}
+		span := r.Hi - r.Lo
+		if hair := 1e-9 * span; got.Lo > r.Lo+hair || got.Hi < r.Hi-hair {
+			t.Fatalf("%v is rounded to %v, which does not hold it", r, got)
+		}
+		if got.Hi-got.Lo > 1.3*span && span > 1e-12*math.Abs(r.Hi) {
+			t.Fatalf("%v is rounded to %v, which is much wider", r, got)
+		}
+	})
+}
+
 func TestTicksHoldForAnyRange(t *testing.T) {
 	rapid.Check(t, func(t *rapid.T) {
 		r := Between(rapid.Float64().Draw(t, "lo"), rapid.Float64().Draw(t, "hi"))
