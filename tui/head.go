@@ -49,7 +49,11 @@ func drawTitle(a frame.Area, s *live.Snapshot, v view) {
 	}
 	clock := "--:--:--"
 	if !s.Now.UTC.IsZero() {
-		clock = s.Now.UTC.In(a.Style().Location()).Format("15:04:05 MST")
+		format := "15:04:05 MST"
+		if v.plain { // seconds alone would send the line again and again
+			format = "15:04 MST"
+		}
+		clock = s.Now.UTC.In(a.Style().Location()).Format(format)
 	}
 	right := a.Right(a.W-1, 0, clock, frame.Plain)
 	if s.ReadOnly {
@@ -59,7 +63,7 @@ func drawTitle(a frame.Area, s *live.Snapshot, v view) {
 	if a.Width(text) > right-3-x {
 		text = strings.Replace(text, " recording ·", "", 1)
 	}
-	if a.Width(text) > right-3-x {
+	if v.plain || a.Width(text) > right-3-x {
 		text = shortRecord(s)
 	}
 	a.Sub(x, 0, right-2-x, 1).Right(right-2-x, 0, text, ink)

@@ -78,6 +78,14 @@ func TestTrafficAndProcessor(t *testing.T) {
 				ring.Add(now.Now.Mono, v)
 				now.PressureA = ring.View()
 				now.Latest[reading.CellAPressure].Value = v
+				for role, noise := range map[reading.Role]float64{
+					reading.CellBPressure: 150, reading.ControllerSensor: 150, reading.FibreTemperature: 0.1,
+					reading.Emission: 0.1e-9, reading.EmissionWidth: 0.1e-9,
+				} {
+					now.Latest[role].Value += noise * float64(i%5-2)
+				}
+				now.Core = unit.Pascal(v)
+				now.Residual = unit.Metre(float64(i%9-4) * 0.1e-9)
 				src.set(&now)
 			}
 			syscall.Getrusage(syscall.RUSAGE_SELF, &after)

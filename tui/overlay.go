@@ -28,7 +28,11 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 		x = a.Text(0, 0, " Tab HOLD ", frame.Hold) + 2
 	}
 	if armed(s) {
-		at := a.Right(a.W-1, 0, "armed "+spanText(s.ArmedUntil-s.Now.Mono), frame.Caution)
+		left := s.ArmedUntil - s.Now.Mono
+		if v.plain { // the line is not sent again for each second
+			left = (left + plainStep - 1) / plainStep * plainStep
+		}
+		at := a.Right(a.W-1, 0, "armed "+spanText(left), frame.Caution)
 		a = a.Sub(0, 0, at-2, 1)
 	}
 	put := func(key, what string) {

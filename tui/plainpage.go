@@ -1,9 +1,19 @@
 package tui
 
 import (
+	"time"
+
 	"barline/model/live"
 	"barline/model/reading"
 	"barline/tui/frame"
+)
+
+const (
+	// plainLines is how much of the record stands below the values: each new
+	// line moves the others, which are then sent again.
+	plainLines = 4
+	// plainStep is how finely a screen without charts counts down.
+	plainStep = 10 * time.Second
 )
 
 // drawPlain is the pages of charts without them, one value a line: over a slow
@@ -49,5 +59,5 @@ func drawPlain(a frame.Area, s *live.Snapshot) {
 		line("residual", signed(s.Residual.Nanometres(), 1)+" nm", "measured "+minus+" predicted", frame.Measured)
 	}
 	y++
-	drawRecent(a.Sub(0, y, a.W, a.H-y), s)
+	drawRecent(a.Sub(0, y, a.W, min(a.H-y, plainLines+1)), s)
 }

@@ -46,7 +46,7 @@ const (
 	// frame must not wait for it as long as it waited to be drawn.
 	flushesPerSecond = 60
 	// plainEvery is that without charts, which is for slow lines.
-	plainEvery = 2 * time.Second
+	plainEvery = 3 * time.Second
 	// lateAfter is how long the bench may say nothing before the screen says
 	// that it is old.
 	lateAfter = 3 * time.Second
@@ -191,11 +191,15 @@ func (m *model) Update(msg tea.Msg) (tea.Model, tea.Cmd) {
 		return m, m.wait()
 	case pulse:
 		m.take()
+		was := m.v.late
 		m.v.late = 0
 		if late := time.Since(m.moved); late > lateAfter {
 			m.v.late = late
 		}
 		cmd = m.second()
+		if m.v.plain && m.v.late == was && time.Since(m.drawn) < plainEvery {
+			return m, cmd
+		}
 	case tea.KeyMsg:
 		cmd = m.key(msg)
 	case tea.MouseMsg:
