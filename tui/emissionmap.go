@@ -133,12 +133,9 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 	if s.CoreKnown {
 		p.Upright(here.X, frame.Faint)
 	}
+	cells := make(map[[2]int]ways)
 	for _, m := range s.Points {
-		mark, ink := '▲', frame.Rising
-		if !m.Rising {
-			mark, ink = '▼', frame.Falling
-		}
-		p.Mark(chart.Point{X: m.Pressure.Bar(), Y: m.Emission.Nanometres()}, mark, ink)
+		markDirection(p, chart.Point{X: m.Pressure.Bar(), Y: m.Emission.Nanometres()}, m.Rising, cells)
 	}
 	if s.CoreKnown && s.Prediction.Valid && s.Prediction.Emission != 0 {
 		p.Mark(chart.Point{X: here.X, Y: s.Prediction.Emission.Nanometres()}, '◇', frame.Predicted)
@@ -157,6 +154,36 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 	}
 	drawMapKey(p.Pane(), s)
 }
+
+// markDirection marks a measured point by the way the pressure went; where
+// points of both ways share a character cell, a cross. cells remembers them by
+// cell.
+func markDirection(p *chart.Plot, at chart.Point, rising bool, cells map[[2]int]ways) {
+	x, y := p.Cell(at)
+	w := cells[[2]int{x, y}]
+	if rising {
+		w |= up
+	} else {
+		w |= down
+	}
+	cells[[2]int{x, y}] = w
+	switch w {
+	case up:
+		p.Mark(at, '▲', frame.Rising)
+	case down:
+		p.Mark(at, '▼', frame.Falling)
+	default:
+		p.Mark(at, '×', frame.Plain)
+	}
+}
+
+// ways are the directions in which the pressure went towards points.
+type ways uint8
+
+const (
+	up ways = 1 << iota
+	down
+)
 
 // drawResonances shades the wavelengths at which the wall of the fibre
 // resonates: what is predicted near them is not guided.
@@ -207,6 +234,9 @@ func drawMapKey(a frame.Area, s *live.Snapshot) {
 	}
 	if falling {
 		lines = append(lines, entry{'▼', frame.Falling, "falling"})
+	}
+	if rising && falling {
+		lines = append(lines, entry{'×', frame.Plain, "both"})
 	}
 	if branched(s) {
 		lines = append(lines, entry{'⠒', frame.Predicted, "weaker branch"})

@@ -45,17 +45,22 @@ func pressureText(p unit.Pascal) string {
 	return fixed(p.Bar(), 3) + " bar"
 }
 
-// emissionText writes a predicted wavelength with the digits that its
-// uncertainty leaves.
+// emissionText writes a wavelength with the digits that its uncertainty leaves:
+// to the place in which that has one or two figures, at most to a hundredth of
+// a nanometre, below which it is written as that.
 func emissionText(m, sigma unit.Metre) string {
-	decimals := 1
-	if sigma.Nanometres() >= 3 {
+	s := sigma.Nanometres()
+	if !(s > 0) {
+		return fixed(m.Nanometres(), 1) + " nm"
+	}
+	decimals := 2
+	switch {
+	case s >= 3:
 		decimals = 0
+	case s >= 0.2:
+		decimals = 1
 	}
-	if !(sigma > 0) {
-		return fixed(m.Nanometres(), decimals) + " nm"
-	}
-	return fixed(m.Nanometres(), decimals) + " ± " + fixed(sigma.Nanometres(), decimals) + " nm"
+	return fixed(m.Nanometres(), decimals) + " ± " + fixed(max(s, 0.01), decimals) + " nm"
 }
 
 // spanText writes a time span in its two leading units.

@@ -182,6 +182,7 @@ func TestNumbers(t *testing.T) {
 	for _, c := range []struct{ got, want string }{
 		{pressureText(9.0034e5), "9.003 bar"}, {pressureText(0), "0.000 bar"}, {pressureText(4520), "45.2 mbar"}, {pressureText(12.5), "0.1 mbar"},
 		{emissionText(261.34e-9, 0.8e-9), "261.3 ± 0.8 nm"}, {emissionText(261.34e-9, 10e-9), "261 ± 10 nm"}, {emissionText(261.34e-9, 0), "261.3 nm"},
+		{emissionText(261.347e-9, 0.02e-9), "261.35 ± 0.02 nm"}, {emissionText(261.347e-9, 1e-13), "261.35 ± 0.01 nm"}, {emissionText(261.34e-9, 0.3e-9), "261.3 ± 0.3 nm"},
 		{signed(-0.04, 1), "0.0"}, {signed(0.05, 1), "+0.1"}, {signed(-0.8, 1), "−0.8"}, {fixed(math.NaN(), 1), "–"},
 		{spanText(130 * time.Second), "2 min 10 s"}, {spanText(2 * time.Hour), "2 h 0 min"}, {spanText(50 * time.Hour), "2 d 2 h"}, {spanText(-1), "0 s"},
 		{countText(1042), "1 042"}, {countText(7), "7"}, {countText(12345678), "12 345 678"},

@@ -113,19 +113,16 @@ func drawApart(a frame.Area, s *live.Snapshot) {
 		X: rx, Y: ry, XTicks: chart.Ticks(rx, max(2, a.W/8)), YTicks: chart.Ticks(ry, rowTicks(body.H)), LabelWidth: yLabel,
 	})
 	p.Level(0, frame.Predicted)
+	cells := make(map[[2]int]ways)
 	for _, m := range points {
-		mark, ink := '▲', frame.Rising
-		if !m.rising {
-			mark, ink = '▼', frame.Falling
-		}
-		p.Mark(chart.Point{X: m.bar, Y: m.nm}, mark, ink)
+		markDirection(p, chart.Point{X: m.bar, Y: m.nm}, m.rising, cells)
 	}
 	p.Done()
 }
 
 // drawRows lists the newest rows; each carries its units in the heading.
 func drawRows(a frame.Area, s *live.Snapshot) {
-	const format = "%4s  %8s  %9s  %12s  %13s  %9s  %4s  %s"
+	const format = "%4s  %8s  %9s  %13s  %13s  %9s  %3s  %s"
 	a.Text(1, 0, fmt.Sprintf(format, "step", "set, bar", "core, bar", "measured, nm", "predicted, nm", "apart, nm", "n", "status"), frame.Faint)
 	if len(s.Rows) == 0 {
 		blank(a, "no row yet: a scan writes one a step")

@@ -328,6 +328,15 @@ func (p *Plot) Mark(at Point, r rune, ink frame.Ink) { p.marks = append(p.marks,
 // On reports whether a place lies on the chart.
 func (p *Plot) On(at Point) bool { return p.dots != nil && p.col(at.X) >= 0 && p.row(at.Y) >= 0 }
 
+// Cell returns the column and row of the character that a place lies in, each
+// -1 where it is not on the chart.
+func (p *Plot) Cell(at Point) (x, y int) {
+	if p.dots == nil {
+		return -1, -1
+	}
+	return p.col(at.X), p.row(at.Y)
+}
+
 // Pane returns the area of the curves, for notes within it.
 func (p *Plot) Pane() frame.Area { return p.pane }
 

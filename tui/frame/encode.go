@@ -89,6 +89,8 @@ func ascii(r rune) rune {
 		return '>'
 	case '◀', '◁', '←':
 		return '<'
+	case '×':
+		return 'x'
 	case '·':
 		return '.'
 	case '°':
