@@ -17,6 +17,7 @@ type binding struct {
 	press func(v view, s *live.Snapshot, key string) (view, []live.Intent)
 
 	screen bool // concerns the screen alone
+	writes bool // asks for something that is no gas, so not for a second screen either
 	replay bool // steers a replay, and is there for nothing else
 }
 
@@ -39,7 +40,7 @@ type Steer struct {
 }
 
 var bindings = []binding{
-	{key: "tab", label: "Tab", short: "HOLD", what: "HOLD: always, without asking", press: pressHold},
+	{key: "tab", writes: true, label: "Tab", short: "HOLD", what: "HOLD: always, without asking", press: pressHold},
 	{key: "a", also: []string{"d"}, label: "a d", foot: "a", short: "arm", what: "arm: cautions first; disarm", gas: true, press: pressArm},
 	{key: "s", label: "s", short: "setpoint", what: "go to a pressure", gas: true, press: pressSetpoint},
 	{key: "r", label: "r", what: "run a scan or a procedure", gas: true, press: pressRun},
@@ -47,11 +48,11 @@ var bindings = []binding{
 	{key: "p", also: []string{"x"}, label: "p x", short: "pause, end", what: "program: pause or go on, end", gas: true, press: pressProgram},
 	{key: "y", label: "y", what: "program: done what it asks for", gas: true, press: pressProgram},
 	{key: "v", label: "v", what: "valve, pulse energy, zero", gas: true, press: pressOrder},
-	{key: "m", label: "m", short: "mark", what: "mark: something happened", press: pressMark},
-	{key: "n", label: "n", short: "note", what: "note for the record", press: pressNote},
-	{key: "k", label: "k", what: "the alarm on top is seen", press: pressSeen},
+	{key: "m", writes: true, label: "m", short: "mark", what: "mark: something happened", press: pressMark},
+	{key: "n", writes: true, label: "n", short: "note", what: "note for the record", press: pressNote},
+	{key: "k", writes: true, label: "k", what: "the alarm on top is seen", press: pressSeen},
 	{key: "l", label: "l", what: "list of alarms", press: pressAlarms},
-	{key: "w", also: []string{"e"}, label: "w e", what: "listed alarm: aside, reset", press: pressListed},
+	{key: "w", writes: true, also: []string{"e"}, label: "w e", what: "listed alarm: aside, reset", press: pressListed},
 	{key: " ", also: []string{"."}, label: "Space .", short: "pause, a second on", what: "replay: pause, one second on", replay: true, press: pressSteer},
 	{key: "<", also: []string{">"}, label: "< >", short: "a minute", what: "replay: a minute back, on", replay: true, press: pressSteer},
 	{key: "[", also: []string{"]"}, label: "[ ]", short: "speed", what: "replay: half, twice the speed", replay: true, press: pressSteer},
@@ -137,10 +138,7 @@ func contains(list []string, s string) bool {
 func pressHold(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	v = v.open(noOverlay)
 	if s.ReadOnly {
-		v.message = "this is a second screen: press HOLD at the first"
-		if s.Replay != "" {
-			v.message = elsewhere(s)
-		}
+		v.message = elsewhere(s)
 		return v, nil
 	}
 	return v, []live.Intent{live.Hold{}}
@@ -205,14 +203,22 @@ func pressNote(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 // elsewhere says why a screen that only reads does not do what was asked.
 func elsewhere(s *live.Snapshot) string {
 	if s.Replay != "" {
-		return "this is a replay: what it shows is over, nothing can be done about it"
+		return "a replay: what it shows is over"
 	}
-	return "this is a second screen: do that at the first"
+	return "second screen: do that at the first"
 }
 
 // shown reports whether the help and the footer name a key.
 func (b *binding) shown(s *live.Snapshot) bool {
-	return !(b.gas && s.ReadOnly) && (!b.replay || s.Replay != "")
+	return !((b.gas || b.writes) && s.ReadOnly) && (!b.replay || s.Replay != "")
+}
+
+// says returns what the help says of a key.
+func (b *binding) says(s *live.Snapshot) string {
+	if s.ReadOnly && (b.key == "q" || b.key == "ctrl+c") {
+		return "leave" // what somebody else holds or runs stays as it is
+	}
+	return b.what
 }
 
 func pressSteer(v view, _ *live.Snapshot, key string) (view, []live.Intent) {

@@ -27,7 +27,7 @@ func TestHelpShowsEveryKeyInFull(t *testing.T) {
 	for _, s := range []*live.Snapshot{tuitest.Calm(), tuitest.Replay()} {
 		screen := ansi.Strip(draw(s, view{overlay: helpOverlay}, minWidth, minHeight, Style{}).String())
 		for _, b := range bindings {
-			if got := strings.Contains(screen, b.label+" "+b.what); got != b.shown(s) {
+			if got := strings.Contains(screen, b.label+" "+b.says(s)+"  "); got != b.shown(s) {
 				t.Errorf("help shows %q %q: %v, expected %v:\n%s", b.label, b.what, got, b.shown(s), screen)
 			}
 		}

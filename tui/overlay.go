@@ -57,7 +57,7 @@ func drawFoot(a frame.Area, s *live.Snapshot, v view) {
 		put("1–"+strconv.Itoa(int(pageCount)), "pages") // their names stand where the alarm is
 	}
 	for _, b := range bindings[1:] {
-		if b.short == "" || !b.shown(s) || s.ReadOnly && (b.key == "m" || b.key == "n") || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
+		if b.short == "" || !b.shown(s) || (b.key == "s" || b.key == "t") && !armed(s) || b.key == "p" && s.Program.Count == 0 {
 			continue
 		}
 		put(b.footLabel(), b.short)
@@ -166,7 +166,7 @@ func drawHelp(a frame.Area, s *live.Snapshot) {
 			ink = frame.Hold
 		}
 		half.Right(7, y[side], k.label, ink)
-		half.Text(8, y[side], k.what, frame.Plain)
+		half.Text(8, y[side], k.says(s), frame.Plain)
 		y[side]++
 	}
 	for i, m := range legend {

@@ -66,7 +66,7 @@ func Run(ctx context.Context, src Source, o Options) error {
 	switch {
 	case o.Greet:
 		m.v = m.v.open(greetOverlay)
-	case m.s != nil && m.s.Simulated:
+	case m.s != nil && m.s.Simulated && !m.s.ReadOnly:
 		m.v.message = "new here? h shows how to begin"
 	}
 	options := []tea.ProgramOption{
