@@ -176,7 +176,7 @@ const (
 	// holdOfPanic is the number of the HOLD that is sent when the loop can no
 	// longer number its own.
 	holdOfPanic = ^uint64(0)
-	panicGrace  = 500 * time.Millisecond
+	panicGrace  = 2 * time.Second
 )
 
 // bell rings at the terminal, where there is one.
