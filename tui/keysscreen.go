@@ -78,7 +78,7 @@ func pressPresent(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 func pressPlain(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 	v.plain = !v.plain
 	if v.plain {
-		v.message = "no charts, a new picture every three seconds; g brings them back"
+		v.message = "no charts; g brings them back"
 	}
 	return v, nil
 }
