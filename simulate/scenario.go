@@ -24,6 +24,10 @@ type Scenario struct {
 	next  int // the first cue that has not come yet
 }
 
+// Air returns the share of air in the cells at the start, which whoever works
+// at the bench knows: they stood open, or were purged.
+func (s *Scenario) Air() unit.Fraction { return unit.Fraction(s.start.Air) }
+
 // Move is a pressure asked for at a bench time.
 type Move struct {
 	At time.Duration

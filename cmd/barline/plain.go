@@ -66,6 +66,9 @@ func statusLine(s *live.Snapshot) string {
 	value("cell A", reading.CellAPressure, 1e-5, 0, 3, "bar")
 	value("cell B", reading.CellBPressure, 1e-5, 0, 3, "bar")
 	value("fibre", reading.FibreTemperature, 1, -273.15, 2, "degC")
+	if s.CoreKnown && s.CoreAir >= 20e-6 { // more than is in pure gas
+		fmt.Fprintf(&b, "  air %s", live.AirText(s.CoreAir))
+	}
 	if p := &s.Prediction; p.Valid && p.Emission != 0 {
 		fmt.Fprintf(&b, "  predicted %.2f nm ± %.1f nm (%s)", p.Emission.Nanometres(), p.Sigma.Nanometres(), p.Answer)
 	} else if p.Why != "" {

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"bytes"
 	"context"
 	"fmt"
 	"io"
@@ -111,7 +112,10 @@ func (f simulateFlags) place(stderr io.Writer) (*place, error) {
 	if err != nil {
 		return nil, usage("--scenario: %w", err)
 	}
-	text := bench.Sample()
+	text, story := bench.Sample(), sim.Scenario()
+	if air := story.Air(); air > 0 {
+		text = bytes.Replace(text, []byte(`air = "0 ppm"`), fmt.Appendf(nil, `air = "%g %%"`, float64(air)*100), 1)
+	}
 	b, err := bench.Parse(text, "heron.toml")
 	if err != nil {
 		return nil, err
