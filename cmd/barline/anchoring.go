@@ -9,6 +9,7 @@ import (
 
 	"barline/cmd/barline/fullfield"
 	"barline/cmd/barline/loop"
+	"barline/model/calibration"
 	"barline/model/drift"
 	"barline/model/emission"
 	"barline/model/live"
@@ -20,6 +21,9 @@ import (
 type guided struct {
 	anchored *emission.Predictor // nil until enough runs stand
 	estimate *emission.Predictor
+	// corrector is the calibration in use, laid over anchored answers; nil
+	// where there is none.
+	corrector *calibration.Corrector
 }
 
 // Predict implements live.Predictor.
@@ -32,7 +36,7 @@ func (g *guided) Predict(in emission.Input, before *emission.Prediction) emissio
 	}
 	if g.anchored != nil {
 		if p := g.anchored.Predict(in, same(emission.Anchored)); p.Emission != 0 {
-			return p
+			return g.corrected(p)
 		}
 	}
 	return g.estimate.Predict(in, same(g.estimate.Setup().Answer))
@@ -115,8 +119,8 @@ func (a *anchoring) tell(e fullfield.Event) {
 				a.trouble(err)
 				return
 			}
-			a.newest.Store(&guided{p.Clone(), a.base.Clone()})
-			changed.Predictor, changed.Answer = &guided{p, a.base.Clone()}, p.Setup().Answer.String()
+			a.newest.Store(&guided{anchored: p.Clone(), estimate: a.base.Clone()})
+			changed.Predictor, changed.Answer = &guided{anchored: p, estimate: a.base.Clone()}, p.Setup().Answer.String()
 			if rms, tested := e.Map.LeftOut(); tested > 0 {
 				changed.LeftOutMetres = rms
 			}

@@ -30,6 +30,7 @@ type fitFlags struct {
 	scan             int
 	free             []string
 	dry, asJSON      bool
+	adopt            bool
 }
 
 func newFit() *cobra.Command {
@@ -44,6 +45,10 @@ temperature_degC, energy_uJ and sigma_nm; then nothing is written.
 
 Corrections that can be free: index-scale, core-diameter, wall, energy,
 nonlinear-index, gauge-zero, wavelength-offset.
+
+The calibration is kept in the logbook and as a file in its folder
+calibrations. --adopt uses it from the next start on; adopt, revert, list, show
+and compare do the rest.
 
 The anchored prediction is what is calibrated. It stands on full-field runs;
 those that are not in the cache yet are computed first, which takes minutes.`,
@@ -71,7 +76,9 @@ those that are not in the cache yet are computed first, which takes minutes.`,
 	flags.StringVar(&f.discrepancy, "discrepancy", calibration.DefaultDiscrepancy.String(), "how far the model itself may be off, whatever its corrections")
 	flags.StringVar(&f.name, "name", "", "name of the calibration; default: the scan and the date")
 	flags.BoolVar(&f.dry, "dry-run", false, "print the calibration, write nothing")
+	flags.BoolVar(&f.adopt, "adopt", false, "use the calibration from the next start on")
 	flags.BoolVar(&f.asJSON, "json", false, "print the result as one JSON object")
+	addManaging(cmd)
 	return cmd
 }
 
@@ -87,16 +94,17 @@ func (f *fitFlags) run(ctx context.Context, folder string, out, progress io.Writ
 	if err := request.Discrepancy.UnmarshalText([]byte(f.discrepancy)); err != nil || !(request.Discrepancy > 0) {
 		return usage("--discrepancy %q: expected a length above zero such as %q", f.discrepancy, "0.5 nm")
 	}
-	points, err := f.points(folder)
+	if f.adopt && (f.dry || folder == "") {
+		return usage("--adopt needs the folder of a logbook to keep the calibration in, and does not go with --dry-run")
+	}
+	points, setup, err := f.scanOf(folder)
 	if err != nil {
 		return err
 	}
-	b := points.bench
-	setup, err := emission.SetupFromBench(b)
-	if err != nil {
-		return usage("the light cannot be predicted: %w", err)
+	if err := spread(points.list); err != nil {
+		return err
 	}
-	request.Points, request.Peaks = points.list, b.Emission.Reports == "peak"
+	request.Points, request.Peaks = points.list, points.bench.Emission.Reports == "peak"
 	request.Prior = priorOf(setup.Uncertainty)
 	model, err := f.model(ctx, setup, points.list, progress)
 	if err != nil {
@@ -111,7 +119,7 @@ func (f *fitFlags) run(ctx context.Context, folder string, out, progress io.Writ
 		c.Name = fmt.Sprintf("%s, %s", points.about, c.Made.Format("2006-01-02 15:04"))
 	}
 	if folder != "" && !f.dry {
-		if err := writeCalibration(folder, c); err != nil {
+		if err := f.keep(folder, c); err != nil {
 			return err
 		}
 	}
@@ -145,19 +153,57 @@ func priorOf(u emission.Uncertainty) [calibration.ParameterCount]float64 {
 	return prior
 }
 
-// writeCalibration appends the calibration to a logbook that no program is
-// writing.
-func writeCalibration(folder string, c *calibration.Calibration) error {
-	book, err := logbook.Open(folder, logbook.Options{})
+// scanOf returns the points of a fit, and the bench that they were taken on.
+func (f *fitFlags) scanOf(folder string) (fitPoints, emission.Setup, error) {
+	points, err := f.points(folder)
+	if err != nil {
+		return points, emission.Setup{}, err
+	}
+	setup, err := emission.SetupFromBench(points.bench)
+	if err != nil {
+		return points, setup, usage("the light cannot be predicted: %w", err)
+	}
+	return points, setup, nil
+}
+
+// keep writes the calibration into a logbook that no program is writing and
+// into a file beside it, and puts it into use where that is asked for.
+func (f *fitFlags) keep(folder string, c *calibration.Calibration) error {
+	store := calibrationsOf(folder)
+	known, use, err := store.load()
 	if err != nil {
 		return err
 	}
-	_, err = book.Append(reading.Stamp{UTC: time.Now().UTC()}, string(live.KindCalibration), c)
+	for _, k := range known {
+		if k.Name == c.Name {
+			return usage("a calibration is called %q already: give this one another --name", c.Name)
+		}
+	}
+	c.Replaced = use.Name
+	book, err := logbook.Open(folder, logbook.Options{})
+	if err != nil {
+		return fmt.Errorf("%w; where a dashboard is running, calibrate on its drift page", err)
+	}
+	at := reading.Stamp{UTC: time.Now().UTC()}
+	_, err = book.Append(at, string(live.KindCalibration), live.CalibrationData{Action: "fitted", Replaces: use.Name, Calibration: c})
+	if err == nil && f.adopt {
+		_, err = book.Append(at, string(live.KindCalibration), live.CalibrationData{Action: "adopted", Replaces: use.Name, Calibration: c})
+	}
 	if closeErr := book.Close(); err == nil {
 		err = closeErr
 	}
+	if err == nil {
+		err = store.add(c)
+	}
+	if err == nil && f.adopt {
+		err = store.choose(chosen{Name: c.Name, Earlier: append(use.Earlier, use.Name)})
+	}
 	return err
 }
+
+// leastTold is the share of what is known of a correction that the points must
+// have told for it to count as seen.
+const leastTold = 0.02
 
 // printCalibration says what was found.
 func printCalibration(w io.Writer, c *calibration.Calibration) {
@@ -183,6 +229,11 @@ func printCalibration(w io.Writer, c *calibration.Calibration) {
 	for _, v := range c.Values {
 		if v.Prior > 0 && math.Abs(v.Value) > 3*v.Prior {
 			fmt.Fprintf(w, "%s is %.1f times what was thought of it: something else may be wrong\n", v.Parameter, math.Abs(v.Value)/v.Prior)
+		}
+	}
+	for _, v := range c.Values {
+		if v.Told < leastTold {
+			fmt.Fprintf(w, "%s is not seen by these points: its value is what was thought of it before\n", v.Parameter)
 		}
 	}
 	for _, a := range c.Alike {

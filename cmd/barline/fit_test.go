@@ -119,9 +119,10 @@ func TestFitFromTable(t *testing.T) {
 	}
 }
 
-func TestFitFromLogbookIsWritten(t *testing.T) {
-	points := scanPoints()
-	m := lawfulCache(t, points)
+// writeScans returns a logbook with two scans, of which the second is 0.6 % off
+// in index and misses one step.
+func writeScans(t *testing.T, m *calibration.Model, points []calibration.Point) string {
+	t.Helper()
 	dir := filepath.Join(t.TempDir(), "book")
 	book, err := logbook.Open(dir, logbook.Options{})
 	if err != nil {
@@ -148,6 +149,12 @@ func TestFitFromLogbookIsWritten(t *testing.T) {
 	if err := book.Close(); err != nil {
 		t.Fatal(err)
 	}
+	return dir
+}
+
+func TestFitFromLogbookIsWritten(t *testing.T) {
+	points := scanPoints()
+	dir := writeScans(t, lawfulCache(t, points), points)
 	code, out, stderr := command("fit", dir, "--free", "index-scale", "--discrepancy", "0.001 nm", "--name", "after cleaving")
 	if code != exitDone || !strings.Contains(out, "+0.60 %") || !strings.Contains(out, "set aside: point 5, function check") {
 		t.Errorf("exit %d: %s%s", code, out, stderr)

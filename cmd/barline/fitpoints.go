@@ -10,6 +10,7 @@ import (
 	"path/filepath"
 	"strconv"
 	"strings"
+	"time"
 
 	"barline/logbook"
 	"barline/model/bench"
@@ -84,14 +85,7 @@ func (p *fitPoints) fromLogbook(folder string, scan int) error {
 		if scan == 0 || len(scans) == scan {
 			text = inForce
 		}
-		point := calibration.Point{At: r.UTC, Input: emission.Input{
-			Pressure: unit.Pascal(s.CorePa), Temperature: unit.Kelvin(s.TemperatureK), Energy: unit.Joule(s.EnergyJ)}}
-		status, err := reading.ParseStatus(s.Status)
-		if err == nil && s.MeasuredM != nil {
-			point.Status, point.Value = status, unit.Metre(*s.MeasuredM)
-		}
-		point.Sigma = unit.Metre(math.Max(s.ScatterM/math.Sqrt(math.Max(float64(s.Samples), 1)), float64(leastSpread)))
-		scans[len(scans)-1] = append(scans[len(scans)-1], point)
+		scans[len(scans)-1] = append(scans[len(scans)-1], rowPoint(s, r.UTC))
 	}
 	if len(scans) == 0 {
 		return fmt.Errorf("%s holds no scan", folder)
@@ -115,6 +109,17 @@ func (p *fitPoints) fromLogbook(folder string, scan int) error {
 	}
 	p.bench = b
 	return nil
+}
+
+// rowPoint is the point that a row of a scan makes.
+func rowPoint(row live.StepData, at time.Time) calibration.Point {
+	point := calibration.Point{At: at, Input: emission.Input{
+		Pressure: unit.Pascal(row.CorePa), Temperature: unit.Kelvin(row.TemperatureK), Energy: unit.Joule(row.EnergyJ)}}
+	if status, err := reading.ParseStatus(row.Status); err == nil && row.MeasuredM != nil {
+		point.Status, point.Value = status, unit.Metre(*row.MeasuredM)
+	}
+	point.Sigma = unit.Metre(math.Max(row.ScatterM/math.Sqrt(math.Max(float64(row.Samples), 1)), float64(leastSpread)))
+	return point
 }
 
 // readPoints reads a table with the heading pressure_bar, emission_nm and

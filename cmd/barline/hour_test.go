@@ -12,6 +12,7 @@ import (
 	"barline/cmd/barline/loop"
 	"barline/logbook"
 	"barline/model/bench"
+	"barline/model/calibration"
 	"barline/model/clock"
 	"barline/model/emission"
 	"barline/model/limit"
@@ -69,7 +70,7 @@ func TestHourAtFullRate(t *testing.T) {
 	curve := s.predictor.Clone()
 	l := loop.New(loop.Options{
 		Bench: b, Core: s.core, State: s.state, Clock: clk, Book: lent{book}, Wire: idleWire{}, Simulated: true,
-		Curve: func(in emission.Input, dst []emission.CurvePoint) {
+		Curve: func(in emission.Input, _ *calibration.Calibration, dst []emission.CurvePoint) {
 			curve.Curve(dst, 0, s.core.Limits().Lowest().Max, in)
 		},
 	})

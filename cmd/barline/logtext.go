@@ -37,6 +37,8 @@ func recordText(r logbook.Record) string {
 		said, err = decoded[live.PredictionData](r)
 	case live.KindMeans:
 		said, err = decoded[live.MeansData](r)
+	case live.KindCalibration:
+		said, err = decoded[live.CalibrationData](r)
 	case live.KindDrift:
 		said, err = decoded[live.DriftData](r)
 	case live.KindStep:

@@ -7,6 +7,7 @@ import (
 	"barline/cmd/barline/loop"
 	"barline/logbook"
 	"barline/model/bench"
+	"barline/model/calibration"
 	"barline/model/clock"
 	"barline/model/emission"
 	"barline/model/live"
@@ -65,7 +66,7 @@ func (p *player) configure(text []byte, at time.Time) error {
 	p.silent = b.Logbook.Heartbeat.Duration() + heartbeatLate
 	p.loop = loop.New(loop.Options{
 		Bench: b, Core: s.core, State: s.state, Clock: p.clk, Book: shutBook{}, Wire: &wire{now: p.clk.Now, answer: func(uint64, error, reading.Stamp) {}},
-		Curve: func(in emission.Input, dst []emission.CurvePoint) {
+		Curve: func(in emission.Input, _ *calibration.Calibration, dst []emission.CurvePoint) {
 			curve.Curve(dst, 0, s.core.Limits().Lowest().Max, in)
 		},
 		Folder: p.folder, ReadOnly: true, Resonances: resonances(s.predictor),
@@ -132,6 +133,12 @@ func (p *player) take(r logbook.Record) error {
 		}
 		p.tell(at, d)
 		return nil
+	case live.KindCalibration:
+		var d live.CalibrationData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.tell(at, d)
 	case live.KindDrift:
 		var d live.DriftData
 		if err := r.Decode(&d); err != nil {

@@ -15,6 +15,7 @@ import (
 func newPredict() *cobra.Command {
 	var in inputs
 	var sweepText string
+	var use useCalibration
 	var asJSON, asCSV, explain bool
 	cmd := &cobra.Command{
 		Use:   "predict",
@@ -38,9 +39,17 @@ object on each line.`,
 			if run != nil {
 				name = run.name
 			}
+			if use.name != "" {
+				if err := use.check(&in); err != nil {
+					return err
+				}
+			}
 			setup, input, err := in.setup("predict", name)
 			if err != nil {
 				return err
+			}
+			if use.name != "" {
+				setup.Answer = emission.Anchored
 			}
 			inputs := []emission.Input{input}
 			if run != nil {
@@ -50,14 +59,17 @@ object on each line.`,
 			if err != nil {
 				return err
 			}
+			if err := use.over(p, &in); err != nil {
+				return err
+			}
 			out := bufio.NewWriter(cmd.OutOrStdout())
 			switch {
 			case run != nil:
-				err = predictSweep(out, p, input, run, asJSON, asCSV, explain)
+				err = predictSweep(out, p, &use, input, run, asJSON, asCSV, explain)
 			case asCSV:
 				return usage("--csv goes with --sweep")
 			default:
-				pr := p.Predict(input, nil)
+				pr := use.predict(p, input, nil)
 				if !pr.Valid {
 					return fmt.Errorf("no prediction at %v and %v: %s", input.Pressure, input.Temperature, pr.Why)
 				}
@@ -71,6 +83,7 @@ object on each line.`,
 		},
 	}
 	in.bind(cmd)
+	use.bind(cmd)
 	cmd.Flags().StringVar(&sweepText, "sweep", "", "one prediction per step: pressure=1bar:10bar:0.25bar; also temperature, energy, air")
 	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object; in a sweep one on each line")
 	cmd.Flags().BoolVar(&asCSV, "csv", false, "print a sweep as comma-separated values")

@@ -74,6 +74,9 @@ type predictedSources struct {
 	N2       string `json:"n2"`
 	Plasma   string `json:"plasma"`
 	Emission string `json:"emission"`
+	// Calibration laid over the anchored answer; Beyond: outside its data.
+	Calibration string `json:"calibration,omitempty"`
+	Beyond      bool   `json:"beyond_calibration,omitempty"`
 }
 
 type predictedLimit struct {
@@ -114,7 +117,7 @@ func predicted(p *emission.Predictor, pr emission.Prediction, explain bool) pred
 		PeakPower: number(pr.PeakPower), SolitonOrder: number(pr.SolitonOrder), DispersionLength: number(pr.DispersionLength),
 		Emission: wavelengthNM(pr.Emission), EmissionPeak: wavelengthNM(pr.Peak), Sigma: wavelengthNM(pr.Sigma), Why: pr.Why,
 		Branches: []predictedBranch{}, Limits: []predictedLimit{},
-		Sources: predictedSources{m.DensitySource().Name, m.IndexSource().Name, m.KerrSource().Name, s.Plasma.String(), pr.Answer.String()},
+		Sources: predictedSources{m.DensitySource().Name, m.IndexSource().Name, m.KerrSource().Name, s.Plasma.String(), pr.Answer.String(), pr.Calibration, pr.Beyond},
 	}
 	for _, z := range pr.ZeroDispersion[:pr.ZeroDispersionCount] {
 		o.ZeroDispersion = append(o.ZeroDispersion, number(z.Nanometres()))

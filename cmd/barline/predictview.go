@@ -17,7 +17,11 @@ import (
 func writePrediction(w io.Writer, p *emission.Predictor, pr emission.Prediction, explain bool) {
 	s, m := p.Setup(), p.Medium()
 	if pr.Emission > 0 {
-		fmt.Fprintf(w, "Emission %.1f nm, give or take %.1f nm (%s).\n\n", pr.Emission.Nanometres(), pr.Sigma.Nanometres(), pr.Answer)
+		answer := pr.Answer.String()
+		if c := calibrationText(pr); c != "" {
+			answer += ", calibration " + c
+		}
+		fmt.Fprintf(w, "Emission %.1f nm, give or take %.1f nm (%s).\n\n", pr.Emission.Nanometres(), pr.Sigma.Nanometres(), answer)
 	} else {
 		fmt.Fprintf(w, "No emission: %s (%s).\n\n", pr.Why, pr.Answer)
 	}
@@ -164,16 +168,19 @@ func answerFormula(a emission.Answer) string {
 }
 
 // predictSweep prints one prediction per step.
-func predictSweep(w io.Writer, p *emission.Predictor, in emission.Input, run *sweep, asJSON, asCSV, explain bool) error {
+func predictSweep(w io.Writer, p *emission.Predictor, use *useCalibration, in emission.Input, run *sweep, asJSON, asCSV, explain bool) error {
 	var before emission.Prediction
 	next := func(in emission.Input) emission.Prediction {
-		before = p.Predict(in, &before)
+		before = use.predict(p, in, &before)
 		return before
 	}
 	if asJSON {
 		return run.each(in, func(in emission.Input) error { return writeObject(w, predicted(p, next(in), explain)) })
 	}
 	header := []string{"pressure_bar", "temperature_K", "energy_uJ", "air_ppm", "emission_nm", "emission_sigma_nm", "zero_dispersion_nm", "beta2_fs2_m", "soliton_order", "fission_length_m", "why"}
+	if use.corrector != nil {
+		header = append(header, "calibration", "beyond_calibration")
+	}
 	cells := func(pr emission.Prediction) []string {
 		row := []string{digits(pr.Input.Pressure.Bar(), 6), digits(float64(pr.Input.Temperature), 6), digits(pr.Input.Energy.Microjoules(), 5), digits(float64(pr.Input.Air)*1e6, 4)}
 		blank := func(v float64, n int, has bool) string {
@@ -190,8 +197,12 @@ func predictSweep(w io.Writer, p *emission.Predictor, in emission.Input, run *sw
 			}
 			zero = strings.Join(list, " ")
 		}
-		return append(row, blank(pr.Emission.Nanometres(), 6, pr.Emission > 0), blank(pr.Sigma.Nanometres(), 3, pr.Emission > 0), zero,
+		row = append(row, blank(pr.Emission.Nanometres(), 6, pr.Emission > 0), blank(pr.Sigma.Nanometres(), 3, pr.Emission > 0), zero,
 			blank(pr.Beta2*1e30, 6, pr.Valid), blank(pr.SolitonOrder, 5, pr.Valid), blank(float64(pr.FissionLength), 4, pr.FissionLength > 0), pr.Why)
+		if use.corrector != nil {
+			row = append(row, pr.Calibration, strconv.FormatBool(pr.Beyond))
+		}
+		return row
 	}
 	if asCSV {
 		out := csv.NewWriter(w)
@@ -214,7 +225,7 @@ func predictSweep(w io.Writer, p *emission.Predictor, in emission.Input, run *sw
 			fmt.Fprintf(table, "%s\t-\t-\t%.1f fs2/m\t%.2f\t-\t %s\n", step, pr.Beta2*1e30, pr.SolitonOrder, pr.Why)
 			return nil
 		}
-		_, err := fmt.Fprintf(table, "%s\t%.1f nm\t%.1f nm\t%.1f fs2/m\t%.2f\t%.3g m\t\n", step, pr.Emission.Nanometres(), pr.Sigma.Nanometres(), pr.Beta2*1e30, pr.SolitonOrder, float64(pr.FissionLength))
+		_, err := fmt.Fprintf(table, "%s\t%.1f nm\t%.1f nm\t%.1f fs2/m\t%.2f\t%.3g m\t %s\n", step, pr.Emission.Nanometres(), pr.Sigma.Nanometres(), pr.Beta2*1e30, pr.SolitonOrder, float64(pr.FissionLength), beyondText(pr))
 		return err
 	})
 	flush(table)

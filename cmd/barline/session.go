@@ -19,6 +19,7 @@ import (
 	"barline/device/instrument"
 	"barline/logbook"
 	"barline/model/bench"
+	"barline/model/calibration"
 	"barline/model/clock"
 	"barline/model/emission"
 	"barline/model/live"
@@ -113,8 +114,12 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 	calls := newCaller(s.bench.Alarms.OnAlarm, s.stderr)
 	l := loop.New(loop.Options{
 		Bench: s.bench, Core: s.core, State: s.state, Clock: s.clock, Book: lent{book}, Wire: w,
-		Curve: func(in emission.Input, dst []emission.CurvePoint) {
-			newest.Load().curve(dst, s.core.Limits().Lowest().Max, in)
+		Curve: func(in emission.Input, use *calibration.Calibration, dst []emission.CurvePoint) {
+			newest.Load().with(use).curve(dst, s.core.Limits().Lowest().Max, in)
+		},
+		Keep: s.keep,
+		Fit: func(rows []live.StepData) (*calibration.Calibration, error) {
+			return s.fitRows(newest.Load(), rows, s.clock.Now().UTC)
 		},
 		Bell:       s.bell,
 		Unfinished: left,
@@ -124,6 +129,7 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		Folder:     s.folder, Simulated: s.simulated, Capture: s.capture, Resonances: resonances(s.predictor),
 	})
 	w.answer = l.Answer
+	s.recall(l)
 
 	var panicked sync.Once
 	broken = func(where string, value any, stack []byte) {

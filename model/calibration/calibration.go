@@ -1,6 +1,7 @@
 package calibration
 
 import (
+	"fmt"
 	"time"
 
 	"barline/model/emission"
@@ -111,4 +112,10 @@ func (c *Calibration) Predict(m *Model, in emission.Input, near unit.Metre) (w, 
 		}
 	}
 	return e.Wavelength + bent, unit.Metre(sqrt(variance)), nil
+}
+
+// Summary says in a line what the calibration stands on.
+func (c *Calibration) Summary() string {
+	return fmt.Sprintf("%d points from %v to %v, %.2f nm rms before and %.2f nm after",
+		c.Points, unit.Pascal(c.PressurePa[0]), unit.Pascal(c.PressurePa[1]), 1e9*c.Before, 1e9*c.After)
 }

@@ -177,6 +177,10 @@ func (c *Core) Step(s *State, e Event, fx []Effect) []Effect {
 		c.told(s, e)
 	case ModelChanged:
 		fx = c.modelChanged(s, e, fx)
+	case Fitted:
+		fx = c.fitted(s, e, fx)
+	case CalibrationsFound:
+		fx = c.found(s, e, fx)
 	default:
 		panic(fmt.Sprintf("live: unknown event %T", e))
 	}

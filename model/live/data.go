@@ -17,16 +17,17 @@ type (
 	}
 	// IntentData is an intent, and why it was refused where it was.
 	IntentData struct {
-		Intent    string   `json:"intent"`
-		TargetPa  *float64 `json:"target_Pa,omitempty"`
-		EmissionM *float64 `json:"emission_m,omitempty"`
-		Program   string   `json:"program,omitempty"`
-		Phases    int      `json:"phases,omitempty"`
-		Phase     int      `json:"phase,omitempty"` // from 1, of "begin"
-		EnergyJ   float64  `json:"energy_J,omitempty"`
-		Caution   string   `json:"caution,omitempty"`
-		Alarm     string   `json:"alarm,omitempty"`
-		Refused   string   `json:"refused,omitempty"`
+		Intent      string   `json:"intent"`
+		TargetPa    *float64 `json:"target_Pa,omitempty"`
+		EmissionM   *float64 `json:"emission_m,omitempty"`
+		Program     string   `json:"program,omitempty"`
+		Phases      int      `json:"phases,omitempty"`
+		Phase       int      `json:"phase,omitempty"` // from 1, of "begin"
+		EnergyJ     float64  `json:"energy_J,omitempty"`
+		Caution     string   `json:"caution,omitempty"`
+		Alarm       string   `json:"alarm,omitempty"`
+		Refused     string   `json:"refused,omitempty"`
+		Calibration string   `json:"calibration,omitempty"`
 		// Plan is what a "run" is to do, so that it can be gone on with.
 		Plan *Plan `json:"plan,omitempty"`
 	}

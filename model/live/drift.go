@@ -26,8 +26,10 @@ func (LearnAnew) intent() {}
 const (
 	// binEvery is how long readings are averaged before drift sees them.
 	binEvery = 10 * time.Second
-	// weighEvery is how often a drift that stands is weighed again.
-	weighEvery = 2 * time.Minute
+	// A drift that stands is weighed again after a fifth of the time that it
+	// has stood, between these.
+	weighSoonest = 2 * time.Minute
+	weighLatest  = 30 * time.Minute
 )
 
 // drifting is what is known of the drift of the light.
@@ -131,10 +133,15 @@ func (c *Core) cellTemperature(s *State) unit.Kelvin {
 	return assumedTemperature
 }
 
-// shut reports whether every valve is known to be shut.
+// shut reports whether every valve is known to be shut, and stays so: a
+// controller that keeps a setpoint opens its inlet for moments that nobody
+// sees, and a pressure that it keeps tells of no leak.
 func (c *Core) shut(s *State) bool {
-	if s.Mode == Isolated {
+	switch {
+	case s.Mode == Isolated:
 		return true
+	case s.Mode != Held && s.Setpoint != 0:
+		return false
 	}
 	for _, role := range [...]reading.Role{reading.InletValve, reading.PumpValve, reading.VentValve} {
 		const shutBelow = 0.005
@@ -211,7 +218,8 @@ func (c *Core) watching(s *State) drift.Watch {
 func (c *Core) judge(s *State, x drift.Means, fx []Effect) []Effect {
 	d := &s.drift
 	verdict := d.monitor.Add(c.watching(s), x)
-	_, _, standing := d.monitor.Standing()
+	_, since, standing := d.monitor.Standing()
+	again := min(max((s.Now.Mono-since)/5, weighSoonest), weighLatest)
 	switch {
 	case verdict == drift.Learnt, verdict == drift.Returned:
 		d.findings, d.alike, d.steps, d.seen = nil, nil, nil, nil
@@ -220,7 +228,7 @@ func (c *Core) judge(s *State, x drift.Means, fx []Effect) []Effect {
 	case verdict == drift.Drifting:
 		d.seen = nil
 		fx = c.weigh(s, verdict, fx)
-	case standing && d.monitor.Here() && s.Now.Mono-d.weighed >= weighEvery && !d.told:
+	case standing && d.monitor.Here() && s.Now.Mono-d.weighed >= again && !d.told:
 		fx = c.weigh(s, verdict, fx)
 	}
 	return fx

@@ -2,7 +2,6 @@ package live
 
 import (
 	"encoding/json"
-	"math"
 	"math/rand/v2"
 	"reflect"
 	"strings"
@@ -170,8 +169,8 @@ func TestDriftOfEnergyIsSaidWithWhatLooksTheSame(t *testing.T) {
 		t.Errorf("rings %v", w.rings)
 	}
 	for _, f := range last.Findings {
-		if f.Cause == "pulse energy" && math.Abs(f.Amount+0.10) > 0.02 {
-			t.Errorf("the energy changed by %.3f, put in -0.10", f.Amount)
+		if f.Cause == "pulse energy" && !(f.Amount < -0.06 && f.Amount > -0.12) { // weighed some minutes before the end
+			t.Errorf("the energy changed by %.3f, put in up to -0.10", f.Amount)
 		}
 	}
 	if len(last.Steps) == 0 || !last.Steps[0].ByHand {

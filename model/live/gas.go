@@ -165,6 +165,9 @@ func (c *Core) predict(s *State, fx []Effect) []Effect {
 
 // ask returns the predictor to ask in state s.
 func (c *Core) ask(s *State) Predictor {
+	if s.calibrating.laid != nil {
+		return s.calibrating.laid
+	}
 	if s.model != nil {
 		return s.model
 	}
@@ -178,6 +181,7 @@ func (c *Core) modelChanged(s *State, e ModelChanged, fx []Effect) []Effect {
 		return fx
 	}
 	s.model = e.Predictor
+	c.lay(s)
 	c.rebase(s, s.Prediction)
 	s.Prediction, s.predicted = emission.Prediction{}, 0
 	s.recorded.at = 0 // the next prediction goes into the record

@@ -159,6 +159,24 @@ func (c *Core) carryOut(s *State, in Intent, fx *[]Effect) (IntentData, error) {
 	case Note:
 		data.Intent = "note"
 		*fx = append(*fx, Record{At: s.Now, Kind: KindNote, Data: NoteData(in), Sync: true})
+	case Calibrate:
+		data.Intent = "calibrate"
+		record()
+		var err error
+		*fx, err = c.calibrate(s, *fx)
+		return data, err
+	case Adopt:
+		data.Intent, data.Calibration = "adopt", in.Name
+		record()
+		var err error
+		*fx, err = c.adopt(s, in.Name, *fx)
+		return data, err
+	case Revert:
+		data.Intent = "revert"
+		record()
+		var err error
+		*fx, err = c.revert(s, *fx)
+		return data, err
 	case LearnAnew:
 		data.Intent = "learn anew"
 		record()

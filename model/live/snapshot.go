@@ -182,7 +182,8 @@ type Snapshot struct {
 	Rows   []StepData // of the runs of steps since the start, oldest first
 	Marks  []Mark     // what happened meanwhile, oldest first
 
-	Drift DriftView
+	Calibrations Calibrations
+	Drift        DriftView
 	// DriftPoints are the group means of each observable's chart, oldest first.
 	DriftPoints [drift.ObservableCount][]drift.Point
 

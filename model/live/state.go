@@ -71,6 +71,7 @@ type State struct {
 	engaged      bool // the last command was a setpoint, and no HOLD came after it
 
 	drift             drifting
+	calibrating       calibrating
 	run               progress
 	tuning            tuning
 	energy            unit.Joule // of a pulse, as a person confirmed it; 0 before

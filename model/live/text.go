@@ -34,6 +34,9 @@ func (d IntentData) String() string {
 	if d.Alarm != "" {
 		fmt.Fprintf(&b, " %q", d.Alarm)
 	}
+	if d.Calibration != "" {
+		fmt.Fprintf(&b, " calibration %q", d.Calibration)
+	}
 	if d.Refused != "" {
 		fmt.Fprintf(&b, " refused: %s", d.Refused)
 	}
@@ -97,6 +100,12 @@ func (d PredictionData) String() string {
 	text := fmt.Sprintf("%v: %.2f nm ± %.2f nm (%s)", unit.Pascal(d.PressurePa), *d.EmissionM*1e9, d.SigmaM*1e9, d.Answer)
 	if d.Air >= 1e-6 {
 		text += ", " + AirText(unit.Fraction(d.Air)) + " of air"
+	}
+	if d.Calibration != "" {
+		text += fmt.Sprintf(", calibration %q", d.Calibration)
+	}
+	if d.Beyond {
+		text += ", beyond its data"
 	}
 	if d.ResidualM != nil {
 		text += fmt.Sprintf(", measured %.2f nm, residual %+.2f nm", *d.MeasuredM*1e9, *d.ResidualM*1e9)

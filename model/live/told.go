@@ -1,6 +1,7 @@
 package live
 
 import (
+	"slices"
 	"time"
 
 	"barline/model/drift"
@@ -20,6 +21,8 @@ type Told struct {
 
 	Means *MeansData // what ten seconds came to
 	Drift *DriftData // a verdict
+
+	Calibration *CalibrationData // what became of one
 }
 
 // When implements Event.
@@ -34,6 +37,9 @@ func (c *Core) told(s *State, e Told) {
 	}
 	if e.Means != nil {
 		s.drift.monitor.Add(c.watching(s), e.Means.Means(e.At.Mono))
+	}
+	if e.Calibration != nil {
+		s.calibrating.tell(e.Calibration)
 	}
 	if e.Drift != nil {
 		s.drift.tell(e.Drift)
@@ -59,6 +65,17 @@ func (d *drifting) tell(v *DriftData) {
 	}
 }
 
+// tell takes what another core did with a calibration. Predictions here stay
+// without: they have no nodes to lay it over.
+func (k *calibrating) tell(d *CalibrationData) {
+	if d.Calibration != nil && k.find(d.Name) == nil {
+		k.known = append(slices.Clone(k.known), d.Calibration)
+	}
+	if d.Action != "" && d.Action != "fitted" {
+		k.inUse, k.why = d.Calibration, "predictions of a second screen take no calibration"
+	}
+}
+
 // ToldBy returns what a record of a command, an intent or its completion tells
 // a core that follows; ok is false where it tells nothing.
 func ToldBy(at reading.Stamp, data any) (e Told, ok bool) {
@@ -66,6 +83,9 @@ func ToldBy(at reading.Stamp, data any) (e Told, ok bool) {
 	switch d := data.(type) {
 	case MeansData:
 		e.Means = &d
+		return e, true
+	case CalibrationData:
+		e.Calibration = &d
 		return e, true
 	case DriftData:
 		e.Drift = &d

@@ -9,12 +9,15 @@ package loop
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"runtime/debug"
+	"slices"
 	"sync/atomic"
 	"time"
 
 	"barline/model/bench"
+	"barline/model/calibration"
 	"barline/model/clock"
 	"barline/model/emission"
 	"barline/model/limit"
@@ -40,18 +43,24 @@ type Wire interface {
 	Order(command uint64, o limit.Order)
 }
 
-// Curve fills dst with predictions over pressure.
-type Curve func(in emission.Input, dst []emission.CurvePoint)
+// Curve fills dst with predictions over pressure, with the calibration in use
+// laid over; nil where there is none.
+type Curve func(in emission.Input, use *calibration.Calibration, dst []emission.CurvePoint)
 
 // Options is what a loop is made of.
 type Options struct {
-	Bench     *bench.Bench
-	Core      *live.Core
-	State     live.State
-	Clock     clock.Clock
-	Book      Book
-	Wire      Wire
-	Curve     Curve  // called on a goroutine of its own
+	Bench *bench.Bench
+	Core  *live.Core
+	State live.State
+	Clock clock.Clock
+	Book  Book
+	Wire  Wire
+	Curve Curve // called on a goroutine of its own
+	// Keep keeps calibrations where the next start finds them, and Fit fits
+	// one on rows of a scan, on a goroutine of its own; either may be nil.
+	Keep func(live.Keep) error
+	Fit  func(rows []live.StepData) (*calibration.Calibration, error)
+
 	Folder    string // where the logbook is
 	Simulated bool
 	ReadOnly  bool
@@ -85,6 +94,7 @@ type Loop struct {
 	gate    *gate
 	curve   atomic.Pointer[[]emission.CurvePoint]
 	curveIn emission.Input
+	curveOf *calibration.Calibration
 	curving atomic.Bool
 	dropped uint64
 
@@ -268,6 +278,14 @@ func (l *Loop) handle(e live.Event) {
 			if l.opt.Bell != nil {
 				l.opt.Bell()
 			}
+		case live.Fit:
+			l.fit()
+		case live.Keep:
+			if l.opt.Keep != nil {
+				if err := l.opt.Keep(f); err != nil {
+					l.Do(live.Note{Text: fmt.Sprintf("the calibration is in the record, and could not be kept beside it: %v", err)})
+				}
+			}
 		case live.Call:
 			if l.opt.Call != nil {
 				l.opt.Call(f)
@@ -296,6 +314,26 @@ func (l *Loop) record(at reading.Stamp, kind live.Kind, data any) error {
 // Model hands in a predictor that knows more than the one before, or how far
 // one has come.
 func (l *Loop) Model(e live.ModelChanged) { l.queue.push(e) }
+
+// Calibrations hands in what an earlier run has kept.
+func (l *Loop) Calibrations(e live.CalibrationsFound) { l.queue.push(e) }
+
+// fit fits the rows of now beside the loop.
+func (l *Loop) fit() {
+	answer := func(c *calibration.Calibration, err error) {
+		e := live.Fitted{At: l.opt.Clock.Now(), Calibration: c}
+		if err != nil {
+			e.Calibration, e.Err = nil, err.Error()
+		}
+		l.queue.push(e)
+	}
+	if l.opt.Fit == nil {
+		answer(nil, errors.New("this program cannot fit"))
+		return
+	}
+	rows := slices.Clone(l.history.rows)
+	go func() { answer(l.opt.Fit(rows)) }()
+}
 
 // Tell hands in what a record says that another core did.
 func (l *Loop) Tell(e live.Told) { l.queue.push(e) }

@@ -12,6 +12,7 @@ import (
 	"go.uber.org/goleak"
 
 	"barline/model/bench"
+	"barline/model/calibration"
 	"barline/model/clock"
 	"barline/model/emission"
 	"barline/model/limit"
@@ -315,7 +316,7 @@ func TestPanicBesideTheLoopIsTold(t *testing.T) {
 		tr := &trace{}
 		l := newTestLoop(t, &fakeBook{trace: tr}, tr)
 		told := make(chan string, 10)
-		l.opt.Curve = func(emission.Input, []emission.CurvePoint) { panic("out of order") }
+		l.opt.Curve = func(emission.Input, *calibration.Calibration, []emission.CurvePoint) { panic("out of order") }
 		l.opt.Broken = func(where string, value any, _ []byte) { told <- where }
 		l.gate.book = brokenBook{}
 		ctx, cancel := context.WithCancel(t.Context())

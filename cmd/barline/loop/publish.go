@@ -40,6 +40,10 @@ func (l *Loop) publish() {
 			snap.Latest[role] = s.Reading(reading.Role(role), o.Core.Stale())
 		}
 	}
+	snap.Calibrations = s.Calibrations()
+	if use := snap.Calibrations.InUse; use != nil && snap.Calibrations.Why == "" {
+		snap.CalibratedFrom, snap.CalibratedTo = unit.Pascal(use.PressurePa[0]), unit.Pascal(use.PressurePa[1])
+	}
 	l.history.groups(&snap.Drift)
 	snap.DriftPoints = l.history.charted()
 	if o.Fares != nil {
@@ -78,15 +82,16 @@ func (l *Loop) refreshCurve() {
 	same := math.Abs(float64(in.Temperature-was.Temperature)) < float64(curveTemperature) &&
 		math.Abs(float64(in.Energy-was.Energy)) < curveEnergy*float64(in.Energy) &&
 		math.Abs(float64(in.Air-was.Air)) <= curveAir
-	if same || !l.curving.CompareAndSwap(false, true) {
+	use := l.state.Calibrations().InUse
+	if same && use == l.curveOf || !l.curving.CompareAndSwap(false, true) {
 		return
 	}
-	l.curveIn = in
+	l.curveIn, l.curveOf = in, use
 	go func() {
 		defer l.curving.Store(false)
 		defer l.caught("the predicted curve")
 		points := make([]emission.CurvePoint, curvePoints)
-		l.opt.Curve(in, points)
+		l.opt.Curve(in, use, points)
 		l.curve.Store(&points)
 	}()
 }
