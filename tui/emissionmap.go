@@ -105,7 +105,7 @@ func drawMap(a frame.Area, s *live.Snapshot, near bool) {
 	at = a.Text(at, 0, "◇ ", frame.Predicted)
 	answer := "predicted"
 	if s.Prediction.Valid {
-		answer = s.Prediction.Answer.String()
+		answer = s.Prediction.Answer.String() + calibratedAt(s)
 	}
 	a.Text(at, 0, answer, frame.Predicted)
 

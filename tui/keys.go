@@ -50,8 +50,8 @@ var bindings = []binding{
 	{key: "v", label: "v", what: "valve, pulse energy, zero", gas: true, press: pressOrder},
 	{key: "m", writes: true, label: "m", short: "mark", what: "mark: something happened", press: pressMark},
 	{key: "n", writes: true, label: "n", short: "note", what: "note for the record", press: pressNote},
-	{key: "k", writes: true, label: "k", what: "the alarm on top is seen", press: pressSeen},
-	{key: "l", label: "l", what: "list of alarms", press: pressAlarms},
+	{key: "i", also: []string{"j"}, label: "i j", what: "calibrations; drift, its step", press: pressDrift},
+	{key: "k", also: []string{"l"}, label: "k l", what: "alarm on top is seen; list", press: pressTop},
 	{key: "w", writes: true, also: []string{"e"}, label: "w e", what: "listed alarm: aside, reset", press: pressListed},
 	{key: " ", also: []string{"."}, label: "Space .", short: "pause, a second on", what: "replay: pause, one second on", replay: true, press: pressSteer},
 	{key: "<", also: []string{">"}, label: "< >", short: "a minute", what: "replay: a minute back, on", replay: true, press: pressSteer},
@@ -90,6 +90,10 @@ func (v view) press(key string, s *live.Snapshot) (view, []live.Intent) {
 	switch v.overlay {
 	case cautionOverlay:
 		return pressCaution(v, s, key)
+	case calibrationOverlay:
+		return v.pressCalibration(s, key)
+	case stepOverlay:
+		return v.pressStep(s, key)
 	case leaveOverlay:
 		v.overlay = noOverlay
 		if key == "enter" {
@@ -180,6 +184,14 @@ func pressSetpoint(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 
 func pressOrder(v view, s *live.Snapshot, _ string) (view, []live.Intent) {
 	return v.open(orderOverlay), nil // shutting a valve wants no arming
+}
+
+// pressTop says that the alarm on top is seen (k), or lists alarms (l).
+func pressTop(v view, s *live.Snapshot, key string) (view, []live.Intent) {
+	if key == "l" {
+		return pressAlarms(v, s, key)
+	}
+	return pressSeen(v, s, key)
 }
 
 func pressMark(v view, s *live.Snapshot, _ string) (view, []live.Intent) {

@@ -115,6 +115,10 @@ func drawOverlay(a frame.Area, s *live.Snapshot, v view) {
 		drawGreeting(a, s)
 	case cautionOverlay:
 		drawCaution(a, v)
+	case calibrationOverlay:
+		drawCalibrations(a, s, v.pick)
+	case stepOverlay:
+		drawStepBox(a, s, v)
 	case leaveOverlay:
 		b := box(a, "leave", 50, 3, frame.Caution)
 		b.Text(0, 0, "The bench is put on HOLD and the record closed.", frame.Plain)

@@ -46,6 +46,9 @@ const (
 	tuneOverlay     // a wavelength is being typed
 	orderOverlay    // a valve, an energy or a zero is being typed
 	cautionOverlay  // what is to be read before gas moves
+
+	calibrationOverlay // the list of calibrations
+	stepOverlay        // the drift in full, and the step that would tell
 	overlayCount
 )
 
@@ -69,7 +72,13 @@ var spans = [...]time.Duration{
 const usualSpan = 2
 
 // span is the stretch that the time axes show.
-func (v view) span() time.Duration { return spans[min(max(usualSpan+v.zoom, 0), len(spans)-1)] }
+func (v view) span() time.Duration {
+	usual := usualSpan
+	if v.page == Drift { // what drifts does so over half an hour, not two minutes
+		usual += 3
+	}
+	return spans[min(max(usual+v.zoom, 0), len(spans)-1)]
+}
 
 // open shows an overlay, its form empty; noOverlay closes what is open.
 func (v view) open(o overlay) view {

@@ -40,8 +40,8 @@ func newReplay() *cobra.Command {
 pauses, . goes one second on, > and < seek a minute, ] and [ double and halve
 the speed, q leaves.
 
---check plays nothing: it derives every recorded prediction again from the
-values that it stood on, checks every recorded command against the limits, and
+--check plays nothing: it derives every recorded prediction and every verdict on
+drift again from the values that it stood on, checks every recorded command against the limits, and
 says how far they differ. Predictions agree bit for bit on the same build and
 processor, within 1e-9 elsewhere; one that leaned on full-field nodes or on a
 calibration is counted and not derived.`,
@@ -343,6 +343,8 @@ type rederived struct {
 	Differ      int     `json:"differ"`
 	NotDerived  int     `json:"not_derived"` // leaned on nodes or a calibration
 	Largest     float64 `json:"largest_relative_difference"`
+	Verdicts    int     `json:"drift_verdicts"`
+	VerdictsOff int     `json:"drift_verdicts_that_differ"`
 	Commands    int     `json:"commands"`
 	Beyond      int     `json:"commands_beyond_limits"`
 	Damaged     int     `json:"damaged_places"`
@@ -383,6 +385,12 @@ func rederive(dir string, filter logbook.Filter, out io.Writer, asJSON bool) err
 				return err
 			}
 			found.prediction(p, d)
+		case live.KindDrift:
+			var d live.DriftData
+			if err := rec.Decode(&d); err != nil {
+				return err
+			}
+			found.verdict(d)
 		case live.KindCommand:
 			var d live.CommandData
 			if err := rec.Decode(&d); err != nil {
@@ -401,15 +409,37 @@ func rederive(dir string, filter logbook.Filter, out io.Writer, asJSON bool) err
 	} else {
 		fmt.Fprintf(out, "%d predictions: %d bit for bit the same, %d within 1e-9, %d differ, %d not derived (they leaned on nodes or a calibration)\n",
 			found.Predictions, found.Exact, found.Within, found.Differ, found.NotDerived)
+		if found.Verdicts > 0 {
+			fmt.Fprintf(out, "%d verdicts on drift with causes, %d of them differ from what their numbers say\n", found.Verdicts, found.VerdictsOff)
+		}
 		fmt.Fprintf(out, "largest relative difference %.3g\n%d commands, %d beyond the limits of their bench file\n", found.Largest, found.Commands, found.Beyond)
 		if found.Damaged > 0 {
 			fmt.Fprintf(out, "%d damaged places were passed over; barline log verify names them\n", found.Damaged)
 		}
 	}
-	if found.Differ > 0 || found.Beyond > 0 {
-		return fmt.Errorf("%s: %d predictions differ and %d commands lie beyond the limits", dir, found.Differ, found.Beyond)
+	if found.Differ > 0 || found.Beyond > 0 || found.VerdictsOff > 0 {
+		return fmt.Errorf("%s: %d predictions and %d verdicts on drift differ, and %d commands lie beyond the limits", dir, found.Differ, found.VerdictsOff, found.Beyond)
 	}
 	return nil
+}
+
+// verdict finds the causes of a drift again from the numbers that the record
+// says they stood on.
+func (f *rederived) verdict(d live.DriftData) {
+	if len(d.Findings) == 0 {
+		return
+	}
+	f.Verdicts++
+	again, err := d.Again()
+	same := err == nil && len(again) == len(d.Findings)
+	for i := 0; same && i < len(again); i++ {
+		was, is := d.Findings[i], again[i]
+		same = is.Cause.Name == was.Cause && math.Abs(is.Probability-was.Probability) <= 1e-9 &&
+			math.Abs(is.Amount-was.Amount) <= 1e-9*math.Max(math.Abs(was.Amount), was.AmountSigma)
+	}
+	if !same {
+		f.VerdictsOff++
+	}
 }
 
 func (f *rederived) prediction(p *emission.Predictor, d live.PredictionData) {

@@ -87,6 +87,7 @@ func newRoot() *cobra.Command {
 	})
 	root.AddCommand(
 		newCheck(),
+		newDrift(),
 		newFit(),
 		newLog(),
 		newPorts(),

@@ -91,7 +91,7 @@ func New(b *bench.Bench, p Predictor) (*Core, State, error) {
 		ambient:      b.Panel.Ambient,
 		heartbeat:    b.Logbook.Heartbeat.Duration(),
 		wavelength:   b.Logbook.DeadbandWavelength,
-		driftOf:      watchOf(b),
+		driftOf:      WatchOf(b),
 	}
 	if err := c.limits.Check(); err != nil {
 		return nil, State{}, err

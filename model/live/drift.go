@@ -24,8 +24,8 @@ type LearnAnew struct{}
 func (LearnAnew) intent() {}
 
 const (
-	// binEvery is how long readings are averaged before drift sees them.
-	binEvery = 10 * time.Second
+	// BinEvery is how long readings are averaged before drift sees them.
+	BinEvery = 10 * time.Second
 	// A drift that stands is weighed again after a fifth of the time that it
 	// has stood, between these.
 	weighSoonest = 2 * time.Minute
@@ -60,9 +60,9 @@ type bin struct {
 	open     bool                        // a valve was open, or nothing is known of it
 }
 
-// watchOf is what the bench file asks to be watched; nothing where it says
+// WatchOf is what the bench file asks to be watched; nothing where it says
 // nothing of drift.
-func watchOf(b *bench.Bench) drift.Watch {
+func WatchOf(b *bench.Bench) drift.Watch {
 	d := b.Drift
 	w := drift.Watch{Learn: d.Learn.Duration(), FalseAlarm: d.FalseAlarm.Duration()}
 	w.Matters[drift.Wavelength] = float64(d.Wavelength)
@@ -170,7 +170,7 @@ func (c *Core) watchDrift(s *State, fx []Effect) []Effect {
 	if s.CoreKnown {
 		b.pressure.add(float64(s.Core))
 	}
-	if s.Now.Mono-b.from < binEvery {
+	if s.Now.Mono-b.from < BinEvery {
 		return fx
 	}
 	x, some := b.close(s.Now.Mono)

@@ -104,8 +104,8 @@ type (
 	}
 )
 
-// unitOf is the unit of an observable's shift.
-func unitOf(o drift.Observable) string {
+// UnitOf is the unit of an observable's shift.
+func UnitOf(o drift.Observable) string {
 	switch o {
 	case drift.Wavelength:
 		return "m"

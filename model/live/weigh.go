@@ -19,8 +19,12 @@ var unsteady = [drift.ObservableCount]float64{
 	drift.Metered: 0.005, drift.Warmth: 0.05, drift.Decay: 0.05,
 }
 
-// alikeWithin is the cosine above which two causes look the same.
-const alikeWithin = 0.98
+// roughWithin is how badly the slopes of the estimate are known, as a share of
+// what they make of an amount: they were found wrong by a third.
+const roughWithin = 0.33
+
+// AlikeWithin is the cosine above which two causes look the same.
+const AlikeWithin = 0.98
 
 // turn works out how the light answers to what may go on, at the bench of now.
 func (c *Core) turn(s *State) {
@@ -67,13 +71,16 @@ func (c *Core) driftState(s *State) drift.State {
 	}
 }
 
-// softened is an observation with what moves by itself counted in.
+// Softened is an observation with what moves by itself counted in.
 // Strength and width count only where it is known how they follow the pulse.
-func softened(o drift.Observation, known drift.Slopes) drift.Observation {
+func Softened(o drift.Observation, known drift.Slopes, rough bool) drift.Observation {
 	for k := range o.Sigma {
 		if o.Sigma[k] > 0 {
 			o.Sigma[k] = math.Hypot(o.Sigma[k], unsteady[k])
 		}
+	}
+	if rough && o.Sigma[drift.Wavelength] > 0 {
+		o.Sigma[drift.Wavelength] = math.Hypot(o.Sigma[drift.Wavelength], roughWithin*o.Shift[drift.Wavelength])
 	}
 	if known.StrengthEnergy == 0 {
 		o.Sigma[drift.Strength] = 0
@@ -90,7 +97,7 @@ func (c *Core) weigh(s *State, verdict drift.Verdict, fx []Effect) []Effect {
 	d := &s.drift
 	d.weighed = s.Now.Mono
 	d.observed = d.monitor.Observation()
-	seen := softened(d.observed, d.slopes)
+	seen := Softened(d.observed, d.slopes, d.rough)
 	findings, err := drift.Attribute(drift.Causes(d.slopes, c.driftState(s)), seen)
 	if err != nil || !d.sloped {
 		findings = nil
@@ -102,7 +109,7 @@ func (c *Core) weigh(s *State, verdict drift.Verdict, fx []Effect) []Effect {
 	}
 	d.findings, d.alike = findings, nil
 	if len(d.seen) == 0 { // a step that was taken may have told them apart
-		d.alike = drift.Alike(findings, seen, alikeWithin)
+		d.alike = drift.Alike(findings, seen, AlikeWithin)
 	}
 	d.steps = c.offers(s, findings)
 	d.text = c.sentence(s)
@@ -177,12 +184,12 @@ func (c *Core) driftData(s *State, verdict drift.Verdict) DriftData {
 	if !standing {
 		o = d.monitor.Observation()
 	}
-	weighed := softened(o, d.slopes)
+	weighed := Softened(o, d.slopes, d.rough)
 	for k := range drift.Observable(drift.ObservableCount) {
 		if o.Sigma[k] == 0 {
 			continue
 		}
-		x := ObservedData{Quantity: k.String(), Unit: unitOf(k), Shift: o.Shift[k], Sigma: o.Sigma[k], Weighed: weighed.Sigma[k]}
+		x := ObservedData{Quantity: k.String(), Unit: UnitOf(k), Shift: o.Shift[k], Sigma: o.Sigma[k], Weighed: weighed.Sigma[k]}
 		if t, ok := d.monitor.Track(k); ok {
 			x.Charted, x.Ringing = t.Charted, t.Ringing
 			x.QuietMean, x.QuietSigma, x.GroupS, x.GroupSigma = t.Quiet.Mean, t.Quiet.Sigma, t.Quiet.Group.Seconds(), t.Quiet.GroupSigma
@@ -195,7 +202,7 @@ func (c *Core) driftData(s *State, verdict drift.Verdict) DriftData {
 		state := DriftState{float64(b.Pressure), b.TwoGauges, b.EnergyMetered, b.TemperatureMetered}
 		data.Slopes, data.Rough, data.State, data.Alike = &slopes, d.rough, &state, d.alike
 		for _, f := range d.findings {
-			data.Findings = append(data.Findings, findingData(f))
+			data.Findings = append(data.Findings, FindingOf(f))
 		}
 		for _, t := range d.seen {
 			data.Seen = append(data.Seen, SeenData{t.step.Name, t.step.Effect, t.step.Doubt, t.step.Sigma, t.shown})
@@ -207,7 +214,8 @@ func (c *Core) driftData(s *State, verdict drift.Verdict) DriftData {
 	return data
 }
 
-func findingData(f drift.Finding) FindingData {
+// FindingOf is a finding as a record holds it.
+func FindingOf(f drift.Finding) FindingData {
 	data := FindingData{Cause: f.Cause.Name, Probability: f.Probability, Amount: f.Amount, AmountSigma: f.AmountSigma, Left: f.Left}
 	if f.Cause.Text != nil {
 		data.Text = f.Cause.Text(f.Amount)

@@ -436,5 +436,6 @@ func Situations() map[string]func() *live.Snapshot {
 		"calm": Calm, "filling": Filling, "stale": Stale, "lost-link": LostLink, "full-disk": FullDisk,
 		"no-emission": NoEmission, "panel": Panel, "branches": Branches, "fresh": Fresh, "alarms": Alarms,
 		"replay": Replay, "scanning": Scanning, "alarm": Alarm, "calibrated": Calibrated,
+		"drifting": Drifting, "quiet": Quiet, "learning": Learning,
 	}
 }
