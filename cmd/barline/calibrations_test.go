@@ -1,6 +1,7 @@
 package main
 
 import (
+	"math"
 	"os"
 	"path/filepath"
 	"slices"
@@ -10,13 +11,14 @@ import (
 
 	"barline/model/bench"
 	"barline/model/calibration"
+	"barline/model/live"
 )
 
 func keptAs(name string, made time.Time) *calibration.Calibration {
 	c := &calibration.Calibration{Name: name, Made: made, PressurePa: [2]float64{7e5, 11e5}, EnergyJ: [2]float64{1.3e-6, 1.3e-6}, Points: 9,
 		Values: []calibration.Value{{Parameter: "index-scale", Unit: "1", Value: 0.002, Sigma: 0.001}}}
-	for range 5 {
-		c.Covariance = append(c.Covariance, make([]float64, 5))
+	for range 1 + 6 { // of the value and of the bend
+		c.Covariance = append(c.Covariance, make([]float64, 7))
 	}
 	c.Corrections[calibration.IndexScale] = 0.002
 	return c
@@ -98,5 +100,63 @@ func TestCalibrationsAreManaged(t *testing.T) {
 	}
 	if code, out, stderr := command(append(predict, "second")...); code != exitDone || !strings.Contains(out, "beyond its data") {
 		t.Errorf("7.05 bar from data above 7.5 bar: exit %d, %q, %q", code, out, stderr)
+	}
+}
+
+// The rows of the last scan since the start become a calibration, and those of
+// an earlier one do not count.
+func TestRowsOfTheLastScanAreFitted(t *testing.T) {
+	points := scanPoints()
+	m := lawfulCache(t, points)
+	b, err := bench.Parse(bench.Sample(), "heron.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	s, err := newSession(b, bench.Sample())
+	if err != nil {
+		t.Fatal(err)
+	}
+	var rows []live.StepData
+	for _, truth := range []float64{0.02, 0.004} {
+		measure(t, m, points, calibration.Corrections{calibration.IndexScale: truth})
+		for i, p := range points {
+			v := float64(p.Value)
+			rows = append(rows, live.StepData{Program: "scan", Step: i + 1, CorePa: float64(p.Input.Pressure), TemperatureK: float64(p.Input.Temperature),
+				EnergyJ: float64(p.Input.Energy), MeasuredM: &v, Samples: 9, ScatterM: 0.05e-9, Status: "good"})
+		}
+	}
+	now := time.Date(2026, 12, 1, 12, 0, 0, 0, time.UTC)
+	g := &guided{estimate: s.predictor, anchored: cachedNodes(s.predictor)}
+	c, err := s.fitRows(g, rows, now)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if c.Points != len(points) || c.Name != "scan of 2026-12-01 12:00" || c.After > 0.05e-9 || c.Before < 0.3e-9 {
+		t.Errorf("%d points, %q, %v before, %v after", c.Points, c.Name, c.Before, c.After)
+	}
+	laid, err := g.Calibrated(c)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if p := laid.Predict(points[4].Input, nil); p.Calibration != c.Name || math.Abs(float64(p.Emission-points[4].Value)) > 0.1e-9 {
+		t.Errorf("%q puts %v to %.2f nm, measured %.2f nm", p.Calibration, points[4].Input.Pressure, p.Emission.Nanometres(), points[4].Value.Nanometres())
+	}
+	for want, try := range map[string]func() (*calibration.Calibration, error){
+		"do not stand yet":       func() (*calibration.Calibration, error) { return s.fitRows(&guided{estimate: s.predictor}, rows, now) },
+		"no scan has been taken": func() (*calibration.Calibration, error) { return s.fitRows(g, nil, now) },
+		"at least two pressures": func() (*calibration.Calibration, error) {
+			return s.fitRows(g, append(rows[:1:1], rows[0], rows[0]), now)
+		},
+		"0 of 9 points": func() (*calibration.Calibration, error) {
+			bad := append([]live.StepData(nil), rows[:9]...)
+			for i := range bad {
+				bad[i].Status = "function check"
+			}
+			return s.fitRows(g, bad, now)
+		},
+	} {
+		if _, err := try(); err == nil || !strings.Contains(err.Error(), want) {
+			t.Errorf("%v; want %q", err, want)
+		}
 	}
 }

@@ -36,12 +36,13 @@ type fitFlags struct {
 func newFit() *cobra.Command {
 	var f fitFlags
 	cmd := &cobra.Command{
-		Use:   "fit DIR",
+		Use:   "fit [DIR]",
 		Short: "Calibrate the prediction on a pressure scan",
 		Long: `Fits what is not known of the bench to the emission of a pressure scan, and
 writes the calibration into the logbook. With --csv the points come from a file
 with the columns pressure_bar and emission_nm, and as far as they are known
-temperature_degC, energy_uJ and sigma_nm; then nothing is written.
+temperature_degC, energy_uJ and sigma_nm; the calibration is then kept where the
+folder of a logbook is named too, and only printed otherwise.
 
 Corrections that can be free: index-scale, core-diameter, wall, energy,
 nonlinear-index, gauge-zero, wavelength-offset.
@@ -53,7 +54,7 @@ and compare do the rest.
 The anchored prediction is what is calibrated. It stands on full-field runs;
 those that are not in the cache yet are computed first, which takes minutes.`,
 		Args: func(cmd *cobra.Command, args []string) error {
-			if (len(args) == 1) == (f.csv != "") || len(args) > 1 {
+			if len(args) == 0 && f.csv == "" || len(args) > 1 {
 				return usage("fit takes the folder of a logbook, or --csv FILE and -b bench.toml; see barline fit -h")
 			}
 			return nil
@@ -70,7 +71,7 @@ those that are not in the cache yet are computed first, which takes minutes.`,
 	}
 	flags := cmd.Flags()
 	flags.StringVarP(&f.bench, "bench", "b", "", "bench file; default: the one in the logbook")
-	flags.StringVar(&f.csv, "csv", "", "points from this file instead of a logbook")
+	flags.StringVar(&f.csv, "csv", "", "points from this file instead of a scan of the logbook")
 	flags.IntVar(&f.scan, "scan", 0, "which scan of the logbook, from 1; 0 is the last")
 	flags.StringSliceVar(&f.free, "free", allCorrections(), "corrections to fit")
 	flags.StringVar(&f.discrepancy, "discrepancy", calibration.DefaultDiscrepancy.String(), "how far the model itself may be off, whatever its corrections")
