@@ -123,7 +123,7 @@ func Causes(s Slopes, b State) []Cause {
 			Wavelength: 1}},
 		{Name: "coating of the core", Odds: 0.5, Size: 3e-3, Text: percent("radius changed"), Effect: [ObservableCount]float64{Wavelength: s.Core, Strength: 20}},
 		{Name: "air in the gas", Odds: 0.5, Size: 0.01, Text: func(a float64) string { return fmt.Sprintf("%+.2f %% of it", 100*a) }, Effect: [ObservableCount]float64{Wavelength: s.Air}},
-		{Name: "slow leak", Odds: 0.5, Size: 5, Text: func(a float64) string { return fmt.Sprintf("of %.3g mbar/min", -a*0.6) }, Effect: [ObservableCount]float64{Decay: 1}},
+		{Name: "slow leak", Odds: 0.5, Size: 20, Text: func(a float64) string { return fmt.Sprintf("of %.3g mbar/min", -a*0.6) }, Effect: [ObservableCount]float64{Decay: 1}},
 	}
 	if b.TwoGauges {
 		causes = append(causes,

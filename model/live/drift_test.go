@@ -33,6 +33,8 @@ type watchedBench struct {
 	rings   []string
 	off     map[reading.Role]float64
 	shutter bool
+
+	valvesShut bool
 }
 
 func newWatched(t *testing.T, seed uint64) *watchedBench {
@@ -77,6 +79,9 @@ func (w *watchedBench) live(d time.Duration, each func(since time.Duration)) {
 			{"setpoint", reading.Setpoint, 9e5, 0}, {"inlet", reading.InletValve, 0.2, 0.01},
 			{"emission", reading.Emission, 272e-9, 0.1e-9}, {"strength", reading.EmissionStrength, 0.06, 6e-4}, {"width", reading.EmissionWidth, 14e-9, 0.1e-9},
 		} {
+			if r.role == reading.InletValve && w.valvesShut {
+				r.value, r.sigma = 0, 0
+			}
 			status := reading.Good
 			v := r.value + w.off[r.role] + r.sigma*w.rng.NormFloat64()
 			if w.shutter && (r.role == reading.Emission || r.role == reading.EmissionWidth) {
@@ -233,4 +238,26 @@ func TestLearnAnewTakesWhatIsAsGood(t *testing.T) {
 			t.Error("it still rings")
 		}
 	}
+}
+
+// While gas leaks the light moves with the pressure, and that is no second
+// cause.
+func TestALeakStaysALeakWhileTheLightFollows(t *testing.T) {
+	w := newWatched(t, 6)
+	w.live(2*time.Second, nil)
+	w.valvesShut = true
+	w.live(20*time.Minute, func(since time.Duration) {
+		fallen := -35 * since.Seconds()
+		w.off[reading.CellAPressure], w.off[reading.CellBPressure] = fallen, fallen
+		w.off[reading.Emission], w.off[reading.EmissionStrength] = 9e-14*fallen, 2e-7*fallen
+	})
+	if len(w.rings) != 1 || w.rings[0] != alarmLeak {
+		t.Errorf("rings %v", w.rings)
+	}
+	for _, d := range w.verdicts() {
+		if len(d.Findings) > 0 && (d.Findings[0].Cause != "slow leak" || d.Findings[0].Probability < 0.9) {
+			t.Errorf("says %s", d.Text)
+		}
+	}
+	w.rederive(w.verdicts())
 }

@@ -95,8 +95,19 @@ func Softened(o drift.Observation, known drift.Slopes, rough bool) drift.Observa
 // and writes it down.
 func (c *Core) weigh(s *State, verdict drift.Verdict, fx []Effect) []Effect {
 	d := &s.drift
-	d.weighed = s.Now.Mono
 	d.observed = d.monitor.Observation()
+	by, _, _ := d.monitor.Standing()
+	if by == drift.Decay && verdict == drift.NoChange && d.observed.Sigma[drift.Disagreement]+d.observed.Sigma[drift.Warmth] == 0 {
+		return fx // the pressure has just reached another place: too little is seen there yet
+	}
+	d.weighed = s.Now.Mono
+	if by == drift.Decay {
+		// A pressure that falls takes the light along: only what does not
+		// follow from that says anything.
+		for _, o := range [...]drift.Observable{drift.Wavelength, drift.Strength, drift.Width} {
+			d.observed.Sigma[o] = 0
+		}
+	}
 	seen := Softened(d.observed, d.slopes, d.rough)
 	findings, err := drift.Attribute(drift.Causes(d.slopes, c.driftState(s)), seen)
 	if err != nil || !d.sloped {
