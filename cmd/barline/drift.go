@@ -141,7 +141,8 @@ func (r *resting) newest() stretch {
 }
 
 // lastGood is the stretch from where a quiet stretch was learnt last, ten
-// minutes before it was, to the drift that came after it.
+// minutes before it was, to the drift that came after it, and at the latest to
+// where the judged stretch begins.
 func (r *resting) lastGood(before time.Time) (s stretch, ok bool) {
 	for i, d := range r.verdicts {
 		if r.when[i].After(before) {
@@ -150,11 +151,13 @@ func (r *resting) lastGood(before time.Time) (s stretch, ok bool) {
 		switch {
 		case d.Verdict == drift.Learnt.String():
 			s, ok = stretch{r.when[i].Add(-10 * time.Minute), time.Time{}}, true
-		case d.Verdict == drift.Drifting.String() && ok && s.to.IsZero() && d.Since != nil:
-			s.to = *d.Since
+		case ok && s.to.IsZero() && d.Since != nil: // it may have stood since before
+			if s.to = *d.Since; !s.to.After(s.from) {
+				s.to = s.from.Add(10 * time.Minute)
+			}
 		}
 	}
-	if ok && s.to.IsZero() {
+	if ok && (s.to.IsZero() || s.to.After(before)) {
 		s.to = before
 	}
 	return s, ok && s.to.After(s.from)
@@ -237,7 +240,7 @@ func (f *driftFlags) run(folder string, w io.Writer) error {
 	}
 	if good == (stretch{}) {
 		var ok bool
-		if good, ok = r.lastGood(over.to); !ok {
+		if good, ok = r.lastGood(over.from); !ok {
 			return fmt.Errorf("%s holds no quiet stretch yet: it takes ten minutes at one pressure; --good names one", folder)
 		}
 	}
@@ -286,9 +289,6 @@ func (r *resting) compare(b *bench.Bench, good, over stretch) (*comparison, erro
 	if len(c.Moved) == 0 {
 		return nil, fmt.Errorf("the good stretch, %s to %s, has nothing at rest near %v: compare at one pressure", good.from.Format(time.RFC3339), good.to.Format(time.RFC3339), now)
 	}
-	if !c.Matters {
-		return c, nil
-	}
 	return c, c.weigh(b, r, over, now, o)
 }
 
@@ -312,6 +312,14 @@ func (c *comparison) weigh(b *bench.Bench, r *resting, over stretch, now unit.Pa
 		return nil // without a prediction there is nothing to explain it by
 	}
 	slopes, rough := g.Slopes(p)
+	least := float64(b.Drift.Wavelength)
+	for k, turn := range map[drift.Observable]float64{drift.Warmth: slopes.Temperature, drift.Metered: slopes.Energy} {
+		// What the prediction takes into account matters by what it does to the light.
+		c.Matters = c.Matters || least > 0 && math.Abs(o.Shift[k]*turn) >= least && math.Abs(o.Shift[k]) > 3*o.Sigma[k]
+	}
+	if !c.Matters {
+		return nil
+	}
 	seen := live.Softened(o, slopes, rough)
 	findings, err := drift.Attribute(drift.Causes(slopes, state), seen)
 	if err != nil {

@@ -218,7 +218,7 @@ func (c *Core) fitted(s *State, e Fitted, fx []Effect) []Effect {
 		return append(fx, Record{At: s.Now, Kind: KindNote, Data: NoteData{Text: "no calibration could be fitted: " + e.Err}})
 	}
 	k.known = append(slices.Clone(k.known), e.Calibration)
-	s.Notice = "fitted: " + e.Calibration.Name + "; v lists calibrations, u uses one"
+	s.Notice = "fitted: " + e.Calibration.Name + "; i lists calibrations, u uses one"
 	return c.keep(s, e.Calibration, CalibrationData{"fitted", nameOf(k.inUse), e.Calibration}, fx)
 }
 
