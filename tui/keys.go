@@ -56,7 +56,7 @@ var bindings = []binding{
 	{key: " ", also: []string{"."}, label: "Space .", short: "pause, a second on", what: "replay: pause, one second on", replay: true, press: pressSteer},
 	{key: "<", also: []string{">"}, label: "< >", short: "a minute", what: "replay: a minute back, on", replay: true, press: pressSteer},
 	{key: "[", also: []string{"]"}, label: "[ ]", short: "speed", what: "replay: half, twice the speed", replay: true, press: pressSteer},
-	{key: "q", label: "q", short: "leave", what: "HOLD, leave; Ctrl-C: at once", press: pressLeave},
+	{key: "q", also: []string{"ctrl+c"}, label: "q", short: "leave", what: "HOLD, leave; Ctrl-C: at once", press: pressLeave},
 	{key: "1", also: []string{"2", "3", "4"}, label: "1–4", what: "bench, scan, drift, log", screen: true, press: pressPage},
 	{key: "+", also: []string{"=", "-"}, label: "+ -", what: "less, more time on the charts", screen: true, press: pressZoom},
 	{key: "left", also: []string{"right"}, label: "← →", what: "back, forward in time", screen: true, press: pressMove},
