@@ -2,6 +2,7 @@ package main
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"github.com/spf13/cobra"
@@ -51,9 +52,9 @@ func (in *inputs) bind(cmd *cobra.Command) {
 }
 
 // setup returns what the flags and the bench file say together, and the input
-// at their pressure, temperature and energy. swept names a quantity that a
-// sweep will set, which then need not be given.
-func (in *inputs) setup(command, swept string) (emission.Setup, emission.Input, error) {
+// at their pressure, temperature and energy. swept names flags that need not be
+// given: what a sweep or a plan sets by itself.
+func (in *inputs) setup(command string, swept ...string) (emission.Setup, emission.Input, error) {
 	var s emission.Setup
 	s.Uncertainty = emission.DefaultUncertainty()
 	if in.bench != "" {
@@ -109,7 +110,7 @@ func (in *inputs) setup(command, swept string) (emission.Setup, emission.Input, 
 }
 
 // missing lists the flags without which nothing can be computed.
-func (in *inputs) missing(swept string) (list []string) {
+func (in *inputs) missing(swept []string) (list []string) {
 	for _, f := range []struct {
 		name, text string
 		inBench    bool
@@ -117,7 +118,7 @@ func (in *inputs) missing(swept string) (list []string) {
 		{"gas", in.gas, true}, {"pressure", in.pressure, false}, {"core-diameter", in.core, true},
 		{"length", in.length, true}, {"wavelength", in.wavelength, true}, {"duration", in.duration, true}, {"energy", in.energy, true},
 	} {
-		if f.text == "" && f.name != swept && !(f.inBench && in.bench != "") {
+		if f.text == "" && !slices.Contains(swept, f.name) && !(f.inBench && in.bench != "") {
 			list = append(list, f.name)
 		}
 	}

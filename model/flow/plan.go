@@ -57,17 +57,20 @@ func (h Handling) Move(from, to unit.Pascal) (Stage, error) {
 		return stage, nil
 	}
 	// Time is ∫dp/rate, by the midpoint rule in stretches that are equal in
-	// pressure far from the end and in its logarithm near vacuum.
-	const stretches = 2000
+	// pressure far from the end and in its logarithm near vacuum. What cannot
+	// be reached shows at the very end first.
+	const stretches, end = 300, 1 - 1.0/4000
 	scale := unit.Pascal(1e-3) * max(from, to)
-	place := func(k int) unit.Pascal {
-		f := float64(k) / stretches
+	place := func(f float64) unit.Pascal {
 		x := (1-f)*math.Asinh(float64(from/scale)) + f*math.Asinh(float64(to/scale))
 		return scale * unit.Pascal(math.Sinh(x))
 	}
+	if _, err := h.rate(place(end), to > from); err != nil {
+		return stage, fmt.Errorf("%v to %v: %w", from, to, err)
+	}
 	seconds, low := 0.0, from
 	for k := range stretches {
-		high := place(k + 1)
+		high := place(float64(k+1) / stretches)
 		rate, err := h.rate((low+high)/2, to > from)
 		if err != nil {
 			return stage, fmt.Errorf("%v to %v: %w", from, to, err)
