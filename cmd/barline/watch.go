@@ -30,12 +30,15 @@ func newWatch() *cobra.Command {
 		Long: `The dashboard on the instruments of a bench file. Ctrl-C or q holds the bench,
 closes the logbook and leaves. Where the shell goes away the bench is held and
 recording goes on; --follow-only attaches to it again, for you or for a second
-person.
+person. Without a bench file, on a terminal, it offers to write one by questions.
 
 barline is no safety device: pressure ratings, relief valve and hardware
 interlocks come first.`,
 		Args: noArgs,
 		RunE: func(cmd *cobra.Command, _ []string) error {
+			if f.bench == "" && !f.followOnly && isTerminal(cmd.InOrStdin()) && isTerminal(cmd.OutOrStdout()) {
+				return askForBench(cmd.Context(), cmd.InOrStdin(), cmd.OutOrStdout())
+			}
 			return f.run(cmd.Context(), cmd.OutOrStdout(), cmd.ErrOrStderr())
 		},
 	}
