@@ -18,7 +18,7 @@ import (
 
 func newCheck() *cobra.Command {
 	var file string
-	var sample, asJSON, live bool
+	var sample, keys, asJSON, live bool
 	cmd := &cobra.Command{
 		Use:   "check -b bench.toml",
 		Short: "Read a bench file, say what was understood and everything that is wrong",
@@ -29,6 +29,8 @@ code is then 2. A first bench file is written by
 
     barline check --sample > bench.toml
 
+Every key that a bench file may hold is listed, in Markdown, by --keys.
+
 With --live every instrument is read once, and nothing is set; the exit code
 is 1 where one does not answer.`,
 		Args: noArgs,
@@ -37,6 +39,9 @@ is 1 where one does not answer.`,
 			if sample {
 				_, err := out.Write(bench.Sample())
 				return err
+			}
+			if keys {
+				return writeKeys(out)
 			}
 			if file == "" {
 				return usage("check needs a bench file: -b bench.toml; a first one is written by barline check --sample")
@@ -70,6 +75,7 @@ is 1 where one does not answer.`,
 		},
 	}
 	cmd.Flags().StringVarP(&file, "bench", "b", "", "bench file")
+	cmd.Flags().BoolVar(&keys, "keys", false, "list every key with its unit and default")
 	cmd.Flags().BoolVar(&sample, "sample", false, "print a commented bench file")
 	cmd.Flags().BoolVar(&live, "live", false, "read every instrument once")
 	cmd.Flags().BoolVar(&asJSON, "json", false, "print the result as one JSON object")

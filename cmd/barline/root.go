@@ -90,6 +90,7 @@ func newRoot() *cobra.Command {
 		newDrift(),
 		newFit(),
 		newLog(),
+		newManual(),
 		newPlan(),
 		newPorts(),
 		newPredict(),
