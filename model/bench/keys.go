@@ -128,6 +128,14 @@ var meaning = map[string]string{
 	"logbook.deadband_wavelength":  "smaller changes are not written",
 	"logbook.compress":             "finished segments",
 
+	"drift.learn":       "shortest quiet stretch that is learnt from",
+	"drift.false_alarm": "mean time between false alarms of one chart",
+	"drift.wavelength":  "smallest drift of the emission that matters",
+	"drift.strength":    "of its strength, relative",
+	"drift.width":       "of its width, relative",
+	"drift.gauges":      "of cell A less cell B",
+	"drift.leak":        "of the shut panel",
+
 	"alarms.on_alarm": "a program and its arguments, for people who are elsewhere",
 
 	"screen.background": "of the terminal",
