@@ -66,7 +66,7 @@ func takes(t reflect.Type, r rules) string {
 		return strings.Join(w.Words(), ", ")
 	}
 	if u, ok := v.(encoding.TextUnmarshaler); ok {
-		return strings.TrimPrefix(Reason(u.UnmarshalText(nil)), "expected a ")
+		return quantity(Reason(u.UnmarshalText([]byte("1"))))
 	}
 	switch t.Kind() {
 	case reflect.Bool:
@@ -79,4 +79,19 @@ func takes(t reflect.Type, r rules) string {
 		return "list of texts"
 	}
 	return "text"
+}
+
+// quantity turns what is said of a number without a unit, such as
+//
+//	it has no unit; expected a length such as "1 um" (m, cm, mm, um, nm)
+//
+// into "length in m, cm, mm, um, nm".
+func quantity(reason string) string {
+	_, rest, _ := strings.Cut(reason, "expected a ")
+	noun, units, ok := strings.Cut(rest, " such as ")
+	_, units, listed := strings.Cut(units, " (")
+	if !ok || !listed {
+		return reason
+	}
+	return noun + " in " + strings.TrimSuffix(units, ")")
 }
