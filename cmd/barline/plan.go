@@ -123,7 +123,7 @@ func (f *planFlags) run(ctx context.Context, stdout, stderr io.Writer) error {
 // nearestText says what is nearest to giving way.
 func nearestText(p *plan.Plan) string {
 	if r, ok := p.Nearest(); ok {
-		return fmt.Sprintf("with %s, %s", r.Gas, r.Why)
+		return "with " + r.Gas + ", " + r.Why
 	}
 	away, best := 0.0, plan.Refusal{}
 	for _, r := range p.Refusals {
@@ -135,6 +135,9 @@ func nearestText(p *plan.Plan) string {
 		}
 	}
 	if best.Gas == "" {
+		if len(p.Refusals) == 1 {
+			return p.Refusals[0].Why
+		}
 		return "no gas emits within the bounds"
 	}
 	return fmt.Sprintf("the nearest is %s with %.1f nm, %.1f nm away, and no bound that gave way would change that",
@@ -158,7 +161,11 @@ func (f *planFlags) question() (q plan.Question, answer emission.Answer, err err
 	q = plan.Question{Setup: setup, Temperature: input.Temperature, Air: input.Air}
 	if f.gas != "" {
 		for _, name := range strings.Split(f.gas, ",") {
-			q.Gases = append(q.Gases, strings.TrimSpace(name))
+			name = strings.TrimSpace(name)
+			if name == "" || slices.Contains(q.Gases, name) {
+				return q, 0, usage(`--gas %q: expected gases that differ, such as "argon, krypton"`, f.gas)
+			}
+			q.Gases = append(q.Gases, name)
 		}
 		if setup.Gas.Composition == "" { // --index and --n2 are meant for it
 			q.Setup.Gas.Composition = q.Gases[0]

@@ -96,10 +96,13 @@ func TestPlanSaysWhatIsWrong(t *testing.T) {
 		{[]string{"-b", path, "--target", "265nm", "--best", "0"}, exitUsage, "1 to 10"},
 		{[]string{"-b", path, "--target", "265nm", "--plot", "map.pdf"}, exitUsage, ".svg"},
 		{[]string{"-b", path, "--target", "265nm", "--gas", "phlogiston"}, exitUsage, "phlogiston"},
+		{[]string{"-b", path, "--target", "265nm", "--gas", "argon, argon"}, exitUsage, "differ"},
+		{[]string{"-b", path, "--target", "265nm", "--gas", ","}, exitUsage, "differ"},
 		{[]string{"--target", "265nm"}, exitUsage, "--core-diameter"},
 		// Physics refuses: the bound that gives way first, and by how much.
 		{[]string{"-b", path, "--target", "265nm", "--gas", "argon", "--pressures", "1bar:5bar"}, exitFailed, "pressures to be tried gives way first"},
 		{[]string{"-b", path, "--target", "150nm"}, exitFailed, "the nearest is"},
+		{[]string{"-b", path, "--target", "265nm", "--gas", "argon", "--temperature", "200 degC"}, exitFailed, "temperature"},
 	} {
 		code, _, stderr := command(append([]string{"plan"}, c.args...)...)
 		if code != c.code || !strings.Contains(stderr, c.want) {

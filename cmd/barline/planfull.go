@@ -34,9 +34,12 @@ func anchorChoices(ctx context.Context, stderr io.Writer, p *plan.Plan, best int
 			return err
 		}
 		fmt.Fprintln(stderr)
-		if again, ok := p.Question.Again(*c, anchor); ok {
-			*c = again
+		again, ok := p.Question.Again(*c, anchor)
+		if !ok {
+			fmt.Fprintf(stderr, "%s: its full-field runs do not emit at %s near there; the estimate stands\n", c.Gas, targetText(p.Question.Target))
+			continue
 		}
+		*c = again
 	}
 	return nil
 }

@@ -31,8 +31,7 @@ func writePlan(w io.Writer, p *plan.Plan, confirmed []plan.Confirmed, tolerance 
 	if len(p.Choices) > 0 {
 		fmt.Fprintf(table, "\n\tgas\tpressure\tenergy\temission\tanswer\tnarrowest margin\n")
 		for i, c := range p.Choices {
-			fmt.Fprintf(table, "%d\t%s\t%s\t%s\t%s\t%v\t%.0f %% %s\n", i+1, c.Gas, pressureText(c), energyText(c), emissionText(c), c.Answer,
-				100*c.Narrowest.Margin, c.Narrowest.Name)
+			fmt.Fprintf(table, "%d\t%s\t%s\t%s\t%s\t%v\t%s\n", i+1, c.Gas, pressureText(c), energyText(c), emissionText(c), c.Answer, c.Narrowest.Left())
 		}
 		flush(table)
 		fmt.Fprintf(w, "\nTo stay within %.3g nm, each alone\n", tolerance.Nanometres())

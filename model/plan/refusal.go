@@ -72,6 +72,11 @@ func (s *surveyor) refuse(composition string, m *Map) Refusal {
 	}
 	sort.SliceStable(r.Needs, func(i, j int) bool { return r.Needs[i].Margin < r.Needs[j].Margin })
 	r.Why = r.text()
+	if len(r.Needs) == 0 && r.Nearest.Emission == 0 && r.Beyond.Emission == 0 {
+		p, e := middle(s.Pressure), middle(s.Energy)
+		pr := s.predictor.Predict(s.input(p, e), nil)
+		r.Why = fmt.Sprintf("emits nowhere that its numbers were checked for; at %v and %v: %s", rounded(p), rounded(e), pr.Why)
+	}
 	return r
 }
 
@@ -121,13 +126,13 @@ func (r *Refusal) text() string {
 	case r.Beyond.Emission > 0:
 		return "emits nowhere within the bounds, nor there beyond them; the nearest is " + r.Beyond.text()
 	default:
-		return "emits nowhere that its numbers were checked for"
+		return "" // said by refuse, which can ask why
 	}
 	n := r.Needs[0]
 	text := fmt.Sprintf("%s gives way first: %.4g%s, bound %.4g%s, %s, at %v and %v",
 		n.Name, n.Value, spaced(n.Unit), n.Bound, spaced(n.Unit), beyond(n), rounded(r.Pressure), rounded(r.Energy))
-	if more := len(r.Needs) - 1; more > 0 {
-		text += fmt.Sprintf("; %d more with it", more)
+	for _, more := range r.Needs[1:] {
+		text += "; with it " + more.Name
 	}
 	return text
 }
@@ -141,6 +146,18 @@ func spaced(unit string) string {
 		return ""
 	}
 	return " " + unit
+}
+
+// middle returns the middle of a range in ratio.
+func middle[T ~float64](r Range[T]) T { return T(math.Sqrt(float64(r.From) * float64(r.To))) }
+
+// Left says in words how much of the bound is left, or by how much it is
+// broken.
+func (l Limit) Left() string {
+	if l.Margin >= 0 {
+		return fmt.Sprintf("%.0f %% of %s", 100*l.Margin, l.Name)
+	}
+	return fmt.Sprintf("none: %s %s", l.Name, beyond(l))
 }
 
 // beyond says by how much a bound is broken.

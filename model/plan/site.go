@@ -1,6 +1,7 @@
 package plan
 
 import (
+	"fmt"
 	"math"
 	"time"
 
@@ -42,7 +43,7 @@ const coreWithin = 1 * unit.Millibar
 func (s *Site) fill(composition string, p unit.Pascal) Fill {
 	medium, err := flow.Named(composition)
 	if err != nil {
-		return Fill{Why: err.Error()}
+		return Fill{Why: fmt.Sprintf("no estimate for %q: only a pure gas has its transport here", composition)}
 	}
 	h, core := s.Handling, s.Core
 	h.Gas, core.Gas = medium, medium
