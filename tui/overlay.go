@@ -242,7 +242,15 @@ func ambientPressure(s *live.Snapshot) (unit.Pascal, error) {
 }
 
 func drawSetpoint(a frame.Area, s *live.Snapshot, v view) {
-	b := box(a, "go to pressure", 66, 7, frame.Target)
+	b, below, planned := formBox(a, "go to pressure", v)
+	if planned {
+		at, err := parseTarget(s, v.text)
+		if err != nil {
+			at = s.Setpoint
+		}
+		wanted, _, _ := onCurve(s.Curve, at)
+		drawPlan(below, v.planned, s, wanted, at)
+	}
 	from := s.Setpoint
 	now, _, _ := mainPressure(s)
 	b.Text(0, 0, "now "+now+". Absolute, with its unit: 9.2 bar, 920 kPa, 3 bar(g)", frame.Faint)

@@ -16,6 +16,7 @@ import (
 
 	"barline/model/bench"
 	"barline/model/live"
+	"barline/model/plan"
 	"barline/tui/frame"
 )
 
@@ -37,6 +38,9 @@ type Options struct {
 	Out   io.Writer // nil is the standard output
 	Plain bool      // begin without charts, for slow lines
 	Greet bool      // begin by telling how to begin
+	// Plan returns the plan's map of the bench, which forms show beside what is
+	// typed; nil while there is none. It must not block. The function may be nil.
+	Plan func() *plan.Map
 }
 
 const (
@@ -61,7 +65,7 @@ func Run(ctx context.Context, src Source, o Options) error {
 	}
 	inner, end := context.WithCancel(ctx)
 	defer end()
-	m := &model{ctx: inner, src: src, style: o.Style, s: src.Snapshot(), moved: time.Now()}
+	m := &model{ctx: inner, src: src, style: o.Style, s: src.Snapshot(), moved: time.Now(), plan: o.Plan}
 	m.v.plain = o.Plain
 	switch {
 	case o.Greet:
@@ -124,6 +128,7 @@ type model struct {
 	style Style
 	w, h  int
 	v     view
+	plan  func() *plan.Map
 	s     *live.Snapshot
 	frame *frame.Frame // as text, what the terminal shows
 	text  string
@@ -246,6 +251,9 @@ func (m *model) key(msg tea.KeyMsg) tea.Cmd {
 	for _, name := range names(msg) {
 		var intents []live.Intent
 		m.v, intents = m.v.press(name, s)
+		if m.plan != nil {
+			m.v.planned = m.plan()
+		}
 		for _, in := range intents {
 			if _, leave := in.(quit); leave {
 				return tea.Quit

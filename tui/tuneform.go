@@ -54,7 +54,14 @@ func pressureOf(curve []emission.CurvePoint, wanted unit.Metre) (at unit.Pascal,
 }
 
 func drawTune(a frame.Area, s *live.Snapshot, v view) {
-	b := box(a, "tune to a wavelength", 66, 7, frame.Target)
+	b, below, planned := formBox(a, "tune to a wavelength", v)
+	if planned {
+		in, at, err := parseTune(s, v.text)
+		if err != nil {
+			at = s.Setpoint
+		}
+		drawPlan(below, v.planned, s, in.Emission, at)
+	}
 	b.Text(0, 0, "such as 265 nm, or 265 nm hold to keep it there", frame.Faint)
 	input(b.Sub(0, 2, b.W, 1), v.text)
 	if v.text == "" {

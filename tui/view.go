@@ -4,6 +4,7 @@ import (
 	"time"
 
 	"barline/model/live"
+	"barline/model/plan"
 )
 
 // view is what a person has done to the screen: which page, how far back,
@@ -27,6 +28,7 @@ type view struct {
 	message string // why the last key did nothing, or what it did
 	late    time.Duration
 	pending *pending // waits behind cautionOverlay
+	planned *plan.Map
 }
 
 // overlay is what stands over the page.

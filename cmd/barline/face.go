@@ -49,7 +49,9 @@ func (s *session) screen(ctx context.Context, l *loop.Loop) error {
 	shell, leave := context.WithCancel(ctx)
 	defer leave()
 	shown := make(chan error, 1)
-	go func() { shown <- tui.Run(shell, l, tui.Options{Style: style, Plain: s.noCharts, Greet: s.greet}) }()
+	go func() {
+		shown <- tui.Run(shell, l, tui.Options{Style: style, Plain: s.noCharts, Greet: s.greet, Plan: s.planned()})
+	}()
 	select {
 	case err := <-shown:
 		select {
