@@ -21,11 +21,11 @@ func (s *session) planned() func() *plan.Map {
 		Pressure: plan.Range[unit.Pascal]{From: s.core.Limits().Lowest().Max / 10, To: s.core.Limits().Lowest().Max, Steps: 90},
 		Energy:   plan.Range[unit.Joule]{From: setup.Pulse.Energy / 4, To: 2 * setup.Pulse.Energy, Steps: 12},
 	}
-	go func() {
+	go s.broken.guard("the plan's map", func() {
 		if m, err := q.Survey(setup.Gas.Composition, q.Pressure, q.Energy); err == nil {
 			made.Store(m)
 		}
-	}()
+	})
 	return made.Load
 }
 
