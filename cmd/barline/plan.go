@@ -61,7 +61,7 @@ their slopes.`,
 	fl.Lookup("pressure").Hidden = true // it is what is looked for
 	fl.StringVar(&f.target, "target", "", `the wavelength, or the band to be turned through: 265nm, 240nm:280nm`)
 	fl.StringVar(&f.pressures, "pressures", "", "pressures to try, such as 1bar:12bar; without it up to the lowest rating")
-	fl.StringVar(&f.energies, "energies", "", "energies to try, such as 0.3uJ:2uJ; without it a tenth to twice the pulse energy")
+	fl.StringVar(&f.energies, "energies", "", "energies to try, such as 0.3uJ:2uJ; without it from a tenth of the pulse energy to what the bench file allows, or twice")
 	fl.StringVar(&f.tolerance, "tolerance", "0.2 nm", "for how steady things must be held")
 	fl.StringVar(&f.purgeTo, "purge-to", "100 ppm", "share of air that the purge must leave")
 	fl.BoolVar(&f.full, "full", false, "confirm the best few by full-field propagation, about ten seconds each")
@@ -181,14 +181,14 @@ func (f *planFlags) question() (q plan.Question, answer emission.Answer, err err
 	if q.Target, err = parseTarget(f.target); err != nil {
 		return q, 0, err
 	}
-	most := unit.Pascal(40 * unit.Bar)
+	most, brightest := unit.Pascal(40*unit.Bar), 2*setup.Pulse.Energy
 	if f.bench != "" {
-		if most, err = f.site(&q); err != nil {
+		if most, brightest, err = f.site(&q); err != nil {
 			return q, 0, err
 		}
 	}
 	q.Pressure = plan.Range[unit.Pascal]{From: most / 200, To: most, Steps: planPressures}
-	q.Energy = plan.Range[unit.Joule]{From: setup.Pulse.Energy / 10, To: 2 * setup.Pulse.Energy, Steps: planEnergies}
+	q.Energy = plan.Range[unit.Joule]{From: setup.Pulse.Energy / 10, To: brightest, Steps: planEnergies}
 	if err := parseRange("pressures", f.pressures, unit.ParsePressure, &q.Pressure); err != nil {
 		return q, 0, err
 	}
@@ -202,23 +202,23 @@ const (
 )
 
 // site adds the gas panel of the bench file, and returns the highest pressure
-// that it allows.
-func (f *planFlags) site(q *plan.Question) (unit.Pascal, error) {
+// and pulse energy that it allows.
+func (f *planFlags) site(q *plan.Question) (unit.Pascal, unit.Joule, error) {
 	_, b, err := readBench(f.bench)
 	if err != nil {
-		return 0, err
+		return 0, 0, err
 	}
 	want, err := unit.ParseFraction(f.purgeTo)
 	if err != nil {
-		return 0, usage("--purge-to: %w", err)
+		return 0, 0, usage("--purge-to: %w", err)
 	}
 	handling, err := flow.BenchHandling(b, q.Temperature)
 	if err != nil {
-		return 0, err
+		return 0, 0, err
 	}
 	core, cladding, err := flow.BenchFibre(b, q.Temperature)
 	if err != nil {
-		return 0, err
+		return 0, 0, err
 	}
 	core.Radius, core.Length = q.Setup.Fibre.CoreDiameter/2, q.Setup.Fibre.Length // flags stand over the file
 	rating := b.Limits.Enforced().Lowest().Max
@@ -228,7 +228,20 @@ func (f *planFlags) site(q *plan.Question) (unit.Pascal, error) {
 		Handling: handling, Core: core, Cladding: cladding,
 		Start: b.Panel.Ambient, StartAir: 1, Want: want, Low: low, High: high,
 	}
-	return min(rating, b.Panel.Supply), nil
+	return min(rating, b.Panel.Supply), mostEnergy(b, q.Setup.Pulse.Energy), nil
+}
+
+// mostEnergy returns the most that the bench may send into the fibre: what the
+// file says, or twice the usual.
+func mostEnergy(b *bench.Bench, usual unit.Joule) unit.Joule {
+	most := b.Pulse.FullEnergy
+	if most == 0 {
+		most = 2 * usual
+	}
+	if b.Limits.Energy > 0 {
+		most = min(most, b.Limits.Energy)
+	}
+	return max(most, usual)
 }
 
 // purgeBetween returns the pressures of a purge: down to 50 mbar where a pump

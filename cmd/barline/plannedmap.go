@@ -19,7 +19,7 @@ func (s *session) planned() func() *plan.Map {
 		Setup: setup, Target: gas.Span{From: pump / 4, To: pump / 4}, Temperature: benchTemperature,
 		Air: s.bench.Gas.Air, Supply: s.bench.Panel.Supply,
 		Pressure: plan.Range[unit.Pascal]{From: s.core.Limits().Lowest().Max / 10, To: s.core.Limits().Lowest().Max, Steps: 90},
-		Energy:   plan.Range[unit.Joule]{From: setup.Pulse.Energy / 4, To: 2 * setup.Pulse.Energy, Steps: 12},
+		Energy:   plan.Range[unit.Joule]{From: setup.Pulse.Energy / 4, To: mostEnergy(s.bench, setup.Pulse.Energy), Steps: 12},
 	}
 	go s.broken.guard("the plan's map", func() {
 		if m, err := q.Survey(setup.Gas.Composition, q.Pressure, q.Energy); err == nil {

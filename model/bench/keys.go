@@ -43,6 +43,7 @@ var meaning = map[string]string{
 	"pulse.duration":        "full width at half maximum of the transform-limited pulse",
 	"pulse.shape":           "its envelope",
 	"pulse.energy":          "in the fibre, behind the coupling",
+	"pulse.full_energy":     "in the fibre with the attenuator wide open; without it that of energy",
 	"pulse.gdd":             "group-delay dispersion put on it",
 	"pulse.repetition_rate": "pulses per second",
 
@@ -68,6 +69,8 @@ var meaning = map[string]string{
 	"limits.disagreement":  "by which gauges that should agree may differ",
 	"limits.arming":        "without a command for so long, the bench is safe again",
 	"limits.caution_above": "the cautions are asked for before gas goes above this pressure",
+	"limits.energy":        "most of a pulse in the fibre; without it the attenuator is never moved",
+	"limits.zero":          "by which a gauge may ever be corrected",
 	"limits.follow":        "setpoint and pressure further apart than this lead to HOLD",
 
 	"instrument.name":        "what alarms and records call it",
