@@ -226,7 +226,7 @@ func (f *planFlags) site(q *plan.Question) (unit.Pascal, unit.Joule, error) {
 	q.Supply = b.Panel.Supply
 	q.Site = &plan.Site{
 		Handling: handling, Core: core, Cladding: cladding,
-		Start: b.Panel.Ambient, StartAir: 1, Want: want, Low: low, High: high,
+		Start: b.Panel.Ambient, StartAir: 1, Want: want, Cylinder: b.Gas.SupplyAir, Low: low, High: high,
 	}
 	return min(rating, b.Panel.Supply), mostEnergy(b, q.Setup.Pulse.Energy), nil
 }

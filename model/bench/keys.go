@@ -33,11 +33,12 @@ var meaning = map[string]string{
 	"fibre.cladding_holes":         "how many hollow tubes are open to the gas; they fill later than the core",
 	"fibre.cladding_hole_diameter": "of one of them",
 
-	"gas.species": "what fills the fibre",
-	"gas.density": "equation of state: full, two virial coefficients, or ideal",
-	"gas.index":   "source of the refractive index; without it the gas's own default",
-	"gas.n2":      "source of the nonlinear index, or a value such as 9.11e-24 m2/W at 273.15 K and 101325 Pa",
-	"gas.air":     "share of air left by the last purge",
+	"gas.species":    "what fills the fibre",
+	"gas.density":    "equation of state: full, two virial coefficients, or ideal",
+	"gas.index":      "source of the refractive index; without it the gas's own default",
+	"gas.n2":         "source of the nonlinear index, or a value such as 9.11e-24 m2/W at 273.15 K and 101325 Pa",
+	"gas.air":        "share of air left by the last purge",
+	"gas.supply_air": "share of air in what the cylinder gives",
 
 	"pulse.wavelength":      "of the pump, in vacuum",
 	"pulse.duration":        "full width at half maximum of the transform-limited pulse",
