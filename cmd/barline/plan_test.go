@@ -132,3 +132,23 @@ func TestPlanConfirms(t *testing.T) {
 		t.Errorf("propagation: %s", out)
 	}
 }
+
+// The anchored answer knows the slope over energy, and meets propagation.
+func TestPlanAnchors(t *testing.T) {
+	if os.Getenv("BARLINE_LONG") == "" {
+		t.Skip("some twenty full-field runs: BARLINE_LONG=1")
+	}
+	t.Setenv("XDG_CACHE_HOME", t.TempDir())
+	code, out, stderr := command("plan", "-b", sampleBench(t), "--target", "265nm", "--gas", "argon", "--emission", "anchored", "--full", "--best", "1", "--json")
+	if code != exitDone {
+		t.Fatalf("exit %d, %s", code, stderr)
+	}
+	var got plannedObject
+	if err := json.Unmarshal([]byte(out), &got); err != nil {
+		t.Fatal(err)
+	}
+	c := got.Choices[0]
+	if c.Answer != "anchored" || c.PerEnergy == nil || c.Propagated == nil || c.Propagated.First == nil || math.Abs(float64(*c.Propagated.First)-265) > 1.5 {
+		t.Errorf("expected the anchored pressure to emit within 1.5 nm of 265 nm: %s", out)
+	}
+}

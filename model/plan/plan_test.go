@@ -239,6 +239,21 @@ func TestSlopes(t *testing.T) {
 	}
 }
 
+// Asked again with the same predictor, a choice stays what it was.
+func TestAgain(t *testing.T) {
+	q := heron(t, 240e-9, 280e-9)
+	q.Gases = []string{"argon"}
+	c := answer(t, q).Choices[0]
+	again, ok := q.Again(c, predictor(t, q, "argon"))
+	if !ok || math.Abs(float64(again.Pressure/c.Pressure)-1) > 1e-3 || again.Energy != c.Energy || again.Whole != c.Whole || again.Gas != "argon" {
+		t.Errorf("%v at %v, whole %v, then %v at %v, whole %v", c.Pressure, c.Energy, c.Whole, again.Pressure, again.Energy, again.Whole)
+	}
+	c.From, c.To = 1*unit.Bar, 1.1*unit.Bar // where nothing is emitted there
+	if again, ok := q.Again(c, predictor(t, q, "argon")); ok {
+		t.Errorf("near 1 bar: %v", again.Pressure)
+	}
+}
+
 func TestFill(t *testing.T) {
 	q := heron(t, 265e-9, 265e-9)
 	q.Gases = []string{"argon"}
