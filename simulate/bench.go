@@ -116,6 +116,15 @@ func (b *Bench) Scenario() Scenario { return b.story }
 // lesson.
 func (b *Bench) Reveal() Truth { return b.truth }
 
+// Openings returns how far inlet, vent and pump valve are truly open, 0 to 1,
+// whatever the controller says on its line.
+func (b *Bench) Openings() (inlet, vent, pump float64) {
+	b.mu.Lock()
+	defer b.mu.Unlock()
+	v := &b.controller.valves
+	return v[inletValve].opening, v[ventValve].opening, v[pumpValve].opening
+}
+
 // Now returns the bench time that the bench stands at.
 func (b *Bench) Now() time.Duration {
 	b.mu.Lock()

@@ -131,7 +131,18 @@ func (c *controller) step(now time.Duration, pressure float64) {
 			vent = -rate / (0.26 * p)
 		}
 	}
-	c.valves[inletValve].target = min(inlet, 1)
-	c.valves[ventValve].target = min(vent, 1)
-	c.valves[pumpValve].target = min(pump, 1)
+	c.drive(inletValve, inlet)
+	c.drive(ventValve, vent)
+	c.drive(pumpValve, pump)
+}
+
+// drive moves one of inlet, vent and pump, which opens only when the other two
+// are shut: no two of supply, room and pump are ever joined.
+func (c *controller) drive(i int, opening float64) {
+	for _, other := range []int{inletValve, ventValve, pumpValve} {
+		if other != i && c.valves[other].opening > 0 {
+			opening = 0
+		}
+	}
+	c.valves[i].target = min(opening, 1)
 }

@@ -18,6 +18,7 @@ const (
 	alarmRecord   = "nothing is being recorded"
 	alarmCommand  = "command not confirmed"
 	alarmDisagree = "cell gauges disagree"
+	alarmAway     = "pressure away from its setpoint"
 	alarmLight    = "the light drifts"
 	alarmGauges   = "cell gauges drift apart"
 	alarmLeak     = "pressure falls with every valve shut"
@@ -66,6 +67,11 @@ func alarmsOf(b *bench.Bench) (definitions []alarm.Definition, channels []watche
 	if b.Drift.Wavelength > 0 {
 		definitions = append(definitions, driftAlarms()...)
 	}
+	definitions = append(definitions, alarm.Definition{
+		Name: alarmAway, Priority: alarm.High, OnDelay: 10 * time.Second, OffDelay: 5 * time.Second,
+		Cause: "the gas has left the setpoint that the controller keeps", Consequence: "HOLD, if it goes further than limits.follow",
+		Action: "Look for a leak, an empty or failing supply, a valve that sticks. HOLD shuts inlet, pump and vent.",
+	})
 	for i := range b.Instrument {
 		in := &b.Instrument[i]
 		definitions = append(definitions, alarm.Definition{
@@ -155,6 +161,14 @@ func (c *Core) watch(s *State, fx []Effect) []Effect {
 		disagree = alarm.When(s.Mode != Ramping && math.Abs(a.Value-b.Value) > float64(c.disagreement))
 	}
 	evaluate(alarmDisagree, disagree)
+	away := alarm.Absent
+	if s.Mode == Steady && !s.following {
+		away = alarm.Unknown
+		if p, ok := c.pressure(s); ok {
+			away = alarm.When(math.Abs(float64(p-s.Setpoint)) > max(awayFrom, awayShare*float64(s.Setpoint)))
+		}
+	}
+	evaluate(alarmAway, away)
 
 	c.watchLight(s, evaluate)
 	for i := range s.Links[:s.LinkCount] {
@@ -177,6 +191,13 @@ func (c *Core) watch(s *State, fx []Effect) []Effect {
 		note(t, ok)
 	}
 }
+
+// The gas has left a setpoint that is kept when it is further away than two
+// gauges may differ, at low pressure by this (common practice, no source).
+const (
+	awayFrom  = 0.1e5 // Pa
+	awayShare = 0.02
+)
 
 // startup is how long an instrument may take to speak for the first time.
 const startup = 5 * time.Second

@@ -3,6 +3,7 @@ package live
 import (
 	"errors"
 	"fmt"
+	"math"
 	"time"
 
 	"barline/model/alarm"
@@ -252,6 +253,9 @@ func (c *Core) act(s *State, fx []Effect) []Effect {
 		if p, ok := c.pressure(s); ok {
 			if why := c.overRating(p); why != "" {
 				return c.hold(s, why, fx)
+			}
+			if c.follow > 0 && unit.Pascal(math.Abs(float64(p-s.Setpoint))) > c.follow {
+				return c.hold(s, fmt.Sprintf("pressure %v has left the setpoint %v", p, s.Setpoint), fx)
 			}
 		}
 		return c.keepWavelength(s, fx)
