@@ -457,8 +457,8 @@ func (tr *trial) replay() {
 	}
 }
 
-// seeds returns those that a test tries: from 0 on, as many as the
-// environment variable says, or the one that BARLINE_SEED names.
+// seeds returns those that a test tries: as many as the environment variable
+// says, from BARLINE_FROM on or from 0, or the one that BARLINE_SEED names.
 func seeds(variable string, short int) []uint64 {
 	if one, err := strconv.ParseUint(os.Getenv("BARLINE_SEED"), 10, 64); err == nil {
 		return []uint64{one}
@@ -466,9 +466,13 @@ func seeds(variable string, short int) []uint64 {
 	if n, err := strconv.Atoi(os.Getenv(variable)); err == nil {
 		short = n
 	}
+	from, err := strconv.ParseUint(os.Getenv("BARLINE_FROM"), 10, 64)
+	if err != nil {
+		from = 0
+	}
 	all := make([]uint64, short)
 	for i := range all {
-		all[i] = uint64(i)
+		all[i] = from + uint64(i)
 	}
 	return all
 }
