@@ -655,6 +655,35 @@ func TestScanCompletes(t *testing.T) {
 	}
 }
 
+// A scan over pulse energies turns the attenuator by itself, and its rows say
+// at which energy they were taken.
+func TestScanOverEnergies(t *testing.T) {
+	tr := newTrial(t, 2, 8*unit.Bar)
+	p := &live.Program{Name: "energies"}
+	for _, e := range []unit.Joule{1.1 * unit.Microjoule, 1.5 * unit.Microjoule} {
+		p.Phases = append(p.Phases,
+			live.Phase{Label: "energy", Action: live.SetEnergy, Energy: e},
+			live.Phase{Label: "measuring", Target: 8.5 * unit.Bar, Dwell: 3 * time.Second, Row: true})
+	}
+	for tr.clk.Now().Mono < 4*time.Second {
+		tr.turn()
+	}
+	tr.arm()
+	tr.ask(live.Run{Program: p})
+	for tr.clk.Now().Mono < 3*time.Minute && tr.loop.Snapshot().Outcome == live.NoOutcome {
+		tr.turn()
+	}
+	s := tr.loop.Snapshot()
+	if s.Outcome != live.Completed || len(s.Rows) != 2 {
+		tr.fail("it ended in %v (%s) with %d rows", s.Mode, s.Why, len(s.Rows))
+	}
+	if a, b := s.Rows[0], s.Rows[1]; math.Abs(a.EnergyJ-1.1e-6) > 0.01e-6 || math.Abs(b.EnergyJ-1.5e-6) > 0.01e-6 ||
+		a.MeasuredM == nil || b.MeasuredM == nil || math.Abs(*a.MeasuredM-*b.MeasuredM) < 0.2e-9 {
+		tr.fail("rows %v and %v, want them at 1.1 uJ and 1.5 uJ with different light", a, b)
+	}
+	tr.replay()
+}
+
 // BenchmarkTrial is a minute of bench time with three instruments in memory.
 func BenchmarkTrial(b *testing.B) {
 	b.ReportAllocs()
