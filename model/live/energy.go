@@ -77,16 +77,6 @@ func (c *Core) turned(s *State, failed string, fx []Effect) []Effect {
 	return fx
 }
 
-// arrived reports whether an attenuator that did not stand at once where it was
-// sent, so that a person is asked, has been read back there since: what turns
-// takes its time.
-func (c *Core) arrived(s *State) bool {
-	const within = 0.01 // of the full energy
-	r := s.Reading(reading.Attenuator, c.stale)
-	want := float64(s.run.phase().Energy / c.fullEnergy)
-	return s.run.asks && c.attenuates && r.Status.Usable() && math.Abs(r.Value-want) <= within
-}
-
 // request says what the program waits for somebody to do; "" where it waits
 // for nobody.
 func (p *progress) request() string {

@@ -125,10 +125,6 @@ func (c *Core) rampOn(s *State, fx []Effect) []Effect {
 // proceed carries the program on by one tick.
 func (c *Core) proceed(s *State, fx []Effect) []Effect {
 	r := &s.run
-	if r.active() && !r.paused && c.arrived(s) {
-		r.asks, r.settledAt, s.Why = false, s.Now.Mono, r.phase().Label
-		s.energy = r.phase().Energy
-	}
 	if !r.active() || r.paused || r.asks || r.turning {
 		return fx
 	}
