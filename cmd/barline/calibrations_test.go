@@ -72,7 +72,7 @@ func TestCalibrationsAreManaged(t *testing.T) {
 		{"in use  second", []string{"fit", "list", folder}},
 		{`"name":"second","in_use":true`, []string{"fit", "list", folder, "--json"}},
 		{"in use from the next start on: first", []string{"fit", "adopt", folder, "first"}},
-		{"+0.18 %", []string{"fit", "show", folder, "first"}},
+		{"9 points from 7.5 bar to 11.5 bar", []string{"fit", "show", folder, "first"}},
 		{"as stated", []string{"fit", "compare", folder, "first"}},
 		{"nm with second", []string{"fit", "compare", folder, "first", "second", "--scan", "2"}},
 		{"(anchored, calibration second)", append(slices.Clone(predict), "second")},

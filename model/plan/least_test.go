@@ -71,17 +71,20 @@ func TestLeastOrderPartsFullFieldRuns(t *testing.T) {
 	q := heron(t, 265e-9, 265e-9)
 	p := predictor(t, q, "argon")
 	for _, row := range rows[1:] {
+		if row[0] != "" { // of a bench that is not as stated
+			continue
+		}
 		v := make([]float64, len(row))
-		for i, text := range row {
-			if v[i], err = strconv.ParseFloat(text, 64); err != nil {
+		for i, text := range row[1:] {
+			if v[i+1], err = strconv.ParseFloat(text, 64); err != nil {
 				t.Fatal(err)
 			}
 		}
-		pr := p.Predict(emission.Input{Pressure: unit.Pascal(v[0]) * unit.Bar, Temperature: 293.15, Energy: unit.Joule(v[1] * 1e-6)}, nil)
+		pr := p.Predict(emission.Input{Pressure: unit.Pascal(v[2]) * unit.Bar, Temperature: 293.15, Energy: unit.Joule(v[3] * 1e-6)}, nil)
 		if pr.Emission == 0 {
 			continue
 		}
-		judge(q, pr, 100*v[6], row)
+		judge(q, pr, 100*v[8], row)
 	}
 	if wrong > count/12 || count < 70 {
 		t.Errorf("%d of %d runs on the wrong side, expected a twelfth at most", wrong, count)
