@@ -60,3 +60,20 @@ func attach(d disk, content []byte, suffix string) (a Attachment, err error) {
 	}
 	return a, errors.Join(d.syncDir(spectraDir), d.syncDir(""))
 }
+
+// ReadAttachment returns the content of a file that a record of the logbook in dir
+// names. It refuses one that is not as the record says.
+func ReadAttachment(dir string, a Attachment) ([]byte, error) {
+	if !strings.HasPrefix(a.File, spectraDir+"/") || strings.Contains(a.File[len(spectraDir)+1:], "/") {
+		return nil, fmt.Errorf("logbook: file %q, expected one in %s", a.File, spectraDir)
+	}
+	content, err := readFile(folder(dir), a.File)
+	if err != nil {
+		return nil, fmt.Errorf("logbook: %w", err)
+	}
+	sum := sha256.Sum256(content)
+	if got := hex.EncodeToString(sum[:]); got != a.SHA256 {
+		return nil, fmt.Errorf("logbook: %s has digest %s, the record says %s", a.File, got, a.SHA256)
+	}
+	return content, nil
+}

@@ -34,6 +34,14 @@ func TestAttachments(t *testing.T) {
 	if r := sound(t, dir); len(r.Notices) > 0 {
 		t.Errorf("notices %q", r.Notices)
 	}
+	if got, err := ReadAttachment(dir, a); err != nil || string(got) != string(spectrum) {
+		t.Errorf("read back %q, %v", got, err)
+	}
+	for _, wrong := range []Attachment{{File: "../x"}, {File: "spectra/../lock"}, {File: "spectra/none.csv"}, {File: a.File, SHA256: "00"}} {
+		if got, err := ReadAttachment(dir, wrong); err == nil {
+			t.Errorf("%+v was read: %q", wrong, got)
+		}
+	}
 	name := filepath.Join(dir, a.File)
 	if got, err := os.ReadFile(name); err != nil || string(got) != string(spectrum) {
 		t.Errorf("%q, %v", got, err)
@@ -50,8 +58,10 @@ func TestAttachments(t *testing.T) {
 
 func expectAttached(t *testing.T, dir, what string) {
 	t.Helper()
-	r, err := Verify(dir, true)
-	if err != nil || len(r.Damage) != 1 || r.Damage[0].Kind != Attached || !strings.Contains(r.Damage[0].Text, what) {
-		t.Errorf("%v %v, expected one with %q", r.Damage, err, what)
+	for _, deep := range []bool{false, true} {
+		r, err := Verify(dir, deep)
+		if err != nil || len(r.Damage) != 1 || r.Damage[0].Kind != Attached || !strings.Contains(r.Damage[0].Text, what) {
+			t.Errorf("deep %v: %v %v, expected one with %q", deep, r.Damage, err, what)
+		}
 	}
 }

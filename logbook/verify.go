@@ -68,7 +68,8 @@ func (r Report) OnlyTorn() bool {
 }
 
 // Verify checks framing, sequence, chain and digests of the whole logbook in
-// dir, and with deep also parses every record. It goes on behind damage. Its
+// dir, and the digest of every file that a record names; with deep it also
+// parses every record. It goes on behind damage. Its
 // error says that the folder itself could not be read.
 //
 // What no check can find: records cut off cleanly at the very end of a segment
@@ -104,9 +105,7 @@ func verify(d disk, deep bool) (Report, error) {
 	wait.Wait()
 	report.join(files)
 	report.twins(d, c.segments)
-	if deep {
-		report.verifyAttachments(d)
-	}
+	report.verifyAttachments(d)
 	return report, nil
 }
 
@@ -162,6 +161,9 @@ func verifySegment(d disk, s segmentFile, bound uint64, deep bool) SegmentReport
 			if err := check.line(l); err != nil {
 				r.spoil(w.damage(Edited, "record %d (%s): %v", l.seq, l.kind, err))
 			}
+		}
+		if string(l.kind) != "reading" { // most lines are readings and name no file
+			check.names(l)
 		}
 	}
 	if r.Records > 0 {

@@ -82,7 +82,7 @@ func cellA(t testing.TB, l map[string]*Line) float64 {
 func TestFillOverTheWire(t *testing.T) {
 	b := newBench(t, Options{Seed: 1})
 	l := b.Lines()
-	pattern, err := lines.Compile("EM {emission} nm W {width} nm S {strength} %")
+	pattern, err := lines.Compile("EM {emission} nm W {width} nm S {strength} % P {counts...}")
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -114,6 +114,8 @@ func TestFillOverTheWire(t *testing.T) {
 		t.Errorf("read back %q", back)
 	}
 	var last []float64
+	drain(t, l["spectrometer"])
+	to(t, b, 71*time.Second)
 	said := drain(t, l["spectrometer"])
 	if len(said) == 0 {
 		t.Fatal("the spectrometer says nothing")

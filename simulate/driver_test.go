@@ -9,6 +9,7 @@ import (
 	"barline/model/bench"
 	"barline/model/clock"
 	"barline/model/reading"
+	"barline/model/spectrum"
 	"barline/model/unit"
 	"barline/simulate"
 )
@@ -30,6 +31,7 @@ func TestDriversAndBenchAgree(t *testing.T) {
 	lines := b.Lines()
 	var all []*instrument.Instrument
 	latest := map[reading.Role]reading.Reading{}
+	var whole *reading.Spectrum
 	for _, spec := range file.Instrument {
 		in, err := instrument.New(spec, file.Panel.Ambient)
 		if err != nil {
@@ -39,6 +41,7 @@ func TestDriversAndBenchAgree(t *testing.T) {
 			t.Fatalf("the bench has no line %q", spec.Name)
 		}
 		in.Opened()
+		in.Spectra(func(s *reading.Spectrum) { whole = s })
 		all = append(all, in)
 	}
 	poll := func() {
@@ -75,6 +78,26 @@ func TestDriversAndBenchAgree(t *testing.T) {
 		if !ok || got.Status != reading.Good || !(got.Value > want.value-want.within && got.Value < want.value+want.within) {
 			t.Errorf("%v reads %+v, want %g ± %g", role, got, want.value, want.within)
 		}
+	}
+
+	// The spectrum that comes beside the summary shows the same emission.
+	if whole == nil || len(whole.Counts) != 256 || whole.Status != reading.Good {
+		t.Fatalf("the whole spectrum is %+v", whole)
+	}
+	light := make([]float64, len(whole.Counts))
+	for i, c := range whole.Counts {
+		light[i] = c - whole.Dark
+	}
+	d, err := spectrum.FromWavelengths(whole.Wavelength, light)
+	if err != nil {
+		t.Fatal(err)
+	}
+	lobes, err := spectrum.Lobes(d, 1030*unit.Nanometre)
+	if err != nil || len(lobes) == 0 {
+		t.Fatalf("no emission in the whole spectrum: %v", err)
+	}
+	if apart := float64(lobes[0].Centroid) - latest[reading.Emission].Value; apart > 1e-9 || apart < -1e-9 {
+		t.Errorf("the spectrum has its emission at %v, the summary says %v", lobes[0].Centroid, unit.Metre(latest[reading.Emission].Value))
 	}
 
 	// Orders: a setpoint moves gas, HOLD stops it.

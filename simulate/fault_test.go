@@ -179,7 +179,7 @@ func TestSagAndShutter(t *testing.T) {
 	to(t, b, time.Minute+time.Second)
 	lines := 0
 	for line := range splitLines(drain(t, l)) {
-		if lines++; string(line) != "EM --- nm W --- nm S --- %" {
+		if lines++; !strings.HasPrefix(string(line), "EM --- nm W --- nm S --- % P ") {
 			t.Errorf("behind the shutter: %q", line)
 		}
 	}

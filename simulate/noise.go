@@ -23,6 +23,7 @@ const (
 	ofWidth
 	ofStrength
 	ofGarbage
+	ofPixels
 )
 
 // bits mixes seed, source and count (Steele, Lea & Flood, OOPSLA 2014,

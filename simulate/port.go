@@ -54,7 +54,7 @@ const (
 	// A request that stops for longer is given up.
 	patience = 50 * time.Millisecond
 	// An instrument keeps no more than this for a reader who does not come.
-	mostUnread = 16 << 10
+	mostUnread = 128 << 10
 )
 
 // receive gives bytes to the instrument, at a time that only grows.

@@ -35,7 +35,28 @@ func TestGoldenScreens(t *testing.T) {
 	} {
 		cases = append(cases, sized{"filling", 120, 40, style, tag}, sized{"stale", 80, 24, style, tag})
 	}
-	for page := Scan; page < pageCount; page++ {
+	for _, name := range []string{"calm", "no-emission", "lost-link", "branches", "fresh"} {
+		for _, size := range [][2]int{{80, 24}, {120, 40}} {
+			name, situation := fmt.Sprintf("spectrum-%s-%dx%d", name, size[0], size[1]), name
+			t.Run(name, func(t *testing.T) {
+				golden(t, name, Render(situations()[situation], Spectrum, size[0], size[1], Style{}))
+			})
+		}
+	}
+	for name, c := range map[string]struct {
+		v     view
+		w, h  int
+		style Style
+	}{
+		"spectrum-linear": {view{page: Spectrum, linear: true}, 80, 24, Style{}}, "spectrum-whole": {view{page: Spectrum, whole: true}, 120, 40, Style{}},
+		"spectrum-ascii": {view{page: Spectrum}, 80, 24, Style{ASCII: true}}, "spectrum-plain": {view{page: Spectrum, plain: true}, 80, 24, Style{}},
+		"spectrum-200x60": {view{page: Spectrum}, 200, 60, Style{}}, "spectrum-palette": {view{page: Spectrum}, 120, 40, Style{Colours: frame.Palette}},
+	} {
+		t.Run(name, func(t *testing.T) {
+			golden(t, name, draw(situations()["filling"], c.v, c.w, c.h, c.style).String())
+		})
+	}
+	for page := Spectrum; page < pageCount; page++ {
 		for _, size := range [][2]int{{80, 24}, {120, 40}} {
 			name := fmt.Sprintf("%v-%dx%d", page, size[0], size[1])
 			t.Run(name, func(t *testing.T) {

@@ -22,7 +22,7 @@ func drawGreeting(a frame.Area, s *live.Snapshot) {
 		{"", ""},
 		{"Tab", "HOLD, at any time, without asking"},
 		{"a", "arm; then s sets a pressure, t tunes, r runs a scan"},
-		{"1–4", "pages: bench, scan, drift, log"},
+		{"1–5", "pages: bench, spectrum, scan, drift, log"},
 		{"?", "every key"},
 		{"", ""},
 		{"", "Any key closes this."},

@@ -435,5 +435,6 @@ func (f *frozen) over(now *live.Snapshot) *live.Snapshot {
 	mixed := *now
 	mixed.PressureA, mixed.Expected, mixed.Residuals = f.snapshot.PressureA, f.snapshot.Expected, f.snapshot.Residuals
 	mixed.Trends = f.snapshot.Trends
+	mixed.Spectrum, mixed.Propagated = f.snapshot.Spectrum, f.snapshot.Propagated
 	return &mixed
 }

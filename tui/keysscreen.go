@@ -83,7 +83,18 @@ func pressPlain(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
 	return v, nil
 }
 
-func pressNear(v view, _ *live.Snapshot, _ string) (view, []live.Intent) {
+func pressNear(v view, _ *live.Snapshot, key string) (view, []live.Intent) {
+	switch {
+	case key == "u" && v.page != Spectrum: // first let it be seen
+		v.page = Spectrum
+		return v, nil
+	case key == "u":
+		v.linear = !v.linear
+		return v, nil
+	case v.page == Spectrum:
+		v.whole = !v.whole
+		return v, nil
+	}
 	v.near = !v.near
 	return v, nil
 }

@@ -12,6 +12,9 @@ const (
 	// Bench shows the gas path, the pressure, the emission and how far it is
 	// from where it should be.
 	Bench Page = iota
+	// Spectrum shows the measured spectrum over the predicted one, and the
+	// light along the fibre.
+	Spectrum
 	// Scan shows a run of pressure steps: progress, rows, and how far each
 	// point is from the prediction, rising and falling apart.
 	Scan
@@ -22,7 +25,7 @@ const (
 	pageCount
 )
 
-var pageText = [pageCount]string{"bench", "scan", "drift", "log"}
+var pageText = [pageCount]string{"bench", "spectrum", "scan", "drift", "log"}
 
 // String returns the page's name as the screen writes it.
 func (p Page) String() string {
@@ -80,6 +83,8 @@ func draw(s *live.Snapshot, v view, w, h int, style Style) *frame.Frame {
 	switch {
 	case v.page == Log:
 		drawLog(body, s, v)
+	case v.page == Spectrum:
+		drawSpectrum(body, s, v)
 	case v.page == Scan:
 		drawScan(body, s, v)
 	case v.plain:

@@ -18,6 +18,8 @@ type view struct {
 	plain   bool          // no charts, for slow lines
 	mousing bool          // the mouse is ours and not the terminal's
 	near    bool          // the emission map shows what is near
+	whole   bool          // the spectra are drawn over all wavelengths
+	linear  bool          // and their intensity is not logarithmic
 	scroll  int           // lines of the record back from the newest
 	find    string        // only lines of the record with this
 	pick    int           // alarm chosen in the list

@@ -69,10 +69,13 @@ type anchoring struct {
 	loop    *loop.Loop
 	newest  *atomic.Pointer[guided] // for the curve
 	told    bool                    // of trouble, once
+	noted   int                     // full-field runs that the record has
+	asking  *asking
+	sigma   *emission.Predictor // anchored; says how sure a spectrum's emission is. Nil until there is one
 }
 
-// aroundEvery is how often the runs are told where the gas is.
-const aroundEvery = 500 * time.Millisecond
+// lookEvery is how often the runs are told where the gas is, wall time.
+const lookEvery = 100 * time.Millisecond
 
 // anchor starts the runs; they end with ctx. Where they cannot be had the
 // estimate stays, and a note in the record says why.
@@ -90,22 +93,42 @@ func (s *session) anchor(ctx context.Context, base *emission.Predictor, l *loop.
 	} else if o.Store, err = fullfield.OpenStore(folder, bench.Spec().Digest()); err != nil {
 		a.trouble(err) // the runs then last as long as the program
 	}
+	if a.asking, err = newAsking(base); err != nil {
+		a.trouble(err)
+		return
+	}
+	l.Propagation(a.asking.waiting(0))
 	worker := fullfield.NewWorker(o)
 	running.Go(func() { broken.guard("the full-field runs", func() { worker.Run(ctx) }) })
-	running.Go(func() {
-		tick := time.NewTicker(aroundEvery)
-		defer tick.Stop()
-		for {
-			select {
-			case <-ctx.Done():
-				return
-			case <-tick.C:
-				if s := l.Snapshot(); s.CoreKnown && s.Prediction.Density > 0 {
-					worker.Around(float64(s.Prediction.Density))
-				}
-			}
+	running.Go(func() { broken.guard("the asking for full-field runs", func() { a.look(ctx, worker) }) })
+}
+
+// look tells the worker where the gas is, and asks for its spectrum.
+func (a *anchoring) look(ctx context.Context, worker *fullfield.Worker) {
+	tick := time.NewTicker(lookEvery)
+	defer tick.Stop()
+	failed := false
+	for {
+		select {
+		case <-ctx.Done():
+			return
+		case <-tick.C:
 		}
-	})
+		s := a.loop.Snapshot()
+		if s.CoreKnown && s.Prediction.Density > 0 {
+			worker.Around(float64(s.Prediction.Density))
+		}
+		setup, ok, err := a.asking.next(time.Now(), s)
+		switch {
+		case err != nil && !failed: // such as a pressure that is no gas: said once
+			failed = true
+			a.loop.Propagated(&live.Propagated{Input: s.Prediction.Input, Asked: s.Now, Err: err.Error()})
+		case ok:
+			failed = false
+			a.loop.Propagation(a.asking.waiting(0))
+			worker.Ask(setup)
+		}
+	}
 }
 
 // tell takes what the worker has to say, on its goroutine.
@@ -120,12 +143,28 @@ func (a *anchoring) tell(e fullfield.Event) {
 				return
 			}
 			a.newest.Store(&guided{anchored: p.Clone(), estimate: a.base.Clone()})
+			a.sigma = p.Clone()
+			changed.Runs, a.noted = e.Nodes[a.noted:], len(e.Nodes)
 			changed.Predictor, changed.Answer = &guided{anchored: p, estimate: a.base.Clone()}, p.Setup().Answer.String()
 			if rms, tested := e.Map.LeftOut(); tested > 0 {
 				changed.LeftOutMetres = rms
 			}
 		}
 		a.loop.Model(changed)
+	case fullfield.Progress:
+		a.loop.Propagation(a.asking.waiting(e.Share))
+	case fullfield.Answered:
+		p, ok := a.asking.answered(time.Now(), e)
+		if !ok {
+			return
+		}
+		if a.sigma != nil && p.Emission != 0 {
+			if same := a.sigma.Predict(p.Input, nil); same.Answer == emission.Anchored && same.Emission != 0 {
+				p.Sigma = same.Sigma
+			}
+		}
+		a.loop.Propagated(p)
+		a.loop.Propagation(a.asking.waiting(0))
 	case fullfield.Failed:
 		a.trouble(e.Err)
 	}

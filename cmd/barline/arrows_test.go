@@ -31,7 +31,7 @@ func TestArrows(t *testing.T) {
 	}{
 		{"model/unit", nil},
 		{"model/live", []string{"model/unit", "model/reading", "model/limit", "model/bench", "model/emission", "model/alarm",
-			"model/trend", "model/flow", "model/fit", "model/calibration", "model/drift", "model/gas", "model/spectrum"}},
+			"model/trend", "model/flow", "model/fit", "model/calibration", "model/drift", "model/gas", "model/spectrum", "model/anchor"}},
 		{"model", []string{"model"}},
 		{"tui", []string{"model"}},
 		{"device", []string{"model"}},

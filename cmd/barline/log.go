@@ -45,8 +45,8 @@ func newLogVerify() *cobra.Command {
 	cmd := &cobra.Command{
 		Use:   "verify DIR",
 		Short: "Check that nothing in a logbook was lost or changed",
-		Long: `Checks framing, sequence, chain and digests of every segment and says what is
-damaged, where, and what is still good. A torn tail, as a crash leaves it, is
+		Long: `Checks framing, sequence, chain and digests of every segment, and the spectra
+that records name, and says what is damaged, where, and what is still good. A torn tail, as a crash leaves it, is
 told and is no failure.`,
 		Args: oneFolder,
 		RunE: func(cmd *cobra.Command, args []string) error {
@@ -71,7 +71,7 @@ told and is no failure.`,
 			return fmt.Errorf("%s is damaged: %v", args[0], firstWorse(report))
 		},
 	}
-	cmd.Flags().BoolVar(&deep, "deep", false, "parse every record, and check the spectra beside it")
+	cmd.Flags().BoolVar(&deep, "deep", false, "parse every record too")
 	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object")
 	return cmd
 }

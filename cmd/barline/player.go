@@ -2,6 +2,7 @@ package main
 
 import (
 	"errors"
+	"sync/atomic"
 	"time"
 
 	"barline/cmd/barline/loop"
@@ -12,6 +13,7 @@ import (
 	"barline/model/emission"
 	"barline/model/live"
 	"barline/model/reading"
+	"barline/model/unit"
 )
 
 // player brings the records of a logbook back through the core and the
@@ -25,6 +27,8 @@ type player struct {
 	latest map[string]reading.Reading
 	heard  map[string]time.Duration // bench Mono of a channel's last record
 	silent time.Duration            // after which a channel without one is not believed
+	runs   recordedRuns
+	newest atomic.Pointer[guided] // for the curve
 
 	simulated bool // as the record says of itself
 	speed     float64
@@ -61,16 +65,18 @@ func (p *player) configure(text []byte, at time.Time) error {
 		p.clk.Advance(time.Second) // an instant of zero means never
 	}
 	s.state.Follow()
-	curve := s.predictor.Clone()
+	p.runs = recordedRuns{base: s.predictor.Clone()}
+	p.newest.Store(&guided{estimate: s.predictor.Clone()})
 	p.latest, p.heard = map[string]reading.Reading{}, map[string]time.Duration{}
 	p.silent = b.Logbook.Heartbeat.Duration() + heartbeatLate
 	p.loop = loop.New(loop.Options{
 		Bench: b, Core: s.core, State: s.state, Clock: p.clk, Book: shutBook{}, Wire: &wire{now: p.clk.Now, answer: func(uint64, error, reading.Stamp) {}},
 		Curve: func(in emission.Input, _ *calibration.Calibration, dst []emission.CurvePoint) {
-			curve.Curve(dst, 0, s.core.Limits().Lowest().Max, in)
+			p.newest.Load().curve(dst, s.core.Limits().Lowest().Max, in)
 		},
 		Folder: p.folder, ReadOnly: true, Resonances: resonances(s.predictor),
 	})
+	p.loop.Propagation(live.Propagation{Why: "the record holds none: they are computed beside the first screen"})
 	return nil
 }
 
@@ -114,6 +120,12 @@ func (p *player) take(r logbook.Record) error {
 		if d.Instrument != "" {
 			p.loop.Link(d.Instrument, d.Link == "up", d.Reason, at)
 		}
+	case live.KindNode:
+		var d live.NodeData
+		if err := r.Decode(&d); err != nil {
+			return err
+		}
+		p.anchor(at, d)
 	case live.KindCommand:
 		var d live.CommandData
 		if err := r.Decode(&d); err != nil {
@@ -151,11 +163,40 @@ func (p *player) take(r logbook.Record) error {
 			return err
 		}
 		p.loop.Row(d)
+		p.spectrum(d, at)
 	}
 	if r.Kind != string(live.KindPrediction) {
 		p.loop.Line(at, live.Kind(r.Kind), recordText(r))
 	}
 	return nil
+}
+
+// spectrum shows the measured spectrum of a step, where the record has one. One
+// that cannot be read is none: log verify says why.
+func (p *player) spectrum(d live.StepData, at reading.Stamp) {
+	if d.Spectrum == nil || d.Spectrum.File == "" {
+		return
+	}
+	content, err := logbook.ReadAttachment(p.folder, logbook.Attachment{File: d.Spectrum.File, SHA256: d.Spectrum.SHA256})
+	if err != nil {
+		return
+	}
+	if s, err := loop.ParseSpectrum(content); err == nil {
+		s.Instrument, s.Taken = d.Spectrum.Instrument, at
+		p.loop.Spectrum(s)
+	}
+}
+
+// anchor lets the core answer from the full-field runs of the record, as the
+// one did that wrote it.
+func (p *player) anchor(at reading.Stamp, d live.NodeData) {
+	p.runs.take(d)
+	changed := live.ModelChanged{At: at, Nodes: d.Nodes, NodesPlanned: d.Planned, LeftOutMetres: unit.Metre(d.LeftOutM)}
+	if a := p.runs.predictor(); a != nil {
+		p.newest.Store(&guided{anchored: a.Clone(), estimate: p.runs.base.Clone()})
+		changed.Predictor, changed.Answer = &guided{anchored: a.Clone(), estimate: p.runs.base.Clone()}, d.Answer
+	}
+	p.loop.Model(changed)
 }
 
 func (p *player) tell(at reading.Stamp, data any) {

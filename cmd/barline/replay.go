@@ -43,8 +43,8 @@ the speed, q leaves.
 --check plays nothing: it derives every recorded prediction and every verdict on
 drift again from the values that it stood on, checks every recorded command against the limits, and
 says how far they differ. Predictions agree bit for bit on the same build and
-processor, within 1e-9 elsewhere; one that leaned on full-field nodes or on a
-calibration is counted and not derived.`,
+processor, within 1e-9 elsewhere. One that leaned on a calibration, or on
+full-field runs that the record does not hold, is counted and not derived.`,
 		Args: oneArg("a logbook folder"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			return f.run(cmd.Context(), args[0], cmd.OutOrStdout(), cmd.ErrOrStderr())
@@ -341,7 +341,7 @@ type rederived struct {
 	Exact       int     `json:"bit_for_bit"`
 	Within      int     `json:"within_1e-9"`
 	Differ      int     `json:"differ"`
-	NotDerived  int     `json:"not_derived"` // leaned on nodes or a calibration
+	NotDerived  int     `json:"not_derived"` // leaned on a calibration, or on runs that are not in the record
 	Largest     float64 `json:"largest_relative_difference"`
 	Verdicts    int     `json:"drift_verdicts"`
 	VerdictsOff int     `json:"drift_verdicts_that_differ"`
@@ -354,6 +354,7 @@ type rederived struct {
 func rederive(dir string, filter logbook.Filter, out io.Writer, asJSON bool) error {
 	var found rederived
 	var p *emission.Predictor
+	var runs recordedRuns
 	var b *bench.Bench
 	for rec, err := range logbook.Records(dir, filter) {
 		if err != nil {
@@ -379,12 +380,23 @@ func rederive(dir string, filter logbook.Filter, out io.Writer, asJSON bool) err
 			if p, err = emission.NewPredictor(setup); err != nil {
 				return err
 			}
+			runs = recordedRuns{base: p.Clone()}
+		case live.KindNode:
+			var d live.NodeData
+			if err := rec.Decode(&d); err != nil {
+				return err
+			}
+			runs.take(d)
 		case live.KindPrediction:
 			var d live.PredictionData
 			if err := rec.Decode(&d); err != nil {
 				return err
 			}
-			found.prediction(p, d)
+			by := p
+			if d.Answer == emission.Anchored.String() {
+				by = runs.predictor()
+			}
+			found.prediction(by, d)
 		case live.KindDrift:
 			var d live.DriftData
 			if err := rec.Decode(&d); err != nil {
@@ -407,7 +419,7 @@ func rederive(dir string, filter logbook.Filter, out io.Writer, asJSON bool) err
 			return err
 		}
 	} else {
-		fmt.Fprintf(out, "%d predictions: %d bit for bit the same, %d within 1e-9, %d differ, %d not derived (they leaned on nodes or a calibration)\n",
+		fmt.Fprintf(out, "%d predictions: %d bit for bit the same, %d within 1e-9, %d differ, %d not derived (they leaned on a calibration, or on full-field runs that are not in the record)\n",
 			found.Predictions, found.Exact, found.Within, found.Differ, found.NotDerived)
 		if found.Verdicts > 0 {
 			fmt.Fprintf(out, "%d verdicts on drift with causes, %d of them differ from what their numbers say\n", found.Verdicts, found.VerdictsOff)
@@ -444,7 +456,7 @@ func (f *rederived) verdict(d live.DriftData) {
 
 func (f *rederived) prediction(p *emission.Predictor, d live.PredictionData) {
 	f.Predictions++
-	if p == nil || d.Answer != p.Setup().Answer.String() {
+	if p == nil || d.Answer != p.Setup().Answer.String() || d.Calibration != "" {
 		f.NotDerived++
 		return
 	}

@@ -126,8 +126,12 @@ func (s *session) run(ctx context.Context, f front) (err error) {
 		Call:       calls.call,
 		Fares:      w.fares,
 		Broken:     func(where string, value any, stack []byte) { broken(where, value, stack) },
+		Attach:     book.Attach,
 		Folder:     s.folder, Simulated: s.simulated, Capture: s.capture, Resonances: resonances(s.predictor),
 	})
+	if !s.anchors {
+		l.Propagation(live.Propagation{Why: "full-field runs are computed beside a screen only"})
+	}
 	w.answer = l.Answer
 	s.recall(l)
 
@@ -239,6 +243,7 @@ func (s *session) lines(l *loop.Loop, w *wire, broken breakdown) ([]*instrument.
 			in.WavelengthsInAir()
 		}
 		in.CountFrom(air)
+		in.Spectra(l.Spectrum)
 		in.MadeBy(s.bench.Pulse.Wavelength, s.bench.Emission.Reports == "peak")
 		open, err := s.opener(spec)
 		if err != nil {

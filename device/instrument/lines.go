@@ -21,7 +21,12 @@ type linesProtocol struct {
 	timeout  time.Duration
 	channels []*channel
 	fields   []int   // of each channel, its place among the values; wholeSpectrum
-	pixels   *pixels // finds the emission in the list of the pattern; nil where none is used
+	pixels   *pixels // lays out the list of the pattern; nil where none is used
+	finds    bool    // a channel is found in the list
+
+	tell   func(*reading.Spectrum) // nil: nobody asks
+	counts []float64               // of the newest spectrum
+	fresh  bool                    // and it was not told yet
 
 	text   liner
 	values []float64
@@ -57,6 +62,11 @@ func newLines(in *Instrument) (*linesProtocol, error) {
 		}
 		p.channels, p.fields = append(p.channels, c), append(p.fields, at)
 	}
+	if p.pixels == nil && p.pattern.List() != "" && len(in.spec.Calibration) > 0 {
+		if p.pixels, err = newPixels(in.spec); err != nil {
+			return nil, err
+		}
+	}
 	return p, nil
 }
 
@@ -69,7 +79,7 @@ func (p *linesProtocol) useList(c *channel) (err error) {
 	default:
 		return fmt.Errorf("channel %q: {%s...} is a whole spectrum: expected the role emission, emission-width or emission-strength", c.spec.Name, c.spec.Field)
 	}
-	if p.pixels == nil {
+	if p.finds = true; p.pixels == nil {
 		p.pixels, err = newPixels(p.in.spec)
 	}
 	return err
@@ -79,7 +89,11 @@ func (p *linesProtocol) useList(c *channel) (err error) {
 func (p *linesProtocol) take(dst []reading.Reading, at reading.Stamp) []reading.Reading {
 	var f found
 	if p.pixels != nil {
-		f = p.pixels.find(p.values[len(p.pattern.Names()):])
+		counts := p.values[len(p.pattern.Names()):]
+		if p.finds {
+			f = p.pixels.find(counts)
+		}
+		p.keep(counts)
 	}
 	for i, c := range p.channels {
 		if p.fields[i] == wholeSpectrum {
@@ -151,6 +165,7 @@ func (p *linesProtocol) drain(line link.Line, now Now, dst []reading.Reading) ([
 	if whole == 0 {
 		return dst, nil
 	}
+	p.pass(at)
 	p.spread(dst[start:], whole, at)
 	if len(dst) == start && refused != nil {
 		dst = failure(dst, p.channels, at, refused.Error())
@@ -197,7 +212,9 @@ func (p *linesProtocol) step(_ int, line link.Line, now Now, dst []reading.Readi
 	case err != nil:
 		return failure(dst, p.channels, at, err.Error()), nil
 	}
-	return p.take(dst, at), nil
+	dst = p.take(dst, at)
+	p.pass(at)
+	return dst, nil
 }
 
 // askOnce asks for a line and reads until one fits. Refused is why the last

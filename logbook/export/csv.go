@@ -3,6 +3,7 @@ package export
 import (
 	"encoding/csv"
 	"encoding/json"
+	"fmt"
 	"io"
 	"iter"
 	"strconv"
@@ -49,12 +50,17 @@ func CSV(w io.Writer, records Records) (int, error) {
 // table.
 var stepColumns = []string{
 	"step", "set_Pa", "measured_Pa", "core_Pa", "temperature_K", "energy_J",
-	"predicted_m", "measured_m", "residual_m", "sigma_m", "samples", "status",
+	"predicted_m", "measured_m", "residual_m", "sigma_m", "samples", "status", spectrumColumn,
 }
+
+// spectrumColumn is the file of the measured spectrum of a step, below the
+// logbook's folder: the member file of its member spectrum.
+const spectrumColumn = "spectrum_file"
 
 // Scan writes the steps among records to w as CSV, one row a step: pressures
 // set, measured and in the core, temperature, energy, predicted and measured
-// emission, their difference and its standard uncertainty, status. Records of
+// emission, their difference and its standard uncertainty, status, and the file
+// of the measured spectrum. Records of
 // other kinds are passed over. It returns how many steps it wrote.
 func Scan(w io.Writer, records Records) (int, error) {
 	out := newWriter(w)
@@ -70,6 +76,13 @@ func Scan(w io.Writer, records Records) (int, error) {
 		var members map[string]json.RawMessage
 		if err := r.Decode(&members); err != nil {
 			return n, err
+		}
+		if raw, ok := members["spectrum"]; ok {
+			var spectrum map[string]json.RawMessage
+			if err := json.Unmarshal(raw, &spectrum); err != nil {
+				return n, fmt.Errorf("record %d: spectrum: %w", r.Seq, err)
+			}
+			members[spectrumColumn] = spectrum["file"]
 		}
 		row := []string{strconv.FormatUint(r.Seq, 10), r.UTC.Format(timeLayout)}
 		for _, c := range stepColumns {

@@ -25,7 +25,7 @@ var sample = []logbook.Record{
 		Data: json.RawMessage(`{"channel":"emission","role":"emission","value":null,"status":"function check","reason":"shutter closed"}`)},
 	{Seq: 4, UTC: at.Add(3 * time.Second), Mono: 3 * time.Second, Kind: "step",
 		Data: json.RawMessage(`{"step":1,"set_Pa":900000,"measured_Pa":900120.5,"core_Pa":900100,"temperature_K":295.15,"energy_J":1.3e-6,` +
-			`"predicted_m":2.651e-7,"measured_m":null,"residual_m":null,"samples":0,"sigma_m":0,"status":"no light, nowhere"}`)},
+			`"predicted_m":2.651e-7,"measured_m":null,"residual_m":null,"samples":0,"sigma_m":0,"status":"no light, nowhere","spectrum":{"file":"spectra/ab.csv","sha256":"ab","bytes":3}}`)},
 }
 
 func sequence(records []logbook.Record, last error) Records {
@@ -66,7 +66,7 @@ func TestScan(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	want := strings.Split("4|2026-12-01T11:42:08.123456Z|1|900000|900120.5|900100|295.15|1.3e-6|2.651e-7|||0|0|no light, nowhere", "|")
+	want := strings.Split("4|2026-12-01T11:42:08.123456Z|1|900000|900120.5|900100|295.15|1.3e-6|2.651e-7|||0|0|no light, nowhere|spectra/ab.csv", "|")
 	if !reflect.DeepEqual(rows[1], want) || len(rows[0]) != len(want) {
 		t.Errorf("got  %q\nwant %q", rows[1], want)
 	}

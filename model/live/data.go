@@ -1,6 +1,7 @@
 package live
 
 import (
+	"barline/model/anchor"
 	"barline/model/reading"
 )
 
@@ -65,12 +66,15 @@ type (
 		Priority int    `json:"priority"`
 		Cause    string `json:"cause"`
 	}
-	// NodeData says on how many full-field runs the predictions stand now.
+	// NodeData says on how many full-field runs the predictions stand now, and
+	// holds those that came since the record before, so that the predictions
+	// can be derived again from the record alone.
 	NodeData struct {
-		Answer   string  `json:"answer"`
-		Nodes    int     `json:"nodes"`
-		Planned  int     `json:"planned"`
-		LeftOutM float64 `json:"left_out_m"` // rms error at nodes left out; 0 where not known
+		Answer   string        `json:"answer"`
+		Nodes    int           `json:"nodes"` // in all records of the session so far, in their order
+		Planned  int           `json:"planned"`
+		LeftOutM float64       `json:"left_out_m"` // rms error at nodes left out; 0 where not known
+		Runs     []anchor.Node `json:"runs,omitempty"`
 	}
 	// RiseData is what a leak test showed. Flows are positive into the volume.
 	RiseData struct {
@@ -126,6 +130,18 @@ type (
 		RatePaS      *float64  `json:"rate_Pa_s,omitempty"`   // with every valve shut
 		Calibration  string    `json:"calibration,omitempty"` // of the prediction
 		Beyond       bool      `json:"beyond_calibration,omitempty"`
+
+		Spectrum *SpectrumData `json:"spectrum,omitempty"` // measured during the dwell
+	}
+	// SpectrumData names a file beside the record that holds a measured
+	// spectrum: the mean over a dwell.
+	SpectrumData struct {
+		File       string `json:"file,omitempty"` // below the logbook's folder
+		SHA256     string `json:"sha256,omitempty"`
+		Bytes      int    `json:"bytes,omitempty"`
+		Instrument string `json:"instrument,omitempty"`
+		Spectra    int    `json:"spectra,omitempty"` // that the mean is of
+		Missing    string `json:"missing,omitempty"` // why there is no file
 	}
 )
 

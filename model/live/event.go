@@ -3,6 +3,7 @@ package live
 import (
 	"time"
 
+	"barline/model/anchor"
 	"barline/model/reading"
 	"barline/model/unit"
 )
@@ -65,7 +66,8 @@ type ModelChanged struct {
 	At            reading.Stamp
 	Predictor     Predictor // nil: only the progress has changed
 	Answer        string
-	Nodes         int // full-field runs that it stands on
+	Nodes         int           // full-field runs that it stands on
+	Runs          []anchor.Node // those of them that no event brought before; never changed
 	NodesPlanned  int
 	LeftOutMetres unit.Metre // error at nodes left out, rms; 0 where not known
 }

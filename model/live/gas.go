@@ -185,7 +185,17 @@ func (c *Core) modelChanged(s *State, e ModelChanged, fx []Effect) []Effect {
 	c.rebase(s, s.Prediction)
 	s.Prediction, s.predicted = emission.Prediction{}, 0
 	s.recorded.at = 0 // the next prediction goes into the record
+	runs, before := e.Runs, e.Nodes-len(e.Runs)
+	for len(runs) > mostRuns { // a record has a bound
+		fx = append(fx, Record{At: e.At, Kind: KindNode, Data: NodeData{
+			Answer: e.Answer, Nodes: before + mostRuns, Planned: e.NodesPlanned, Runs: runs[:mostRuns:mostRuns],
+		}})
+		runs, before = runs[mostRuns:], before+mostRuns
+	}
 	return append(fx, Record{At: e.At, Kind: KindNode, Data: NodeData{
-		Answer: e.Answer, Nodes: e.Nodes, Planned: e.NodesPlanned, LeftOutM: float64(e.LeftOutMetres),
+		Answer: e.Answer, Nodes: e.Nodes, Planned: e.NodesPlanned, LeftOutM: float64(e.LeftOutMetres), Runs: runs,
 	}})
 }
+
+// mostRuns bounds the runs of one node record: some 400 bytes each.
+const mostRuns = 500

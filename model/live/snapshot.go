@@ -155,6 +155,10 @@ type Snapshot struct {
 	Residual      unit.Metre
 	ResidualKnown bool
 
+	Spectrum    *reading.Spectrum // the newest measured; nil where none was sent
+	Propagated  *Propagated       // the newest full-field run of what was in the core; nil before the first
+	Propagation Propagation       // how the next one fares
+
 	Curve  []emission.CurvePoint // ascending in pressure
 	Points []Point               // oldest first
 	// Resonances are where the fibre's wall keeps it from guiding, margins

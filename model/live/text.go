@@ -128,7 +128,18 @@ func (d StepData) String() string {
 	if d.ResidualM != nil {
 		text += fmt.Sprintf(", residual %+.2f nm over %d readings", *d.ResidualM*1e9, d.Samples)
 	}
+	if d.Spectrum != nil {
+		text += ", " + d.Spectrum.String()
+	}
 	return text
+}
+
+// String says where the spectrum is.
+func (d SpectrumData) String() string {
+	if d.File == "" {
+		return "spectrum not kept: " + d.Missing
+	}
+	return "spectrum in " + d.File
 }
 
 // String returns the verdict of a leak test in words.

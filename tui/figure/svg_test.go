@@ -26,6 +26,7 @@ func TestPictures(t *testing.T) {
 		{"bench", "filling", tui.Bench, 120, 40, false},
 		{"bench-light", "calm", tui.Bench, 80, 24, true},
 		{"bench-alarm", "stale", tui.Bench, 100, 30, false},
+		{"spectrum", "filling", tui.Spectrum, 120, 40, false},
 		{"scan", "filling", tui.Scan, 120, 40, false},
 		{"drift", "calm", tui.Drift, 120, 40, false},
 		{"log", "filling", tui.Log, 80, 24, false},

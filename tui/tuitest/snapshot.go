@@ -103,6 +103,8 @@ func Calm() *live.Snapshot {
 	s.Prediction = Prediction(9.001)
 	s.Curve = Curve()
 	s.Resonances = []live.Span{{From: 376 * unit.Nanometre, To: 400 * unit.Nanometre}, {From: 204 * unit.Nanometre, To: 217 * unit.Nanometre}}
+	s.Spectrum = measured(261.2, 14.2, 60*time.Millisecond)
+	s.Propagated, s.Propagation = propagated(9.001), live.Propagation{On: true}
 	for i := range 13 {
 		up := 7 + 0.4*float64(i)
 		if up <= 9.01 {
@@ -228,6 +230,10 @@ func Filling() *live.Snapshot {
 	s.Lag, s.SettleIn = 0.13*unit.Bar, 38*time.Second
 	s.Profile = profile(9.71, 9.58, 9.69)
 	s.Prediction = Prediction(9.58)
+	s.Spectrum = measured(266.9, 17.5, 60*time.Millisecond)
+	s.Propagated = propagated(9.52)
+	s.Propagated.Asked = at(Elapsed - 1400*time.Millisecond)
+	s.Propagation = live.Propagation{On: true, Busy: true, For: s.Prediction.Input, Share: 0.35}
 	s.Residual = 0.1 * unit.Nanometre
 	a, e := trend.NewRing(), trend.NewRing()
 	for i := range int(Elapsed / (100 * time.Millisecond)) {
@@ -277,6 +283,7 @@ func LostLink() *live.Snapshot {
 		s.Latest[r].Status = reading.Failure
 	}
 	s.ResidualKnown = false
+	s.Spectrum = measured(261.2, 14.2, 95*time.Second)
 	s.Alarms = []live.Alarm{{
 		Name: "spectrometer lost", Priority: 2, Active: true, Acked: true, Since: at(Elapsed - 95*time.Second),
 		Cause: "the line to the spectrometer is gone: cable pulled", Consequence: "no residual, drift is not watched", Action: "plug it in, it is opened again by itself",
@@ -313,6 +320,20 @@ func NoEmission() *live.Snapshot {
 	s.Prediction = Prediction(6.2)
 	s.Prediction.Emission, s.Prediction.Sigma = 0, 0
 	s.Prediction.Why = "inside the margin of the resonance at 210 nm"
+	s.Spectrum = measured(261.2, 14.2, 60*time.Millisecond)
+	for i := range s.Spectrum.Counts {
+		s.Spectrum.Counts[i] = s.Spectrum.Dark + 4*wobble(i)
+	}
+	s.Spectrum.Status, s.Spectrum.Reason = reading.FunctionCheck, "no light above the threshold"
+	s.Propagated = propagated(6.2)
+	s.Propagated.Emission, s.Propagated.Peak, s.Propagated.Width, s.Propagated.Conversion = 0, 0, 0, 0
+	for i, w := range s.Propagated.Wavelength {
+		if w < 400*unit.Nanometre {
+			s.Propagated.Spectrum[i] = 1e-7
+		}
+	}
+	s.Propagated.Reliable, s.Propagated.Ultraviolet = false, 0
+	s.Propagated.Reasons = []string{"the pump at 1030 nm is in normal dispersion (12 fs2/m): the pulse spreads instead of compressing"}
 	s.ResidualKnown = false
 	return s
 }
@@ -322,6 +343,7 @@ func Fresh() *live.Snapshot {
 	s := &live.Snapshot{
 		Now: at(200 * time.Millisecond), Bench: Heron(), Simulated: true,
 		Record: live.RecordHealth{Writing: true, Written: 2}, Folder: "heron-2026-12-01",
+		Propagation: live.Propagation{On: true},
 	}
 	for _, l := range []string{"gauges", "controller", "spectrometer"} {
 		s.Links = append(s.Links, live.LinkHealth{Instrument: l, Reason: "not opened yet"})
@@ -364,6 +386,7 @@ func Branches() *live.Snapshot {
 	s.Prediction.Sigma = 0.6 * unit.Nanometre
 	s.Prediction.BranchCount = 2
 	s.Prediction.Branches[0] = emission.Branch{Emission: s.Prediction.Emission, Conversion: 0.051}
+	s.Propagated.Others = []emission.Branch{{Emission: 241 * unit.Nanometre, Conversion: 0.038}}
 	s.Prediction.Branches[1] = emission.Branch{Emission: 241 * unit.Nanometre, Conversion: 0.038}
 	s.Prediction.Verdicts[0].Value, s.Prediction.Verdicts[0].OK = 16.2, false
 	s.Prediction.Verdicts[1].Value, s.Prediction.Verdicts[1].OK = 31.4, false

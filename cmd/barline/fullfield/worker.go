@@ -26,6 +26,7 @@ type (
 	// Anchored carries the map that stands on all nodes so far.
 	Anchored struct {
 		Map           *anchor.Map
+		Nodes         []anchor.Node // all, in the order in which they came; never changed
 		Done, Planned int
 	}
 	// Progress says how far the run at hand is, in steps of a twentieth.
@@ -64,8 +65,10 @@ type Worker struct {
 	// preparing says that it was asked for ahead: nobody waits for it yet.
 	preparing bool
 	stop      context.CancelFunc
-	recent    []*pulse.Result // newest last
-	around    anchor.Range    // of density, to be anchored
+	// laying stops the node at work, where it has come less than half its way.
+	laying context.CancelFunc
+	recent []*pulse.Result // newest last
+	around anchor.Range    // of density, to be anchored
 }
 
 const (
@@ -85,12 +88,16 @@ func NewWorker(o Options) *Worker {
 }
 
 // Ask asks for the spectrum of s. A newer question replaces one that has not
-// begun, and stops one at work that is no longer close to it.
+// begun, and stops one at work that is no longer close to it. A node that has
+// come less than half its way waits for it.
 func (w *Worker) Ask(s pulse.Setup) {
 	w.mu.Lock()
 	switch {
 	case w.current == nil:
 		w.question = &s
+		if w.laying != nil {
+			w.laying()
+		}
 	case !alike(*w.current, s):
 		w.question = &s
 		w.stop()
@@ -141,12 +148,14 @@ func (w *Worker) nudge() {
 	}
 }
 
-// Run works until ctx ends. Questions and nodes take turns, so that neither
-// waits for more than one run of the other.
+// Run works until ctx ends, on a thread that yields to everything else where
+// the system knows such. A question goes before nodes; while one is answered
+// after the other a node is laid in between.
 func (w *Worker) Run(ctx context.Context) {
+	defer yieldToOthers()()
 	nodes := w.load()
 	if w.opt.Bench != nil && len(nodes) > 0 {
-		w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), len(nodes), len(nodes)})
+		w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), nodes[:len(nodes):len(nodes)], len(nodes), len(nodes)})
 	}
 	var tasks []anchor.Task
 	var planned anchor.Range
@@ -156,9 +165,13 @@ func (w *Worker) Run(ctx context.Context) {
 		}
 		asked := w.answer(ctx)
 		if len(tasks) > 0 && ctx.Err() == nil {
-			if n, ok := w.node(ctx, tasks[0]); ok {
+			n, err := w.node(ctx, tasks[0])
+			if errors.Is(err, context.Canceled) {
+				continue // a question came: the node waits its turn again
+			}
+			if err == nil {
 				nodes = append(nodes, n)
-				w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), len(nodes), len(nodes) + len(tasks) - 1})
+				w.opt.Tell(Anchored{w.opt.Bench.Build(nodes), nodes[:len(nodes):len(nodes)], len(nodes), len(nodes) + len(tasks) - 1})
 			}
 			tasks = tasks[1:]
 			continue
@@ -191,21 +204,42 @@ func (w *Worker) load() []anchor.Node {
 	return nodes
 }
 
-// node carries out one task.
-func (w *Worker) node(ctx context.Context, t anchor.Task) (anchor.Node, bool) {
-	n, err := w.opt.Bench.Compute(ctx, t, nil)
-	if err != nil {
-		if ctx.Err() == nil {
-			w.opt.Tell(Failed{err})
+// node carries out one task. Its error has been told, unless a question or
+// the end stopped it.
+func (w *Worker) node(ctx context.Context, t anchor.Task) (anchor.Node, error) {
+	run, stop := context.WithCancel(ctx)
+	defer stop()
+	w.mu.Lock()
+	if w.question != nil {
+		w.mu.Unlock()
+		return anchor.Node{}, context.Canceled
+	}
+	w.laying = stop
+	w.mu.Unlock()
+	keep := func() {
+		w.mu.Lock()
+		w.laying = nil
+		w.mu.Unlock()
+	}
+	defer keep()
+	n, err := w.opt.Bench.Compute(run, t, func(share float64) {
+		if share > 0.5 {
+			keep() // what is half done is worth finishing
 		}
-		return n, false
+	})
+	switch {
+	case err != nil && run.Err() != nil:
+		return n, context.Canceled
+	case err != nil:
+		w.opt.Tell(Failed{err})
+		return n, err
 	}
 	if w.opt.Store != nil {
 		if err := w.opt.Store.Add(n); err != nil {
 			w.opt.Tell(Failed{err})
 		}
 	}
-	return n, true
+	return n, nil
 }
 
 // answer answers the newest question and reports whether there was one.
@@ -329,8 +363,8 @@ func (w *Worker) known(s pulse.Setup) *pulse.Result {
 // How close two setups are whose spectra count as the same: emission moves by
 // less than 0.1 nm.
 const (
-	sameDensity = 1e-4
-	sameEnergy  = 5e-4
+	sameDensity = 1e-3
+	sameEnergy  = 2e-3
 )
 
 // alike reports whether the spectra of two setups count as the same.

@@ -2,6 +2,7 @@ package fullfield
 
 import (
 	"context"
+	"errors"
 	"sync"
 	"testing"
 
@@ -249,5 +250,38 @@ func TestResultsKeptAreBounded(t *testing.T) {
 	w.remember(large(2 * recentNumbers))
 	if len(w.recent) != 1 {
 		t.Errorf("beside the newest %d results are kept, which is too large for them", len(w.recent)-1)
+	}
+}
+
+// A question is answered before the node at work goes on, and the node is laid
+// all the same.
+func TestQuestionGoesBeforeNodes(t *testing.T) {
+	b, h := short(t), newHeard()
+	w := NewWorker(Options{Bench: b, Tell: h.tell})
+	stopped := 0
+	w.laying = func() { stopped++ } // as in the first half of a node
+	w.Ask(setup(t, b, 300))
+	if stopped != 1 {
+		t.Error("the question did not stop the node at work")
+	}
+	if _, err := w.node(t.Context(), anchor.Task{Density: 400, Energy: unit.Microjoule}); !errors.Is(err, context.Canceled) {
+		t.Errorf("a node began although a question waits: %v", err)
+	}
+	w.laying = nil
+	w.Around(370)
+	start(t, w)
+	events := h.until(t, func(e []Event) bool {
+		for _, x := range e {
+			if a, ok := x.(Anchored); ok && a.Done >= 3 {
+				return true
+			}
+		}
+		return false
+	})
+	if _, ok := events[len(events)-1].(Anchored); !ok || len(answers(events)) != 1 {
+		t.Errorf("%d answers before the third node, want one", len(answers(events)))
+	}
+	if a, ok := events[0].(Progress); !ok {
+		t.Errorf("%T came first, want the question's progress: %+v", events[0], a)
 	}
 }

@@ -3,6 +3,7 @@ package loop
 import (
 	"fmt"
 	"sync"
+	"time"
 
 	"barline/model/limit"
 	"barline/model/reading"
@@ -17,6 +18,7 @@ type gate struct {
 	answer func(command uint64, err error, at reading.Stamp)
 	now    func() reading.Stamp
 	caught func(where string) // deferred
+	rows   *keeper            // of the rows before what passes; nil where none are kept
 
 	waiting chan passing // nil until started: commands then pass in place
 
@@ -27,6 +29,7 @@ type gate struct {
 type passing struct {
 	command uint64
 	send    func()
+	after   <-chan struct{} // closed when the row before it is recorded; nil where none waits
 }
 
 // start lets commands wait for the disk on a goroutine of their own. The
@@ -49,14 +52,17 @@ func (g *gate) start() (stop func()) {
 }
 
 func (g *gate) setpoint(command uint64, sp limit.Setpoint) {
-	g.let(passing{command, func() { g.wire.Setpoint(command, sp) }})
+	g.let(passing{command: command, send: func() { g.wire.Setpoint(command, sp) }})
 }
 
 func (g *gate) order(command uint64, o limit.Order) {
-	g.let(passing{command, func() { g.wire.Order(command, o) }})
+	g.let(passing{command: command, send: func() { g.wire.Order(command, o) }})
 }
 
 func (g *gate) let(p passing) {
+	if g.rows != nil {
+		p.after = g.rows.last
+	}
 	if g.waiting == nil {
 		g.pass(p)
 		return
@@ -69,6 +75,10 @@ func (g *gate) let(p passing) {
 }
 
 func (g *gate) pass(p passing) {
+	if !standing(p.after) {
+		g.answer(p.command, fmt.Errorf("not sent: the row before it did not reach the disk within %v", rowPatience), g.now())
+		return
+	}
 	if err := g.book.Sync(); err != nil {
 		g.answer(p.command, fmt.Errorf("not sent: it could not be recorded: %w", err), g.now())
 		return
@@ -79,6 +89,24 @@ func (g *gate) pass(p passing) {
 		return // HOLD came in between
 	}
 	p.send()
+}
+
+// rowPatience is how long a command waits for a row before it, wall time.
+const rowPatience = 5 * time.Second
+
+// standing waits until a row is recorded and reports whether it is.
+func standing(recorded <-chan struct{}) bool {
+	if recorded == nil {
+		return true
+	}
+	late := time.NewTimer(rowPatience)
+	defer late.Stop()
+	select {
+	case <-recorded:
+		return true
+	case <-late.C:
+		return false
+	}
 }
 
 func (g *gate) hold(command uint64, sp limit.Setpoint) {

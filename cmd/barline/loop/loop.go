@@ -73,6 +73,7 @@ type Options struct {
 	Seen       func(live.Event) // every event before it is folded, for a capture of all
 	Call       func(live.Call)  // must not block
 	Fares      func() []live.Fare
+	Attach     Attach // keeps the spectra of rows; nil: they are not kept
 	// Broken is told of a panic beside the loop; nil lets the program end.
 	Broken func(where string, value any, stack []byte)
 }
@@ -97,6 +98,11 @@ type Loop struct {
 	curveOf *calibration.Calibration
 	curving atomic.Bool
 	dropped uint64
+	spectra spectra
+	keeper  keeper
+
+	propagated  atomic.Pointer[live.Propagated]
+	propagation atomic.Pointer[live.Propagation]
 
 	snapshot atomic.Pointer[live.Snapshot]
 	changed  chan struct{}
@@ -109,7 +115,8 @@ func New(opt Options) *Loop {
 		history: newHistory(), records: newDeadbands(opt.Bench, opt.Capture), changed: make(chan struct{}, 1),
 	}
 	l.state.Now, l.state.Record = opt.Clock.Now(), opt.Book.Health()
-	l.gate = &gate{caught: l.caught, book: opt.Book, wire: opt.Wire, answer: l.Answer, now: opt.Clock.Now}
+	l.keeper = keeper{attach: opt.Attach, loop: l}
+	l.gate = &gate{caught: l.caught, rows: &l.keeper, book: opt.Book, wire: opt.Wire, answer: l.Answer, now: opt.Clock.Now}
 	l.publish()
 	return l
 }
@@ -153,8 +160,9 @@ func (l *Loop) Answer(command uint64, err error, at reading.Stamp) {
 // Run folds events until ctx ends, then holds the bench, waits until the
 // controller has confirmed it (at most for a second) and returns.
 func (l *Loop) Run(ctx context.Context) {
+	stopKeeper := l.keeper.start()
 	stopGate := l.gate.start()
-	defer stopGate()
+	defer func() { stopGate(); stopKeeper() }()
 	tick := time.NewTicker(max(time.Millisecond, l.opt.Clock.Wall(tickEvery)))
 	defer tick.Stop()
 	redraw := time.NewTicker(redrawEvery)
@@ -236,6 +244,14 @@ func (l *Loop) tick() {
 
 // handle folds one event and carries out what follows, in order.
 func (l *Loop) handle(e live.Event) {
+	switch e := e.(type) {
+	case measured:
+		l.spectra.see(e.spectrum, l.opt.Core.Progress(&l.state))
+		return
+	case kept:
+		l.history.line(e.at, live.KindStep, e.row)
+		return
+	}
 	if l.opt.Seen != nil {
 		l.opt.Seen(e)
 	}
@@ -254,11 +270,14 @@ func (l *Loop) handle(e live.Event) {
 	for _, f := range l.fx {
 		switch f := f.(type) {
 		case live.Record:
-			if err := l.record(f.At, f.Kind, f.Data); err != nil && f.Sync {
-				unrecorded = err
-			}
+			var err error
 			if row, ok := f.Data.(live.StepData); ok {
-				l.history.row(row)
+				err = l.row(f.At, row)
+			} else {
+				err = l.record(f.At, f.Kind, f.Data)
+			}
+			if err != nil && f.Sync {
+				unrecorded = err
 			}
 		case live.SendSetpoint:
 			if unrecorded != nil {

@@ -56,6 +56,10 @@ func (l *Loop) publish() {
 	if c := l.curve.Load(); c != nil {
 		snap.Curve = *c
 	}
+	snap.Spectrum, snap.Propagated = l.spectra.newest, l.propagated.Load()
+	if p := l.propagation.Load(); p != nil {
+		snap.Propagation = *p
+	}
 	l.snapshot.Store(snap)
 	select {
 	case l.changed <- struct{}{}:

@@ -26,7 +26,11 @@ func newQueue() *queue { return &queue{ready: make(chan struct{}, 1)} }
 
 func (q *queue) push(e live.Event) {
 	q.mu.Lock()
-	_, isReading := e.(live.Read)
+	isReading := false
+	switch e.(type) {
+	case live.Read, measured:
+		isReading = true
+	}
 	switch {
 	case isReading && q.readings >= maxReadings:
 		q.dropped++

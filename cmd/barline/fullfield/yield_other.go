@@ -1,0 +1,5 @@
+//go:build !linux
+
+package fullfield
+
+func yieldToOthers() (end func()) { return func() {} }
