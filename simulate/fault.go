@@ -23,6 +23,7 @@ const (
 	Confused
 	Unplugged
 	Shutter
+	Supply
 	kindCount
 )
 
@@ -38,6 +39,7 @@ var places = [kindCount][]string{
 	Confused:  {"gauges", "controller"},
 	Unplugged: {"controller", "gauges", "spectrometer"},
 	Shutter:   {"laser"},
+	Supply:    {"regulator"},
 }
 
 var kinds = [kindCount]struct {
@@ -56,6 +58,7 @@ var kinds = [kindCount]struct {
 	Confused:  {"confused", 0.1, "replies come late or twice, behind an echo or from another unit; size as the share of replies"},
 	Unplugged: {"unplugged", 0, "a cable is pulled"},
 	Shutter:   {"shutter", 0, "the shutter is closed"},
+	Supply:    {"supply", 40, "the regulator fails and gives more than it was set to; size in bar more"},
 }
 
 // Kinds returns all kinds of fault.
@@ -188,6 +191,8 @@ func (b *Bench) inject(f Fault) error {
 		}
 	case Shutter:
 		s.shutter = !f.Over
+	case Supply:
+		b.gas.regulate(supply + max(f.Size, 0)*bar)
 	}
 	return nil
 }

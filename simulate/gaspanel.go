@@ -15,6 +15,7 @@ type gasPanel struct {
 	cylinder, room, exhaust panel.Node
 
 	inlet, vent, pump panel.Passage
+	regulator         panel.Passage
 	cellValves        [2]panel.Passage
 	leaks             map[string]panel.Passage
 	gassing           [2]panel.Passage
@@ -47,7 +48,8 @@ func newGasPanel(start panel.State) (gasPanel, error) {
 	g.room = net.AddReservoir(panel.State{P: ambient, T: start.T, Air: 1})
 	g.exhaust = net.AddReservoir(panel.State{P: ambient, T: start.T, Air: 1})
 
-	net.Open(net.AddPassage(g.cylinder, g.line, panel.Regulator{Setting: supply, Slope: regulatorSlope}), 1)
+	g.regulator = net.AddPassage(g.cylinder, g.line, panel.Regulator{Setting: supply, Slope: regulatorSlope})
+	net.Open(g.regulator, 1)
 	g.inlet = net.AddPassage(g.line, g.hub, panel.NewOrifice(needleConductance, argon))
 	g.vent = net.AddPassage(g.hub, g.room, panel.NewOrifice(ventConductance, argon))
 	g.pump = net.AddPassage(g.hub, g.exhaust, panel.Pump{Speed: pumpSpeed, Ultimate: pumpUltimate})
@@ -80,6 +82,11 @@ func (g *gasPanel) leak(where string, conductance float64) {
 	p := g.leaks[where]
 	g.net.SetLaw(p, panel.NewOrifice(conductance, panel.Argon()))
 	g.net.Open(p, 1)
+}
+
+// regulate sets what the regulator gives, Pa.
+func (g *gasPanel) regulate(setting float64) {
+	g.net.SetLaw(g.regulator, panel.Regulator{Setting: setting, Slope: regulatorSlope})
 }
 
 // taint sets the mole fraction of air in what the cylinder gives.

@@ -92,6 +92,11 @@ func faultCases() []faultCase {
 			inject(simulate.Fault{Kind: simulate.Leak, Where: "cell A", Size: 30})(tr)
 			inject(simulate.Fault{Kind: simulate.Stuck, Where: "inlet"})(tr)
 		}, true, "pressure away from its setpoint", 10 * time.Minute, false},
+		{"supply fails high", inject(simulate.Fault{Kind: simulate.Supply}), false, "", time.Minute, false},
+		{"supply fails high, inlet stuck", func(tr *trial) {
+			inject(simulate.Fault{Kind: simulate.Supply})(tr)
+			inject(simulate.Fault{Kind: simulate.Stuck, Where: "inlet"})(tr)
+		}, false, "pressure above rating", time.Minute, true},
 		{"disk lost", func(tr *trial) { tr.disk.lost = true }, false, "nothing is being recorded", time.Second, true},
 		{"disk lost while steady", func(tr *trial) { tr.disk.lost = true }, true, "nothing is being recorded", time.Second, false},
 		{"dead gauge while steady", inject(simulate.Fault{Kind: simulate.Dead, Where: "cell A"}), true, "cell A: no valid reading", 5 * time.Second, false},

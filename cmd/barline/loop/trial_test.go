@@ -1,7 +1,6 @@
 package loop_test
 
 import (
-	"encoding/json"
 	"errors"
 	"fmt"
 	"maps"
@@ -76,34 +75,6 @@ type seat struct {
 	line  *simulate.Line
 	down  bool
 	buf   []reading.Reading
-}
-
-// memory is a logbook that keeps records as JSON and can lose its disk.
-type memory struct {
-	lost    bool
-	records []string
-	bad     error
-}
-
-func (m *memory) Append(at reading.Stamp, kind string, data any) (uint64, error) {
-	b, err := json.Marshal(data)
-	if err != nil { // NaN and infinity end here
-		m.bad = fmt.Errorf("record of kind %s: %w", kind, err)
-		return 0, err
-	}
-	m.records = append(m.records, kind+" "+string(b))
-	return uint64(len(m.records)), nil
-}
-
-func (m *memory) Sync() error {
-	if m.lost {
-		return errors.New("no space left on device")
-	}
-	return nil
-}
-
-func (m *memory) Health() live.RecordHealth {
-	return live.RecordHealth{Writing: !m.lost, Reason: map[bool]string{true: "no space left on device"}[m.lost]}
 }
 
 func newTrial(t testing.TB, seed uint64, pressure unit.Pascal) *trial {
@@ -496,12 +467,18 @@ func TestStorms(t *testing.T) {
 	each(t, seeds("BARLINE_STORMS", 8), func(t *testing.T, seed uint64) {
 		tr := newTrial(t, seed, unit.Pascal(1.1+float64(seed%10))*unit.Bar)
 		tr.faulty = seed%3 == 0
+		if seed%8 == 5 {
+			inject(simulate.Fault{Kind: simulate.Supply, Size: float64(20 * (seed % 7))})(tr)
+		}
 		for tr.clk.Now().Mono < 120*time.Second {
 			tr.operator()
 			tr.misfortune()
 			tr.turn()
 		}
 		tr.replay()
+		if seed%16 == 3 { // a real folder costs more than the trial
+			tr.verifies()
+		}
 	})
 }
 
