@@ -255,12 +255,11 @@ func (l *Loop) handle(e live.Event) {
 	if l.opt.Seen != nil {
 		l.opt.Seen(e)
 	}
-	if r, ok := e.(live.Read); ok {
-		// History and record hold what the core makes of it.
-		e = live.Read{Reading: l.opt.Core.Judge(&l.state, r.Reading)}
-	}
 	l.fx = l.opt.Core.Step(&l.state, e, l.fx[:0])
 	if r, ok := e.(live.Read); ok {
+		// History and record hold what the core made of it. It is asked after the
+		// step: before, it would judge by an earlier time.
+		r.Reading = l.opt.Core.Judge(&l.state, r.Reading)
 		l.history.reading(&l.state, r.Reading)
 		if data, due := l.records.due(r.Reading); due {
 			_ = l.record(r.Reading.Taken, live.KindReading, data) // Health counts what was refused
